@@ -1,0 +1,1 @@
+"""The nouns: frozen dataclasses that know no file, page or clock."""

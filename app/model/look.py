@@ -1,0 +1,105 @@
+"""Everything computed at one look, oriented experimental against control. Only views see it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import date
+
+from app.model.boundary import Bound, LookAsUsed, Verdict
+from app.model.extract import Changes, Finding, LookKind, TimeUnit
+from app.model.survival import CoxResult, LogrankResult, SurvivalCurve
+from app.model.values import Absent, Estimate, Ints
+
+
+@dataclass(frozen=True)
+class ArmCounts:
+    """Denominators of one arm; `person_time` is the sum of the times, in the time unit."""
+
+    subjects: int
+    events: int
+    person_time: float
+    follow_up_median: Estimate
+
+
+@dataclass(frozen=True)
+class StratumCounts:
+    label: str
+    subjects: int
+    events: int
+    experimental_subjects: int
+    experimental_events: int
+
+
+@dataclass(frozen=True)
+class Information:
+    """`fraction` = events / planned events. `variance_ratio` = V / (d p q), or why it does not exist."""
+
+    subjects: int
+    events: int
+    fraction: float
+    planned_events: int
+    score_variance: Estimate
+    variance_ratio: Estimate
+    control: ArmCounts
+    experimental: ArmCounts
+    strata: tuple[StratumCounts, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class CalendarCounts:
+    """Cumulative pooled counts by day since 1970-01-01, for the accrual figure; arrays of shape (m,)."""
+
+    day: Ints
+    randomised: Ints
+    events: Ints
+
+
+@dataclass(frozen=True, eq=False)
+class LookResult:
+    """One look under one plan: information, curves, tests, boundary. `past` are the looks as used."""
+
+    number: int
+    kind: LookKind
+    final: bool
+    time_unit: TimeUnit
+    cutoff: date | None
+    extracted: date | None
+    findings: tuple[Finding, ...]
+    changes: Changes | None
+    information: Information
+    calendar: CalendarCounts | None
+    logrank: LogrankResult | Absent
+    logrank_unstratified: LogrankResult | Absent
+    cox: CoxResult | Absent
+    cox_unstratified: CoxResult | Absent
+    control_curve: SurvivalCurve
+    experimental_curve: SurvivalCurve
+    bound: Bound
+    verdict: Verdict
+    past: tuple[LookAsUsed, ...]
+    planned: tuple[Bound, ...]  # bounds at the plan's looks still to come, were they held as planned
+    snapshot_digests: tuple[str, ...]
+    plan_digest: str
+
+
+@dataclass(frozen=True, eq=False)
+class PooledResult:
+    """One look without arms: all that the open side can be told."""
+
+    number: int
+    kind: LookKind
+    time_unit: TimeUnit
+    cutoff: date | None
+    extracted: date | None
+    subjects: int
+    events: int
+    fraction: float
+    planned_events: int
+    person_time: float
+    follow_up_median: Estimate
+    strata: tuple[tuple[str, int, int], ...]  # label, subjects, events
+    calendar: CalendarCounts | None
+    curve: SurvivalCurve
+    past: tuple[tuple[int, float, int], ...]  # number, fraction, events of earlier looks
+
+
