@@ -1,0 +1,20 @@
+"""Published check values, kept once: the tests run them, and so does the `validate` command.
+
+Each module of rows has a function that returns them; a new one is added to `SOURCES`.
+"""
+
+from __future__ import annotations
+
+from app.validation.rows import PublishedRow, RowOutcome
+from app.validation.survival_rows import survival_rows
+
+SOURCES = (
+    survival_rows,
+)
+
+__all__ = ["PublishedRow", "RowOutcome", "published_rows"]
+
+
+def published_rows() -> tuple[PublishedRow, ...]:
+    """Every row of every source, in the order of the sources."""
+    return tuple(row for source in SOURCES for row in source())
