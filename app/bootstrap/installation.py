@@ -62,9 +62,10 @@ CAUSES = (
         "Check the package index that pip is set to use; nothing was kept",
     ),
     Cause(
-        r"NewConnectionError|Failed to establish a new connection|[Nn]ame resolution"
-        r"|Name or service not known|getaddrinfo failed|Connection refused|Network is unreachable"
-        r"|No route to host|[Tt]imed? ?out|Proxy ?Error|SSL ?Error|Connection aborted|RemoteDisconnected|Connection reset|Connection broken|IncompleteRead|HTTP error 5\d\d",
+        r"NewConnectionError|Failed to establish a new connection|[Nn]ame resolution|getaddrinfo failed"
+        r"|Name or service not known|Connection refused|Network is unreachable|No route to host"
+        r"|[Tt]imed? ?out|Proxy ?Error|SSL ?Error|Connection aborted|Connection reset|Connection broken"
+        r"|RemoteDisconnected|IncompleteRead|HTTP error 5\d\d",
         "the packages could not be downloaded",
         "an answer from the package index",
         "Connect to the network, which only the first start needs, and run the same command again",
@@ -128,9 +129,11 @@ class Progress:
 
     def read(self, line: str) -> None:
         """Say what `line` of pip means, if it means progress."""
-        if line.startswith("Collecting "):
+        found = re.match(r"Collecting ([\w.-]+)==([\w.]+)|Processing \S*?([\w.]+)-([\w.]+)-\S+\.whl", line)
+        if found:
             self.seen += 1
-            self.say(f"  {self.seen} of {self.total}: {line.split()[1].replace('==', ' ')}")
+            name, version = filter(None, found.groups())
+            self.say(f"  {self.seen} of {self.total}: {name} {version}")
         elif line.startswith("Installing collected packages"):
             self.say("  unpacking")
 

@@ -1,0 +1,90 @@
+"""What every test shares: which tests run, one seed for all, and the browser."""
+
+from __future__ import annotations
+
+import os
+import shutil
+from collections.abc import Iterator
+from typing import TYPE_CHECKING
+
+import hypothesis
+import pytest
+
+if TYPE_CHECKING:
+    from playwright.sync_api import Browser
+
+# One thread, as in the program: sums depend on how many there are. Said before numpy is imported.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
+# The same examples in every run; a slow machine is no failure.
+hypothesis.settings.register_profile("lookledger", deadline=None, derandomize=True, database=None)
+hypothesis.settings.load_profile("lookledger")
+
+CHROMIUM = ("chromium", "chromium-browser", "google-chrome")
+CHROMIUM_FLAGS = [
+    "--no-sandbox",
+    "--disable-gpu",
+    "--disable-quic",
+    "--no-first-run",
+    "--disable-background-networking",
+    "--disable-component-update",
+    "--disable-sync",
+]
+NO_CHROMIUM = f"no Chromium on this machine (looked for {', '.join(CHROMIUM)})"
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    parser.addoption("--quick", action="store_true", help="leave out the tests marked slow")
+    parser.addoption("--bench", action="store_true", help="run the tests marked bench, and them alone")
+
+
+def chromium_path() -> str | None:
+    """The system's own Chromium; none is ever downloaded."""
+    return next(filter(None, map(shutil.which, CHROMIUM)), None)
+
+
+def browser_available() -> bool:
+    """Whether browser tests run: in CI they always do, and fail where there is no browser."""
+    return chromium_path() is not None or bool(os.environ.get("CI"))
+
+
+@pytest.hookimpl(tryfirst=True)
+def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
+    """Choose by --quick and --bench; mark browser tests before -m is read."""
+    left_out = [item for item in items if is_left_out(item, config)]
+    config.hook.pytest_deselected(items=left_out)
+    items[:] = [item for item in items if item not in left_out]
+    for item in items:
+        if "chromium" in getattr(item, "fixturenames", ()):
+            item.add_marker(pytest.mark.browser)
+            if not browser_available():
+                item.add_marker(pytest.mark.skip(reason=NO_CHROMIUM))
+
+
+def is_left_out(item: pytest.Item, config: pytest.Config) -> bool:
+    """Whether the options say that `item` does not run."""
+    if (item.get_closest_marker("bench") is not None) != config.getoption("--bench"):
+        return True
+    return config.getoption("--quick") and item.get_closest_marker("slow") is not None
+
+
+def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:
+    """Say aloud that browser tests did not run; nothing else may skip."""
+    skipped = terminalreporter.stats.get("skipped", [])
+    if skipped and not browser_available():
+        terminalreporter.section("BROWSER TESTS DID NOT RUN", sep="!", red=True)
+        terminalreporter.line(f"{len(skipped)} left out: {NO_CHROMIUM}. On Debian: apt install chromium")
+
+
+@pytest.fixture(scope="session")
+def chromium() -> Iterator[Browser]:
+    """The system's Chromium, headless; one for the whole run, so ask it for a fresh context in each test."""
+    from playwright.sync_api import sync_playwright
+
+    path = chromium_path()
+    if path is None:
+        pytest.fail(NO_CHROMIUM)
+    with sync_playwright() as playwright:
+        browser = playwright.chromium.launch(executable_path=path, args=CHROMIUM_FLAGS)
+        yield browser
+        browser.close()
