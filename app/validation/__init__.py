@@ -8,9 +8,7 @@ from __future__ import annotations
 from app.validation.rows import PublishedRow, RowOutcome
 from app.validation.survival_rows import survival_rows
 
-SOURCES = (
-    survival_rows,
-)
+SOURCES = (survival_rows,)
 
 __all__ = ["PublishedRow", "RowOutcome", "published_rows"]
 

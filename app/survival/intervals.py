@@ -1,0 +1,80 @@
+"""Pointwise confidence limits of a survival curve on five scales.
+
+Each kind takes survival S strictly between 0 and 1, shape (m,), the standard error of log S, and the normal
+quantile; it returns lower and upper limits of S.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from types import MappingProxyType
+
+import numpy as np
+from scipy.special import expit, logit, ndtri
+
+from app.model.values import Floats
+
+Limits = tuple[Floats, Floats]
+
+
+def plain(survival: Floats, error: Floats, z: float) -> Limits:
+    """S -+ z se(S), cut at 0 and 1."""
+    half = z * error * survival
+    return np.maximum(survival - half, 0.0), np.minimum(survival + half, 1.0)
+
+
+def log(survival: Floats, error: Floats, z: float) -> Limits:
+    """On log S, cut at 1."""
+    return survival * np.exp(-z * error), np.minimum(survival * np.exp(z * error), 1.0)
+
+
+def log_log(survival: Floats, error: Floats, z: float) -> Limits:
+    """On log(-log S), Kalbfleisch & Prentice (1980): S to the power exp(+-z se / log S)."""
+    log_survival = np.log(survival)
+    factor = np.exp(z * error / -log_survival)
+    return np.exp(log_survival * factor), np.exp(log_survival / factor)
+
+
+def logit_scale(survival: Floats, error: Floats, z: float) -> Limits:
+    """On log(S / (1 - S))."""
+    centre, half = logit(survival), z * error / (1.0 - survival)
+    return expit(centre - half), expit(centre + half)
+
+
+def arcsine_square_root(survival: Floats, error: Floats, z: float) -> Limits:
+    """On arcsin sqrt(S), Borgan & Liestol (1990), cut at the ends of the scale."""
+    centre = np.arcsin(np.sqrt(survival))
+    half = 0.5 * z * error * np.sqrt(survival / (1.0 - survival))
+    low, high = np.maximum(centre - half, 0.0), np.minimum(centre + half, np.pi / 2)
+    return np.sin(low) ** 2, np.sin(high) ** 2
+
+
+KINDS: MappingProxyType[str, Callable[[Floats, Floats, float], Limits]] = MappingProxyType(
+    {
+        "plain": plain,
+        "log": log,
+        "log-log": log_log,
+        "logit": logit_scale,
+        "arcsine-square-root": arcsine_square_root,
+    }
+)
+
+
+def survival_limits(survival: Floats, error: Floats, *, level: float, interval: str) -> Limits:
+    """Limits of S where 0 < S < 1, NaN elsewhere: no standard error exists at 0, and at 1 it is 0.
+
+    `error` is the standard error of log S. Raises ValueError for an unknown kind or a level outside (0, 1).
+    """
+    if interval not in KINDS:
+        raise ValueError(f"interval is {interval!r}; accepted: {', '.join(map(repr, KINDS))}")
+    low, high = np.full((2, survival.size), np.nan)
+    inside = (survival > 0.0) & (survival < 1.0)
+    low[inside], high[inside] = KINDS[interval](survival[inside], error[inside], two_sided_quantile(level))
+    return low, high
+
+
+def two_sided_quantile(level: float) -> float:
+    """The z with P(|Z| <= z) = level: 1.96 for 0.95."""
+    if not 0.0 < level < 1.0:
+        raise ValueError(f"level is {level!r}; accepted: a number between 0 and 1")
+    return -float(ndtri((1.0 - level) / 2.0))
