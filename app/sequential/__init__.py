@@ -1,0 +1,1 @@
+"""Group-sequential tests: spending, boundaries, verdicts. Numbers in, frozen records out."""
