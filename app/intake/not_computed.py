@@ -1,0 +1,87 @@
+"""The parts of a plan that are read and checked, but whose computing this version does not do.
+
+Each is refused by name, never silently ignored. Whoever adds the computing takes the line out here.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+from app.errors import DesignInvalid
+from app.intake.places import Place, shown
+
+
+@dataclass(frozen=True)
+class NotComputed:
+    """A table, or a key of a table with the values that are computed all the same."""
+
+    table: str
+    what: str
+    key: str | None = None
+    computed: tuple[Any, ...] = ()
+
+
+NOT_COMPUTED = (
+    NotComputed("futility", "futility bounds are"),
+    NotComputed("harm", "a harm boundary is"),
+    NotComputed("hypothesis", "further hypotheses are"),
+    NotComputed("held", "looks held before the trial file existed are"),
+    NotComputed("trial", "a planned end date is", key="planned_end_date"),
+    NotComputed(
+        "efficacy",
+        "bounds by this spending function or family are",
+        key="spending",
+        computed=("O'Brien-Fleming-type", "Pocock-type"),
+    ),
+    NotComputed("design", "information by score variance is", key="information", computed=("events",)),
+    NotComputed("design", "spending by the calendar is", key="spending_clock", computed=("information",)),
+    NotComputed("design", "carrying on by crossing probability is", key="carry_on", computed=("nominal",)),
+    NotComputed("design", "alpha for safety looks is", key="safety_spend", computed=(0,)),
+    NotComputed("enrolment", "a monthly rate of enrolment is", key="planned_per_month"),
+    NotComputed("enrolment", "drop-out for forecasts is", key="dropout_per_year"),
+    NotComputed("analysis", "this treatment of ties is", key="ties", computed=("Efron",)),
+    NotComputed("analysis", "this curve interval is", key="curve_interval", computed=("log-log",)),
+    NotComputed("analysis", "a restricted mean is", key="restricted_mean_at"),
+    NotComputed("analysis", "landmark survival is", key="landmarks_at"),
+    NotComputed("analysis", "weighted tests are", key="weights"),
+    NotComputed("analysis", "subgroups are", key="subgroups"),
+    NotComputed("analysis", "a prior for predictive power is", key="prior_hazard_ratio"),
+    NotComputed("analysis", "a prior for predictive power is", key="prior_std_error"),
+    NotComputed("columns", "an adjudication column is", key="adjudicated"),
+    NotComputed("columns", "a cause column is", key="cause"),
+    NotComputed("columns", "a site column is", key="site"),
+    NotComputed("columns", "a last-contact column is", key="last_contact"),
+    NotComputed("columns", "an analysis-set column is", key="analysis_set"),
+)
+
+
+def not_computed_parts(document: Mapping[str, Any], place: Place) -> Iterator[DesignInvalid]:
+    """A sentence for each part that the plan asks for and this version does not compute."""
+    for part in NOT_COMPUTED:
+        written = document.get(part.table)
+        if part.key is None and written is not None:
+            yield _refused_table(part, place.table(part.table, repeated=isinstance(written, list)))
+        elif part.key is not None and isinstance(written, dict):
+            value = written.get(part.key, *part.computed[:1])
+            if value is not None and value not in part.computed:
+                yield _refused_key(part, part.key, value, place.table(part.table))
+
+
+def _refused_table(part: NotComputed, place: Place) -> DesignInvalid:
+    return DesignInvalid(
+        f"{part.what} not computed by this version",
+        where=str(place),
+        remedy="remove the table, or use a version that computes it",
+    )
+
+
+def _refused_key(part: NotComputed, key: str, value: Any, place: Place) -> DesignInvalid:
+    return DesignInvalid(
+        f"{part.what} not computed by this version",
+        where=str(place.key(key)),
+        found=shown(value),
+        accepted=", ".join(map(shown, part.computed)) or "the table without this key",
+        remedy="change the plan, or use a version that computes it",
+    )
