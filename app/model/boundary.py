@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import Literal
 
 from app.model.extract import LookKind
-from app.model.values import Estimate
+from app.model.values import Absent, Estimate
 
 Crossed = Literal["none", "efficacy", "futility", "harm", "control"]
 
@@ -29,6 +29,7 @@ class LookAsUsed:
     alpha_spent: float
     final: bool
     crossed: Crossed = "none"
+    efficacy_hazard_ratio: Estimate = Absent("not recorded for this look")
 
 
 @dataclass(frozen=True)
@@ -74,5 +75,3 @@ class PlannedBoundary:
     expected_fraction_null: Estimate
     expected_fraction_half: Estimate
     expected_fraction_design: Estimate
-
-
