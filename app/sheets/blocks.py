@@ -138,6 +138,7 @@ class Lane:
     upper: Span | None
     lower: Span | None
     crossed: bool = False
+    futility: Span | None = None  # hatched below; mirrored on the right lane of "two lanes"
 
 
 @dataclass(frozen=True)
@@ -241,6 +242,7 @@ class ZStrip:
     upper: Span | None
     lower: Span | None
     crossed: bool
+    futility: Span | None = None
     kind: Literal["z strip"] = "z strip"
 
 
