@@ -1,4 +1,4 @@
-"""Published values of the survival estimators: curves, medians, log-rank, hazard ratios of three data sets."""
+"""Published values of the survival estimators: curves, medians, log-rank and hazard ratios."""
 
 from __future__ import annotations
 
@@ -80,9 +80,15 @@ Item = tuple[str, str, Callable[[], float]]
 
 
 def _rows(publication: str, mark: Mark, items: Iterable[Item]) -> tuple[PublishedRow, ...]:
-    return tuple(
-        PublishedRow(what, publication, mark, expected, compute) for what, expected, compute in items
-    )
+    return tuple(_row(publication, mark, *item) for item in items)
+
+
+def _row(
+    publication: str, mark: Mark, what: str, expected: str, compute: Callable[[], float]
+) -> PublishedRow:
+    """The row, with the note and the wider tolerance of those whose last digit differs."""
+    note = LAST_DIGIT_DIFFERS.get(what, "")
+    return PublishedRow(what, publication, mark, expected, compute, note, units=1.5 if note else 0.5)
 
 
 def _fields(table: str) -> list[list[str]]:

@@ -19,7 +19,7 @@ def test_value_agrees_with_its_publication_to_the_printed_digits(row: PublishedR
 
 @pytest.mark.parametrize("kind", ["plain", "log", "log-log"])
 def test_upper_limit_of_the_6_mp_median_is_not_reached(kind: str) -> None:
-    # Freireich et al. (1963); computed independently with R's survival: 23 (16, NA) log, 23 (13, NA) the others
+    # Freireich et al. (1963); computed independently with R: 23 (16, NA) log, else 23 (13, NA)
     sample = published_sample("leukaemia_remission")
     chosen = sample.is_in("6-MP")
     curve = kaplan_meier(sample.time[chosen], sample.event[chosen], interval=kind)
