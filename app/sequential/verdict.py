@@ -11,7 +11,7 @@ from app.model.values import Absent
 STANDING_CROSSINGS = ("efficacy", "control")
 
 
-def crossed(z: float | None, bound: Bound, sides: Sides) -> Crossed:
+def crossed(z: float | None, bound: Bound | LookAsUsed, sides: Sides) -> Crossed:
     """What this look crosses: z at or beyond the bound, below it only where the test has two sides."""
     if z is None or isinstance(bound.efficacy_z, Absent):
         return "none"
