@@ -30,6 +30,9 @@ OPTIONS = (
     "off",
 )
 
+# pip names what it takes from an index, but gives the file name of a wheel that lies on a disk
+PACKAGE = r"Collecting ([\w.-]+)==([\w.]+)|Processing (?:.*[/\\])?([\w.]+)-([\w.]+)-[^/\\]+\.whl"
+
 Say = Callable[[str], None]
 
 
@@ -72,9 +75,9 @@ CAUSES = (
     ),
     Cause(
         r"No matching distribution found for \S+",
-        "a package is not made for this Python and machine",
-        "CPython 3.11, 3.12 or 3.13 on a common machine",
-        "Start with another Python, as in: python3.12 app",
+        "a package is not offered for this Python and machine",
+        "an index that offers it, for a common machine and CPython 3.11, 3.12 or 3.13",
+        "Check the network and the index that pip is set to use, or start with another Python",
     ),
 )
 """In this order: a full disk or a lost network also hides every package, and pip then says both."""
@@ -85,7 +88,7 @@ def install(folder: Path, python: Path, lock: Path, say: Say) -> None:
     create(folder)
     output = run_pip([*pip_for(python), *OPTIONS, "--requirement", str(lock)], Progress(lock, say))
     if output is not None:
-        raise reason(output, folder.parent)
+        raise reason(output, folder)
 
 
 def create(folder: Path) -> None:
@@ -129,11 +132,13 @@ class Progress:
 
     def read(self, line: str) -> None:
         """Say what `line` of pip means, if it means progress."""
-        found = re.match(r"Collecting ([\w.-]+)==([\w.]+)|Processing \S*?([\w.]+)-([\w.]+)-\S+\.whl", line)
+        found = re.match(PACKAGE, line)
         if found:
             self.seen += 1
             name, version = filter(None, found.groups())
             self.say(f"  {self.seen} of {self.total}: {name} {version}")
+        elif line.startswith("WARNING: Retrying"):
+            self.say("  no answer from the package index; trying again")
         elif line.startswith("Installing collected packages"):
             self.say("  unpacking")
 
@@ -153,18 +158,18 @@ def run_pip(command: list[str], progress: Progress) -> str | None:
 def reason(output: str, folder: Path) -> SetupError:
     """Why pip failed, from what it printed."""
     for cause in CAUSES:
-        match = re.search(cause.pattern, output)
-        if match:
+        matches = re.findall(cause.pattern, output)
+        if matches:
             return SetupError(
                 cause.what,
-                where=str(folder),
-                found=repr(match[0]),
+                where=f"the set-up of {folder}",
+                found=repr(matches[-1]),
                 accepted=cause.accepted,
                 remedy=cause.remedy,
             )
     return SetupError(
         "the packages could not be installed",
-        where=str(folder),
+        where=f"the set-up of {folder}",
         found=repr(last_words(output)),
         remedy="Mend what pip names there and run the same command again",
     )
