@@ -170,7 +170,7 @@ def _spend_here(rule: EfficacyRule, standing: _Standing, look: LookAhead) -> Est
         return SAFETY
     if standing.crossed_at is not None:
         return Absent(
-            f"the boundary was crossed at look {standing.crossed_at}: this is over-running, with no second test"
+            f"the boundary was crossed at look {standing.crossed_at}: over-running, with no second test"
         )
     if look.information <= standing.information:
         return NO_FINAL_BOUNDARY if look.final else NO_NEW_INFORMATION

@@ -6,9 +6,10 @@ Each module of rows has a function that returns them; a new one is added to `SOU
 from __future__ import annotations
 
 from app.validation.rows import PublishedRow, RowOutcome
+from app.validation.sequential_rows import sequential_rows
 from app.validation.survival_rows import survival_rows
 
-SOURCES = (survival_rows,)
+SOURCES = (survival_rows, sequential_rows)
 
 __all__ = ["PublishedRow", "RowOutcome", "published_rows"]
 
