@@ -59,8 +59,8 @@ def logrank(
     -----
     *Convention*: z = direction (expected - observed) / sqrt(variance), so z > 0 favours the experimental arm;
     at one time events precede censorings; hypergeometric variance; a stratum in which no event fell while
-    both arms were at risk adds 0 to each sum. p_one_sided = P(Z >= z), p_two_sided = P(|Z| >= |z|), standard
-    normal.
+    both arms were at risk adds nothing to expected - observed nor to the variance. p_one_sided = P(Z >= z),
+    p_two_sided = P(|Z| >= |z|), Z standard normal.
     *Accuracy*: sums of at most n rational terms; relative error below 1e-12 for n <= 1e6.
     *Checked*: by hand (tests/byhand), print (app/validation/survival_rows.py), a literal version
     (tests/naive.py), properties.

@@ -66,8 +66,7 @@ def cox_two_arms(
     ------
     ValueError : an argument breaks a domain above - a bug in the caller.
     NotEstimable : no event tells the arms apart, or all that do fell in one arm, so that the likelihood keeps
-    rising
-        as the ratio goes to 0 or to infinity - facts about the data.
+        rising as the ratio goes to 0 or to infinity - facts about the data.
     AccuracyNotReached : the iteration stopped before its tolerance.
 
     Notes
@@ -121,8 +120,8 @@ class _PartialLikelihood:
 
     def score_and_information(self, log_ratio: float) -> tuple[float, float]:
         probability = 1.0 / (1.0 + self.odds_of_control * math.exp(-log_ratio))
-        expected = float(np.sum(probability))
-        return self.observed - expected, expected - float(np.sum(probability * probability))
+        score = self.observed - float(np.sum(probability))
+        return score, float(np.sum(probability * (1.0 - probability)))
 
 
 def _partial_likelihood(table: RiskTable, ties: str) -> _PartialLikelihood:

@@ -49,7 +49,8 @@ def kaplan_meier(
     until a further event, the middle of that stretch; where it is so until the last time, the start of the
     stretch, as its end is not known. Its limits read the confidence limits in the same way, so that of
     several crossings the first counts.
-    *Accuracy*: relative error below 1e-12 for n <= 1e6 (a product and a sum of at most m terms).
+    *Accuracy*: a product and a sum of at most m terms; relative error below 1e-12 for m <= 1e3, 1e-10 for
+    m <= 1e6.
     *Checked*: by hand (tests/byhand), print (app/validation/survival_rows.py), a literal version
     (tests/naive.py), properties.
 
