@@ -1,0 +1,68 @@
+"""The tracked files, as the architecture tests read them."""
+
+from __future__ import annotations
+
+import ast
+import re
+import subprocess
+from collections.abc import Iterator
+from functools import cache
+from pathlib import Path
+
+from app.bootstrap.environment import ROOT
+
+PICTURES = (".png", ".woff2", ".ttf", ".xpt")
+VENDORED = "static/vendor/"
+
+
+@cache
+def tracked() -> tuple[str, ...]:
+    """Every file that git holds and that is there."""
+    names = subprocess.check_output(["git", "ls-files", "-z"], cwd=ROOT, text=True).split("\0")
+    return tuple(name for name in names if name and (ROOT / name).is_file())
+
+
+@cache
+def text(name: str) -> str:
+    return (ROOT / name).read_text(encoding="utf-8")
+
+
+def own_texts() -> list[str]:
+    """What the project itself wrote: no pictures, nothing vendored, no locks."""
+    return [
+        name
+        for name in tracked()
+        if not name.endswith((*PICTURES, ".lock")) and not name.startswith(VENDORED)
+    ]
+
+
+def modules(folder: str) -> list[str]:
+    return [name for name in tracked() if name.startswith(f"{folder}/") and name.endswith(".py")]
+
+
+@cache
+def tree(name: str) -> ast.Module:
+    return ast.parse(text(name))
+
+
+def functions(name: str) -> Iterator[ast.FunctionDef | ast.AsyncFunctionDef]:
+    return (node for node in ast.walk(tree(name)) if isinstance(node, ast.FunctionDef | ast.AsyncFunctionDef))
+
+
+def matches(pattern: str, names: list[str]) -> list[str]:
+    """`file:line: what` for each match in the named files."""
+    compiled = re.compile(pattern)
+    return [
+        f"{name}:{number}: {match[0]}"
+        for name in names
+        for number, line in enumerate(text(name).splitlines(), 1)
+        for match in compiled.finditer(line)
+    ]
+
+
+def exists(path: str) -> bool:
+    return (ROOT / path).exists() or any(ROOT.glob(path)) if path else False
+
+
+def top_level() -> set[str]:
+    return {Path(name).parts[0] for name in tracked()}
