@@ -1,0 +1,1 @@
+"""What is written for others to read and check: canonical form, and the record of a look."""
