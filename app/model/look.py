@@ -67,6 +67,7 @@ class LookResult:
     findings: tuple[Finding, ...]
     changes: Changes | None
     information: Information
+    information_used: float  # what correlations use of this look: events, or score variance where the plan says so
     calendar: CalendarCounts | None
     logrank: LogrankResult | Absent
     logrank_unstratified: LogrankResult | Absent
@@ -80,6 +81,11 @@ class LookResult:
     planned: tuple[Bound, ...]  # bounds at the plan's looks still to come, were they held as planned
     snapshot_digests: tuple[str, ...]
     plan_digest: str
+
+    @property
+    def cutoff_day(self) -> int | None:
+        """The data cutoff as days since 1970-01-01."""
+        return days_since_epoch(self.cutoff)
 
 
 @dataclass(frozen=True, eq=False)
@@ -102,4 +108,11 @@ class PooledResult:
     curve: SurvivalCurve
     past: tuple[tuple[int, float, int], ...]  # number, fraction, events of earlier looks
 
+    @property
+    def cutoff_day(self) -> int | None:
+        """The data cutoff as days since 1970-01-01."""
+        return days_since_epoch(self.cutoff)
 
+
+def days_since_epoch(day: date | None) -> int | None:
+    return None if day is None else (day - date(1970, 1, 1)).days

@@ -270,6 +270,14 @@ class MethodLine:
 
 
 @dataclass(frozen=True)
+class ActLink:
+    """Something a person can do from here: its words and its path below the side's base ("receive")."""
+
+    text: str
+    path: str
+
+
+@dataclass(frozen=True)
 class Sheet:
     """One question, answered. `number` is None for At a glance; `answer` has two lines when two readings exist.
 
@@ -288,6 +296,7 @@ class Sheet:
     notes: tuple[Line, ...] = ()
     methods: tuple[MethodLine, ...] = ()
     figure_table: Table | None = None
+    acts: tuple[ActLink, ...] = ()
 
 
 @dataclass(frozen=True)

@@ -1,0 +1,121 @@
+"""The names of a record, fixed for ever, and a check that a record keeps to them.
+
+A shape is a Python value: a type or tuple of types for a leaf, a dict for an object with exactly these keys,
+a one-element list for a list. `Maybe(shape)` may also be null (not asked); every leaf number may also be
+`{"not_estimable": reason}`.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import Any
+
+FORMAT = 1
+
+
+@dataclass(frozen=True)
+class Maybe:
+    shape: Any
+
+
+NUMBER = (int, float)
+
+FINDING = {
+    "id": str, "severity": str, "what": str, "where": str, "found": str, "accepted": str, "remedy": str,
+    "rows": [int], "count": int,
+}  # fmt: skip
+LOGRANK = {
+    "observed": NUMBER, "expected": NUMBER, "variance": NUMBER, "z": NUMBER, "chi_square": NUMBER,
+    "p_one_sided": Maybe(NUMBER), "p_two_sided": NUMBER,
+    "strata": [{"label": str, "subjects": int, "events": int, "observed": NUMBER, "expected": NUMBER,
+                "variance": NUMBER}],
+}  # fmt: skip
+COX = {
+    "log_hazard_ratio": NUMBER, "std_error": NUMBER, "hazard_ratio": NUMBER, "ci_low": NUMBER, "ci_high": NUMBER,
+    "level": NUMBER, "ties": str,
+}  # fmt: skip
+CURVE = {
+    "arm": str, "time": [NUMBER], "at_risk": [int], "events": [int], "censored": [int], "survival": [NUMBER],
+    "std_error": [NUMBER], "ci_low": [NUMBER], "ci_high": [NUMBER], "interval": str, "level": NUMBER,
+    "median": NUMBER, "median_ci_low": NUMBER, "median_ci_high": NUMBER, "follow_up_median": NUMBER,
+}  # fmt: skip
+BOUND = {
+    "number": int, "information_fraction": NUMBER, "events": int, "final": bool, "sides": int,
+    "alpha_spent": NUMBER, "alpha_spent_here": NUMBER, "efficacy_z": NUMBER, "efficacy_p_one_sided": NUMBER,
+    "efficacy_hazard_ratio": NUMBER, "futility_z": Maybe(NUMBER), "type_two_spent": Maybe(NUMBER),
+    "harm_z": Maybe(NUMBER), "harm_alpha_spent": Maybe(NUMBER),
+}  # fmt: skip
+CROSSING = {"crossed": Maybe(str), "first_crossed": Maybe(int)}
+READING = {"experimental": str, "z": NUMBER, "p_one_sided": NUMBER, **CROSSING}
+HISTORY = {
+    "number": int, "kind": str, "information": NUMBER, "events": int, "fraction": NUMBER, "z": Maybe(NUMBER),
+    "efficacy_z": NUMBER, "efficacy_hazard_ratio": NUMBER, "alpha_spent": NUMBER, "final": bool,
+    "crossed": Maybe(str),
+}  # fmt: skip
+INFORMATION = {
+    "subjects": int, "events": int, "fraction": NUMBER, "planned_events": int, "planned_subjects": Maybe(int),
+    "score_variance": NUMBER, "variance_ratio": NUMBER,
+    "arms": [{"arm": str, "subjects": int, "events": int, "person_time": NUMBER, "follow_up_median": NUMBER}],
+    "strata": [{"label": str, "subjects": int, "events": int,
+                "arms": [{"arm": str, "subjects": int, "events": int}]}],
+}  # fmt: skip
+CHANGES = {
+    "subjects_in_both": int, "new_subjects": int, "vanished_subjects": int, "new_events": int,
+    "reversed_events": int, "moved_events": int, "changed_arm": int, "changed_stratum": int,
+}  # fmt: skip
+LOOK = {
+    "number": int, "kind": str, "final": bool, "time_unit": str, "cutoff": Maybe(str), "extracted": Maybe(str),
+    "information": INFORMATION, "changes": Maybe(CHANGES),
+    "calendar": Maybe({"day": [int], "randomised": [int], "events": [int]}),
+    "logrank": LOGRANK, "logrank_unstratified": LOGRANK, "cox": COX, "cox_unstratified": COX,
+    "curves": [CURVE], "boundary": {**BOUND, "information": NUMBER, **CROSSING}, "readings": Maybe([READING]),
+    "history": [HISTORY], "ahead": [BOUND],
+}  # fmt: skip
+ENVELOPE = {
+    "format": int, "kind": str, "program": {"name": str, "version": str}, "plan_digest": str,
+    "snapshot_digests": [str], "orientation": Maybe({"of": str, "against": str}), "run_at": str,
+    "findings": [FINDING],
+}  # fmt: skip
+LOOKS_RECORD = {**ENVELOPE, "looks": [LOOK]}
+BOUNDARY_RECORD = {
+    **ENVELOPE, "sides": int, "looks": [BOUND], "noncentrality": NUMBER, "power": NUMBER, "inflation": NUMBER,
+    "expected_information_fraction": {"null": NUMBER, "half": NUMBER, "design": NUMBER},
+}  # fmt: skip
+
+
+def differences(record: Any, shape: Any, where: str = "record") -> Iterator[str]:
+    """Every place where `record` does not keep to `shape`, in words; nothing when it does."""
+    if isinstance(shape, Maybe):
+        if record is not None:
+            yield from differences(record, shape.shape, where)
+    elif isinstance(record, dict) and set(record) == {"not_estimable"} and shape is not str:
+        if not (isinstance(record["not_estimable"], str) and record["not_estimable"]):
+            yield f"{where}: not_estimable without a reason"
+    elif isinstance(shape, dict):
+        yield from _object_differences(record, shape, where)
+    elif isinstance(shape, list):
+        if isinstance(record, list):
+            for index, item in enumerate(record):
+                yield from differences(item, shape[0], f"{where}[{index}]")
+        else:
+            yield f"{where}: {type(record).__name__} where a list belongs"
+    elif not _is_leaf(record, shape):
+        yield f"{where}: {record!r} is not of the kind recorded there"
+
+
+def _object_differences(record: Any, shape: dict[str, Any], where: str) -> Iterator[str]:
+    if not isinstance(record, dict):
+        yield f"{where}: {type(record).__name__} where an object belongs"
+        return
+    yield from (f"{where}.{key}: not a name of the record" for key in record.keys() - shape.keys())
+    for key, part in shape.items():
+        if key in record:
+            yield from differences(record[key], part, f"{where}.{key}")
+        else:
+            yield f"{where}.{key}: missing"
+
+
+def _is_leaf(value: Any, shape: Any) -> bool:
+    kinds = shape if isinstance(shape, tuple) else (shape,)
+    return isinstance(value, kinds) and (bool in kinds or not isinstance(value, bool))

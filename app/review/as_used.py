@@ -1,0 +1,48 @@
+"""What a look leaves behind for the looks after it."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from app.model.boundary import LookAsUsed
+from app.model.look import LookResult
+from app.model.values import Absent, Estimate
+
+
+def as_used(look: LookResult) -> LookAsUsed:
+    """The part of a look that later bounds rest on; once frozen it is never recomputed."""
+    return LookAsUsed(
+        number=look.number,
+        kind=look.kind,
+        information=look.information_used,
+        events=look.information.events,
+        fraction=look.information.fraction,
+        z=None if isinstance(look.logrank, Absent) else look.logrank.z,
+        efficacy_z=look.bound.efficacy_z,
+        alpha_spent=look.bound.alpha_spent,
+        final=look.final,
+        crossed=look.verdict.crossed,
+        efficacy_hazard_ratio=look.bound.efficacy_hazard_ratio,
+    )
+
+
+def as_used_of_record(look: dict[str, Any]) -> LookAsUsed:
+    """A held look from the full record that was frozen with it, every number as it stands there."""
+    bound, test = look["boundary"], look["logrank"]
+    return LookAsUsed(
+        number=look["number"],
+        kind=look["kind"],
+        information=bound["information"],
+        events=look["information"]["events"],
+        fraction=look["information"]["fraction"],
+        z=test.get("z"),
+        efficacy_z=_read(bound["efficacy_z"]),
+        alpha_spent=bound["alpha_spent"],
+        final=look["final"],
+        crossed=bound["crossed"],
+        efficacy_hazard_ratio=_read(bound["efficacy_hazard_ratio"]),
+    )
+
+
+def _read(value: float | dict[str, str]) -> Estimate:
+    return Absent(value["not_estimable"]) if isinstance(value, dict) else value

@@ -1,0 +1,439 @@
+"""Sheet 4, Boundary: where does the test stand?"""
+
+from __future__ import annotations
+
+from app.model.boundary import Bound, LookAsUsed
+from app.model.survival import LogrankResult
+from app.model.values import Absent, Estimate
+from app.sheets.arms import label_of, labels
+from app.sheets.blocks import (
+    BoundaryFigure,
+    Cell,
+    Column,
+    Lane,
+    LaneRow,
+    Line,
+    Row,
+    Sheet,
+    Span,
+    Table,
+)
+from app.sheets.curves import against, cox_level
+from app.sheets.methods import methods, spending_key
+from app.sheets.words import (
+    MINUS,
+    NO_BREAK,
+    P,
+    Z,
+    alpha,
+    count,
+    decimal,
+    interval,
+    line,
+    listed,
+    number,
+    p_values,
+    z_number,
+    z_places,
+)
+from app.views.closed import ClosedView, Reading
+
+QUESTION = "Where does the test stand?"
+CROSSED = Span("crossed", "crossed")
+
+
+def boundary_sheet(view: ClosedView) -> Sheet:
+    return Sheet(
+        key="boundary",
+        number=4,
+        name="Boundary",
+        question=QUESTION,
+        answer=boundary_answer(view),
+        figure=boundary_figure(view),
+        tables=(*_standing_tables(view), _logrank_table(view)),
+        wide_tables=_strata_table(view),
+        notes=(_note(view),),
+        methods=methods(
+            "logrank", spending_key(view.plan.efficacy.spending), "boundary", "bound-hazard-ratio", "cox"
+        ),
+        figure_table=_looks_table(view),
+    )
+
+
+# --- the sentence ---------------------------------------------------------------------------------------
+
+
+def boundary_answer(view: ClosedView) -> tuple[Line, ...]:
+    """One sentence; masked, one for each reading."""
+    if isinstance(view.logrank, Absent):
+        return (line(f"The test cannot be computed: {view.logrank.reason}."),)
+    if not view.masked:
+        return (_unmasked_sentence(view, view.readings[0]),)
+    return tuple(_masked_sentence(view, reading) for reading in view.readings)
+
+
+def is_over_running(view: ClosedView, reading: Reading) -> bool:
+    """True when an earlier look crossed in this reading: this one is shown beside it, with no second test."""
+    first = reading.verdict.first_crossed
+    return first is not None and first < view.look.number
+
+
+def _unmasked_sentence(view: ClosedView, reading: Reading) -> Line:
+    bound = view.look.bound.efficacy_z
+    z = _z_of(reading, bound)
+    if is_over_running(view, reading):
+        first = reading.verdict.first_crossed
+        return line(
+            "The boundary was ",
+            CROSSED,
+            f" at look {first}. This look is over-running: ",
+            z,
+            ", no second test.",
+        )
+    if isinstance(bound, Absent):
+        return line("No efficacy boundary applies: ", z, f". {_reason(bound)}.")
+    if reading.verdict.crossed == "efficacy":
+        return line(
+            "The efficacy boundary was ", CROSSED, ": ", z, " against ", _bound_of(reading, bound), "."
+        )
+    if reading.verdict.crossed == "control":
+        favours = label_of(view, view.against).in_sentence
+        return line(
+            "The boundary in favour of ", favours, " was ", CROSSED, ": ", z, " against ", _mirror(bound), "."
+        )
+    return line("The efficacy boundary was not crossed: ", z, " against ", _bound_of(reading, bound), ".")
+
+
+def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
+    bound = view.look.bound.efficacy_z
+    start = line(f"If {reading.experimental} is experimental: ", _z_of(reading, bound))
+    if is_over_running(view, reading):
+        first = reading.verdict.first_crossed
+        return line(start, ", the boundary was ", CROSSED, f" at look {first}; no second test.")
+    if isinstance(bound, Absent):
+        return line(start, ", no efficacy boundary applies.")
+    if reading.verdict.crossed == "efficacy":
+        return line(start, ", efficacy bound ", _bound_of(reading, bound), NO_BREAK, CROSSED, ".")
+    if reading.verdict.crossed == "control":
+        other = "B" if reading.experimental == "A" else "A"
+        return line(start, ", bound ", _mirror(bound), f" in favour of {other} ", CROSSED, ".")
+    return line(start, ", no boundary crossed.")
+
+
+def _reason(bound: Absent) -> str:
+    return bound.reason[:1].upper() + bound.reason[1:].rstrip(".")
+
+
+def _z_of(reading: Reading, bound: Estimate) -> Line:
+    return line(Z, NO_BREAK, z_number(reading.z, places=z_places(reading.z, bound)))
+
+
+def _bound_of(reading: Reading, bound: Estimate) -> Span:
+    return z_number(bound, places=z_places(reading.z, bound))
+
+
+def _mirror(bound: float) -> Span:
+    """The lower bound of a symmetric region: the recorded bound with its sign turned."""
+    return Span(MINUS + decimal(bound, 3), value=bound)
+
+
+# --- the figure -----------------------------------------------------------------------------------------
+
+
+def boundary_figure(view: ClosedView) -> BoundaryFigure:
+    of, other = labels(view)
+    two_lanes = view.masked and view.plan.design.sides == 1
+    return BoundaryFigure(
+        title="z against its boundary, by information",
+        description="Each look is a gauge at its information fraction: z as a mark, the efficacy bound as a bar, "
+        "the region beyond the bound in grey. The same numbers stand in the table.",
+        y_title=line(Z, f", {against(view)}"),
+        favours_up=f"favours {of.in_sentence}",
+        favours_down=f"favours {other.in_sentence}",
+        lanes=_lanes(view),
+        rows=_lane_rows(view),
+        layout="two lanes" if two_lanes else "one lane",
+    )
+
+
+def _lanes(view: ClosedView) -> tuple[Lane, ...]:
+    past = tuple(_past_lane(view, held) for held in view.readings[0].history)
+    ahead = () if _all_over(view) else view.look.planned
+    return (*past, _lane_now(view), *(_planned_lane(view, bound) for bound in ahead))
+
+
+def _all_over(view: ClosedView) -> bool:
+    """True when every reading has crossed: no bound ahead is a test any more."""
+    return all(reading.verdict.first_crossed is not None for reading in view.readings)
+
+
+def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
+    upper, lower = _bounds_shown(view, held.efficacy_z, held.number)
+    firsts = {reading.verdict.first_crossed for reading in view.readings}
+    return Lane(
+        look=held.number,
+        fraction=held.fraction,
+        state="past",
+        final=held.final,
+        z=None if held.z is None else z_number(held.z),
+        upper=upper,
+        lower=lower,
+        crossed=held.number in firsts,
+    )
+
+
+def _lane_now(view: ClosedView) -> Lane:
+    look, reading = view.look, view.readings[0]
+    upper, lower = _bounds_shown(view, look.bound.efficacy_z, look.number)
+    z = (
+        None
+        if isinstance(reading.z, Absent)
+        else z_number(reading.z, places=z_places(reading.z, look.bound.efficacy_z))
+    )
+    crossed = any(each.verdict.crossed != "none" for each in view.readings)
+    fraction = look.bound.information_fraction
+    return Lane(look.number, fraction, "now", look.final, z, upper, lower, crossed)
+
+
+def _planned_lane(view: ClosedView, bound: Bound) -> Lane:
+    upper, lower = _bounds_shown(view, bound.efficacy_z, bound.number)
+    return Lane(bound.number, bound.information_fraction, "planned", bound.final, None, upper, lower)
+
+
+def _bounds_shown(view: ClosedView, bound: Estimate, look: int) -> tuple[Span | None, Span | None]:
+    """The bounds a lane draws: none where none exists, or where that reading had crossed before this look."""
+    if isinstance(bound, Absent):
+        return None, None
+    upper, lower = z_number(bound), _mirror(bound)
+    if view.masked and view.plan.design.sides == 1:
+        tested = [not _crossed_before(reading, look) for reading in view.readings]
+        return (upper if tested[0] else None), (lower if tested[1] else None)
+    if _crossed_before(view.readings[0], look):
+        return None, None
+    return upper, (lower if view.plan.design.sides == 2 else None)
+
+
+def _crossed_before(reading: Reading, look: int) -> bool:
+    first = reading.verdict.first_crossed
+    return first is not None and first < look
+
+
+def _lane_rows(view: ClosedView) -> tuple[LaneRow, ...]:
+    """The numbers under the lanes, in the order the question asks them: how far, where, against what."""
+    history, look, ahead = view.readings[0].history, view.look, view.look.planned
+    ahead = () if _all_over(view) else ahead
+    bounds = (look.bound, *ahead)
+    plus_minus = ", ±" if view.masked or view.plan.design.sides == 2 else ""
+    fractions = [held.fraction for held in history] + [bound.information_fraction for bound in bounds]
+    events = [held.events for held in history] + [bound.events for bound in bounds]
+    zs = [held.z for held in history] + [
+        None if isinstance(view.readings[0].z, Absent) else view.readings[0].z
+    ]
+    bound_z = [held.efficacy_z for held in history] + [bound.efficacy_z for bound in bounds]
+    ratios = [held.efficacy_hazard_ratio for held in history] + [
+        bound.efficacy_hazard_ratio for bound in bounds
+    ]
+    spent = [held.alpha_spent for held in history] + [bound.alpha_spent for bound in bounds]
+    z_cells = tuple(None if z is None else z_number(z) for z in zs) + (None,) * len(ahead)
+    rows = (
+        LaneRow(
+            line("Information fraction"), line("Fraction"), tuple(number(value, 3) for value in fractions)
+        ),
+        LaneRow(line("Events"), line("Events"), tuple(count(value) for value in events)),
+        LaneRow(line(Z), line(Z), z_cells, rule_above=True),
+        LaneRow(
+            line(f"Efficacy bound{plus_minus}"), line("Efficacy"), tuple(_or_dash(value) for value in bound_z)
+        ),
+        LaneRow(
+            line("as a hazard ratio"), line("as HR"), tuple(_or_dash(value) for value in ratios), indent=True
+        ),
+        LaneRow(
+            line(f"Alpha spent, {_side_words(view)}"), line("Alpha"), tuple(alpha(value) for value in spent)
+        ),
+    )
+    return rows if not view.masked else tuple(row for row in rows if row.short_head != line("as HR"))
+
+
+def _or_dash(value: Estimate) -> Span:
+    return Span("–", "quiet") if isinstance(value, Absent) else number(value, 3)
+
+
+def _side_words(view: ClosedView) -> str:
+    return "one-sided" if view.plan.design.sides == 1 else "each side"
+
+
+# --- the tables -----------------------------------------------------------------------------------------
+
+
+def _standing_tables(view: ClosedView) -> tuple[Table, ...]:
+    return _masked_tables(view) if view.masked else (_observed_beside_bound(view), _interval_table(view))
+
+
+def _observed_beside_bound(view: ClosedView) -> Table:
+    reading, bound = view.readings[0], view.look.bound
+    places = z_places(reading.z, bound.efficacy_z)
+    p_observed, p_bound = p_values(reading.p_one_sided, bound.efficacy_p_one_sided)
+    ratio = view.cox if isinstance(view.cox, Absent) else view.cox.hazard_ratio
+    return Table(
+        caption=line(f"Look{NO_BREAK}{view.look.number}, {against(view)}"),
+        columns=(Column(line("observed")), Column(line("efficacy bound"))),
+        rows=(
+            Row(line(Z), _pair(number(reading.z, places), _existing(bound.efficacy_z, places))),
+            Row(
+                line(P, ", one-sided"), _pair(p_observed, _existing_span(bound.efficacy_p_one_sided, p_bound))
+            ),
+            Row(line("Hazard ratio"), _pair(number(ratio, 3), _existing(bound.efficacy_hazard_ratio, 3))),
+        ),
+    )
+
+
+def _pair(left: Span, right: Span) -> tuple[Cell, Cell]:
+    return Cell((left,)), Cell((right,))
+
+
+def _existing(value: Estimate, places: int) -> Span:
+    return _existing_span(value, number(value, places))
+
+
+def _existing_span(value: Estimate, span: Span) -> Span:
+    return Span("–", "quiet") if isinstance(value, Absent) else span
+
+
+def _interval_table(view: ClosedView) -> Table:
+    cox = view.cox
+    shown = line(number(cox, 3)) if isinstance(cox, Absent) else interval(cox.ci_low, cox.ci_high, 3)
+    return Table(
+        caption=line(f"Hazard ratio, {cox_level(cox):.0%} interval"),
+        columns=(Column(()),),
+        rows=(Row(line("not adjusted for looks"), (Cell(shown),)),),
+    )
+
+
+def _masked_tables(view: ClosedView) -> tuple[Table, ...]:
+    first, second = view.readings
+    bound = view.look.bound
+    p_first, p_second = p_values(first.p_one_sided, second.p_one_sided)
+    both = Table(
+        caption=line(f"Look{NO_BREAK}{view.look.number}, both readings"),
+        columns=tuple(Column(line(f"if {each.experimental} is experimental")) for each in view.readings),
+        rows=(
+            Row(
+                line(Z),
+                _pair(*(number(each.z, z_places(each.z, bound.efficacy_z)) for each in view.readings)),
+            ),
+            Row(line("Efficacy bound"), _pair(*(_existing(bound.efficacy_z, 3) for _ in view.readings))),
+            Row(line("Crossed"), _pair(*(_crossing_word(view, each) for each in view.readings))),
+            Row(line(P, ", one-sided"), _pair(p_first, p_second)),
+        ),
+    )
+    return both, _whichever_table(view)
+
+
+def _crossing_word(view: ClosedView, reading: Reading) -> Span:
+    if is_over_running(view, reading):
+        return Span(f"at look{NO_BREAK}{reading.verdict.first_crossed}", "crossed")
+    crossed = reading.verdict.crossed
+    return Span("none") if crossed == "none" else Span(crossed, "crossed")
+
+
+def _whichever_table(view: ClosedView) -> Table:
+    """What does not depend on which letter is which."""
+    p_two = view.logrank if isinstance(view.logrank, Absent) else view.logrank.p_two_sided
+    cox = view.cox
+    rows = [Row(line(P, ", two-sided"), (Cell(p_values(p_two)),))]
+    if isinstance(cox, Absent):
+        rows.append(Row(line("Hazard ratio"), (Cell(line(number(cox, 3))),)))
+    else:
+        rows.append(Row(line("Hazard ratio"), (Cell(line(number(cox.hazard_ratio, 3))),)))
+        limits = interval(cox.ci_low, cox.ci_high, 3)
+        rows.append(Row(line(f"{cox.level:.0%} interval, not adjusted"), (Cell(limits),)))
+    of, other = (label_of(view, arm).letter for arm in view.arms)
+    return Table(line(f"{of} against {other}, whichever is experimental"), (Column(()),), tuple(rows))
+
+
+def _logrank_table(view: ClosedView) -> Table:
+    result, plain = view.logrank, view.logrank_unstratified
+    caption = line(f"Log-rank, {label_of(view, view.of).in_sentence}")
+    if isinstance(result, Absent):
+        return Table(caption, (Column(()),), (Row(line("Statistic"), (Cell(line(number(result, 3))),)),))
+    rows = [
+        Row(line("Observed events"), (Cell(line(count(int(result.observed)))),)),
+        Row(line("Expected events"), (Cell(line(number(result.expected, 2))),)),
+        Row(line("Variance"), (Cell(line(number(result.variance, 2))),)),
+    ]
+    if view.plan.columns.strata:
+        z = plain if isinstance(plain, Absent) else plain.z
+        rows.append(Row(line(Z, ", not stratified"), (Cell(line(number(z, 3))),)))
+    return Table(caption, (Column(()),), tuple(rows))
+
+
+def _strata_table(view: ClosedView) -> tuple[Table, ...]:
+    """O, E and V of each stratum, in the arm the orientation is of; only when the plan has strata."""
+    if isinstance(view.logrank, Absent) or not view.plan.columns.strata:
+        return ()
+    rows = tuple(_stratum_row(view, view.logrank, index) for index in range(len(view.logrank.strata)))
+    columns = ("subjects", "events", "observed", "expected", "variance")
+    caption = line(f"Log-rank by stratum; observed and expected events {_in_arm(view)}")
+    return (Table(caption, tuple(Column(line(name)) for name in columns), rows, line("Stratum")),)
+
+
+def _in_arm(view: ClosedView) -> str:
+    label = label_of(view, view.of)
+    return f"in {label.in_sentence}" if view.masked else f"on {label.in_sentence}"
+
+
+def _stratum_row(view: ClosedView, result: LogrankResult, index: int) -> Row:
+    part = result.strata[index]
+    cells = (
+        count(part.subjects),
+        count(part.events),
+        count(int(part.observed)),
+        number(part.expected, 2),
+        number(part.variance, 2),
+    )
+    return Row(line(view.strata[part.stratum].label), tuple(Cell((span,)) for span in cells))
+
+
+def _looks_table(view: ClosedView) -> Table:
+    """The figure in numbers: a row a look."""
+    figure_rows = _lane_rows(view)
+    lanes = _lanes(view)
+    columns = tuple(Column(row.head) for row in figure_rows)
+    rows = tuple(
+        Row(
+            line(f"{lane.look}, {_state_word(lane, view)}"),
+            tuple(Cell(() if row.cells[index] is None else (row.cells[index],)) for row in figure_rows),
+        )
+        for index, lane in enumerate(lanes)
+    )
+    return Table(line(f"The looks and their bounds, {against(view)}"), columns, rows, line("Look"))
+
+
+def _state_word(lane: Lane, view: ClosedView) -> str:
+    if lane.state == "planned":
+        return "planned, final" if lane.final else "planned"
+    if lane.state == "past":
+        return "held"
+    return f"{view.look.kind}, shown" if not lane.final or view.look.kind == "final" else "final, shown"
+
+
+def _note(view: ClosedView) -> Line:
+    figure = boundary_figure(view)
+    lanes = "Each look has two lanes: the left reads as if A, the right as if B were experimental. "
+    start = lanes if figure.layout == "two lanes" else ""
+    past = [str(held.number) for held in view.look.past]
+    as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: bounds as used." if past else ""
+    return line(
+        f"{start}Grey: beyond the efficacy bound. Bounds exist at looks only; the dotted line guides the eye.{as_used}",
+        *_ahead_words(view),
+    )
+
+
+def _ahead_words(view: ClosedView) -> tuple[Span, ...]:
+    if _all_over(view):
+        return ()
+    spans: list[Span] = []
+    for bound in view.look.planned:
+        events = count(bound.events)
+        spans += [Span(f" Look {bound.number}: if held at "), events, Span(" events.")]
+    return tuple(spans)

@@ -1,0 +1,297 @@
+"""Sheet 3, Curves: what happened to the patients?"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from app.model.survival import CoxResult, SurvivalCurve
+from app.model.values import Absent, Estimate
+from app.sheets.arms import label_of
+from app.sheets.axis import FEWEST_AT_RISK, TimeAxis, time_axis
+from app.sheets.blocks import (
+    ArmLabel,
+    AtRiskRow,
+    Cell,
+    Column,
+    CurveLine,
+    CurvesFigure,
+    Line,
+    Row,
+    Sheet,
+    Span,
+    Table,
+)
+from app.sheets.methods import methods
+from app.sheets.words import (
+    NO_BREAK,
+    decimal,
+    interval,
+    line,
+    listed,
+    number,
+    of_total,
+    percent,
+)
+from app.views.closed import ArmView, ClosedView
+from app.views.open import OpenView
+
+QUESTION = "What happened to the patients?"
+MOST_STROKES = 250
+NOT_ADJUSTED = "not adjusted for looks"
+
+
+@dataclass(frozen=True, eq=False)
+class CurveShown:
+    """One curve with its name and denominators, whichever side it is for (label None: pooled)."""
+
+    label: ArmLabel | None
+    curve: SurvivalCurve
+    subjects: int
+    events: int
+    follow_up: Estimate
+
+
+def curves_sheet(view: ClosedView) -> Sheet:
+    shown = tuple(_shown(view, arm) for arm in view.arms)
+    axis = time_axis(tuple(item.curve for item in shown), view.look.time_unit)
+    return Sheet(
+        key="curves",
+        number=3,
+        name="Curves",
+        question=QUESTION,
+        answer=(event_free_sentence(view),),
+        figure=curves_figure(shown, axis),
+        tables=(_estimates(shown, axis), hazard_ratio_table(view)),
+        notes=(_note(shown, axis),),
+        methods=methods("kaplan-meier", "greenwood", "median", "follow-up", "cox"),
+        figure_table=_figure_table(shown, axis),
+    )
+
+
+def open_curves_sheet(view: OpenView) -> Sheet:
+    look = view.look
+    shown = (CurveShown(None, look.curve, look.subjects, look.events, look.follow_up_median),)
+    axis = time_axis((look.curve,), look.time_unit)
+    return Sheet(
+        key="curves",
+        number=3,
+        name="Curves",
+        question=QUESTION,
+        answer=(_sentence(shown, axis),),
+        figure=curves_figure(shown, axis),
+        tables=(_estimates(shown, axis),),
+        notes=(_note(shown, axis),),
+        methods=methods("kaplan-meier", "greenwood", "median", "follow-up"),
+        figure_table=_figure_table(shown, axis),
+    )
+
+
+def _shown(view: ClosedView, arm: ArmView) -> CurveShown:
+    counts = arm.counts
+    return CurveShown(label_of(view, arm), arm.curve, counts.subjects, counts.events, counts.follow_up_median)
+
+
+def event_free_sentence(view: ClosedView) -> Line:
+    """ "At 24 months 57.5% on tablet and 48.2% on placebo were event-free." """
+    shown = tuple(_shown(view, arm) for arm in view.arms)
+    return _sentence(shown, time_axis(tuple(item.curve for item in shown), view.look.time_unit))
+
+
+def _sentence(shown: Sequence[CurveShown], axis: TimeAxis) -> Line:
+    at = named_time(axis)
+    start = line(f"At {said_time(at)}{NO_BREAK}{axis.unit} ")
+    parts: list[Line] = []
+    for item in shown:
+        where = "" if item.label is None else f" {preposition(item.label)}{NO_BREAK}{item.label.in_sentence}"
+        parts.append(line(percent(survival_at(item.curve, at * axis.scale)), f"%{where}"))
+    end = " were event‑free." if len(shown) > 1 else " of all subjects were event‑free."
+    return line(start, *_joined(parts), end)
+
+
+def _joined(parts: list[Line]) -> tuple[Line, ...]:
+    return (parts[0],) if len(parts) == 1 else (parts[0], line(" and "), parts[1])
+
+
+def preposition(label: ArmLabel) -> str:
+    """Patients are "on tablet" but "in arm A"."""
+    return "in" if label.in_sentence.startswith("arm" + NO_BREAK) else "on"
+
+
+def said_time(value: float) -> str:
+    return decimal(value, 0) if value == int(value) else f"{value:g}"
+
+
+def named_time(axis: TimeAxis) -> float:
+    """The time the sentence speaks of: the last whole year shown, else the last tick."""
+    if axis.unit == "months" and axis.end >= 12:
+        return 12.0 * math.floor(axis.end / 12)
+    return axis.end
+
+
+def survival_at(curve: SurvivalCurve, time: float) -> float:
+    """The right-continuous curve at `time`, 0-1."""
+    return _before(curve.survival, _index_at(curve, time), 1.0)
+
+
+def _index_at(curve: SurvivalCurve, time: float) -> int:
+    return int(np.searchsorted(curve.time, time, side="right"))
+
+
+def _before(values: np.ndarray, index: int, start: float) -> float:
+    return start if index == 0 else float(values[index - 1])
+
+
+def curves_figure(shown: Sequence[CurveShown], axis: TimeAxis) -> CurvesFigure:
+    names = listed([item.label.name for item in shown if item.label]) or "All subjects"
+    return CurvesFigure(
+        title=f"Event-free survival, {names}",
+        description=f"Kaplan-Meier curves in percent from 0 to {said_time(axis.end)} {axis.unit} since "
+        "randomisation, with numbers at risk, events and censored under the axis.",
+        x_title=f"{axis.unit.capitalize()} since randomisation",
+        y_title="Event-free, %",
+        ticks=axis.ticks,
+        lines=tuple(_curve_line(item, axis) for item in shown),
+    )
+
+
+def _curve_line(item: CurveShown, axis: TimeAxis) -> CurveLine:
+    curve = item.curve
+    inside = (curve.time <= axis.end * axis.scale) & (curve.events > 0)
+    return CurveLine(
+        arm=item.label,
+        time=(0.0, *axis.shown(curve.time[inside]).tolist()),
+        survival=(100.0, *(100 * curve.survival[inside]).tolist()),
+        ci_low=(None, *_limits(curve.ci_low[inside])),
+        ci_high=(None, *_limits(curve.ci_high[inside])),
+        censored_at=_strokes(curve, axis),
+        rows=rows_at_ticks(curve, item.subjects, axis),
+        label=item.label.name if item.label else "All subjects",
+    )
+
+
+def _limits(values: np.ndarray) -> tuple[float | None, ...]:
+    return tuple(None if math.isnan(value) else 100 * float(value) for value in values)
+
+
+def _strokes(curve: SurvivalCurve, axis: TimeAxis) -> tuple[tuple[float, float], ...]:
+    """Censoring strokes inside the axis; none when there would be too many to tell apart."""
+    inside = (curve.censored > 0) & (curve.time <= axis.end * axis.scale)
+    if int(inside.sum()) > MOST_STROKES:
+        return ()
+    times = axis.shown(curve.time[inside]).tolist()
+    return tuple(zip(times, (100 * curve.survival[inside]).tolist(), strict=True))
+
+
+def rows_at_ticks(curve: SurvivalCurve, subjects: int, axis: TimeAxis) -> AtRiskRow:
+    """At risk just before each tick, events and censored before it: the three add up to the arm."""
+    before = np.searchsorted(curve.time, np.array(axis.ticks) * axis.scale, side="left")
+    events = np.concatenate(([0], np.cumsum(curve.events)))[before]
+    censored = np.concatenate(([0], np.cumsum(curve.censored)))[before]
+    at_risk = subjects - events - censored
+    return AtRiskRow(tuple(at_risk.tolist()), tuple(events.tolist()), tuple(censored.tolist()))
+
+
+def _estimates(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
+    level = shown[0].curve.level
+    named = sorted({at for at in (named_time(axis) / 2, named_time(axis)) if at == int(at)})
+    return Table(
+        caption=line(f"Estimates with {level:.0%} intervals"),
+        columns=tuple(
+            Column(line(item.label.name if item.label else "All subjects"), arm=item.label) for item in shown
+        ),
+        rows=(
+            Row(
+                line("Events of subjects"),
+                tuple(Cell(of_total(item.events, item.subjects)) for item in shown),
+            ),
+            Row(line(f"Median, {axis.unit}"), tuple(_median(item.curve, axis) for item in shown)),
+            *(
+                Row(
+                    line(f"Event‑free at {said_time(at)}{NO_BREAK}{axis.unit}, %"),
+                    tuple(_survival_cell(item.curve, at * axis.scale) for item in shown),
+                )
+                for at in named
+            ),
+            Row(
+                line(f"Follow-up, {axis.unit}"),
+                tuple(Cell(line(in_unit(item.follow_up, axis.scale))) for item in shown),
+            ),
+        ),
+    )
+
+
+def in_unit(value: Estimate, scale: float) -> Span:
+    """A time of the record in the unit shown, to one decimal."""
+    if isinstance(value, Absent):
+        return number(value, 1)
+    return Span(decimal(value / scale, 1), value=value)
+
+
+def _median(curve: SurvivalCurve, axis: TimeAxis) -> Cell:
+    limits = line(in_unit(curve.median_ci_low, axis.scale), " to ", in_unit(curve.median_ci_high, axis.scale))
+    return Cell(line(in_unit(curve.median, axis.scale)), limits)
+
+
+def _survival_cell(curve: SurvivalCurve, time: float) -> Cell:
+    index = _index_at(curve, time)
+    low, high = _before(curve.ci_low, index, math.nan), _before(curve.ci_high, index, math.nan)
+    return Cell(line(percent(survival_at(curve, time))), interval(low, high, 1, scale=100))
+
+
+def hazard_ratio_table(view: ClosedView) -> Table:
+    """The Cox hazard ratio of the view's orientation, with the interval no look has widened."""
+    return Table(
+        caption=line(f"Hazard ratio, {against(view)}"),
+        columns=(Column(()),),
+        rows=(Row(line(f"{cox_level(view.cox):.0%} interval {NOT_ADJUSTED}"), (Cell(*_ratio(view.cox)),)),),
+    )
+
+
+def cox_level(cox: CoxResult | Absent) -> float:
+    return 0.95 if isinstance(cox, Absent) else cox.level
+
+
+def _ratio(cox: CoxResult | Absent) -> tuple[Line, Line]:
+    if isinstance(cox, Absent):
+        return line(number(cox, 3)), ()
+    return line(number(cox.hazard_ratio, 3)), interval(cox.ci_low, cox.ci_high, 3)
+
+
+def against(view: ClosedView) -> str:
+    """ "tablet against placebo", "arm A against arm B"."""
+    of, other = (label_of(view, arm).in_sentence for arm in view.arms)
+    return f"{of} against {other}"
+
+
+def _note(shown: Sequence[CurveShown], axis: TimeAxis) -> Line:
+    many = any(int((item.curve.censored > 0).sum()) > MOST_STROKES for item in shown)
+    strokes = f"Censorings at more than {MOST_STROKES} times: not drawn." if many else "Strokes: censored."
+    months = " A month is 30.4375 days." if axis.unit == "months" and axis.scale != 1 else ""
+    arms = "each arm" if len(shown) > 1 else "all"
+    return line(
+        f"Bands and intervals: {shown[0].curve.interval}, pointwise. Follow-up: median, reverse Kaplan-Meier. {strokes} "
+        f"Events and censored: before the tick; with those at risk they add up to the subjects. "
+        f"The axis ends at the last tick with {FEWEST_AT_RISK} at risk in {arms}.{months}"
+    )
+
+
+def _figure_table(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
+    """The figure in numbers: every curve at every tick."""
+    heads: list[Column] = []
+    for item in shown:
+        name = item.label.name if item.label else "All subjects"
+        heads += [Column(line(f"{name}, {what}"), arm=item.label) for what in ("event‑free, %", "at risk")]
+    rows = []
+    for index, tick in enumerate(axis.ticks):
+        cells: list[Cell] = []
+        for item in shown:
+            cells.append(_survival_cell(item.curve, tick * axis.scale))
+            at_risk = rows_at_ticks(item.curve, item.subjects, axis).at_risk[index]
+            cells.append(Cell(line(str(at_risk))))
+        rows.append(Row(line(said_time(tick)), tuple(cells)))
+    corner = line(f"{axis.unit.capitalize()}")
+    return Table(line("The curves at the ticks of the axis"), tuple(heads), tuple(rows), corner)

@@ -1,0 +1,153 @@
+"""The frame around every sheet of one look: dates, spine, colophon."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from datetime import date
+from typing import Literal
+
+from app.model.boundary import Crossed
+from app.model.extract import LookKind
+from app.sheets.blocks import DateMark, PageFrame, Spine, SpineLook
+from app.sheets.words import day_text
+from app.views.closed import ClosedView
+from app.views.open import OpenView
+
+LookState = Literal["frozen", "open"]
+
+
+@dataclass(frozen=True)
+class LookOnFile:
+    """One received look as both sides may know it; `planned` is the plan's fraction it used up."""
+
+    number: int
+    kind: LookKind
+    fraction: float
+    events: int
+    state: LookState
+    planned: float | None
+
+
+@dataclass(frozen=True)
+class Surroundings:
+    """What the frame needs besides the look itself. `looks` are all received, in order."""
+
+    looks: tuple[LookOnFile, ...]
+    planned: tuple[float, ...]
+    planned_events: int
+    plan_version: int
+    run_on: date
+
+    def state_of(self, number: int) -> LookState:
+        return next(look.state for look in self.looks if look.number == number)
+
+    def planned_for(self, number: int) -> float | None:
+        return next(look.planned for look in self.looks if look.number == number)
+
+
+def closed_frame(
+    view: ClosedView, around: Surroundings, sheets: tuple[tuple[str, int | None, str], ...]
+) -> PageFrame:
+    look = view.look
+    crossed = {
+        reading.verdict.first_crossed: _crossing(view, reading.verdict.first_crossed)
+        for reading in view.readings
+        if reading.verdict.first_crossed is not None
+    }
+    return PageFrame(
+        side="closed",
+        disclosure="masked" if view.masked else "unmasked",
+        trial_name=view.plan.trial.name,
+        trial_title=view.plan.trial.title,
+        dates=three_dates(look.cutoff, look.extracted, around.run_on),
+        spine=spine(around, look.number, crossed),
+        look=look.number,
+        colophon=_colophon(around, look.number, look.kind),
+        sheets=sheets,
+    )
+
+
+def _crossing(view: ClosedView, number: int | None) -> Crossed:
+    """What the spine's diamond stands for; it is the same mark whichever bound was crossed."""
+    for reading in view.readings:
+        if number == view.look.number and reading.verdict.crossed != "none":
+            return reading.verdict.crossed
+        for held in reading.history:
+            if held.number == number and held.crossed != "none":
+                return held.crossed
+    return "none"
+
+
+def open_frame(
+    view: OpenView, around: Surroundings, sheets: tuple[tuple[str, int | None, str], ...]
+) -> PageFrame:
+    look = view.look
+    return PageFrame(
+        side="open",
+        disclosure="pooled",
+        trial_name=view.trial_name,
+        trial_title=view.trial_title,
+        dates=three_dates(look.cutoff, look.extracted, around.run_on),
+        spine=spine(around, look.number, {}),
+        look=look.number,
+        colophon=_colophon(around, look.number, look.kind),
+        sheets=sheets,
+    )
+
+
+def spine(around: Surroundings, shown: int, crossed: dict[int | None, Crossed]) -> Spine:
+    held = [
+        SpineLook(
+            number=look.number,
+            fraction=look.fraction,
+            events=look.events,
+            kind=look.kind,
+            state=look.state,
+            shown=look.number == shown,
+            planned=look.planned,
+            crossed=crossed.get(look.number, "none"),
+        )
+        for look in around.looks
+    ]
+    return Spine((*held, *_still_planned(around)), around.planned, around.planned_events)
+
+
+def _still_planned(around: Surroundings) -> Sequence[SpineLook]:
+    """The plan's looks nobody has used up yet, beyond the information reached."""
+    used = {look.planned for look in around.looks}
+    reached = max((look.fraction for look in around.looks), default=0.0)
+    if any(look.kind == "final" or look.fraction >= 1 for look in around.looks):
+        return ()
+    ahead = [fraction for fraction in around.planned if fraction not in used and fraction > reached]
+    first = len(around.looks) + 1
+    return [
+        SpineLook(
+            number=first + index,
+            fraction=fraction,
+            events=-int(-fraction * around.planned_events // 1),
+            kind="final" if fraction == 1 else "planned",
+            state="planned",
+            planned=fraction,
+        )
+        for index, fraction in enumerate(ahead)
+    ]
+
+
+def three_dates(cutoff: date | None, extracted: date | None, run_on: date) -> tuple[DateMark, ...]:
+    """Data cutoff, extract, run, with the days between those that are known."""
+    marks: list[DateMark] = []
+    last: date | None = None
+    for name, day in (("Data cutoff", cutoff), ("Extract", extracted), ("Run", run_on)):
+        if day is None:
+            marks.append(DateMark(name, "not stated", None))
+            continue
+        marks.append(
+            DateMark(name, day_text(day), day.isoformat(), None if last is None else (day - last).days)
+        )
+        last = day
+    return tuple(marks)
+
+
+def _colophon(around: Surroundings, number: int, kind: LookKind) -> tuple[str, ...]:
+    return (f"Look {number}, {kind}, {around.state_of(number)}", f"Plan version {around.plan_version}")

@@ -1,0 +1,219 @@
+"""At a glance: a look in five lines."""
+
+from __future__ import annotations
+
+from app.model.values import Absent
+from app.sheets.arms import label_of
+from app.sheets.axis import time_axis
+from app.sheets.blocks import (
+    GlanceRow,
+    InformationStrip,
+    IntervalMark,
+    IntervalStrip,
+    Line,
+    Sheet,
+    Span,
+    ZStrip,
+)
+from app.sheets.boundary import CROSSED, boundary_answer, boundary_figure
+from app.sheets.curves import (
+    NOT_ADJUSTED,
+    event_free_sentence,
+    named_time,
+    open_curves_sheet,
+    said_time,
+    survival_at,
+)
+from app.sheets.extract import changed_events_sentence, changes_figure, data_sentence, open_data_sheet
+from app.sheets.frame import Surroundings
+from app.sheets.information import (
+    follow_up_sentence,
+    information_sentence,
+    open_information_sheet,
+)
+from app.sheets.methods import methods, spending_key
+from app.sheets.words import NO_BREAK, count, interval, line, number, of_total
+from app.views.closed import ArmView, ClosedView
+from app.views.open import OpenView
+
+
+def glance_sheet(view: ClosedView, around: Surroundings, record: Line) -> Sheet:
+    return Sheet(
+        key="glance",
+        number=None,
+        name="At a glance",
+        question=f"What does look{NO_BREAK}{view.look.number} show, in five lines?",
+        answer=(_answer(view),),
+        glance=(
+            GlanceRow(
+                1,
+                "Data",
+                "data",
+                line(data_sentence(view), " ", changed_events_sentence(view)),
+                changes_figure(view),
+            ),
+            GlanceRow(
+                2,
+                "Information",
+                "information",
+                _information_line(view, around),
+                _information_strip(around, view.look.number),
+            ),
+            GlanceRow(
+                3,
+                "Curves",
+                "curves",
+                line(event_free_sentence(view), " ", _ratio_words(view)),
+                _curves_strip(view),
+            ),
+            GlanceRow(4, "Boundary", "boundary", _boundary_line(view), _z_strip(view)),
+            GlanceRow(9, "Record", "record", record, None),
+        ),
+        methods=methods(
+            "information",
+            "kaplan-meier",
+            "cox",
+            "logrank",
+            spending_key(view.plan.efficacy.spending),
+            "boundary",
+        ),
+    )
+
+
+def _answer(view: ClosedView) -> Line:
+    """ "With 384 of 538 planned events, no boundary was crossed." """
+    information = view.look.information
+    start = line("With ", of_total(information.events, information.planned_events), " planned events, ")
+    if isinstance(view.logrank, Absent):
+        return line(start, "the test cannot be computed.")
+    if not view.masked:
+        return line(start, _crossing_words(view))
+    crossed = [reading.experimental for reading in view.readings if reading.verdict.first_crossed is not None]
+    if not crossed:
+        return line(start, "no boundary was crossed in either reading.")
+    if len(crossed) == 2:
+        return line(start, "the boundary was ", CROSSED, " in both readings.")
+    return line(start, "the boundary was ", CROSSED, f" if {crossed[0]} is experimental, and not otherwise.")
+
+
+def _crossing_words(view: ClosedView) -> Line:
+    verdict = view.readings[0].verdict
+    if verdict.first_crossed is None:
+        return line("no boundary was crossed.")
+    if verdict.first_crossed < view.look.number:
+        return line("the boundary had been ", CROSSED, f" at look{NO_BREAK}{verdict.first_crossed}.")
+    which = "efficacy boundary" if verdict.crossed == "efficacy" else "boundary in favour of control"
+    return line(f"the {which} was ", CROSSED, ".")
+
+
+def _information_line(view: ClosedView, around: Surroundings) -> Line:
+    information = view.look.information
+    planned = around.planned_for(view.look.number)
+    said = information_sentence(information.events, information.planned_events, information.fraction, planned)
+    return line(said, " ", follow_up_sentence(view))
+
+
+def _information_strip(around: Surroundings, shown: int) -> InformationStrip:
+    held = tuple((look.fraction, count(look.events)) for look in around.looks if look.number <= shown)
+    return InformationStrip(
+        title="Information so far",
+        description="Looks held, on the scale of information from 0 to 1.",
+        held=held,
+        planned=around.planned,
+        total=count(around.planned_events),
+    )
+
+
+def _ratio_words(view: ClosedView) -> Line:
+    cox = view.cox
+    if isinstance(cox, Absent):
+        return line(f"The hazard ratio cannot be estimated: {cox.reason}.")
+    limits = interval(cox.ci_low, cox.ci_high, 3)
+    of, other = (label_of(view, arm).letter for arm in view.arms)
+    which = f"Hazard ratio of {of} to {other} " if view.masked else "Hazard ratio "
+    ratio = line(which, number(cox.hazard_ratio, 3))
+    return line(ratio, f" ({cox.level:.0%} interval ", limits, f", {NOT_ADJUSTED}).")
+
+
+def _curves_strip(view: ClosedView) -> IntervalStrip:
+    axis = time_axis(tuple(arm.curve for arm in view.arms), view.look.time_unit)
+    at = named_time(axis)
+    return IntervalStrip(
+        title=f"Event-free at {said_time(at)} {axis.unit}",
+        description=f"Percent event-free at {said_time(at)} {axis.unit}, with its interval, by arm.",
+        unit="Event-free, %",
+        ticks=(0.0, 25.0, 50.0, 75.0, 100.0),
+        marks=tuple(_mark(view, arm, at * axis.scale) for arm in view.arms),
+    )
+
+
+def _mark(view: ClosedView, arm: ArmView, time: float) -> IntervalMark:
+    at = int((arm.curve.time <= time).sum()) - 1
+    low, high = (
+        (float(arm.curve.ci_low[at]), float(arm.curve.ci_high[at])) if at >= 0 else (float("nan"),) * 2
+    )
+    known = low == low and high == high
+    limits = (100 * low, 100 * high) if known else (None, None)
+    return IntervalMark(label_of(view, arm), 100 * survival_at(arm.curve, time), *limits)
+
+
+def _boundary_line(view: ClosedView) -> Line:
+    answer = boundary_answer(view)
+    said = answer[0] if len(answer) == 1 else line(answer[0], " ", answer[1])
+    return line(said, _needed_next(view)) if not view.masked else said
+
+
+def _needed_next(view: ClosedView) -> Line:
+    """ " At look 4 z 2.005 is needed, a hazard ratio of 0.841 or less." """
+    if not view.look.planned or view.readings[0].verdict.first_crossed is not None:
+        return ()
+    bound = view.look.planned[0]
+    if isinstance(bound.efficacy_z, Absent) or isinstance(bound.efficacy_hazard_ratio, Absent):
+        return ()
+    z = line(Span("z", "symbol"), NO_BREAK, number(bound.efficacy_z, 3))
+    side = "less" if view.plan.endpoint.direction == 1 else "more"
+    ratio = number(bound.efficacy_hazard_ratio, 3)
+    return line(
+        f" At look{NO_BREAK}{bound.number} ", z, " is needed, a hazard ratio of ", ratio, f" or {side}."
+    )
+
+
+def _z_strip(view: ClosedView) -> ZStrip:
+    lane = next(lane for lane in boundary_figure(view).lanes if lane.state == "now")
+    return ZStrip(
+        title="z against its bound",
+        description="The z of this look on the scale of its efficacy bound.",
+        z=lane.z,
+        upper=lane.upper,
+        lower=lane.lower,
+        crossed=lane.crossed,
+    )
+
+
+def open_glance_sheet(view: OpenView, around: Surroundings) -> Sheet:
+    look = view.look
+    planned = around.planned_for(look.number)
+    curves = open_curves_sheet(view)
+    rows = (
+        GlanceRow(1, "Data", "data", open_data_sheet(view).answer[0], None),
+        GlanceRow(
+            2,
+            "Information",
+            "information",
+            open_information_sheet(view, planned).answer[0],
+            _information_strip(around, look.number),
+        ),
+        GlanceRow(3, "Curves", "curves", curves.answer[0], None),
+    )
+    answer = line(
+        "The trial has ", of_total(look.events, look.planned_events), " planned events, both arms together."
+    )
+    return Sheet(
+        key="glance",
+        number=None,
+        name="At a glance",
+        question=f"What does look{NO_BREAK}{look.number} show to the open side?",
+        answer=(answer,),
+        glance=rows,
+        methods=methods("information", "kaplan-meier"),
+    )

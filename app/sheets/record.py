@@ -1,0 +1,160 @@
+"""Sheet 9, Record: what was shown, what was advised?"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from app.ledger.entries import (
+    ArmsUnmasked,
+    Body,
+    Entry,
+    LookFrozen,
+    PlanLocked,
+    ReportWritten,
+    ResultsOpened,
+    SnapshotReceived,
+    Verification,
+)
+from app.ledger.history import Look, State
+from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Table
+from app.sheets.methods import methods
+from app.sheets.words import NO_BREAK, count, line, listed
+
+QUESTION = "What was shown, what was advised?"
+NOT_A_SIGNATURE = "Names are recorded as they were given; this is not an electronic signature."
+
+
+@dataclass(frozen=True)
+class History:
+    """The state of the trial file and its entries with their bodies, in order."""
+
+    state: State
+    entries: tuple[tuple[Entry, Body], ...]
+
+
+def record_sheet(history: History, number: int) -> Sheet:
+    look = history.state.look(number)
+    return Sheet(
+        key="record",
+        number=9,
+        name="Record",
+        question=QUESTION,
+        answer=(state_sentence(history.state, number),),
+        tables=(_look_table(look, number), _file_table(history.state)),
+        wide_tables=(_history_table(history),),
+        notes=(line(NOT_A_SIGNATURE),),
+        methods=methods("chain"),
+        acts=_acts(history.state, look, number),
+    )
+
+
+def state_sentence(state: State, number: int) -> Line:
+    """ "Look 3 is open; looks 1 and 2 are frozen. The arms are masked." """
+    frozen = [str(look.number) for look in state.frozen_looks]
+    arms = "The arms are unmasked." if state.unmasked else "The arms are masked."
+    look = state.look(number)
+    if look.frozen is not None:
+        when = f"on {moment(look.frozen.at)} by {look.frozen.body.by}"
+        return line(f"Look{NO_BREAK}{number} was frozen {when}. {arms}")
+    others = (
+        f"; look{'s' if len(frozen) > 1 else ''}{NO_BREAK}{listed(frozen)} {_are(len(frozen))} frozen"
+        if frozen
+        else ""
+    )
+    return line(f"Look{NO_BREAK}{number} is open{others}. {arms}")
+
+
+def _are(number: int) -> str:
+    return "is" if number == 1 else "are"
+
+
+def moment(at: str) -> str:
+    """ "2027-01-26 09:30 UTC" from an entry's time."""
+    return f"{at[:10]} {at[11:16]}{NO_BREAK}UTC"
+
+
+def _look_table(look: Look, number: int) -> Table:
+    rows = [("State", "open" if look.frozen is None else "frozen"), ("Received", moment(look.received_at))]
+    if look.frozen is not None:
+        body = look.frozen.body
+        rows += [
+            ("Frozen", moment(look.frozen.at)),
+            ("Arms in its report", body.disclosure),
+            ("Report, SHA-256", grouped(body.report_digest)),
+            ("Record, SHA-256", grouped(body.record_digest)),
+            ("Head before", grouped(body.head_before)),
+        ]
+    return _words_table(f"Look {number}", rows)
+
+
+def _file_table(state: State) -> Table:
+    rows = [
+        ("Plan locked", f"{moment(state.locked_at)}, by {state.locked_by}"),
+        ("Plan, SHA-256", grouped(state.plan_digest)),
+        ("Entries", str(state.head.id)),
+        ("Head", grouped(state.head.digest)),
+    ]
+    return _words_table("Trial file", rows)
+
+
+def _words_table(caption: str, rows: Sequence[tuple[str, str]]) -> Table:
+    return Table(
+        line(caption),
+        (Column((), "words"),),
+        tuple(Row(line(head), (Cell(line(text)),)) for head, text in rows),
+    )
+
+
+def grouped(digest: str) -> str:
+    """The first and last digits of a digest, as a person compares them; the record holds it whole."""
+    return f"{digest[:4]} {digest[4:8]} … {digest[-4:]}"
+
+
+def _history_table(history: History) -> Table:
+    rows = tuple(
+        Row(
+            (count(entry.id),),
+            (Cell(line(moment(entry.at))), Cell(line(said(body))), Cell(line(getattr(body, "by", "")))),
+        )
+        for entry, body in history.entries
+    )
+    columns = (
+        Column(line("when"), "words"),
+        Column(line("what"), "words"),
+        Column(line("recorded by"), "words"),
+    )
+    return Table(line("History"), columns, rows, line("Entry"))
+
+
+def said(body: Body) -> str:
+    """One entry in words."""
+    match body:
+        case PlanLocked():
+            return f"Plan locked for trial {body.name}"
+        case SnapshotReceived():
+            doubts = f", {len(body.acknowledgements)} doubts answered" if body.acknowledgements else ""
+            return f"Snapshot {body.number} received for a {body.kind} look, cutoff {body.cutoff}{doubts}"
+        case ResultsOpened():
+            return f"Comparative results of look {body.look} opened, {body.view}"
+        case ArmsUnmasked():
+            return f"Arms unmasked: {body.reason}"
+        case LookFrozen():
+            return f"Look {body.look} frozen, {body.disclosure}"
+        case ReportWritten():
+            return f"Report of look {body.look} written"
+        case Verification():
+            return f"Verified up to entry {body.entries}"
+    return body.entry_kind
+
+
+def _acts(state: State, look: Look, number: int) -> tuple[ActLink, ...]:
+    """What can be done from here, the irrevocable ones last."""
+    acts = [ActLink("Receive the next extract", "receive"), ActLink("Verify the trial file", "verify")]
+    if look.frozen is not None:
+        acts.insert(0, ActLink(f"Download the report of look {number}", f"looks/{number}/report"))
+    else:
+        acts.append(ActLink(f"Freeze look {number}", f"looks/{number}/freeze"))
+    if not state.unmasked:
+        acts.append(ActLink("Unmask the arms", "unmask"))
+    return tuple(acts)

@@ -1,0 +1,171 @@
+"""How numbers, dates and arms are said. The rounding rules are DESIGN's "Display"."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from datetime import date, datetime
+
+from app.model.values import Absent, Estimate
+from app.sheets.blocks import ArmLabel, Letter, Line, Span, Tone
+
+MINUS = "−"
+NO_BREAK = " "
+NO_BREAK_HYPHEN = "‑"
+NOT_REACHED = "not reached"
+NOT_ESTIMABLE = "not estimable"
+DAYS_PER_MONTH = 30.4375
+
+Part = str | Span | Line
+
+
+def line(*parts: Part) -> Line:
+    """Spans joined into one line; plain strings become plain spans."""
+    spans: list[Span] = []
+    for part in parts:
+        if isinstance(part, str):
+            spans.append(Span(part))
+        elif isinstance(part, Span):
+            spans.append(part)
+        else:
+            spans.extend(part)
+    return tuple(span for span in spans if span.text)
+
+
+def symbol(text: str) -> Span:
+    return Span(text, "symbol")
+
+
+Z = symbol("z")
+P = symbol("p")
+
+
+def decimal(value: float, places: int) -> str:
+    """Fixed decimals with a true minus; a value that rounds to zero carries no sign."""
+    text = f"{value:.{places}f}"
+    if text.startswith("-"):
+        text = text[1:] if float(text) == 0 else MINUS + text[1:]
+    return text
+
+
+def number(value: Estimate, places: int, *, tone: Tone = "plain") -> Span:
+    """A number of the record at its display precision, or the word for why there is none."""
+    if isinstance(value, Absent):
+        return Span(NOT_REACHED if value.reason.startswith(NOT_REACHED) else NOT_ESTIMABLE, "quiet")
+    return Span(decimal(value, places), tone, value=float(value))
+
+
+def count(value: int, *, tone: Tone = "plain") -> Span:
+    """A count; thousands are kept together without a mark up to 9999, spaced beyond."""
+    text = f"{value:,}".replace(",", " ") if value >= 10_000 else str(value)
+    return Span(text, tone, value=float(value))
+
+
+def counted(value: int, singular: str, plural: str | None = None) -> Line:
+    """A count and its noun: "1 event", "384 events"."""
+    noun = singular if value == 1 else (plural or singular + "s")
+    return (count(value), Span(NO_BREAK + noun))
+
+
+def of_total(part: int, whole: int) -> Line:
+    """A count beside its denominator."""
+    return (count(part), Span(" of "), count(whole))
+
+
+def percent(fraction: Estimate, places: int = 1) -> Span:
+    """A 0-1 quantity in percent, without the sign (the column or sentence names the unit)."""
+    if isinstance(fraction, Absent):
+        return number(fraction, places)
+    return Span(decimal(100 * fraction, places), value=float(fraction))
+
+
+def z_number(value: Estimate, *, tone: Tone = "plain", places: int = 3) -> Span:
+    return number(value, places, tone=tone)
+
+
+def z_places(z: Estimate, bound: Estimate) -> int:
+    """Three places, or as many as it takes for a z and its bound to read differently when they differ."""
+    if isinstance(z, Absent) or isinstance(bound, Absent):
+        return 3
+    return next(
+        (
+            places
+            for places in range(3, 16)
+            if abs(z) == abs(bound) or f"{z:.{places}f}" != f"{bound:.{places}f}"
+        ),
+        16,
+    )
+
+
+def places_for(value: float, significant: int) -> int:
+    """Decimal places that show `value` with so many significant digits."""
+    if value <= 0:
+        return significant
+    return max(0, significant - 1 - math.floor(math.log10(value)))
+
+
+def p_values(*values: Estimate) -> tuple[Span, ...]:
+    """p-values that stand beside each other: two significant digits of the smallest, one precision for all."""
+    known = [value for value in values if not isinstance(value, Absent) and value > 0]
+    places = max((places_for(value, 2) for value in known), default=4)
+    return tuple(_p_value(value, max(2, places)) for value in values)
+
+
+LONGEST_P = 7
+
+
+def _p_value(value: Estimate, places: int) -> Span:
+    if isinstance(value, Absent):
+        return number(value, 4)
+    if 0 < value < 0.5 * 10**-LONGEST_P:
+        return Span(f"<{NO_BREAK}0.{'0' * (LONGEST_P - 1)}1", value=value)
+    return Span(decimal(value, min(places, LONGEST_P)), value=value)
+
+
+def alpha(value: float) -> Span:
+    """Alpha with three significant digits, never in powers of ten where ten decimals will do."""
+    if value == 0:
+        return Span("0", value=0.0)
+    places = places_for(value, 3)
+    if places > 10:
+        return Span(f"<{NO_BREAK}0.0000000001", value=value)
+    return Span(decimal(value, places), value=value)
+
+
+def interval(low: Estimate, high: Estimate, places: int, *, scale: float = 1.0) -> Line:
+    """ "0.658 to 0.983"; an open end is said in words."""
+    return line(_scaled(low, places, scale), " to ", _scaled(high, places, scale))
+
+
+def _scaled(value: Estimate, places: int, scale: float) -> Span:
+    if isinstance(value, Absent) or math.isnan(value):
+        reason = value.reason if isinstance(value, Absent) else NOT_ESTIMABLE
+        return number(Absent(reason), places)
+    return Span(decimal(scale * value, places), value=float(value))
+
+
+def day_text(day: date) -> str:
+    """ "8 Jan 2027", unbroken."""
+    return f"{day.day}{NO_BREAK}{day:%b}{NO_BREAK}{day:%Y}"
+
+
+def moment_text(moment: datetime) -> str:
+    return f"{day_text(moment.date())}, {moment:%H:%M} UTC"
+
+
+def listed(words: Sequence[str]) -> str:
+    """ "A", "A and B", "A, B and C"."""
+    return words[0] if len(words) == 1 else ", ".join(words[:-1]) + " and " + words[-1] if words else ""
+
+
+def spoken(value: str) -> str:
+    """An arm's value in a sentence: a word that is all capitals is not shouted."""
+    return value.lower() if value.isupper() and value.isalpha() and len(value) > 3 else value
+
+
+def arm_label(letter: Letter, value: str, *, masked: bool) -> ArmLabel:
+    """ "Arm A" while masked; "Tablet (B)" once unmasked, so that both can lie side by side."""
+    if masked:
+        return ArmLabel(letter, f"Arm{NO_BREAK}{letter}", f"arm{NO_BREAK}{letter}")
+    said = spoken(value)
+    return ArmLabel(letter, f"{said[:1].upper()}{said[1:]}{NO_BREAK}({letter})", said)

@@ -1,0 +1,1 @@
+"""LookResult -> what one side may see: unmasked, masked (turned to letters), open (pooled)."""

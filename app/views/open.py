@@ -1,0 +1,20 @@
+"""The open view of a look: pooled, computed from types that have no arm."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from app.model.look import PooledResult
+
+
+@dataclass(frozen=True, eq=False)
+class OpenView:
+    """What may be said outside the closed session. `planned` are the plan's information fractions."""
+
+    trial_name: str
+    trial_title: str
+    endpoint_label: str
+    event_is_bad: bool
+    planned: tuple[float, ...]
+    planned_subjects: int | None
+    look: PooledResult

@@ -1,0 +1,265 @@
+"""The record of a closed view: the names of app/record/schema.py filled in, oriented as the view is."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import asdict
+from datetime import date
+from typing import Any
+
+from app import __version__
+from app.model.boundary import Bound, LookAsUsed, PlannedBoundary, Verdict
+from app.model.extract import Changes, Finding
+from app.model.look import CalendarCounts
+from app.model.survival import CoxResult, LogrankResult
+from app.model.values import Absent
+from app.record.numbers import column, estimate, not_estimable
+from app.record.schema import FORMAT
+from app.views.closed import ArmView, ClosedView, Reading
+
+Record = dict[str, Any]
+
+
+def looks_record(kind: str, views: Sequence[ClosedView], *, run_at: str) -> Record:
+    """The record of one or several looks under one plan; all views share plan and orientation."""
+    first = views[0]
+    digests = [digest for view in views for digest in view.look.snapshot_digests]
+    findings = [finding_record(finding) for view in views for finding in view.look.findings]
+    orientation = {"of": first.of.value, "against": first.against.value}
+    envelope = _envelope(kind, first.look.plan_digest, digests, orientation, run_at, findings)
+    return {**envelope, "looks": [look_record(view) for view in views]}
+
+
+def boundary_record(planned: PlannedBoundary, *, plan_digest: str, run_at: str) -> Record:
+    return {
+        **_envelope("boundary", plan_digest, [], None, run_at, []),
+        "sides": planned.sides,
+        "looks": [bound_record(bound, planned.sides) for bound in planned.bounds],
+        "noncentrality": estimate(planned.noncentrality),
+        "power": planned.power,
+        "inflation": estimate(planned.inflation),
+        "expected_information_fraction": {
+            "null": estimate(planned.expected_fraction_null),
+            "half": estimate(planned.expected_fraction_half),
+            "design": estimate(planned.expected_fraction_design),
+        },
+    }
+
+
+def _envelope(
+    kind: str,
+    plan_digest: str,
+    digests: list[str],
+    orientation: dict[str, str] | None,
+    run_at: str,
+    findings: list[Record],
+) -> Record:
+    return {
+        "format": FORMAT,
+        "kind": kind,
+        "program": {"name": "Lookledger", "version": __version__},
+        "plan_digest": plan_digest,
+        "snapshot_digests": digests,
+        "orientation": orientation,
+        "run_at": run_at,
+        "findings": findings,
+    }
+
+
+def finding_record(finding: Finding) -> Record:
+    return {**asdict(finding), "rows": list(finding.rows)}
+
+
+def look_record(view: ClosedView) -> Record:
+    look = view.look
+    sides = view.plan.design.sides
+    only = None if view.masked else view.readings[0]
+    labels = [stratum.label for stratum in look.information.strata]
+    return {
+        "number": look.number,
+        "kind": look.kind,
+        "final": look.final,
+        "time_unit": look.time_unit,
+        "cutoff": _iso(look.cutoff),
+        "extracted": _iso(look.extracted),
+        "information": _information(view),
+        "changes": _changes(look.changes),
+        "calendar": _calendar(look.calendar),
+        "logrank": _logrank(view.logrank, labels, only),
+        "logrank_unstratified": _logrank(view.logrank_unstratified, [""], only),
+        "cox": _cox(view.cox),
+        "cox_unstratified": _cox(view.cox_unstratified),
+        "curves": [_curve(arm) for arm in view.arms],
+        "boundary": {
+            **bound_record(look.bound, sides),
+            "information": look.information_used,
+            **_crossing(only.verdict if only else None),
+        },
+        "readings": [_reading(reading) for reading in view.readings] if view.masked else None,
+        "history": [_held(held, view) for held in view.readings[0].history],
+        "ahead": [bound_record(bound, sides) for bound in look.planned],
+    }
+
+
+def _iso(day: date | None) -> str | None:
+    return None if day is None else day.isoformat()
+
+
+def _information(view: ClosedView) -> Record:
+    information = view.look.information
+    return {
+        "subjects": information.subjects,
+        "events": information.events,
+        "fraction": information.fraction,
+        "planned_events": information.planned_events,
+        "planned_subjects": view.plan.enrolment.planned_subjects,
+        "score_variance": estimate(information.score_variance),
+        "variance_ratio": estimate(information.variance_ratio),
+        "arms": [
+            {
+                "arm": arm.value,
+                "subjects": arm.counts.subjects,
+                "events": arm.counts.events,
+                "person_time": arm.counts.person_time,
+                "follow_up_median": estimate(arm.counts.follow_up_median),
+            }
+            for arm in view.arms
+        ],
+        "strata": [_stratum(view, index) for index in range(len(view.strata))],
+    }
+
+
+def _stratum(view: ClosedView, index: int) -> Record:
+    stratum = view.strata[index]
+    arms = [
+        {"arm": arm.value, "subjects": subjects, "events": events}
+        for arm, (subjects, events) in zip(view.arms, stratum.arms, strict=True)
+    ]
+    return {"label": stratum.label, "subjects": stratum.subjects, "events": stratum.events, "arms": arms}
+
+
+def _changes(changes: Changes | None) -> Record | None:
+    """Counts only: identifiers stay on the page and in the extract."""
+    if changes is None:
+        return None
+    return {
+        "subjects_in_both": changes.n_common,
+        "new_subjects": len(changes.new_subjects),
+        "vanished_subjects": len(changes.vanished_subjects),
+        "new_events": len(changes.new_events),
+        "reversed_events": len(changes.reversed_events),
+        "moved_events": len(changes.moved_events),
+        "changed_arm": len(changes.changed_arm),
+        "changed_stratum": len(changes.changed_stratum),
+    }
+
+
+def _calendar(calendar: CalendarCounts | None) -> Record | None:
+    if calendar is None:
+        return None
+    return {
+        "day": calendar.day.tolist(),
+        "randomised": calendar.randomised.tolist(),
+        "events": calendar.events.tolist(),
+    }
+
+
+def _logrank(result: LogrankResult | Absent, labels: list[str], only: Reading | None) -> Record:
+    if isinstance(result, Absent):
+        return not_estimable(result.reason)
+    return {
+        "observed": result.observed,
+        "expected": result.expected,
+        "variance": result.variance,
+        "z": result.z,
+        "chi_square": result.chi_square,
+        "p_one_sided": result.p_one_sided if only else None,
+        "p_two_sided": result.p_two_sided,
+        "strata": [
+            {
+                "label": labels[part.stratum],
+                "subjects": part.subjects,
+                "events": part.events,
+                "observed": part.observed,
+                "expected": part.expected,
+                "variance": part.variance,
+            }
+            for part in result.strata
+        ],
+    }
+
+
+def _cox(result: CoxResult | Absent) -> Record:
+    return not_estimable(result.reason) if isinstance(result, Absent) else asdict(result)
+
+
+def _curve(arm: ArmView) -> Record:
+    curve = arm.curve
+    return {
+        "arm": arm.value,
+        "time": curve.time.tolist(),
+        "at_risk": curve.at_risk.tolist(),
+        "events": curve.events.tolist(),
+        "censored": curve.censored.tolist(),
+        "survival": curve.survival.tolist(),
+        "std_error": column(curve.std_error),
+        "ci_low": column(curve.ci_low),
+        "ci_high": column(curve.ci_high),
+        "interval": curve.interval,
+        "level": curve.level,
+        "median": estimate(curve.median),
+        "median_ci_low": estimate(curve.median_ci_low),
+        "median_ci_high": estimate(curve.median_ci_high),
+        "follow_up_median": estimate(arm.counts.follow_up_median),
+    }
+
+
+def bound_record(bound: Bound, sides: int) -> Record:
+    return {
+        "number": bound.number,
+        "information_fraction": bound.information_fraction,
+        "events": bound.events,
+        "final": bound.final,
+        "sides": sides,
+        "alpha_spent": bound.alpha_spent,
+        "alpha_spent_here": bound.alpha_spent_here,
+        "efficacy_z": estimate(bound.efficacy_z),
+        "efficacy_p_one_sided": estimate(bound.efficacy_p_one_sided),
+        "efficacy_hazard_ratio": estimate(bound.efficacy_hazard_ratio),
+        "futility_z": None,
+        "type_two_spent": None,
+        "harm_z": None,
+        "harm_alpha_spent": None,
+    }
+
+
+def _crossing(verdict: Verdict | None) -> Record:
+    """Masked, what is crossed depends on the reading and stands there only."""
+    if verdict is None:
+        return {"crossed": None, "first_crossed": None}
+    return {"crossed": verdict.crossed, "first_crossed": verdict.first_crossed}
+
+
+def _reading(reading: Reading) -> Record:
+    return {
+        "experimental": reading.experimental,
+        "z": estimate(reading.z),
+        "p_one_sided": estimate(reading.p_one_sided),
+        **_crossing(reading.verdict),
+    }
+
+
+def _held(held: LookAsUsed, view: ClosedView) -> Record:
+    return {
+        "number": held.number,
+        "kind": held.kind,
+        "information": held.information,
+        "events": held.events,
+        "fraction": held.fraction,
+        "z": held.z,
+        "efficacy_z": estimate(held.efficacy_z),
+        "efficacy_hazard_ratio": estimate(held.efficacy_hazard_ratio),
+        "alpha_spent": held.alpha_spent,
+        "final": held.final,
+        "crossed": None if view.masked else held.crossed,
+    }
