@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -44,8 +45,7 @@ class RiskTable:
 
     def strata(self) -> Iterator[RiskTable]:
         """One table for each stratum that holds a subject, in the order of their codes."""
-        starts = first_of_runs(self.stratum)
-        for start, end in zip(starts, [*starts[1:], self.time.size], strict=True):
+        for start, end in pairwise([*first_of_runs(self.stratum), self.time.size]):
             yield self.only(slice(start, end))
 
     @property
