@@ -44,13 +44,12 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
     plain = two_arm_table(time, sample.event, sample.experimental)
     test = or_reason(lambda: logrank_of(stratified, direction=direction))
     information = _information(plan, sample, test)
-    final = declared.kind == "final" or information.fraction >= 1
-    now, *planned = _bounds(plan, information, declared, final, past)
+    now, *planned = _bounds(plan, information, declared, past)
     curves = [_curve(plan, sample, arm) for arm in (False, True)]
     return LookResult(
         number=declared.number,
         kind=declared.kind,
-        final=final,
+        final=now.final,
         time_unit=sample.time_unit,
         cutoff=declared.cutoff,
         extracted=declared.extracted,
@@ -112,7 +111,7 @@ def _information_used(information: Information) -> float:
 
 
 def _bounds(
-    plan: Plan, information: Information, declared: LookDeclared, final: bool, past: Sequence[LookAsUsed]
+    plan: Plan, information: Information, declared: LookDeclared, past: Sequence[LookAsUsed]
 ) -> tuple[Bound, ...]:
     """The bound here, then the bounds at the plan's looks still to come, were they held as planned."""
     rule = efficacy_rule(plan.design, plan.efficacy, plan.endpoint.direction)
@@ -123,9 +122,8 @@ def _bounds(
         fraction=information.fraction,
         events=information.events,
         score_variance=information.score_variance,
-        final=final,
     )
-    ahead = () if final or _was_final(past) else _looks_to_come(plan, here, past)
+    ahead = () if here.final or _was_final(past) else _looks_to_come(plan, here, past)
     untested = [replace(look, crossed="none") for look in past]
     return bounds_ahead(rule, untested, (here, *ahead))
 
