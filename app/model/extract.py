@@ -118,7 +118,8 @@ def with_severity(findings: Sequence[Finding], severity: Severity) -> tuple[Find
 class Changes:
     """What differs from the previous snapshot, subject by subject; identifiers stay on the closed side.
 
-    `n_common` is the denominator: subjects in both snapshots. `new_subjects` were not there before.
+    `n_common` is the denominator of events, arms and strata: subjects in both snapshots. Events now = events
+    before + new_events + new_subjects_with_event - reversed_events - vanished_with_event.
     """
 
     n_common: int
@@ -129,6 +130,8 @@ class Changes:
     moved_events: tuple[str, ...] = ()
     changed_arm: tuple[str, ...] = ()
     changed_stratum: tuple[str, ...] = ()
+    new_subjects_with_event: tuple[str, ...] = ()
+    vanished_with_event: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
