@@ -56,7 +56,5 @@ def test_an_editable_install_finds_them_in_the_checkout(tmp_path: Path) -> None:
 
 
 def test_a_name_that_is_not_shipped_is_a_bug_told_with_both_places() -> None:
-    with pytest.raises(
-        FileNotFoundError, match=r"none\.html is not shipped; looked in .*_assets and "
-    ):
+    with pytest.raises(FileNotFoundError, match=r"none\.html is not shipped; looked in .*_assets and "):
         asset("none.html")

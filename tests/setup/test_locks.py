@@ -9,6 +9,7 @@ from functools import cache
 from pathlib import Path
 
 import pytest
+from packaging.requirements import Requirement
 
 from app.bootstrap.environment import ROOT, RUNTIME
 
@@ -51,6 +52,13 @@ def test_each_version_carries_a_hash(lock: Path) -> None:
 
 def test_the_tests_run_against_the_versions_that_the_program_runs_with() -> None:
     assert pins(LOCKS["app"]).items() <= pins(LOCKS["tests"]).items()
+
+
+def test_the_versions_lie_within_the_bounds_that_the_project_states() -> None:
+    stated = [*project()["dependencies"], *project()["optional-dependencies"]["test"]]
+    wanted = {requirement.name: requirement.specifier for requirement in map(Requirement, stated)}
+    outside = [name for name, bounds in wanted.items() if pins(LOCKS["tests"])[name][0] not in bounds]
+    assert outside == []
 
 
 @pytest.mark.parametrize("name", ["numpy", "scipy"])
