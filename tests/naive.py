@@ -7,7 +7,7 @@ Checked by hand in tests/byhand.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from fractions import Fraction
 from typing import NamedTuple
 
@@ -142,3 +142,44 @@ def merge_near_ties(time: Sequence[float]) -> list[float]:
         joins = before is not None and at - before <= tolerance
         smallest[at] = smallest[before] if joins else at  # type: ignore[index]
     return [smallest[t] for t in time]
+
+
+def normal_tail(z: float) -> float:
+    """P(Z > z) of a standard normal."""
+    return math.erfc(z / math.sqrt(2)) / 2
+
+
+def two_look_crossing(
+    first_fraction: float, first_bound: float, last_bound: float, sides: int = 1, cells: int = 20_000
+) -> float:
+    """P(z stays inside at the first look and is above the last bound at the end), by trapezoids."""
+    low = -first_bound if sides == 2 else -12.0
+    width = (first_bound - low) / cells
+    total = 0.0
+    for cell in range(cells + 1):
+        z = low + cell * width
+        end = 0.5 if cell in (0, cells) else 1.0
+        density = math.exp(-z * z / 2) / math.sqrt(2 * math.pi)
+        onwards = (last_bound - z * math.sqrt(first_fraction)) / math.sqrt(1 - first_fraction)
+        total += end * width * density * normal_tail(onwards)
+    return total
+
+
+def two_look_boundary(
+    first_fraction: float, spent_first: float, alpha_one_side: float, sides: int = 1
+) -> tuple[float, float]:
+    """Bounds at one interim look and the end that spend alpha (Lan & DeMets 1983), by bisection."""
+
+    def solve(tail_at: Callable[[float], float], spend: float) -> float:
+        low, high = 0.0, 12.0
+        for _ in range(45):
+            middle = (low + high) / 2
+            low, high = (middle, high) if tail_at(middle) > spend else (low, middle)
+        return low
+
+    first = solve(normal_tail, spent_first)
+    last = solve(
+        lambda z: two_look_crossing(first_fraction, first, z, sides, cells=2_000),
+        alpha_one_side - spent_first,
+    )
+    return first, last

@@ -44,7 +44,8 @@ class SpendingFunction:
     -----
     *Convention*: `alpha` is the level of the side that spends it; a two-sided test spends alpha/2 on each
     side through the function at alpha/2 (see DEVELOPERS.md, Methods: spending).
-    *Accuracy*: relative error below 1e-14; a spend below the smallest normal double is 0.
+    *Accuracy*: relative error below 1e-14, or 1e-12 where the spend is below 1e-100; a spend below
+    the smallest normal double is 0.
     *Checked*: against print (tests/published/test_sequential.py) and at 50 digits (tests/precise/).
 
     References
