@@ -1,0 +1,113 @@
+"""z by information: each look is a gauge, a lane at its fraction with the bounds that held there.
+
+Bounds exist at looks and nowhere else, so no line joins them but a dotted guide for the eye. Unmasked, one
+lane a look. Masked, two: the left is read as if A were experimental, the right as if B were.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from app.render.palette import HAIRLINE, INK_2, INK_3
+from app.render.svg.drawing import Drawing, axis_line, horizontal, small_print
+from app.render.svg.element import Element, coordinate, element
+from app.render.svg.gauge import gauge
+from app.render.svg.geometry import WHOLE_STEPS, round_ticks
+from app.render.svg.lane_plot import (
+    NARROW_PAGE,
+    WIDE_PAGE,
+    LanePage,
+    LanePlot,
+    lane_plot,
+    lower_bound,
+    number,
+)
+from app.render.svg.lane_words import lane_labels, look_names, rows_under
+from app.render.svg.lettering import SMALL, text_width, words
+from app.sheets.blocks import BoundaryFigure, Lane, Span
+
+MOST_TICKS = 7
+
+
+def wide(figure: BoundaryFigure) -> Drawing:
+    return _drawn(figure, WIDE_PAGE)
+
+
+def narrow(figure: BoundaryFigure) -> Drawing:
+    return _drawn(figure, NARROW_PAGE)
+
+
+def _drawn(figure: BoundaryFigure, page: LanePage) -> Drawing:
+    plot = lane_plot(figure, page)
+    rows, height = rows_under(plot)
+    return Drawing(
+        page.width,
+        height,
+        figure.title,
+        figure.description,
+        (
+            *_axis(plot),
+            *_guides(plot),
+            *_direction(plot),
+            *(part for lane in figure.lanes for part in gauge(plot, lane)),
+            *(part for lane in figure.lanes for part in lane_labels(plot, lane)),
+            axis_line(plot.area.bottom, page.left, page.right),
+            *look_names(plot),
+            *rows,
+        ),
+    )
+
+
+def z_ticks(low: float, high: float) -> tuple[float, ...]:
+    return round_ticks(low, high, MOST_TICKS, WHOLE_STEPS)
+
+
+def signed(tick: float) -> str:
+    return f"{tick:g}".replace("-", "−")
+
+
+def _axis(plot: LanePlot) -> tuple[Element, ...]:
+    ticks, page = z_ticks(plot.y.low, plot.y.high), plot.page
+    grid = (horizontal(plot.y(t), page.left, page.right, *([HAIRLINE] if t == 0 else [])) for t in ticks)
+    numbers = (small_print(signed(t), page.numbers_end, plot.y(t) + 4, "end") for t in ticks)
+    title = plot.figure.y_title
+    if page.short:
+        title = (*title, Span(f"; up {plot.figure.favours_up}"))
+    start = page.numbers_end - text_width(signed(max(ticks)), SMALL)
+    return (words(title, start, 14, size=SMALL, fill=INK_2), *grid, *numbers)
+
+
+def _direction(plot: LanePlot) -> tuple[Element, ...]:
+    """What up and down mean, astride the zero line; left of the numbers when a lane stands there."""
+    if plot.page.short:
+        return ()
+    up, down, zero = f"↑ {plot.figure.favours_up}", f"↓ {plot.figure.favours_down}", plot.y(0)
+    first = min((plot.middle(lane) for lane in plot.figure.lanes), default=plot.page.right)
+    left = plot.page.zero + 2
+    if left + max(text_width(up, SMALL), text_width(down, SMALL)) + 8 <= first - plot.lane_width / 2:
+        return small_print(up, left, zero - 6), small_print(down, left, zero + 15)
+    return small_print(up, 130, zero - 6, "end"), small_print(down, 130, zero + 15, "end")
+
+
+def _guides(plot: LanePlot) -> tuple[Element, ...]:
+    """Dotted lines between the bounds of neighbouring looks; the lanes are drawn over them."""
+    upper = [number(lane.upper) for lane in plot.figure.lanes]
+    lower = [_lower_guide(plot, lane) for lane in plot.figure.lanes]
+    paths = _guide(plot, upper) + _guide(plot, lower)
+    return (element("path", d=paths, fill="none", stroke=INK_3, stroke_dasharray="1 3"),) if paths else ()
+
+
+def _lower_guide(plot: LanePlot, lane: Lane) -> float | None:
+    """The lower bound; with futility and no lower bound, the futility bound."""
+    if lane.lower is None and not plot.is_masked:
+        return number(lane.futility)
+    return lower_bound(lane)
+
+
+def _guide(plot: LanePlot, bounds: Sequence[float | None]) -> str:
+    points = [
+        f"{coordinate(plot.middle(lane))} {coordinate(plot.y(bound))}"
+        for lane, bound in zip(plot.figure.lanes, bounds, strict=True)
+        if bound is not None
+    ]
+    return f"M{'L'.join(points)}" if len(points) > 1 else ""
