@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from app.model.boundary import LookAsUsed
+from app.model.boundary import Bound, LookAsUsed
 from app.model.look import LookResult
 from app.model.values import Absent, Estimate
 
@@ -46,3 +46,19 @@ def as_used_of_record(look: dict[str, Any]) -> LookAsUsed:
 
 def _read(value: float | dict[str, str]) -> Estimate:
     return Absent(value["not_estimable"]) if isinstance(value, dict) else value
+
+
+def bound_of_record(look: dict[str, Any]) -> Bound:
+    """The bound as it was used, from the full record that was frozen with its look."""
+    bound = look["boundary"]
+    return Bound(
+        number=bound["number"],
+        information_fraction=bound["information_fraction"],
+        events=bound["events"],
+        final=bound["final"],
+        alpha_spent=bound["alpha_spent"],
+        alpha_spent_here=bound["alpha_spent_here"],
+        efficacy_z=_read(bound["efficacy_z"]),
+        efficacy_p_one_sided=_read(bound["efficacy_p_one_sided"]),
+        efficacy_hazard_ratio=_read(bound["efficacy_hazard_ratio"]),
+    )

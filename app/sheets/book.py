@@ -20,7 +20,7 @@ def closed_book(
 ) -> LookBook:
     number = view.look.number
     sheets = (
-        glance_sheet(view, around, state_sentence(history.state, number)),
+        glance_sheet(view, around, state_sentence(history, number)),
         data_sheet(view, snapshot, extract),
         information_sheet(view, around.planned_for(number)),
         curves_sheet(view),

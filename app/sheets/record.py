@@ -26,11 +26,22 @@ NOT_A_SIGNATURE = "Names are recorded as they were given; this is not an electro
 
 
 @dataclass(frozen=True)
+class Freezing:
+    """The freeze that a report is made for: it is not yet an entry when the report is set."""
+
+    at: str
+    by: str
+    head_before: str
+    disclosure: str
+
+
+@dataclass(frozen=True)
 class History:
-    """The state of the trial file and its entries with their bodies, in order."""
+    """The state of the trial file and its entries with their bodies, in order; `freezing` while a report is set."""
 
     state: State
     entries: tuple[tuple[Entry, Body], ...]
+    freezing: Freezing | None = None
 
 
 def record_sheet(history: History, number: int) -> Sheet:
@@ -40,20 +51,24 @@ def record_sheet(history: History, number: int) -> Sheet:
         number=9,
         name="Record",
         question=QUESTION,
-        answer=(state_sentence(history.state, number),),
-        tables=(_look_table(look, number), _file_table(history.state)),
+        answer=(state_sentence(history, number),),
+        tables=(_look_table(look, number, history.freezing), _file_table(history.state)),
         wide_tables=(_history_table(history),),
         notes=(line(NOT_A_SIGNATURE),),
         methods=methods("chain"),
-        acts=_acts(history.state, look, number),
+        acts=() if history.freezing else _acts(history.state, look, number),
     )
 
 
-def state_sentence(state: State, number: int) -> Line:
+def state_sentence(history: History, number: int) -> Line:
     """ "Look 3 is open; looks 1 and 2 are frozen. The arms are masked." """
+    state = history.state
     frozen = [str(look.number) for look in state.frozen_looks]
     arms = "The arms are unmasked." if state.unmasked else "The arms are masked."
     look = state.look(number)
+    if history.freezing is not None:
+        when = f"on {moment(history.freezing.at)} by {history.freezing.by}"
+        return line(f"Look{NO_BREAK}{number} was frozen {when}. {arms}")
     if look.frozen is not None:
         when = f"on {moment(look.frozen.at)} by {look.frozen.body.by}"
         return line(f"Look{NO_BREAK}{number} was frozen {when}. {arms}")
@@ -74,18 +89,29 @@ def moment(at: str) -> str:
     return f"{at[:10]} {at[11:16]}{NO_BREAK}UTC"
 
 
-def _look_table(look: Look, number: int) -> Table:
-    rows = [("State", "open" if look.frozen is None else "frozen"), ("Received", moment(look.received_at))]
-    if look.frozen is not None:
+def _look_table(look: Look, number: int, freezing: Freezing | None) -> Table:
+    rows = [("Received", moment(look.received_at)), ("Received by", look.snapshot.by)]
+    if freezing is not None:
+        rows += _frozen_rows(freezing.at, freezing.by, freezing.disclosure, freezing.head_before)
+    elif look.frozen is None:
+        rows.append(("State", "open"))
+    else:
         body = look.frozen.body
+        rows += _frozen_rows(look.frozen.at, body.by, body.disclosure, body.head_before)
         rows += [
-            ("Frozen", moment(look.frozen.at)),
-            ("Arms in its report", body.disclosure),
             ("Report, SHA-256", grouped(body.report_digest)),
             ("Record, SHA-256", grouped(body.record_digest)),
-            ("Head before", grouped(body.head_before)),
         ]
     return _words_table(f"Look {number}", rows)
+
+
+def _frozen_rows(at: str, by: str, disclosure: str, head_before: str) -> list[tuple[str, str]]:
+    return [
+        ("Frozen", moment(at)),
+        ("Frozen by", by),
+        ("Arms in its report", disclosure),
+        ("Head before the freeze", grouped(head_before)),
+    ]
 
 
 def _file_table(state: State) -> Table:

@@ -1,0 +1,78 @@
+"""Numbers without a trial file: a plan's boundary, looks evaluated in order, the published values."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from datetime import date
+from typing import Any
+
+from app.actions.desk import UploadedFile
+from app.intake.extract import received_file
+from app.intake.plan import read_plan
+from app.model.boundary import LookAsUsed
+from app.model.extract import LookKind
+from app.review import as_used
+from app.review.received import Delivery, review_delivery
+from app.sequential.design import planned_boundary
+from app.settings import Settings
+from app.validation import published_rows
+from app.validation.rows import RowOutcome
+from app.views.closed import ClosedView, Letters, unmasked_view
+from app.views.record import boundary_record, looks_record
+
+
+@dataclass(frozen=True)
+class LookGiven:
+    """One look for `evaluate`: its files, its cutoff when dates are to be checked, its kind (planned by default)."""
+
+    files: tuple[UploadedFile, ...]
+    cutoff: date | None
+    kind: LookKind | None
+
+    @property
+    def delivery(self) -> Delivery:
+        files = tuple(received_file(file.name, file.content) for file in self.files)
+        return Delivery(files, self.kind or "planned", self.cutoff)
+
+
+def evaluate(
+    settings: Settings, *, plan_name: str, plan: bytes, looks: Sequence[LookGiven]
+) -> dict[str, Any]:
+    """The record of these looks, held one after the other under the plan; each bound rests on those before."""
+    read = read_plan(plan, name=plan_name, limits=settings.limits)
+    past: list[LookAsUsed] = []
+    views: list[ClosedView] = []
+    earlier: Delivery | None = None
+    for number, given in enumerate(looks, start=1):
+        delivery = given.delivery
+        reviewed = review_delivery(read, delivery, earlier, past, number=number, limits=settings.limits)
+        views.append(unmasked_view(reviewed.result, read, Letters("A")))
+        past.append(as_used(reviewed.result))
+        earlier = delivery
+    return looks_record("evaluation", views, run_at=_now(settings))
+
+
+def boundary(
+    settings: Settings, *, plan_name: str, plan: bytes, fractions: Sequence[float] | None, final: bool
+) -> dict[str, Any]:
+    """The record of a plan's bounds at its own looks or at these fractions."""
+    read = read_plan(plan, name=plan_name, limits=settings.limits)
+    planned = planned_boundary(
+        read.design,
+        read.efficacy,
+        experimental_share=read.arms.experimental_share,
+        direction=read.endpoint.direction,
+        fractions=fractions,
+        final=final,
+    )
+    return boundary_record(planned, plan_digest=read.digest, run_at=_now(settings))
+
+
+def validate() -> tuple[RowOutcome, ...]:
+    """Every published value against what the program computes."""
+    return tuple(row.check() for row in published_rows())
+
+
+def _now(settings: Settings) -> str:
+    return settings.clock().isoformat().replace("+00:00", "Z")

@@ -1,0 +1,78 @@
+"""The frozen report of a look, as bytes or as files in a folder."""
+
+from __future__ import annotations
+
+import json
+import os
+import re
+from dataclasses import dataclass
+from pathlib import Path
+
+from app.actions.desk import Desk
+from app.errors import SetupError
+from app.ledger.entries import ReportWritten
+from app.record.text import record_bytes
+from app.verification.check import record_in_report
+
+
+@dataclass(frozen=True)
+class ReportFiles:
+    """What is written for a frozen look; `stem` names the files without saying anything comparative."""
+
+    html: bytes
+    record: bytes
+    environment: bytes
+    stem: str
+
+
+def report(desk: Desk, look: int) -> ReportFiles:
+    """The frozen bytes of a look; LedgerError while it is not frozen."""
+    state = desk.trial.state()
+    frozen = state.frozen_look(look).body
+    html = desk.trial.content(frozen.report_digest)
+    environment = json.dumps(frozen.environment, indent=1, sort_keys=True) + "\n"
+    name = re.sub(r"[^A-Za-z0-9]+", "-", state.name).strip("-") or "trial"
+    return ReportFiles(
+        html=html,
+        record=record_bytes(record_in_report(html)),
+        environment=environment.encode("utf-8"),
+        stem=f"{name}-look-{look}-closed-{frozen.disclosure}",
+    )
+
+
+def write_report(desk: Desk, look: int, folder: Path) -> tuple[Path, ...]:
+    """Write report, record and environment into a folder, each whole or not at all, and record that."""
+    files = report(desk, look)
+    wanted = {
+        folder / f"{files.stem}.html": files.html,
+        folder / f"{files.stem}.record.json": files.record,
+        folder / f"{files.stem}.environment.json": files.environment,
+    }
+    for path, content in wanted.items():
+        _write_whole(path, content)
+    if not desk.read_only:
+        with desk.trial.act() as act:
+            act.append(ReportWritten(look, act.state.frozen_look(look).body.report_digest))
+    return tuple(wanted)
+
+
+def _write_whole(path: Path, content: bytes) -> None:
+    """Write beside, then rename, so that no half-written report ever stands under its name."""
+    unfinished = path.with_name(f".{path.name}.unfinished")
+    try:
+        path.parent.mkdir(parents=True, exist_ok=True)
+        with open(unfinished, "wb") as file:
+            os.chmod(unfinished, 0o600)
+            file.write(content)
+            file.flush()
+            os.fsync(file.fileno())
+        os.replace(unfinished, path)
+    except OSError as fault:
+        unfinished.unlink(missing_ok=True)
+        raise SetupError(
+            "A report file cannot be written",
+            where=str(path),
+            found=fault.strerror or type(fault).__name__,
+            accepted="a folder that can be written",
+            remedy="name another folder with --to",
+        ) from fault

@@ -1,0 +1,91 @@
+"""One look put together again from what the trial file holds."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import Any
+
+from app.errors import LedgerChanged
+from app.intake.plan import read_plan
+from app.ledger.history import State
+from app.ledger.trial import Trial
+from app.model.boundary import LookAsUsed
+from app.model.extract import Extract, Snapshot
+from app.model.look import LookResult
+from app.model.plan import Plan
+from app.record.canonical import parse_strict
+from app.record.schema import LOOKS_RECORD, differences
+from app.review.as_used import as_used_of_record, bound_of_record
+from app.review.received import Delivery, review_delivery
+from app.settings import Limits
+from app.views.closed import ClosedView, Letters, masked_view, unmasked_view
+
+PLAN_NAME = "the locked plan"
+
+
+@dataclass(frozen=True, eq=False)
+class Assembled:
+    """A look with all it was made from."""
+
+    plan: Plan
+    snapshot: Snapshot
+    extract: Extract
+    result: LookResult
+
+
+def plan_under(trial: Trial, digest: str, limits: Limits) -> Plan:
+    return read_plan(trial.content(digest), name=PLAN_NAME, limits=limits)
+
+
+def delivery_of(snapshot: Snapshot) -> Delivery:
+    return Delivery(snapshot.files, snapshot.kind, snapshot.cutoff, snapshot.extracted)
+
+
+def frozen_record(trial: Trial, number: int) -> dict[str, Any]:
+    """The full record that was frozen with a look."""
+    frozen = trial.state().frozen_look(number)
+    where = f"look {number}, frozen record"
+    record: dict[str, Any] = parse_strict(trial.content(frozen.body.record_digest), where)
+    for difference in differences(record, LOOKS_RECORD):
+        raise LedgerChanged("A frozen record that is not a record", where=where, found=difference)
+    return record
+
+
+def looks_as_used(trial: Trial, before: int) -> tuple[LookAsUsed, ...]:
+    """The looks before this one as their frozen records have them: never recomputed."""
+    return tuple(as_used_of_record(frozen_record(trial, number)["looks"][0]) for number in range(1, before))
+
+
+def compute(trial: Trial, number: int, limits: Limits) -> Assembled:
+    """The look computed from its snapshot, its plan and the looks as used before it."""
+    look = trial.state().look(number)
+    plan = plan_under(trial, look.plan_digest, limits)
+    snapshot = trial.snapshot(number)
+    earlier = delivery_of(trial.snapshot(number - 1)) if number > 1 else None
+    past = looks_as_used(trial, number)
+    reviewed = review_delivery(plan, delivery_of(snapshot), earlier, past, number=number, limits=limits)
+    return Assembled(plan, snapshot, reviewed.extract, reviewed.result)
+
+
+def assemble(trial: Trial, number: int, limits: Limits) -> Assembled:
+    """The look as it is to be shown: once frozen, with the bound as it was used."""
+    assembled = compute(trial, number, limits)
+    if trial.state().look(number).frozen is None:
+        return assembled
+    stored = frozen_record(trial, number)["looks"][0]
+    return replace(assembled, result=replace(assembled.result, bound=bound_of_record(stored)))
+
+
+def letters_for(plan: Plan, trial: Trial) -> Letters:
+    """The drawn letters; a plan that starts unmasked gives the second ink to the experimental arm."""
+    return Letters(trial.letter_key().letters.control) if plan.arms.masked else Letters("A")
+
+
+def closed_view(
+    trial: Trial, state: State, assembled: Assembled, *, unmasked: bool | None = None
+) -> ClosedView:
+    """The look as the closed side sees it now, or as it was when the arms were (un)masked."""
+    letters = letters_for(assembled.plan, trial)
+    shown = state.unmasked if unmasked is None else unmasked
+    view = unmasked_view if shown else masked_view
+    return view(assembled.result, assembled.plan, letters)
