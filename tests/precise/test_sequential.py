@@ -90,10 +90,10 @@ def test_tails_smaller_than_rounding_of_one_keep_their_digits(first: float, seco
 @pytest.mark.parametrize("looks", [2, 3, 4])
 @pytest.mark.parametrize("seed", quick_then_slow(1, 8))
 def test_up_to_four_looks_agree_with_the_multivariate_normal(looks: int, kind: str, seed: int) -> None:
-    """The general library's integration carries a Monte Carlo error of about 1e-8 itself."""
+    """The general library's integration carries an error of its own: up to 1.2e-7 on these plans."""
     plan = Plan.random(looks, kind, seed)
     expected = multivariate_normal(plan.information, plan.bounds, plan.drift, seed)
-    assert plan.leaving_at_the_last_look() == pytest.approx(expected, abs=1e-7)
+    assert plan.leaving_at_the_last_look() == pytest.approx(expected, abs=5e-7)
 
 
 @KINDS
