@@ -1,0 +1,192 @@
+"""`evaluate PLAN --look FILE[,FILE] [--cutoff DATE] [--kind KIND] ... [--json]`"""
+
+from __future__ import annotations
+
+import sys
+from argparse import Action, ArgumentParser, Namespace
+from dataclasses import dataclass, replace
+from datetime import date
+from pathlib import Path
+from typing import Any
+
+from app.actions.calculate import LookGiven, evaluate
+from app.cli import said
+from app.cli.columns import aligned
+from app.cli.files import read_file, uploaded
+from app.cli.parsing import Command, day_of, kind
+from app.errors import InputError, sentence
+from app.model.extract import LookKind
+from app.record.text import record_bytes
+from app.settings import Settings
+
+
+@dataclass(frozen=True)
+class LookNamed:
+    """One --look with the options that came after it."""
+
+    files: tuple[Path, ...]
+    cutoff: date | None = None
+    kind: LookKind | None = None
+
+
+class NewLook(Action):
+    """--look begins a look; the options after it belong to it."""
+
+    def __call__(
+        self, parser: Any, namespace: Namespace, values: Any, option_string: str | None = None
+    ) -> None:
+        files = tuple(Path(part) for part in values.split(",") if part)
+        namespace.looks = (*namespace.looks, LookNamed(files))
+
+
+class OfLastLook(Action):
+    """--cutoff and --kind belong to the --look before them, each once."""
+
+    def __call__(
+        self, parser: Any, namespace: Namespace, values: Any, option_string: str | None = None
+    ) -> None:
+        if not namespace.looks:
+            raise no_look_before(str(option_string))
+        *before, last = namespace.looks
+        if getattr(last, self.dest) is not None:
+            raise InputError(
+                "one look has the same option twice",
+                where=f"'evaluate', look {len(namespace.looks)}",
+                found=f"{option_string} for a second time",
+                remedy="Give each --look its own options after it",
+            )
+        namespace.looks = (*before, replace(last, **{self.dest: values}))
+
+
+def no_look_before(option: str) -> InputError:
+    return InputError(
+        "an option stands before the look it belongs to",
+        where="'evaluate'",
+        found=f"{option} before any --look",
+        accepted=f"--look FILE {option} ...",
+        remedy="Write it after its --look",
+    )
+
+
+def arguments(parser: ArgumentParser) -> None:
+    parser.add_argument("plan", metavar="PLAN", type=Path, help="the plan, a TOML file")
+    parser.add_argument(
+        "--look",
+        dest="looks",
+        action=NewLook,
+        required=True,
+        default=(),
+        metavar="FILE[,FILE]",
+        help="the extract of one look; repeat it for each look, in their order",
+    )
+    parser.add_argument(
+        "--cutoff",
+        action=OfLastLook,
+        type=day_of("--cutoff"),
+        metavar="DATE",
+        help="data cutoff of the --look before it",
+    )
+    parser.add_argument(
+        "--kind",
+        action=OfLastLook,
+        type=kind,
+        metavar="KIND",
+        help="planned, unplanned, safety or final: the kind of the --look before it",
+    )
+    parser.add_argument("--json", action="store_true", help="print the record at full precision")
+
+
+def run(options: Namespace, settings: Settings) -> int:
+    plan = read_file(options.plan)
+    looks = [LookGiven(tuple(map(uploaded, look.files)), look.cutoff, look.kind) for look in options.looks]
+    record = evaluate(settings, plan_name=options.plan.name, plan=plan, looks=looks)
+    for finding in record["findings"]:
+        print(finding_text(finding), file=sys.stderr)
+    sys.stdout.write(record_bytes(record).decode("utf-8") if options.json else as_text(record))
+    return 0
+
+
+def finding_text(finding: dict[str, Any]) -> str:
+    parts = (finding[name] for name in ("what", "where", "found", "accepted", "remedy"))
+    return f"{finding['severity']} {finding['id']}: {sentence(*parts)}"
+
+
+def as_text(record: dict[str, Any]) -> str:
+    """One block a look: who was counted, what the test says, where its bound stands."""
+    return "\n".join(look_text(look, record["orientation"]) for look in record["looks"])
+
+
+def look_text(look: dict[str, Any], orientation: dict[str, str]) -> str:
+    information = look["information"]
+    arms = [
+        (
+            arm["arm"],
+            str(arm["subjects"]),
+            str(arm["events"]),
+            said.number(arm["person_time"], 0),
+            median_of(look, arm),
+        )
+        for arm in information["arms"]
+    ]
+    heads = ("Arm", "Subjects", "Events", f"Time at risk, {look['time_unit']}", "Median time to event")
+    return (
+        f"Look {look['number']}, {look['kind']}{', final' if look['final'] else ''}: "
+        f"{information['events']} of {information['planned_events']} planned events, "
+        f"information fraction {said.number(information['fraction'])}\n\n"
+        f"{aligned(heads, arms)}\n{test_text(look, orientation)}"
+    )
+
+
+def median_of(look: dict[str, Any], arm: dict[str, Any]) -> str:
+    curve = next(curve for curve in look["curves"] if curve["arm"] == arm["arm"])
+    return said.number(curve["median"], 1)
+
+
+def test_text(look: dict[str, Any], orientation: dict[str, str]) -> str:
+    """The log-rank beside its bound, then the hazard ratio, each beside the same quantity at the bound."""
+    bound = look["boundary"]
+    cox = look["cox"]
+    ratio = "not estimable" if "not_estimable" in cox else said.number(cox["hazard_ratio"])
+    rows = [
+        ("z of the log-rank test", z_of(look), said.bound(bound["efficacy_z"])),
+        ("p, one-sided", *one_sided(look)),
+        ("Hazard ratio", ratio, said.bound(bound["efficacy_hazard_ratio"])),
+    ]
+    heads = (f"{orientation['of']} against {orientation['against']}", "Observed", "Efficacy bound")
+    return f"{aligned(heads, rows)}\n{verdict_text(look)}"
+
+
+def z_of(look: dict[str, Any]) -> str:
+    test = look["logrank"]
+    return "not estimable" if "not_estimable" in test else said.number(test["z"])
+
+
+def one_sided(look: dict[str, Any]) -> tuple[str, str]:
+    test, bound = look["logrank"], look["boundary"]["efficacy_p_one_sided"]
+    seen = None if "not_estimable" in test else test["p_one_sided"]
+    if seen is None:
+        return "-", said.bound(bound, 4)
+    if isinstance(bound, dict):
+        return said.p_value(seen)[0], "-"
+    observed, at_bound = said.p_value(seen, bound)
+    return observed, at_bound
+
+
+def verdict_text(look: dict[str, Any]) -> str:
+    bound = look["boundary"]
+    first = bound["first_crossed"]
+    crossed = (
+        "No boundary was crossed" if bound["crossed"] in (None, "none") else f"Crossed: {bound['crossed']}"
+    )
+    since = f"; first crossed at look {first}" if first is not None and first != look["number"] else ""
+    return (
+        f"{crossed}{since}. Alpha spent {said.alpha(bound['alpha_spent'])}, "
+        f"{said.alpha(bound['alpha_spent_here'])} of it here.\n"
+    )
+
+
+COMMAND = Command(
+    arguments,
+    run,
+    example="evaluate plan.toml --look adtte-1.csv --cutoff 2026-01-09 --look adtte-2.csv --kind final",
+)

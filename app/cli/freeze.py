@@ -1,0 +1,29 @@
+"""`freeze TRIAL --by NAME`"""
+
+from __future__ import annotations
+
+from argparse import ArgumentParser, Namespace
+from pathlib import Path
+
+from app.actions.acts import freeze
+from app.actions.desk import Desk
+from app.cli.parsing import Command
+from app.settings import Settings
+
+
+def arguments(parser: ArgumentParser) -> None:
+    parser.add_argument("trial", metavar="TRIAL", type=Path, help="the trial file")
+    parser.add_argument(
+        "--by", metavar="NAME", required=True, help="who freezes it; not an electronic signature"
+    )
+
+
+def run(options: Namespace, settings: Settings) -> int:
+    frozen = freeze(Desk(settings, options.trial), by=options.by)
+    print(f"Look {frozen.look} is frozen; it cannot change any more.")
+    print(f"Report  sha256 {frozen.report_digest}")
+    print(f"Head    {frozen.head}")
+    return 0
+
+
+COMMAND = Command(arguments, run, example="freeze Q17.trial --by 'Jane Roe'")

@@ -1,0 +1,24 @@
+"""`serve TRIAL`"""
+
+from __future__ import annotations
+
+from argparse import ArgumentParser, Namespace
+from pathlib import Path
+
+from app.actions.desk import Desk
+from app.cli.parsing import Command
+from app.cli.serving import serve_until_stopped, serving_arguments
+from app.settings import Settings
+
+
+def arguments(parser: ArgumentParser) -> None:
+    parser.add_argument("trial", metavar="TRIAL", type=Path, help="the trial file")
+    serving_arguments(parser)
+
+
+def run(options: Namespace, settings: Settings) -> int:
+    desk = Desk(settings, options.trial)
+    return serve_until_stopped(desk, port=options.port, browser=not options.no_browser)
+
+
+COMMAND = Command(arguments, run, example="serve Q17.trial")

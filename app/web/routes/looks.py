@@ -1,0 +1,81 @@
+"""The sheets of a look, on either side, with their figures and the record."""
+
+from __future__ import annotations
+
+from fastapi import APIRouter
+from starlette.exceptions import HTTPException
+from starlette.responses import HTMLResponse, Response
+
+from app.actions.looks import closed_book, looks, open_book, record_of
+from app.record.text import record_bytes
+from app.render.page import render_sheet
+from app.sheets.blocks import LookBook, Sheet
+from app.web.sessions import Session
+from app.web.site import LookNumber, Site, TheSession, TheSite
+
+router = APIRouter()
+
+JSON = "application/json"
+
+
+@router.get("/closed/looks/{look}/record.json")
+def closed_record(site: TheSite, session: TheSession, look: LookNumber) -> Response:
+    """The record as the closed view now shows it; to read it is to open the look's results."""
+    closed_look(site, session, look)
+    return Response(record_bytes(record_of(site.desk, look)), media_type=JSON)
+
+
+@router.get("/closed/looks/{look}/{sheet}/figure.json")
+def closed_figure(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
+    return figure(closed_look(site, session, look), sheet)
+
+
+@router.get("/closed/looks/{look}/{sheet}")
+def closed_sheet(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
+    return page(site, closed_look(site, session, look), sheet, "/closed")
+
+
+@router.get("/open/looks/{look}/{sheet}/figure.json")
+def open_figure(site: TheSite, look: LookNumber, sheet: str) -> Response:
+    return figure(open_look(site, look), sheet)
+
+
+@router.get("/open/looks/{look}/{sheet}")
+def open_sheet(site: TheSite, look: LookNumber, sheet: str) -> Response:
+    return page(site, open_look(site, look), sheet, "/open")
+
+
+def closed_look(site: Site, session: Session, look: int) -> LookBook:
+    """The book of a look; that this session opened its results is recorded once."""
+    require_look(site, look)
+    return closed_book(site.desk, look, session=session.id)
+
+
+def open_look(site: Site, look: int) -> LookBook:
+    require_look(site, look)
+    return open_book(site.desk, look)
+
+
+def require_look(site: Site, look: int) -> None:
+    if look not in looks(site.desk):
+        raise HTTPException(404)
+
+
+def page(site: Site, book: LookBook, sheet: str, base: str) -> Response:
+    require_sheet(book, sheet)
+    return HTMLResponse(render_sheet(site.environment, book, sheet, base=base))
+
+
+def figure(book: LookBook, sheet: str) -> Response:
+    """The interactive figure of a sheet; a sheet without one has no such address."""
+    drawn = require_sheet(book, sheet).figure
+    if drawn is None:
+        raise HTTPException(404)
+    return Response(str(drawn), media_type=JSON)
+
+
+def require_sheet(book: LookBook, key: str) -> Sheet:
+    sheet = book.sheet(key)
+    if sheet is None:
+        raise HTTPException(404)
+    return sheet

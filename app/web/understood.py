@@ -1,0 +1,101 @@
+"""What was understood of an upload, as tables: files, endpoints, counts, changes; nothing compares arms."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from app.actions.receive import Understanding
+from app.model.extract import Changes, Extract
+from app.sheets.blocks import Cell, Column, Line, Row, Table
+from app.sheets.words import count, decimal, line, of_total
+
+MOST_IDENTIFIERS = 5
+
+
+def answer_line(understood: Understanding) -> str:
+    """The sentence on top: which look this would open, or why none."""
+    blocking = len(understood.extract.blocking)
+    if blocking:
+        return f"Nothing was stored. {things(blocking)} to mend:"
+    return f"This would open look {understood.look}. Nothing is stored yet."
+
+
+def things(number: int) -> str:
+    return "1 thing" if number == 1 else f"{number} things"
+
+
+def understood_tables(understood: Understanding) -> tuple[Table, ...]:
+    """In the order in which a person checks: the right size, what moved, the right files and endpoint."""
+    extract = understood.extract
+    tables = (
+        counts_table(understood),
+        changes_table(understood.changes),
+        files_table(extract),
+        endpoints_table(extract),
+    )
+    return tuple(table for table in tables if table.rows)
+
+
+def files_table(extract: Extract) -> Table:
+    rows = tuple(
+        Row(
+            line(file.name),
+            (
+                Cell((count(file.n_rows),)),
+                Cell(line(", ".join(file.columns_read) or "none")),
+                Cell(line(", ".join(file.columns_left_out) or "none")),
+            ),
+        )
+        for file in extract.files
+    )
+    columns = (Column(line("rows")), Column(line("columns read"), "words"), Column(line("not read"), "words"))
+    return Table(line("Files as they were read"), columns, rows, line("File"))
+
+
+def endpoints_table(extract: Extract) -> Table:
+    rows = tuple(
+        Row(line(parameter), (Cell(of_total(events, n_rows)),))
+        for parameter, n_rows, events in extract.parameters
+    )
+    return Table(line("Endpoints in the extract"), (Column(line("events of rows")),), rows, line("Endpoint"))
+
+
+def counts_table(understood: Understanding) -> Table:
+    """Both arms together: whether to receive an extract must not depend on how they compare."""
+    if understood.subjects is None or understood.events is None or understood.fraction is None:
+        return Table(line("Counts"), (), ())
+    rows = (
+        Row(line("Events, of subjects"), (Cell(of_total(understood.events, understood.subjects)),)),
+        Row(line("Information fraction"), (Cell(line(decimal(understood.fraction, 3))),)),
+    )
+    return Table(line("Both arms together"), (Column(()),), rows)
+
+
+def changes_table(changes: Changes | None) -> Table:
+    """What differs from the last snapshot, each count under its own denominator."""
+    if changes is None:
+        return Table(line("Changes"), (), ())
+    among = changes.n_common
+    rows = (
+        changed("New events", changes.new_events, among),
+        changed("Events reversed", changes.reversed_events, among),
+        changed("Events moved", changes.moved_events, among),
+        changed("Arm changed", changes.changed_arm, among),
+        changed("Stratum changed", changes.changed_stratum, among),
+        changed("Subjects vanished", changes.vanished_subjects, among + len(changes.vanished_subjects)),
+        changed("Subjects new", changes.new_subjects, among + len(changes.new_subjects)),
+    )
+    columns = (Column(line("of subjects")), Column(line("as received"), "words"))
+    return Table(line("Since the last snapshot"), columns, rows, line("Change"))
+
+
+def changed(words: str, subjects: Sequence[str], among: int) -> Row:
+    expected = words in ("New events", "Subjects new")
+    named = () if expected or not subjects else line(some(subjects))
+    return Row(line(words), (Cell(of_total(len(subjects), among)), Cell(named)))
+
+
+def some(identifiers: Sequence[str]) -> Line | str:
+    """The first few, for questions to the data centre; the Data sheet of the look lists more."""
+    more = len(identifiers) - MOST_IDENTIFIERS
+    return ", ".join(identifiers[:MOST_IDENTIFIERS]) + (f" and {more} more" if more > 0 else "")
