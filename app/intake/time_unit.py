@@ -96,7 +96,7 @@ def time_findings(endpoint: EndpointRows) -> Iterator[Finding]:
         endpoint.rows.choice.parts["time"],
         accepted=f"{end} - {start} + 1 days" + ("" if unit == "days" else f", in {unit}"),
         remedy="the time is analysed as given; ask the data centre which is right",
-        value=lambda row: f"{endpoint.time[row]:g}, by dates {by_dates[row]} days",
+        value=lambda row: f"{endpoint.time[row]:g}, by dates day {by_dates[row]}",
     )
 
 
