@@ -28,7 +28,7 @@ NEEDS = (
     "xdist",
     "hypothesis",
     "mpmath",
-    "httpx",
+    "httpx2",
     "playwright",
     "axe_playwright_python",
     "ruff",
