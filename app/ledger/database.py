@@ -45,6 +45,10 @@ class Database:
             self.close()
             raise
 
+    def keep_rollback_journal(self) -> None:
+        """Out of the other mode, should someone have chosen it: there a copy of an open file can be empty."""
+        self.run("PRAGMA journal_mode = DELETE")
+
     def run(self, statement: str, *values: Any) -> list[Row]:
         """The rows of one statement."""
         with self.lock:
@@ -59,7 +63,7 @@ class Database:
         return rows[0][0] if rows else None
 
     @contextmanager
-    def transaction(self, begin: str = "BEGIN IMMEDIATE") -> Iterator[None]:
+    def transaction(self, begin: str = "BEGIN IMMEDIATE", end: str = "COMMIT") -> Iterator[None]:
         """All of it or nothing: BEGIN and COMMIT written out, since Python's own handling left halves."""
         with self.lock:
             if self._connection.in_transaction:
@@ -67,14 +71,14 @@ class Database:
             self.run(begin)
             try:
                 yield
-                self.run("COMMIT")
+                self.run(end)
             finally:
                 if self._connection.in_transaction:
                     self.run("ROLLBACK")
 
     def reading(self) -> AbstractContextManager[None]:
         """A view of the file that stands still while it is read."""
-        return self.transaction("BEGIN")
+        return self.transaction("BEGIN", end="ROLLBACK")
 
     def close(self) -> None:
         with self.lock:

@@ -49,6 +49,13 @@ MISSING = Fault(
     accepted="the path of a trial file",
     remedy="name the right file, or start a new one",
 )
+NO_FOLDER = Fault(
+    ValueRejected,
+    "No new trial file can be made",
+    found="no such folder",
+    accepted="a path in a folder that exists",
+    remedy="make the folder first, or choose another",
+)
 TAKEN = Fault(
     ValueRejected,
     "No new trial file can be made",
@@ -129,7 +136,8 @@ BY_RESULT = {
 """By the longest beginning of SQLite's result name that is listed."""
 
 BY_NUMBER = {
-    errno.ENOENT: MISSING,
+    errno.ENOENT: NO_FOLDER,
+    errno.ENOTDIR: NO_FOLDER,
     errno.EEXIST: TAKEN,
     errno.EACCES: UNWRITABLE,
     errno.EPERM: UNWRITABLE,

@@ -44,10 +44,15 @@ def kept_bytes(database: Database, table: Table, key: str) -> bytes:
     """The bytes of this digest; LedgerChanged when they are gone or other bytes lie there."""
     stored = database.value(f"SELECT bytes FROM {table} WHERE digest = ?", key)
     if stored is None:
-        raise LedgerChanged("bytes missing", where=str(database.path), found=f"none with the digest {key}")
+        raise _changed(database, "bytes missing", f"none with the digest {key}")
     if type(stored) is not bytes or digest(stored) != key:
-        raise LedgerChanged("bytes changed", where=str(database.path), found=f"others than the digest {key}")
+        raise _changed(database, "bytes changed", f"others than the digest {key} was taken of")
     return stored
+
+
+def _changed(database: Database, what: str, found: str) -> LedgerChanged:
+    remedy = "keep this file as it is, verify it, and go on from a verified backup"
+    return LedgerChanged(what, where=str(database.path), found=found, remedy=remedy)
 
 
 def keep_bytes(database: Database, table: Table, content: bytes) -> str:

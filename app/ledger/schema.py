@@ -16,16 +16,11 @@ APPLICATION_ID = int.from_bytes(b"LkLg")
 Run = Callable[[str], object]
 
 
-def append_only(table: str, key: str) -> tuple[str, ...]:
-    """Triggers that leave nothing but appending; INSERT OR REPLACE meets the third before it can delete."""
+def refuse(event: str, table: str, message: str, when: str = "") -> str:
+    """A trigger that refuses `event` (UPDATE, DELETE, INSERT) on a table with a message."""
     return (
-        f"CREATE TRIGGER {table}_update BEFORE UPDATE ON {table}"
-        f" BEGIN SELECT RAISE(ABORT, '{table} is never changed'); END",
-        f"CREATE TRIGGER {table}_delete BEFORE DELETE ON {table}"
-        f" BEGIN SELECT RAISE(ABORT, '{table} is never deleted from'); END",
-        f"CREATE TRIGGER {table}_replace BEFORE INSERT ON {table}"
-        f" WHEN EXISTS (SELECT 1 FROM {table} WHERE {key} = NEW.{key})"
-        f" BEGIN SELECT RAISE(ABORT, '{table} is never replaced'); END",
+        f"CREATE TRIGGER {table}_{event.lower()} BEFORE {event} ON {table}{when}"
+        f" BEGIN SELECT RAISE(ABORT, '{table} {message}'); END"
     )
 
 
@@ -39,16 +34,17 @@ def lay_out_entries_contents_and_secrets(run: Run) -> None:
     )
     run("CREATE TABLE content (digest TEXT PRIMARY KEY NOT NULL, bytes BLOB NOT NULL) WITHOUT ROWID")
     run("CREATE TABLE secret (digest TEXT PRIMARY KEY NOT NULL, bytes BLOB NOT NULL) WITHOUT ROWID")
-    for table, key in (("migration", "number"), ("entry", "id"), ("content", "digest"), ("secret", "digest")):
-        for trigger in append_only(table, key):
-            run(trigger)
-    run(
-        "CREATE TRIGGER entry_follows BEFORE INSERT ON entry"
-        " WHEN NEW.id IS NOT (SELECT coalesce(max(id), 0) + 1 FROM entry)"
-        " OR NEW.previous IS NOT coalesce((SELECT digest FROM entry ORDER BY id DESC LIMIT 1),"
-        " '0000000000000000000000000000000000000000000000000000000000000000')"
-        " BEGIN SELECT RAISE(ABORT, 'entry follows the last one'); END"
-    )
+    for table in ("migration", "entry", "content", "secret"):
+        run(refuse("UPDATE", table, "is never changed"))
+        run(refuse("DELETE", table, "is never deleted from"))
+    for table, key in (("migration", "number"), ("content", "digest"), ("secret", "digest")):
+        # INSERT OR REPLACE comes here before it deletes
+        present = f" WHEN EXISTS (SELECT 1 FROM {table} WHERE {key} = NEW.{key})"
+        run(refuse("INSERT", table, "is never replaced", present))
+    next_id = "SELECT coalesce(max(id), 0) + 1 FROM entry"
+    head = f"coalesce((SELECT digest FROM entry ORDER BY id DESC LIMIT 1), '{'0' * 64}')"
+    out_of_turn = f" WHEN NEW.id IS NOT ({next_id}) OR NEW.previous IS NOT {head}"
+    run(refuse("INSERT", "entry", "follows the last one", out_of_turn))
 
 
 MIGRATIONS: tuple[Callable[[Run], None], ...] = (lay_out_entries_contents_and_secrets,)

@@ -89,6 +89,7 @@ class Trial:
         self._database = database
         self._settings = settings
         self._state = State()
+        self._acting: Act | None = None
 
     @classmethod
     def create(
@@ -101,6 +102,7 @@ class Trial:
         with created_whole(path) as unfinished:
             database = Database(path, read_only=False, wait_seconds=WAIT_SECONDS, unfinished=unfinished)
             with cls(database, settings, read_only=False) as trial:
+                database.keep_rollback_journal()
                 schema.migrate(database, trial._now())
                 with trial.act() as act:
                     _lock(act, settings.random_bytes, name=name, plan=plan, by=by, masked=masked)
@@ -120,6 +122,7 @@ class Trial:
             schema.refuse_foreign(database)
             trial.damage = quick_check(database)
             if not read_only and not trial.damage:
+                database.keep_rollback_journal()
                 schema.migrate(database, trial._now())
         except BaseException:
             trial.close()
@@ -146,14 +149,20 @@ class Trial:
         self._refuse_writing()
         with self._database.transaction():
             act = Act(self._database, self._caught_up(), self._now())
-            yield act
-            act.refuse_loose_ends()
-        self._state = act.state
+            self._acting = act
+            try:
+                yield act
+                act.refuse_loose_ends()
+            finally:
+                self._acting = None
 
     def state(self) -> State:
-        """All that the history says now; inside an act ask the act."""
-        with self._database.reading():
-            return self._caught_up()
+        """All that the history says now; inside an act, with what the act has added so far."""
+        with self._database.lock:
+            if self._acting:
+                return self._acting.state
+            with self._database.reading():
+                return self._caught_up()
 
     def head(self) -> str:
         """The digest of the last entry."""

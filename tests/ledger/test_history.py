@@ -1,0 +1,200 @@
+"""What may follow what: an impossible sequence is refused with a sentence and leaves the file as it was."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from pathlib import Path
+
+import pytest
+
+from app.errors import LedgerChanged, LedgerError, LookAlreadyFrozen
+from app.ledger.entries import (
+    BODIES,
+    ArmsUnmasked,
+    Entry,
+    Head,
+    LookFrozen,
+    PlanLocked,
+    ResultsOpened,
+    SnapshotReceived,
+    Verification,
+)
+from app.ledger.history import State, advance, fold, follow
+from app.ledger.letters import LetterKey, Letters
+from app.ledger.trial import Act, Trial
+from app.settings import Settings
+from tests.ledger import acts
+
+Do = Callable[[Act], object]
+
+
+def refusal(trial: Trial, do: Do) -> str:
+    before = trial.path.read_bytes()
+    with pytest.raises(LedgerError) as refused, trial.act() as act:
+        do(act)
+    assert trial.path.read_bytes() == before
+    return str(refused.value)
+
+
+def freeze_as(act: Act, **changes: object) -> None:
+    body = LookFrozen(1, act.store(b"r"), act.store(b"h"), "masked", act.state.head.digest, {}, "M. Berg")
+    act.append(replace(body, **changes))
+
+
+NO_LOOK = (
+    "There is no look {} in this trial file. Found 0 looks. Name one of them, or receive its snapshot first."
+)
+
+BEFORE_ANY_SNAPSHOT: dict[str, Do] = {
+    "A history begins with its plan being locked, once. Found 'plan locked' here.": lambda act: act.append(
+        PlanLocked("Q17", "t", act.state.plan_digest, act.state.letters_commitment, "M. Berg")
+    ),
+    "A snapshot out of its turn. Found snapshot 2. Accepted: snapshot 1.": lambda act: acts.receive(act, 2),
+    NO_LOOK.format(1): lambda act: acts.freeze(act, 1),
+    NO_LOOK.format(3): lambda act: act.append(ResultsOpened(3, "s", "masked")),
+    "These arm letters are not the ones committed to when the plan was locked.": lambda act: act.append(
+        ArmsUnmasked("why", Letters("A", "B"), "00", "M. Berg")
+    ),
+    "The history grew while it was verified. Found entry 1. Accepted: entry 7 as the last. Verify again.": (
+        lambda act: act.append(Verification("0" * 64, 7, 0, ()))
+    ),
+}
+
+WITH_AN_OPEN_LOOK: dict[str, Do] = {
+    "Look 1 is still open. Found a further snapshot. Accepted: one open look at a time. "
+    "Freeze look 1 first.": lambda act: acts.receive(act, 2),
+    "Look 1 is not frozen. Freeze it first.": lambda act: acts.write_report(act, 1),
+    "Results of look 1 cannot be opened unmasked. Found masked arms.": lambda act: act.append(
+        ResultsOpened(1, "another evening", "unmasked")
+    ),
+    "Results of look 1 are on record as opened in this session already.": lambda act: acts.open_results(
+        act, 1
+    ),
+    "Look 1 cannot be frozen unmasked. Found masked arms.": lambda act: freeze_as(act, disclosure="unmasked"),
+}
+
+
+@pytest.mark.parametrize("sentence", BEFORE_ANY_SNAPSHOT)
+def test_before_any_snapshot(trial: Trial, sentence: str) -> None:
+    assert refusal(trial, BEFORE_ANY_SNAPSHOT[sentence]) == sentence
+
+
+@pytest.mark.parametrize("sentence", WITH_AN_OPEN_LOOK)
+def test_with_an_open_look(trial: Trial, sentence: str) -> None:
+    acts.live(trial, until="freeze the first")
+    assert refusal(trial, WITH_AN_OPEN_LOOK[sentence]) == sentence
+
+
+def test_a_report_that_prints_another_head_is_not_frozen(trial: Trial) -> None:
+    acts.live(trial, until="freeze the first")
+    sentence = refusal(trial, lambda act: freeze_as(act, head_before="f" * 64))
+    assert sentence == (
+        f"The report of look 1 prints a head that is no longer the last. Found {'f' * 64}. "
+        f"Accepted: {trial.head()}. Freeze again."
+    )
+
+
+@pytest.mark.parametrize("number", [1, 2])
+def test_a_frozen_look_is_not_frozen_again(lived: Trial, number: int) -> None:
+    with pytest.raises(LookAlreadyFrozen) as refused, lived.act() as act:
+        acts.freeze(act, number)
+    frozen = lived.state().frozen_look(number)
+    assert str(refused.value) == (
+        f"Look {number} is frozen already. Found its freeze of {frozen.at}. "
+        "Read its report; what comes after belongs to the next look."
+    )
+
+
+def test_arms_are_unmasked_once(lived: Trial) -> None:
+    key = lived.letter_key()
+    sentence = refusal(lived, lambda act: act.append(ArmsUnmasked.of(key, "again", "M. Berg")))
+    assert sentence == "The arms are unmasked already. Nothing needs to be done."
+
+
+def test_the_next_snapshot_may_come_in_the_act_that_freezes_the_open_look(trial: Trial) -> None:
+    with trial.act() as act:
+        acts.receive(act, 1)
+    with trial.act() as act:
+        acts.freeze(act, 1)
+        acts.receive(act, 2)
+    assert trial.state().open_look == trial.state().look(2)
+
+
+def test_results_of_a_frozen_look_may_be_opened_in_another_session(lived: Trial) -> None:
+    with lived.act() as act:
+        acts.open_results(act, 1, session="second evening")
+    assert lived.state().opened(1, "second evening")
+
+
+def test_a_snapshot_with_a_finding_that_blocks_is_not_stored(trial: Trial) -> None:
+    blocking = replace(acts.DOUBT, severity="block")
+    body = SnapshotReceived.of(replace(acts.snapshot(1), files=()), [blocking])
+    assert refusal(trial, lambda act: act.append(body)).startswith(
+        "A snapshot with a finding that blocks. Found "
+    )
+
+
+def test_a_doubt_is_stored_with_its_answer_only(trial: Trial) -> None:
+    unanswered = replace(acts.snapshot(1), files=(), acknowledgements=())
+    body = SnapshotReceived.of(unanswered, [acts.DOUBT])
+    assert refusal(trial, lambda act: act.append(body)).startswith(
+        "The doubt 'changed-event' is not answered. Found "
+    )
+
+
+def test_a_note_needs_no_answer(trial: Trial) -> None:
+    noted = replace(acts.snapshot(1), files=(), acknowledgements=())
+    with trial.act() as act:
+        act.append(SnapshotReceived.of(noted, [replace(acts.DOUBT, severity="note")]))
+    assert trial.state().look(1).snapshot.findings[0].severity == "note"
+
+
+def test_every_kind_of_entry_has_its_rule() -> None:
+    assert set(BODIES.values()) == set(advance.registry) - {object}
+
+
+@pytest.mark.parametrize(
+    ("body", "found"),
+    [
+        ('{"look":1,"session":"s"}', "no field 'view'"),
+        ('{"look":1,"more":2,"session":"s","view":"masked"}', "the unknown field 'more'"),
+        ('{"look":"1","session":"s","view":"masked"}', "'1' in place of <class 'int'>"),
+        ('{"look":true,"session":"s","view":"masked"}', "True in place of <class 'int'>"),
+        ('{"look":1,"session":"s","view":"open"}', "'open' in place of typing.Literal['masked', 'unmasked']"),
+        ("[]", "[] in place of the fields of ResultsOpened"),
+        ("{", "Text that is not strict JSON in entry 2"),
+    ],
+)
+def test_a_body_that_does_not_read_is_told(body: str, found: str) -> None:
+    entry = Entry(2, "2026-01-15T09:00:00Z", "results opened", body, "0" * 64, "0" * 64)
+    with pytest.raises(LedgerChanged) as told:
+        follow(State(head=Head(1, "0" * 64)), entry)
+    assert f"A body that no such entry has in entry 2. Found {found}" in str(told.value)
+
+
+def test_an_entry_of_an_unknown_kind_is_told() -> None:
+    with pytest.raises(LedgerChanged, match=r"An entry of an unknown kind in entry 1\. Found 'plan torn up'"):
+        follow(State(), Entry(1, "", "plan torn up", "{}", "0" * 64, "0" * 64))
+
+
+def test_the_state_is_the_same_folded_at_once_or_in_parts(lived: Trial) -> None:
+    entries = lived.entries()
+    for cut in range(len(entries) + 1):
+        assert fold(entries[cut:], fold(entries[:cut])) == fold(entries) == lived.state()
+
+
+def test_a_trial_may_start_unmasked(tmp_path: Path, settings: Settings) -> None:
+    with acts.start(tmp_path / "open.trial", settings, masked=False) as trial:
+        assert trial.state().letters == trial.letter_key().letters
+        assert [entry.kind for entry in trial.entries()] == ["plan locked", "arms unmasked"]
+        assert len({entry.at for entry in trial.entries()}) == 1
+
+
+def test_the_key_that_unmasks_is_the_one_committed_to(trial: Trial) -> None:
+    key, state = trial.letter_key(), trial.state()
+    swapped = LetterKey(Letters(key.letters.experimental, key.letters.control), key.salt)
+    assert key.commitment == state.letters_commitment != swapped.commitment
+    assert state.letters is None
+    sentence = refusal(trial, lambda act: act.append(ArmsUnmasked.of(swapped, "why", "M. Berg")))
+    assert sentence == "These arm letters are not the ones committed to when the plan was locked."

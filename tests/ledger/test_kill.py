@@ -1,0 +1,63 @@
+"""Killed before any statement of any act, the file opens, verifies, and holds the act or nothing of it."""
+
+from __future__ import annotations
+
+import json
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+from app.ledger.trial import Trial
+from app.settings import Settings
+from tests.ledger import acts, killed
+
+ROOT = Path(__file__).resolve().parents[2]
+
+
+@pytest.fixture(scope="module")
+def deaths(tmp_path_factory: pytest.TempPathFactory) -> list[dict[str, object]]:
+    folder = tmp_path_factory.mktemp("killed")
+    command = [sys.executable, killed.__file__, str(folder)]
+    environment = {"PYTHONPATH": str(ROOT), "OPENBLAS_NUM_THREADS": "1"}  # one thread: the process forks
+    done = subprocess.run(command, capture_output=True, text=True, check=True, env=environment, timeout=300)
+    return [json.loads(line) for line in done.stdout.splitlines()]
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("name", acts.LIFE)
+def test_an_act_is_there_wholly_or_not_at_all(
+    deaths: list[dict[str, object]], name: str, settings: Settings
+) -> None:
+    of_this_act = [death for death in deaths if death["act"] == name]
+    assert len(of_this_act) > 5  # BEGIN, reads, inserts, COMMIT
+    for death in of_this_act:
+        with Trial.open(Path(str(death["file"])), settings) as trial:
+            assert not trial.read_only
+            assert trial.check_chain() == ()
+            n_added = len(trial.entries()) - int(str(death["entries_before"]))
+            assert n_added == (1 if death["done"] else 0)  # a kill before COMMIT leaves nothing
+
+
+@pytest.mark.slow
+def test_a_new_trial_file_is_there_whole_or_not_at_all(
+    deaths: list[dict[str, object]], settings: Settings
+) -> None:
+    of_this_act = [death for death in deaths if death["act"] == "create"]
+    assert len(of_this_act) > 20
+    there = [Path(str(death["file"])) for death in of_this_act if Path(str(death["file"])).exists()]
+    assert 1 < len(there) < len(of_this_act)
+    for path in there:
+        with Trial.open(path, settings) as trial:
+            assert trial.check_chain() == ()
+            assert len(trial.entries()) == 1
+
+
+@pytest.mark.slow
+def test_after_a_kill_the_act_can_be_done_again(deaths: list[dict[str, object]], settings: Settings) -> None:
+    for death in deaths:
+        if death["act"] == "receive the first" and not death["done"]:
+            with Trial.open(Path(str(death["file"])), settings) as trial:
+                acts.live(trial, until="unmask")
+                assert trial.check_chain() == ()
