@@ -9,7 +9,7 @@ from pathlib import Path
 from threading import RLock
 from typing import Any
 
-from app.ledger.faults import told
+from app.ledger.faults import DAMAGED, told
 
 Row = tuple[Any, ...]
 
@@ -56,6 +56,8 @@ class Database:
                 return self._connection.execute(statement, values).fetchall()
             except sqlite3.Error as fault:
                 raise told(fault, self.path) from fault
+            except UnicodeDecodeError as fault:  # in the name of a column, or in SQLite's own message
+                raise DAMAGED.at(self.path, detail="names that are no text") from fault
 
     def value(self, statement: str, *values: Any) -> Any:
         """The first value of the first row, or None when there is no row."""

@@ -89,7 +89,7 @@ def schema_problems(database: Database) -> tuple[Problem, ...]:
     made = _as_made(version(database))
     return tuple(
         Problem(f"the rule or table {name!r} of the file", _difference(found.get(name), made.get(name)))
-        for name in sorted(found.keys() | made.keys())
+        for name in sorted(found.keys() | made.keys(), key=str)
         if found.get(name) != made.get(name)
     )
 
