@@ -12,7 +12,7 @@ from pathlib import Path
 from app.bootstrap.environment import ROOT
 
 PICTURES = (".png", ".woff2", ".ttf", ".xpt")
-VENDORED = "static/vendor/"
+VENDORED = ("static/plotly/", "static/fonts/")
 
 
 @cache
@@ -28,12 +28,13 @@ def text(name: str) -> str:
 
 
 def own_texts() -> list[str]:
-    """What the project itself wrote: no pictures, nothing vendored, no locks."""
-    return [
-        name
-        for name in tracked()
-        if not name.endswith((*PICTURES, ".lock")) and not name.startswith(VENDORED)
-    ]
+    """What the project itself wrote: no pictures, locks or licences, nothing vendored."""
+    return [name for name in tracked() if not name.endswith((*PICTURES, ".lock")) and not is_foreign(name)]
+
+
+def is_foreign(name: str) -> bool:
+    """Whether others wrote it: a licence belongs word for word to what it licenses."""
+    return name.startswith(VENDORED) or Path(name).stem in ("LICENSE", "LICENCE")
 
 
 def modules(folder: str) -> list[str]:

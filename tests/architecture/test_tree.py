@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import subprocess
 import sys
+from hashlib import sha256
 
 from app.bootstrap.environment import ROOT
 from tests.architecture.sources import matches, modules, top_level
@@ -44,3 +45,11 @@ def test_the_first_start_needs_the_standard_library_only() -> None:
 
 def test_nothing_imports_scipy_stats_which_alone_costs_almost_half_a_second() -> None:
     assert matches(r"\bscipy\.stats\b|from scipy import .*\bstats\b", modules("app")) == []
+
+
+def test_the_script_that_draws_figures_is_the_one_whose_digest_is_kept() -> None:
+    folder = ROOT / "static" / "plotly"
+    kept = dict(reversed(line.split()) for line in (folder / "SHA256").read_text().splitlines())
+    assert kept == {
+        name: sha256((folder / name).read_bytes()).hexdigest() for name in ("plotly-basic.min.js",)
+    }

@@ -16,16 +16,18 @@ BANNED = {
     r"(?i)\btran[s]cripts?\b|\blec[t]ures?\b|\bseed[ ]document": "the publication itself",
 }
 
-NAMES_NO_PLACE = r"https?://(?!www\.w3\.org/|127\.0\.0\.1|localhost|\[::1\]|[\w.-]+\.(?:example|test|invalid)\b|[{$\"'`\s)])"
+NAMES_NO_PLACE = r"https?://(?!www\.w3\.org/|127\.0\.0\.1|localhost|\[::1\]|[\w.-]+\.(?:example|test|invalid)\b|[{$\"'`\s)])\S*"
 
 
 @pytest.mark.parametrize("pattern", BANNED, ids=BANNED.values())
 def test_one_idea_has_one_word(pattern: str) -> None:
-    assert matches(pattern, own_texts()) == []
+    found = matches(pattern, own_texts())
+    assert not found, "\n".join(found)
 
 
 def test_no_address_of_another_machine_is_in_any_file() -> None:
-    assert matches(NAMES_NO_PLACE, own_texts()) == []
+    found = matches(NAMES_NO_PLACE, own_texts())
+    assert not found, "\n".join(found)
 
 
 def test_no_path_of_one_machine_is_in_any_file() -> None:
