@@ -150,5 +150,12 @@ def shortened(text: str, width: float, *, size: float = LABEL, semibold: bool = 
     return f"{text.rstrip()}…"
 
 
+def fraction_text(fraction: float) -> str:
+    """A planned fraction: 0, 1, two decimals, or three where the plan has them."""
+    if fraction in (0.0, 1.0):
+        return f"{fraction:g}"
+    return f"{fraction:.2f}" if abs(fraction - round(fraction, 2)) < 5e-4 else f"{fraction:.3f}"
+
+
 def widest(texts: Sequence[str], size: float = LABEL, *, semibold: bool = False) -> float:
     return max((text_width(text, size, semibold=semibold) for text in texts), default=0.0)

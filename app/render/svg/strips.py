@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from app.render.palette import (
@@ -29,7 +30,7 @@ from app.render.svg.drawing import (
 )
 from app.render.svg.element import Element, coordinate, element
 from app.render.svg.geometry import Box, Scale, apart_within, hatching, snapped
-from app.render.svg.lettering import LABEL, SMALL, shortened, text_width, words
+from app.render.svg.lettering import LABEL, SMALL, fraction_text, shortened, text_width, words
 from app.sheets.blocks import CountsFigure, InformationStrip, IntervalMark, IntervalStrip, Span, Strip, ZStrip
 
 
@@ -53,8 +54,9 @@ def drawn(strip: Strip, width: float) -> Drawing:
 
 # --- information --------------------------------------------------------------------------------------------
 
-RAIL_TOP, RAIL = 20.0, 5.0
-FRACTION_GAP = 34.0
+RAIL_TOP, RAIL = 16.5, 5.0
+NUMBERS_AT, FRACTIONS_AT = 10.0, 43.5
+ROOM_FOR_ONE = 12.0
 
 
 def information(strip: InformationStrip, width: float) -> Drawing:
@@ -66,10 +68,10 @@ def information(strip: InformationStrip, width: float) -> Drawing:
         rectangle(rail, PAPER, INK_3),
         rectangle(Box(0, RAIL_TOP, x(held), RAIL_TOP + RAIL), INK),
         *_held(strip, x),
-        *_total(strip, x, width),
+        _total(strip, x),
         *_fractions(strip, x),
     ]
-    return Drawing(width, 50, strip.title, strip.description, tuple(parts))
+    return Drawing(width, 47, strip.title, strip.description, tuple(parts))
 
 
 def _held(strip: InformationStrip, x: Scale) -> list[Element]:
@@ -81,7 +83,7 @@ def _held(strip: InformationStrip, x: Scale) -> list[Element]:
         is_now = number == len(strip.held)
         radius = 5.5 if is_now else 4.5
         parts += [disc(x(fraction), middle, radius + 2, PAPER), disc(x(fraction), middle, radius, INK)]
-        parts.append(words(events.text, at, 13, anchor="middle", semibold=is_now))
+        parts.append(words(events.text, at, NUMBERS_AT, anchor="middle", semibold=is_now))
     return parts
 
 
@@ -90,53 +92,38 @@ def _event_places(strip: InformationStrip, x: Scale) -> tuple[float, ...]:
     return apart_within([x(fraction) for fraction, _ in strip.held], gap, gap / 2 - 3, x.end - gap / 2 + 3)
 
 
-def _total(strip: InformationStrip, x: Scale, width: float) -> list[Element]:
+def _total_fits_above(strip: InformationStrip, x: Scale) -> bool:
+    start = x.end - text_width(strip.total.text, SMALL)
+    return all(at + 20 <= start for at in _event_places(strip, x))
+
+
+def _total(strip: InformationStrip, x: Scale) -> Element:
     """The planned total above the rail's end; under it when the look shown stands in the way."""
-    start = width - text_width(strip.total.text, SMALL)
-    taken = max((at + 20 for at in _event_places(strip, x)), default=0.0)
-    return [small_print(strip.total.text, width, 13 if taken <= start else 47, "end")]
+    y = NUMBERS_AT if _total_fits_above(strip, x) else FRACTIONS_AT
+    return small_print(strip.total.text, x.end + 0.5, y, "end")
 
 
 def _fractions(strip: InformationStrip, x: Scale) -> list[Element]:
     """0, the planned fractions and 1 under the rail; one without room for its number keeps its tick."""
-    planned = sorted({0.0, 1.0, *strip.planned})
-    parts = [
-        element(
-            "path",
-            d="".join(f"M{snapped(x(f) - 0.5):g} {RAIL_TOP + RAIL + 4:g}v5" for f in planned),
-            stroke=INK_2,
-            fill="none",
-        )
-    ]
-    total_below = any(part for part in _total(strip, x, x.end + 0.5) if ("y", "47") in part.attributes)
-    last_right = -FRACTION_GAP
-    for fraction in planned:
-        if fraction == 1.0 and total_below:
-            continue
-        at = x(fraction)
-        anchor = "start" if fraction == 0 else "end" if at >= x.end else "middle"
-        left = {"start": at, "end": at - 7, "middle": at - 12}[anchor]
-        if left < last_right + 4 or (anchor == "middle" and x(1.0) - at < FRACTION_GAP):
-            continue
-        parts.append(
-            words(
-                fraction_text(fraction),
-                at,
-                47,
-                size=SMALL,
-                fill=INK_2,
-                anchor="start" if anchor == "start" else "end" if anchor == "end" else "middle",
-            )
-        )
-        last_right = left + text_width(fraction_text(fraction), SMALL)
+    fractions = sorted({0.0, *strip.planned, 1.0})
+    right_end = x(1.0) if _total_fits_above(strip, x) else x.end - text_width(strip.total.text, SMALL) - 6
+    parts = [_ticks([x(fraction) for fraction in fractions])]
+    free_from = 0.0
+    for fraction in fractions:
+        text, at = fraction_text(fraction), x(fraction)
+        width = text_width(text, SMALL)
+        left = min(max(at - width / 2, 0.0), x.end - width)
+        keeps_clear = left + width <= (right_end if at >= x(1.0) else right_end - ROOM_FOR_ONE)
+        if left >= free_from and keeps_clear:
+            parts.append(small_print(text, left, FRACTIONS_AT))
+            free_from = left + width + 4
     return parts
 
 
-def fraction_text(fraction: float) -> str:
-    """A planned fraction: 0, 1, two decimals, or three where the plan has them."""
-    if fraction in (0.0, 1.0):
-        return f"{fraction:g}"
-    return f"{fraction:.2f}" if abs(fraction - round(fraction, 2)) < 5e-4 else f"{fraction:.3f}"
+def _ticks(places: Sequence[float]) -> Element:
+    top = RAIL_TOP + RAIL + 4
+    down = "".join(f"M{snapped(at - 0.5):g} {top:g}v5" for at in places)
+    return element("path", d=down, stroke=INK_2, fill="none")
 
 
 # --- intervals ----------------------------------------------------------------------------------------------
