@@ -6,8 +6,9 @@ still fold.
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
+from datetime import date, datetime
 from functools import reduce, singledispatch
 
 from app.errors import LedgerError, LookAlreadyFrozen
@@ -113,10 +114,19 @@ def fold(entries: Iterable[Entry], state: State | None = None) -> State:
 def follow(state: State, entry: Entry) -> State:
     """The state after one more entry; LedgerError says why it cannot follow."""
     body = read_body(entry)
+    refuse_no_time(datetime.fromisoformat, entry.at)
     if isinstance(body, PlanLocked) != (state.head == BEFORE_THE_FIRST):
         raise LedgerError("A history begins with its plan being locked, once", found=f"{entry.kind!r} here")
     reached = advance(body, state, entry)
     return replace(reached, head=entry.head, last_at=entry.at)
+
+
+def refuse_no_time(read: Callable[[str], object], text: str) -> None:
+    """A forged history may hold any text; what is shown as a time or date is one."""
+    try:
+        read(text)
+    except ValueError as fault:
+        raise LedgerError("A time or date that is none", found=repr(text)) from fault
 
 
 @singledispatch
@@ -153,6 +163,9 @@ def _snapshot_received(body: SnapshotReceived, state: State, entry: Entry) -> St
             found=f"snapshot {body.number}",
             accepted=f"snapshot {state.next_number}",
         )
+    refuse_no_time(date.fromisoformat, body.cutoff)
+    if body.extracted is not None:
+        refuse_no_time(date.fromisoformat, body.extracted)
     refuse_unanswered(body)
     look = Look(body, received_at=entry.at, plan_digest=state.plan_digest)
     return replace(state, looks=(*state.looks, look))

@@ -55,11 +55,11 @@ def _changed(database: Database, what: str, found: str) -> LedgerChanged:
     return LedgerChanged(what, where=str(database.path), found=found, remedy=remedy)
 
 
-def keep_bytes(database: Database, table: Table, content: bytes) -> str:
-    """Store these bytes unless they are there already, and return their digest."""
+def keep_bytes(database: Database, table: Table, content: bytes) -> tuple[str, bool]:
+    """Store these bytes unless they are there already; their digest, and whether they are new."""
     key = digest(content)
     if is_kept(database, table, key):
         kept_bytes(database, table, key)  # tells when other bytes lie there
-    else:
-        database.run(f"INSERT INTO {table} (digest, bytes) VALUES (?, ?)", key, content)
-    return key
+        return key, False
+    database.run(f"INSERT INTO {table} (digest, bytes) VALUES (?, ?)", key, content)
+    return key, True

@@ -65,8 +65,9 @@ class Act:
             raise ValueError(f"stored, but named by no entry of the act: {sorted(self._not_named)}")
 
     def _keep(self, table: Table, content: bytes) -> str:
-        key = keep_bytes(self._database, table, content)
-        self._not_named.add(key)
+        key, is_new = keep_bytes(self._database, table, content)
+        if is_new:
+            self._not_named.add(key)
         return key
 
     def _claim(self, table: Table, contents: Iterable[Named]) -> None:
@@ -194,6 +195,7 @@ class Trial:
         """Walk the history and re-hash every stored byte (check.py); a problem ends all writing."""
         problems = full_check(self._database, witnessed_heads)
         self.damage = tuple(dict.fromkeys((*self.damage, *problems)))
+        self.read_only = self.read_only or bool(problems)
         return problems
 
     def _refuse_writing(self) -> None:

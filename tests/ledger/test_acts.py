@@ -93,7 +93,6 @@ def test_the_same_bytes_are_stored_once(trial: Trial) -> None:
     with trial.act() as act:
         assert act.store(acts.PLAN) == digest(acts.PLAN)
         acts.receive(act, 1)
-        act._claim("content", [("the plan", digest(acts.PLAN))])
     assert trial._database.value("SELECT count(*) FROM content") == 3
 
 

@@ -135,6 +135,19 @@ def test_a_snapshot_with_a_finding_that_blocks_is_not_stored(trial: Trial) -> No
     )
 
 
+@pytest.mark.parametrize("dates", [{"cutoff": "soon"}, {"extracted": "2026-02-30"}, {"extracted": ""}])
+def test_a_date_is_a_date(trial: Trial, dates: dict[str, str]) -> None:
+    body = replace(SnapshotReceived.of(replace(acts.snapshot(1), files=()), []), **dates)
+    found = next(iter(dates.values()))
+    assert refusal(trial, lambda act: act.append(body)) == f"A time or date that is none. Found {found!r}."
+
+
+def test_a_time_is_a_time(lived: Trial) -> None:
+    first = replace(lived.entries()[0], at="yesterday")
+    with pytest.raises(LedgerError, match="A time or date that is none"):
+        follow(State(), first)
+
+
 def test_a_doubt_is_stored_with_its_answer_only(trial: Trial) -> None:
     unanswered = replace(acts.snapshot(1), files=(), acknowledgements=())
     body = SnapshotReceived.of(unanswered, [acts.DOUBT])
