@@ -17,8 +17,8 @@ def created_whole(path: Path) -> Iterator[Path]:
     if os.path.lexists(path):
         raise TAKEN.at(path)
     with disk_faults_told(path):
-        handle, name = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".unfinished", dir=path.parent)
-        os.close(handle)
+        descriptor, name = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".unfinished", dir=path.parent)
+        os.close(descriptor)
     unfinished = Path(name)  # mkstemp made it readable and writable for its owner only
     try:
         yield unfinished
@@ -44,8 +44,8 @@ def _take_name(unfinished: Path, path: Path) -> None:
 
 def _sync_folder(folder: Path) -> None:
     """Make the new name survive a loss of power."""
-    handle = os.open(folder, os.O_RDONLY)
+    descriptor = os.open(folder, os.O_RDONLY)
     try:
-        os.fsync(handle)
+        os.fsync(descriptor)
     finally:
-        os.close(handle)
+        os.close(descriptor)
