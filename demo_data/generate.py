@@ -1,9 +1,9 @@
 """Make the four extracts of an invented trial: `python3 demo_data/generate.py` writes them beside this file.
 
 900 patients are randomised over two years, 1:1 in blocks of four within six strata, to tablet or placebo; the
-true hazard ratio is 0.75. The seed was chosen so that the third look does not cross its boundary and the fourth
-does. Nothing else is arranged but one withdrawal and the rows listed in BY_HAND, which show what adjudication
-and slips of the pen do to an extract. Only uniform numbers are drawn, so that every numpy agrees.
+true hazard ratio is 0.75. The seed was chosen so that the third look does not cross its boundary and the
+fourth does. Nothing else is arranged but one withdrawal and the rows listed in BY_HAND, which show what
+adjudication and slips of the pen do to an extract. Only uniform numbers are drawn, so that any numpy will do.
 """
 
 from __future__ import annotations

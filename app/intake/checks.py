@@ -63,7 +63,7 @@ def subjects(checked: Checked) -> Findings:
         repeated,
         "subject-repeated",
         "block",
-        "subject there more than once",
+        "subject listed more than once",
         name,
         accepted=f"one row for each subject under {checked.plan.endpoint.parameter!r}",
         remedy="keep one row of each subject",
@@ -311,8 +311,15 @@ def strata(checked: Checked) -> Findings:
             accepted="a level in each row, as randomised",
             remedy="complete the rows",
         )
-    if not rows.strata:
-        return
+    arms_there = all(arm in rows.parts["arm"].texts for arm in (arms.control, arms.experimental))
+    complete = not any(column.where(readings.is_blank).any() for column in rows.strata)
+    if rows.strata and arms_there and complete:
+        yield from _lonely_strata(checked)
+
+
+def _lonely_strata(checked: Checked) -> Findings:
+    """Strata with subjects of one arm only; which arm is not told."""
+    rows, arms = checked.endpoint.rows, checked.plan.arms
     index, labels = stratum_indices(rows)
     control, experimental = (
         np.bincount(index[checked.in_arm(arm)], minlength=len(labels))
@@ -326,7 +333,7 @@ def strata(checked: Checked) -> Findings:
             "stratum-one-arm",
             "note",
             "strata with one arm only",
-            f"{', '.join(rows.files)}, {' and '.join(rows.choice.strata)}",
+            f"{', '.join(rows.files)}, column {' and '.join(rows.choice.strata)}",
             f"{len(lonely)} of {len(labels)} strata: {', '.join(map(quoted, lonely[:5]))}",
             "both arms in each stratum",
             "such a stratum adds nothing to the stratified test",

@@ -95,7 +95,7 @@ def _header(content: bytes, file: str) -> tuple[str, ...]:
             "delimiter-not-comma",
             "columns not divided by commas",
             file,
-            found=f"a first line without a comma: {names[0][:60]!r}",
+            found=f"a header without a comma, {names[0][:40]!r}...",
             accepted="CSV with commas",
             remedy="export the file again as CSV with commas",
         )
@@ -162,7 +162,7 @@ def _text_bytes(file: ReceivedFile) -> bytes:
 def _not_utf8(name: str, found: str) -> TableRefused:
     return _refused(
         "file-not-utf8",
-        "text not in UTF-8",
+        "text other than UTF-8",
         name,
         found=found,
         accepted="CSV in UTF-8, with or without byte order mark",
@@ -264,9 +264,7 @@ def _outside_quotes(body: NDArray[np.uint8], file: str) -> Bools:
             "quotes-misplaced",
             "quotation mark out of place",
             file,
-            found="one that does not enclose a whole field"
-            if quotes.size % 2 == 0
-            else "one that is never closed",
+            found="one that is never closed" if quotes.size % 2 else "one inside a field that is not quoted",
             accepted='fields in "double quotes", a quotation mark inside them doubled',
             remedy="export the file again as CSV",
         )

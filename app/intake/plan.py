@@ -120,7 +120,23 @@ def _top_level_problems(document: Mapping[str, Any], place: Place) -> Iterator[D
             )
 
 
+# What the program does not do at all, by the words that plans have for it
+_NOT_SUPPORTED = {
+    r"margin|non.?inferior": "a non-inferiority margin is not supported",
+    r"entry|truncat": "delayed entry is not supported",
+    r"\b(third|second|other)|(arm|experimental|control).?\d": "a third arm is not supported",
+}
+
+
 def _unknown_key(key: str, known: Sequence[str], place: Place) -> DesignInvalid:
+    for words, what in _NOT_SUPPORTED.items():
+        if re.search(words, key, re.IGNORECASE) and key.lower() not in known:
+            return DesignInvalid(
+                what,
+                where=str(place.key(key)),
+                accepted="two arms, followed from randomisation, compared for superiority",
+                remedy="remove the key",
+            )
     nearest = get_close_matches(key.lower(), known, n=1, cutoff=0.0)[0]
     home = [table for table, spec in TABLES.items() if key in spec.known]
     where_known = f", or move it to [{home[0]}]" if home else ""

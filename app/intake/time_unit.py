@@ -62,14 +62,15 @@ def _by_description(endpoint: EndpointRows) -> TimeUnit | None:
 def agreeing(endpoint: EndpointRows, unit: TimeUnit) -> Bools | None:
     """Where the time is that of the dates: to the day, or to a tenth of a longer unit and one day.
 
-    None when the dates cannot tell; rows without a date or a time do not disagree.
+    None when the dates cannot tell. Rows without a date, with an end before the start or without a time above
+    0 do not disagree: another finding tells of them.
     """
     by_dates = endpoint.days_by_dates
-    if by_dates is None or unit == "as given" or not (by_dates != readings.NO_DAY).any():
+    if by_dates is None or unit == "as given" or not (by_dates >= 1).any():
         return None
     scale = DAYS_IN[unit]
     tolerance = 0.0 if unit == "days" else 1.0 + 0.1 * scale
-    unknown = (by_dates == readings.NO_DAY) | np.isnan(endpoint.time)
+    unknown = (by_dates < 1) | ~(endpoint.time > 0)
     close: Bools = np.abs(endpoint.time * scale - by_dates) <= tolerance
     agreed: Bools = unknown | close
     return agreed
@@ -92,11 +93,11 @@ def time_findings(endpoint: EndpointRows) -> Iterator[Finding]:
         ~agree,
         "time-disagrees-with-dates",
         "doubt",
-        "time other than its dates say",
+        "time that disagrees with its dates",
         endpoint.rows.choice.parts["time"],
         accepted=f"{end} - {start} + 1 days" + ("" if unit == "days" else f", in {unit}"),
         remedy="the time is analysed as given; ask the data centre which is right",
-        value=lambda row: f"{endpoint.time[row]:g}, by dates day {by_dates[row]}",
+        value=lambda row: f"{endpoint.time[row]:g} against {by_dates[row]}",
     )
 
 
