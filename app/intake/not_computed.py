@@ -5,7 +5,7 @@ Each is refused by name, never silently ignored. Whoever adds the computing take
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -57,15 +57,20 @@ NOT_COMPUTED = (
 )
 
 
-def not_computed_parts(document: Mapping[str, Any], place: Place) -> Iterator[DesignInvalid]:
-    """A sentence for each part that the plan asks for and this version does not compute."""
+def not_computed_parts(
+    document: Mapping[str, Any], accepted: Mapping[str, Sequence[Mapping[str, Any]]], place: Place
+) -> Iterator[DesignInvalid]:
+    """A sentence for each part that the plan asks for and this version does not compute.
+
+    `document` is the plan as written, `accepted` its tables with the keys whose values lie in their domains.
+    """
     for part in NOT_COMPUTED:
         written = document.get(part.table)
         if part.key is None and written is not None:
             yield _refused_table(part, place.table(part.table, repeated=isinstance(written, list)))
-        elif part.key is not None and isinstance(written, dict):
-            value = written.get(part.key, *part.computed[:1])
-            if value is not None and value not in part.computed:
+        elif part.key is not None and any(part.key in values for values in accepted.get(part.table, ())):
+            value = document[part.table][part.key]
+            if value not in part.computed:
                 yield _refused_key(part, part.key, value, place.table(part.table))
 
 

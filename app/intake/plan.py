@@ -48,7 +48,7 @@ def read_plan(content: bytes, *, name: str, limits: Limits) -> Plan:
     problems = [*_top_level_problems(document, place)]
     tables = {key: _read_tables(key, document, place, problems) for key in TABLES if key in document}
     problems += _rule_problems(tables, place)
-    problems += not_computed_parts(document, place)
+    problems += not_computed_parts(document, tables, place)
     if problems:
         raise PlanRefused(problems)
     return _plan(tables, digest=hashlib.sha256(content).hexdigest())
