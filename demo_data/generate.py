@@ -23,7 +23,7 @@ FOLDER = Path(__file__).resolve().parent
 
 SEED = 226
 N_PATIENTS = 900
-START = date(2024, 3, 1)
+START = date(2023, 3, 3)
 DAYS_OF_ENROLMENT = 731
 HAZARD_RATIO = 0.75
 ADMISSIONS_A_YEAR = 0.26  # of a patient on placebo, in the region North, without earlier heart failure
@@ -137,11 +137,11 @@ class ByHand:
 ADMITTED = "Heart-failure admission"
 BY_HAND = (
     # reported as events, then found by the adjudicators to be no heart failure
-    ByHand((2,), 144, {"CNSR": 0, "EVNTDESC": ADMITTED, "ADT": "2026-01-19"}),
-    ByHand((3,), 441, {"CNSR": 0, "EVNTDESC": ADMITTED, "ADT": "2026-08-06"}),
+    ByHand((2,), 144, {"CNSR": 0, "EVNTDESC": ADMITTED, "ADT": "2025-01-20"}),
+    ByHand((3,), 441, {"CNSR": 0, "EVNTDESC": ADMITTED, "ADT": "2025-08-07"}),
     # admissions dated by the day of the report at first
-    ByHand((2,), 470, {"ADT": "2026-02-10"}),
-    ByHand((3,), 176, {"ADT": "2026-07-30"}),
+    ByHand((2,), 470, {"ADT": "2025-02-11"}),
+    ByHand((3,), 176, {"ADT": "2025-07-31"}),
     # digits exchanged: 414, 856 and Q17
     ByHand((2,), 339, {"AVAL": 441}),
     ByHand((4,), 503, {"AVAL": 865}),
