@@ -30,7 +30,8 @@ def run(options: Namespace, settings: Settings) -> int:
     path = options.to or Path(tempfile.mkdtemp(prefix="lookledger-demo-")) / NAME
     make_demo(settings, path)
     print(f"An invented trial; nobody was treated. Extracts to try are in {asset('demo_data')}.")
-    return serve_until_stopped(Desk(settings, path), port=options.port, browser=not options.no_browser)
+    with Desk.open(settings, path) as desk:
+        return serve_until_stopped(desk, port=options.port, browser=not options.no_browser)
 
 
 COMMAND = Command(arguments, run, example="demo --to demo.trial")

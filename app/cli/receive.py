@@ -48,15 +48,20 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    desk = Desk(settings, options.trial)
-    incoming = Incoming(tuple(map(uploaded, options.files)), options.cutoff, options.extracted, options.kind)
-    understood = understand(desk, incoming)
+    files = tuple(map(uploaded, options.files))
+    incoming = Incoming(files, options.cutoff, options.extracted, options.kind)
+    with Desk.open(settings, options.trial) as desk:
+        tell(understand(desk, incoming))
+        look = receive(desk, incoming, acknowledgements=dict(options.acknowledge), by=options.by)
+    print(f"Received as look {look}. It is open until it is frozen.")
+    return 0
+
+
+def tell(understood: Understanding) -> None:
+    """What was understood on standard output, what was noticed on standard error."""
     sys.stdout.write(as_text(understood))
     for finding in understood.extract.findings:
         print(f"{finding.severity} {finding.id}: {finding}", file=sys.stderr)
-    look = receive(desk, incoming, acknowledgements=dict(options.acknowledge), by=options.by)
-    print(f"Received as look {look}. It is open until it is frozen.")
-    return 0
 
 
 def as_text(understood: Understanding) -> str:

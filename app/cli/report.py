@@ -20,8 +20,9 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    for path in write_report(Desk(settings, options.trial), options.look, options.to):
-        print(path)
+    with Desk.open(settings, options.trial) as desk:
+        for path in write_report(desk, options.look, options.to):
+            print(path)
     return 0
 
 

@@ -17,8 +17,8 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    desk = Desk(settings, options.trial)
-    return serve_until_stopped(desk, port=options.port, browser=not options.no_browser)
+    with Desk.open(settings, options.trial) as desk:
+        return serve_until_stopped(desk, port=options.port, browser=not options.no_browser)
 
 
 COMMAND = Command(arguments, run, example="serve Q17.trial")

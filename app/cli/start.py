@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import getpass
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
@@ -15,7 +16,10 @@ def arguments(parser: ArgumentParser) -> None:
     parser.add_argument("plan", metavar="PLAN", type=Path, help="the plan, a TOML file; locked as it is")
     parser.add_argument("trial", metavar="TRIAL", type=Path, help="the trial file to make; it must not exist")
     parser.add_argument(
-        "--by", metavar="NAME", default="", help="who locks the plan; not an electronic signature"
+        "--by",
+        metavar="NAME",
+        default=getpass.getuser(),
+        help="who locks the plan; default: the name of this account; not an electronic signature",
     )
 
 

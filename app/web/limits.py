@@ -34,12 +34,13 @@ class BodyLimit:
             await self.app(scope, receive, send)
             return
         limit = self.limits.upload_bytes if scope["path"] in UPLOADS else self.limits.form_bytes
+        body = Body(receive, limit)
         try:
             if declared_length(scope) > limit:
                 raise BodyTooLarge
-            await self.app(scope, counted(receive, limit), send)
+            await self.app(scope, body.receive, send)
         except BodyTooLarge:
-            await read_on(receive)
+            await body.read_on()
             await answer(self.pages, too_large(limit), scope["path"])(scope, receive, send)
 
 
@@ -49,26 +50,29 @@ def declared_length(scope: Scope) -> int:
     return int(said) if said.isdecimal() and len(said) < 20 else 0
 
 
-def counted(receive: Receive, limit: int) -> Receive:
-    """`receive`, until more than `limit` bytes have come."""
-    seen = 0
+class Body:
+    """What comes in with one request, counted."""
 
-    async def receive_counted() -> Message:
-        nonlocal seen
-        message = await receive()
-        seen += len(message.get("body", b""))
-        if seen > limit:
+    def __init__(self, receive: Receive, limit: int) -> None:
+        self._receive = receive
+        self._limit = limit
+        self._seen = 0
+        self._ended = False
+
+    async def receive(self) -> Message:
+        """The next message, until more than the limit has come."""
+        message = await self._next()
+        if self._seen > self._limit:
             raise BodyTooLarge
         return message
 
-    return receive_counted
+    async def read_on(self) -> None:
+        """Read the rest and keep nothing."""
+        while not self._ended and self._seen < READ_ON_BYTES:
+            await self._next()
 
-
-async def read_on(receive: Receive) -> None:
-    """Read the rest of a body and keep nothing."""
-    read = 0
-    while read < READ_ON_BYTES:
-        message = await receive()
-        if message["type"] != "http.request" or not message.get("more_body", False):
-            return
-        read += len(message.get("body", b""))
+    async def _next(self) -> Message:
+        message = await self._receive()
+        self._seen += len(message.get("body", b""))
+        self._ended = message["type"] != "http.request" or not message.get("more_body", False)
+        return message

@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from typing import TypeVar
 
 from app.errors import AppError, InputError, sentence
 from app.model.extract import Finding
+
+T = TypeVar("T")
 
 
 @dataclass(frozen=True)
@@ -19,16 +23,25 @@ class Mend:
     @classmethod
     def of(cls, problem: AppError | Finding, field: str) -> Mend:
         whole, clause = str(problem), sentence(problem.what, problem.where).rstrip(".")
-        if not whole.startswith(clause):  # several problems told at once
+        if "\n" in whole or not whole.startswith(clause):  # several problems told at once
             return cls(field, whole, "")
         return cls(field, clause, whole[len(clause) :].lstrip(". "))
 
 
+def read_field(text: str, field: str, read: Callable[[str], T], mends: list[Mend]) -> T | None:
+    """What `read` makes of an answer; what it refuses is added to what is to mend."""
+    try:
+        return read(text)
+    except InputError as error:
+        mends.append(Mend.of(error, field))
+        return None
+
+
 def missing(what: str, *, accepted: str, field: str) -> Mend:
-    """A field that was left empty."""
-    return Mend.of(InputError(what, accepted=accepted, remedy="Fill in the field"), field)
+    """Something that was not given."""
+    return Mend.of(InputError(what, accepted=accepted), field)
 
 
-def by_field(mends: list[Mend]) -> dict[str, Mend]:
-    """The first thing to mend at each field."""
-    return {mend.field: mend for mend in reversed(mends)}
+def first_at(mends: Sequence[Mend], field: str) -> Mend | None:
+    """What stands at a field: the first thing to mend there."""
+    return next((mend for mend in mends if mend.field == field), None)

@@ -25,9 +25,7 @@ from app.web.sessions import Sessions
 PORT = 8123
 ADDRESS = Address(PORT)
 OWN = f"http://127.0.0.1:{PORT}"
-LIMITS = Limits(
-    upload_bytes=4096, form_bytes=256, session_idle_seconds=60 * 60, session_seconds=12 * 60 * 60
-)
+LIMITS = Limits(upload_bytes=4096, form_bytes=256, session_idle_seconds=60 * 60, session_seconds=12 * 60 * 60)
 
 
 class Clock:
@@ -58,7 +56,9 @@ class PlainPages:
 
     def show(self, name: str, *, status: int = 200, **context: object) -> Response:
         problem = context.get("problem")
-        return HTMLResponse(f"{name}: {getattr(problem, 'heading', '')} {getattr(problem, 'error', '')}", status)
+        return HTMLResponse(
+            f"{name}: {getattr(problem, 'heading', '')} {getattr(problem, 'error', '')}", status
+        )
 
 
 class Surroundings:
@@ -121,7 +121,9 @@ def assert_strict(response: Response) -> None:
     assert response.headers["cache-control"] == NOT_KEPT
 
 
-@pytest.mark.parametrize("path", ["/", "/closed/figure", "/open/figure", "/nowhere", "/docs", "/openapi.json"])
+@pytest.mark.parametrize(
+    "path", ["/", "/closed/figure", "/open/figure", "/nowhere", "/docs", "/openapi.json"]
+)
 def test_without_a_session_nothing_is_reached(site: Surroundings, path: str) -> None:
     response = site.client.get(path)
     assert response.status_code == 403
@@ -130,7 +132,14 @@ def test_without_a_session_nothing_is_reached(site: Surroundings, path: str) -> 
 
 
 @pytest.mark.parametrize(
-    "host", ["example.test", "127.0.0.1", f"127.0.0.1:{PORT + 1}", f"evil.test:{PORT}", f"127.0.0.1.evil.test:{PORT}"]
+    "host",
+    [
+        "example.test",
+        "127.0.0.1",
+        f"127.0.0.1:{PORT + 1}",
+        f"evil.test:{PORT}",
+        f"127.0.0.1.evil.test:{PORT}",
+    ],
 )
 def test_another_host_name_is_answered_by_400(site: Surroundings, host: str) -> None:
     site.enter("closed")
@@ -173,7 +182,8 @@ def test_an_act_that_comes_from_elsewhere_is_refused(site: Surroundings, headers
 
 
 @pytest.mark.parametrize(
-    "headers", [{"Origin": OWN}, {"Sec-Fetch-Site": "same-origin"}, {"Origin": OWN, "Sec-Fetch-Site": "same-origin"}]
+    "headers",
+    [{"Origin": OWN}, {"Sec-Fetch-Site": "same-origin"}, {"Origin": OWN, "Sec-Fetch-Site": "same-origin"}],
 )
 def test_an_act_from_these_pages_is_let_through(site: Surroundings, headers: dict[str, str]) -> None:
     site.enter("closed")
@@ -184,7 +194,9 @@ def test_an_act_from_these_pages_is_let_through(site: Surroundings, headers: dic
 def test_a_script_or_picture_of_another_page_reads_nothing(site: Surroundings, where: str) -> None:
     site.enter("closed")
     taken = site.client.get("/closed/figure", headers={"Sec-Fetch-Site": where, "Sec-Fetch-Mode": "no-cors"})
-    visited = site.client.get("/closed/figure", headers={"Sec-Fetch-Site": where, "Sec-Fetch-Mode": "navigate"})
+    visited = site.client.get(
+        "/closed/figure", headers={"Sec-Fetch-Site": where, "Sec-Fetch-Mode": "navigate"}
+    )
     assert (taken.status_code, visited.text) == (403, "seen")
 
 
@@ -305,7 +317,9 @@ def test_an_unknown_address_for_a_program_is_answered_in_one_json_form(site: Sur
 def test_keys_open_their_own_side_and_are_not_shown() -> None:
     keys = Keys.made_from(Counted())
     assert (keys.side_of(keys.closed), keys.side_of(keys.open)) == ("closed", "open")
-    assert [keys.side_of(key) for key in ("", "\udc80", "é", keys.closed[:-1], keys.closed + "A")] == [None] * 5
+    assert [keys.side_of(key) for key in ("", "\udc80", "é", keys.closed[:-1], keys.closed + "A")] == [
+        None
+    ] * 5
     assert keys.closed not in repr(keys)
     assert keys.open not in repr(keys)
     assert keys != replace(keys, open=keys.closed)

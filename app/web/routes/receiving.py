@@ -3,19 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from datetime import date
+from functools import partial
 
 from fastapi import APIRouter
 from starlette.responses import RedirectResponse, Response
 
+from app.actions.names import recorded_name, recorded_reason
 from app.actions.receive import Incoming, Understanding, receive, understand
-from app.errors import InputError, ValueRejected
+from app.errors import InputError
 from app.intake.answers import LOOK_KINDS, read_day, read_kind
-from app.model.extract import LookKind
+from app.model.extract import Finding
 from app.web.forms import Submitted, SubmittedForm
 from app.web.keys import random_word
-from app.web.mending import Mend, missing
-from app.web.routes.acts import missing_names
+from app.web.mending import Mend, missing, read_field
 from app.web.sessions import Session, Upload
 from app.web.site import SEE_OTHER, Site, TheSession, TheSite
 from app.web.understood import understood_tables
@@ -44,13 +44,19 @@ def take_files(site: TheSite, session: TheSession, form: SubmittedForm) -> Respo
     try:
         understood = understand(site.desk, incoming)
     except InputError as error:
-        return show_form(site, answers, [Mend.of(error, "files")])
+        return show_form(site, answers, [Mend.of(error, field_of(error))])
     if understood.extract.blocking:
         mends = [Mend.of(finding, "files") for finding in understood.extract.blocking]
         return show_form(site, answers, mends, understood)
     token = random_word(site.settings.random_bytes)
     session.upload = Upload(token, incoming, understood)
     return RedirectResponse(CONFIRM, SEE_OTHER)
+
+
+def field_of(error: InputError) -> str:
+    """Where to mend what only the trial file could refuse: one of the dates, else the files."""
+    named = (("extract date", "extracted"), ("data cutoff", "cutoff"))
+    return next((field for words, field in named if words in error.what), "files")
 
 
 def show_form(
@@ -71,32 +77,15 @@ def read_answers(form: Submitted) -> Incoming | list[Mend]:
     """The upload as a whole, or everything about its fields that is to mend."""
     mends: list[Mend] = []
     if not form.files:
-        accepted = "at least one file of the extract"
-        mends.append(missing("no file was chosen", accepted=accepted, field="files"))
-    cutoff = day(form.text("cutoff"), "cutoff", "Data cutoff", mends)
-    extracted = (
-        day(form.text("extracted"), "extracted", "Extract taken", mends) if form.text("extracted") else None
-    )
-    kind = kind_of_look(form.text("kind"), mends)
+        mends.append(missing("no file was chosen", accepted="the files of one extract", field="files"))
+    cutoff = read_field(form.text("cutoff"), "cutoff", partial(read_day, where="Data cutoff"), mends)
+    kind = read_field(form.text("kind"), "kind", partial(read_kind, where="Kind of look"), mends)
+    extracted = None
+    if form.text("extracted"):
+        extracted = read_field(form.text("extracted"), "extracted", partial(read_day, where="Extract"), mends)
     if mends or cutoff is None or kind is None:
         return mends
     return Incoming(form.files, cutoff, extracted, kind)
-
-
-def day(text: str, field: str, label: str, mends: list[Mend]) -> date | None:
-    try:
-        return read_day(text, where=label)
-    except ValueRejected as error:
-        mends.append(Mend.of(error, field))
-        return None
-
-
-def kind_of_look(text: str, mends: list[Mend]) -> LookKind | None:
-    try:
-        return read_kind(text, where="Kind of look")
-    except ValueRejected as error:
-        mends.append(Mend.of(error, "kind"))
-        return None
 
 
 @router.get(CONFIRM)
@@ -113,44 +102,40 @@ def receive_upload(site: TheSite, session: TheSession, form: SubmittedForm) -> R
     upload = session.upload
     if upload is None or form.text("token") != upload.token:
         return RedirectResponse(CONFIRM if upload else FORM, SEE_OTHER)
-    session.by = form.text("by")
-    reasons = form.under(REASON)
+    session.by, reasons = form.text("by"), form.under(REASON)
     mends = unanswered(upload, reasons, form)
-    if not mends:
-        try:
-            look = receive(
-                site.desk,
-                upload.incoming,
-                acknowledgements=reasons,
-                by=session.by,
-                freeze_open=upload.understood.freezes is not None,
-            )
-        except InputError as error:
-            mends.append(Mend.of(error, "files"))
-        else:
-            session.upload = None
-            return RedirectResponse(f"/closed/looks/{look}/glance", SEE_OTHER)
-    return show_upload(site, session, upload, reasons, mends)
+    by = read_field(session.by, "by", recorded_name, mends)
+    if mends or by is None:
+        return show_upload(site, session, upload, reasons, mends)
+    look = receive(
+        site.desk,
+        upload.incoming,
+        acknowledgements=reasons,
+        by=by,
+        freeze_open=form.is_ticked("freeze"),
+    )
+    session.upload = None
+    return RedirectResponse(f"/closed/looks/{look}/glance", SEE_OTHER)
 
 
 def unanswered(upload: Upload, reasons: Mapping[str, str], form: Submitted) -> list[Mend]:
-    """Doubts without a reason, a freeze that was not agreed to, nobody named."""
-    mends = [
-        missing(
-            "a doubt has no reason",
-            accepted="why the extract may be used all the same",
-            field=REASON + doubt.id,
-        )
-        for doubt in upload.understood.extract.doubts
-        if doubt.id not in reasons
-    ]
+    """Doubts without a reason, and a freeze that was not agreed to."""
+    mends: list[Mend] = []
+    for doubt in doubts_by_id(upload):
+        read_field(reasons.get(doubt, ""), REASON + doubt, recorded_reason, mends)
     freezes = upload.understood.freezes
     if freezes is not None and not form.is_ticked("freeze"):
-        what = f"look {freezes} is open, and freezing it was not agreed to"
-        mends.append(
-            Mend.of(InputError(what, remedy="Tick the box, or leave the new snapshot for later"), "freeze")
-        )
-    return mends + missing_names(form.text("by"))
+        remedy = "Tick the box, or leave the new snapshot for later"
+        mends.append(Mend.of(InputError(f"look {freezes} is still open", remedy=remedy), "freeze"))
+    return mends
+
+
+def doubts_by_id(upload: Upload) -> dict[str, list[Finding]]:
+    """One reason answers all findings of one kind."""
+    doubts: dict[str, list[Finding]] = {}
+    for finding in upload.understood.extract.doubts:
+        doubts.setdefault(finding.id, []).append(finding)
+    return doubts
 
 
 def show_upload(
@@ -162,6 +147,7 @@ def show_upload(
         upload=upload,
         understood=upload.understood,
         tables=understood_tables(upload.understood),
+        doubts=doubts_by_id(upload),
         reasons=reasons,
         by=session.by,
         mends=mends,
