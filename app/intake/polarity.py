@@ -41,7 +41,11 @@ def polarity(endpoint: EndpointRows, plan: Endpoint, cutoff: date | None) -> Ite
 
 
 def _by_text(endpoint: EndpointRows, plan: Endpoint) -> Iterator[Finding]:
-    """Blocks when the descriptions contradict CNSR wholesale; doubts single rows that do."""
+    """Blocks when the descriptions contradict CNSR wholesale; doubts single rows that do.
+
+    Words of the endpoint under a censored row tell less than words of censoring under an event (`In hospital`
+    may describe who waits for a discharge from hospital): alone they block only where events have no words.
+    """
     texts = endpoint.rows.parts.get("event_text")
     if texts is None:
         return
@@ -50,18 +54,20 @@ def _by_text(endpoint: EndpointRows, plan: Endpoint) -> Iterator[Finding]:
     event, censored = endpoint.event, endpoint.censor > 0
     censored_as_event = _share(told_censored, event) > 0.5 > _share(told_censored, censored)
     event_as_censored = _share(told_event, censored) > 0.5 > _share(told_event, event)
-    if censored_as_event or event_as_censored:
-        at = told_censored & event if censored_as_event else told_event & censored
-        yield from _exchanged(endpoint, at, texts)
+    if censored_as_event:
+        yield from _exchanged(endpoint, told_censored & event, texts, blocks=True)
+    elif event_as_censored:
+        events_unnamed = _share(texts.where(readings.is_blank), event) > 0.5
+        yield from _exchanged(endpoint, told_event & censored, texts, blocks=events_unnamed)
     else:
         yield from _contradicted(endpoint, told_censored & event, texts)
 
 
-def _exchanged(endpoint: EndpointRows, at: Bools, texts: TextColumn) -> Iterator[Finding]:
+def _exchanged(endpoint: EndpointRows, at: Bools, texts: TextColumn, *, blocks: bool) -> Iterator[Finding]:
     return endpoint.rows.findings(
         at,
-        "censor-inverted",
-        "block",
+        "censor-inverted" if blocks else "censor-suspicious",
+        "block" if blocks else "doubt",
         "events and censored follow-up look exchanged",
         endpoint.rows.choice.parts["censor"],
         accepted=_ACCEPTED,
