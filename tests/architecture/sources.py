@@ -24,7 +24,8 @@ def tracked() -> tuple[str, ...]:
 
 @cache
 def text(name: str) -> str:
-    return (ROOT / name).read_text(encoding="utf-8")
+    # tests/broken/ holds files that are no UTF-8 on purpose
+    return (ROOT / name).read_text(encoding="utf-8", errors="replace")
 
 
 def own_texts() -> list[str]:
