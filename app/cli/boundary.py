@@ -66,7 +66,7 @@ def design_text(record: dict[str, Any]) -> str:
         ("Alpha spent", f"cumulative, {side}"),
         ("Power", f"{said.percent(record['power'])}%"),
         ("Noncentrality of z at full information", said.number(record["noncentrality"], 4)),
-        ("Largest over fixed information", said.number(record["inflation"], 4)),
+        ("Information over a fixed design's", said.number(record["inflation"], 4)),
         ("Expected fraction, no effect", said.number(expected["null"])),
         ("Expected fraction, half the effect", said.number(expected["half"])),
         ("Expected fraction, design effect", said.number(expected["design"])),

@@ -63,7 +63,7 @@ def no_look_before(option: str) -> InputError:
         "an option stands before the look it belongs to",
         where="'evaluate'",
         found=f"{option} before any --look",
-        accepted=f"--look FILE {option} ...",
+        accepted=f"--look FILE {option} VALUE",
         remedy="Write it after its --look",
     )
 

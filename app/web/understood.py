@@ -4,24 +4,21 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from app.actions.receive import Understanding
+from app.actions.receive import Incoming, Understanding
 from app.model.extract import Changes, Extract
 from app.sheets.blocks import Cell, Column, Line, Row, Table
-from app.sheets.words import count, decimal, line, of_total
+from app.sheets.words import count, day_text, decimal, line, of_total
 
 MOST_IDENTIFIERS = 5
 
 
-def answer_line(understood: Understanding) -> str:
-    """The sentence on top: which look this would open, or why none."""
-    blocking = len(understood.extract.blocking)
-    if blocking:
-        return f"Nothing was stored. {things(blocking)} to mend:"
-    return f"This would open look {understood.look}. Nothing is stored yet."
-
-
-def things(number: int) -> str:
-    return "1 thing" if number == 1 else f"{number} things"
+def declared_table(incoming: Incoming) -> Table:
+    """What a person said about the upload, to be read once more before it can no longer be changed."""
+    extracted = "not stated" if incoming.extracted is None else day_text(incoming.extracted)
+    cutoff = day_text(incoming.cutoff)
+    rows = (("Declared as", incoming.kind), ("Data cutoff", cutoff), ("Extract", extracted))
+    cells = tuple(Row(line(head), (Cell(line(text)),)) for head, text in rows)
+    return Table(line("As declared"), (Column((), "words"),), cells)
 
 
 def understood_tables(understood: Understanding) -> tuple[Table, ...]:

@@ -1,4 +1,4 @@
-"""The gate, the sessions, the limits and the headers around a small application that knows nothing of them."""
+"""The gate, the sessions, the limits and the headers, around a small application that knows none of them."""
 
 from __future__ import annotations
 
@@ -54,10 +54,10 @@ class Counted:
 class PlainPages:
     """Shows what a page would be given, without templates."""
 
-    def show(self, name: str, *, status: int = 200, **context: object) -> Response:
+    def show(self, form: str, *, status: int = 200, **context: object) -> Response:
         problem = context.get("problem")
         return HTMLResponse(
-            f"{name}: {getattr(problem, 'heading', '')} {getattr(problem, 'error', '')}", status
+            f"{form}: {getattr(problem, 'heading', '')} {getattr(problem, 'error', '')}", status
         )
 
 

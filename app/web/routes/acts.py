@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from typing import Any
 from urllib.parse import quote
 
 from fastapi import APIRouter
@@ -16,7 +17,8 @@ from app.actions.unmask import unmask
 from app.errors import LookAlreadyFrozen
 from app.web.forms import SubmittedForm
 from app.web.mending import Mend, read_field
-from app.web.routes.looks import closed_look, require_look
+from app.web.routes.looks import CLOSED, closed_look, newest_frame, require_look
+from app.web.sessions import Session
 from app.web.site import SEE_OTHER, LookNumber, Site, TheSession, TheSite
 
 router = APIRouter()
@@ -25,7 +27,7 @@ router = APIRouter()
 @router.get("/closed/looks/{look}/freeze")
 def ask_to_freeze(site: TheSite, session: TheSession, look: LookNumber) -> Response:
     require_open(site, look)
-    return site.pages.show("freeze", look=look, by=session.by, mends=[])
+    return show(site, session, "freeze", [], look=look, by=session.by)
 
 
 @router.post("/closed/looks/{look}/freeze")
@@ -35,7 +37,7 @@ def freeze_look(site: TheSite, session: TheSession, look: LookNumber, form: Subm
     session.by = form.text("by")
     by = read_field(session.by, "by", recorded_name, mends)
     if by is None:
-        return site.pages.show("freeze", status=422, look=look, by=session.by, mends=mends)
+        return show(site, session, "freeze", mends, look=look, by=session.by)
     freeze(site.desk, by=by)
     return RedirectResponse(f"/closed/looks/{look}/record", SEE_OTHER)
 
@@ -61,7 +63,7 @@ def download_report(site: TheSite, session: TheSession, look: LookNumber) -> Res
 
 @router.get("/closed/unmask")
 def ask_to_unmask(site: TheSite, session: TheSession) -> Response:
-    return site.pages.show("unmask", by=session.by, reason="", mends=[])
+    return show(site, session, "unmask", [], by=session.by, reason="")
 
 
 @router.post("/closed/unmask")
@@ -71,12 +73,19 @@ def unmask_arms(site: TheSite, session: TheSession, form: SubmittedForm) -> Resp
     reason = read_field(form.text("reason"), "reason", recorded_reason, mends)
     by = read_field(session.by, "by", recorded_name, mends)
     if reason is None or by is None:
-        answers = {"by": session.by, "reason": form.text("reason")}
-        return site.pages.show("unmask", status=422, mends=mends, **answers)
+        return show(site, session, "unmask", mends, by=session.by, reason=form.text("reason"))
     unmask(site.desk, reason=reason, by=by)
     return RedirectResponse("/", SEE_OTHER)
 
 
 @router.get("/closed/verify")
 def verify_trial_file(site: TheSite) -> Response:
-    return site.pages.show("verify", report=verify_desk(site.desk), name=site.desk.path.name)
+    """Without the frame of a look: it must also come up when no look can be opened any more."""
+    return site.pages.show("verify", base=CLOSED, report=verify_desk(site.desk), name=site.desk.path.name)
+
+
+def show(site: Site, session: Session, form: str, mends: list[Mend], **context: Any) -> Response:
+    """A form of the closed side, as it is first shown or with what is to mend."""
+    status = 422 if mends else 200
+    frame = newest_frame(site, session)
+    return site.pages.show(form, status=status, frame=frame, base=CLOSED, mends=mends, **context)

@@ -10,7 +10,7 @@ from app.actions.looks import looks
 from app.web.forms import SubmittedForm
 from app.web.gate import wrong_key
 from app.web.problems import answer
-from app.web.site import SEE_OTHER, Site, TheSession, TheSite
+from app.web.site import SEE_OTHER, TheSession, TheSite
 
 router = APIRouter()
 
@@ -53,9 +53,5 @@ def newest(site: TheSite, session: TheSession) -> Response:
     """The newest look at a glance, on the side of who asks."""
     numbers = looks(site.desk)
     if not numbers:
-        return nothing_received(site, session.side)
+        return site.pages.show("no_look", base=f"/{session.side}")
     return RedirectResponse(f"/{session.side}/looks/{numbers[-1]}/glance", SEE_OTHER)
-
-
-def nothing_received(site: Site, side: str) -> Response:
-    return site.pages.show("no_look", side=side)

@@ -4,18 +4,20 @@ from __future__ import annotations
 
 from fastapi import APIRouter
 from starlette.exceptions import HTTPException
-from starlette.responses import HTMLResponse, Response
+from starlette.responses import HTMLResponse, JSONResponse, Response
 
 from app.actions.looks import closed_book, looks, open_book, record_of
 from app.record.text import record_bytes
 from app.render.page import render_sheet
-from app.sheets.blocks import LookBook, Sheet
+from app.render.plotly_figures import plotly_figure
+from app.sheets.blocks import LookBook, PageFrame, Sheet
 from app.web.sessions import Session
 from app.web.site import LookNumber, Site, TheSession, TheSite
 
 router = APIRouter()
 
 JSON = "application/json"
+CLOSED, OPEN = "/closed", "/open"
 
 
 @router.get("/closed/looks/{look}/record.json")
@@ -32,7 +34,7 @@ def closed_figure(site: TheSite, session: TheSession, look: LookNumber, sheet: s
 
 @router.get("/closed/looks/{look}/{sheet}")
 def closed_sheet(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
-    return page(site, closed_look(site, session, look), sheet, "/closed")
+    return page(site, closed_look(site, session, look), sheet, CLOSED)
 
 
 @router.get("/open/looks/{look}/{sheet}/figure.json")
@@ -42,13 +44,19 @@ def open_figure(site: TheSite, look: LookNumber, sheet: str) -> Response:
 
 @router.get("/open/looks/{look}/{sheet}")
 def open_sheet(site: TheSite, look: LookNumber, sheet: str) -> Response:
-    return page(site, open_look(site, look), sheet, "/open")
+    return page(site, open_look(site, look), sheet, OPEN)
 
 
 def closed_look(site: Site, session: Session, look: int) -> LookBook:
     """The book of a look; that this session opened its results is recorded once."""
     require_look(site, look)
     return closed_book(site.desk, look, session=session.id)
+
+
+def newest_frame(site: Site, session: Session) -> PageFrame | None:
+    """What stands around a page of the closed side that is no sheet; nothing before there is a look."""
+    numbers = looks(site.desk)
+    return closed_look(site, session, numbers[-1]).frame if numbers else None
 
 
 def open_look(site: Site, look: int) -> LookBook:
@@ -69,9 +77,10 @@ def page(site: Site, book: LookBook, sheet: str, base: str) -> Response:
 def figure(book: LookBook, sheet: str) -> Response:
     """The interactive figure of a sheet; a sheet without one has no such address."""
     drawn = require_sheet(book, sheet).figure
-    if drawn is None:
+    interactive = None if drawn is None else plotly_figure(drawn)
+    if interactive is None:
         raise HTTPException(404)
-    return Response(str(drawn), media_type=JSON)
+    return JSONResponse(interactive)
 
 
 def require_sheet(book: LookBook, key: str) -> Sheet:

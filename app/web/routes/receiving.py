@@ -11,19 +11,26 @@ from starlette.responses import RedirectResponse, Response
 from app.actions.names import recorded_name, recorded_reason
 from app.actions.receive import Incoming, Understanding, receive, understand
 from app.errors import InputError
-from app.intake.answers import LOOK_KINDS, read_day, read_kind
-from app.model.extract import Finding
+from app.intake.answers import read_day, read_kind
+from app.model.extract import Finding, LookKind, with_severity
 from app.web.forms import Submitted, SubmittedForm
 from app.web.keys import random_word
 from app.web.mending import Mend, missing, read_field
+from app.web.routes.acts import show
 from app.web.sessions import Session, Upload
 from app.web.site import SEE_OTHER, Site, TheSession, TheSite
-from app.web.understood import understood_tables
+from app.web.understood import declared_table, understood_tables
 
 router = APIRouter()
 
 FORM = "/closed/receive"
 CONFIRM = "/closed/receive/confirm"
+KINDS: tuple[tuple[LookKind, str], ...] = (
+    ("planned", "one of the plan's looks"),
+    ("unplanned", "asked for in between; it spends the alpha that belongs to its information"),
+    ("safety", "no efficacy bound; it spends nothing, or what the plan says"),
+    ("final", "the last one; it spends all alpha that is left"),
+)
 BLANK = {"cutoff": "", "extracted": "", "kind": "planned"}
 ASKED = tuple(BLANK)
 REASON = "reason-"
@@ -31,7 +38,7 @@ REASON = "reason-"
 
 @router.get(FORM)
 def ask_for_files(site: TheSite, session: TheSession) -> Response:
-    return show_form(site, BLANK, [])
+    return show_form(site, session, BLANK, [])
 
 
 @router.post(FORM)
@@ -40,14 +47,14 @@ def take_files(site: TheSite, session: TheSession, form: SubmittedForm) -> Respo
     answers = {name: form.text(name) for name in ASKED}
     incoming = read_answers(form)
     if not isinstance(incoming, Incoming):
-        return show_form(site, answers, incoming)
+        return show_form(site, session, answers, incoming)
     try:
         understood = understand(site.desk, incoming)
     except InputError as error:
-        return show_form(site, answers, [Mend.of(error, field_of(error))])
+        return show_form(site, session, answers, [Mend.of(error, field_of(error))])
     if understood.extract.blocking:
         mends = [Mend.of(finding, "files") for finding in understood.extract.blocking]
-        return show_form(site, answers, mends, understood)
+        return show_form(site, session, answers, mends, understood)
     token = random_word(site.settings.random_bytes)
     session.upload = Upload(token, incoming, understood)
     return RedirectResponse(CONFIRM, SEE_OTHER)
@@ -60,17 +67,14 @@ def field_of(error: InputError) -> str:
 
 
 def show_form(
-    site: Site, answers: Mapping[str, str], mends: list[Mend], understood: Understanding | None = None
+    site: Site,
+    session: Session,
+    answers: Mapping[str, str],
+    mends: list[Mend],
+    understood: Understanding | None = None,
 ) -> Response:
-    return site.pages.show(
-        "receive",
-        status=422 if mends else 200,
-        answers=answers,
-        kinds=LOOK_KINDS,
-        mends=mends,
-        understood=understood,
-        tables=understood_tables(understood) if understood else (),
-    )
+    tables = understood_tables(understood) if understood else ()
+    return show(site, session, "receive", mends, answers=answers, kinds=KINDS, tables=tables)
 
 
 def read_answers(form: Submitted) -> Incoming | list[Mend]:
@@ -141,14 +145,18 @@ def doubts_by_id(upload: Upload) -> dict[str, list[Finding]]:
 def show_upload(
     site: Site, session: Session, upload: Upload, reasons: Mapping[str, str], mends: list[Mend]
 ) -> Response:
-    return site.pages.show(
+    understood = upload.understood
+    return show(
+        site,
+        session,
         "understood",
-        status=422 if mends else 200,
+        mends,
         upload=upload,
-        understood=upload.understood,
-        tables=understood_tables(upload.understood),
+        understood=understood,
+        dates=declared_table(upload.incoming),
+        tables=understood_tables(understood),
+        notes=with_severity(understood.extract.findings, "note"),
         doubts=doubts_by_id(upload),
         reasons=reasons,
         by=session.by,
-        mends=mends,
     )
