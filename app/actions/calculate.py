@@ -24,7 +24,7 @@ from app.views.record import boundary_record, looks_record
 
 @dataclass(frozen=True)
 class LookGiven:
-    """One look for `evaluate`: its files, its cutoff when dates are to be checked, its kind (planned by default)."""
+    """One look for `evaluate`: its files, its cutoff when dates are to be checked, its kind (or planned)."""
 
     files: tuple[UploadedFile, ...]
     cutoff: date | None
@@ -39,7 +39,7 @@ class LookGiven:
 def evaluate(
     settings: Settings, *, plan_name: str, plan: bytes, looks: Sequence[LookGiven]
 ) -> dict[str, Any]:
-    """The record of these looks, held one after the other under the plan; each bound rests on those before."""
+    """The record of these looks, held one after the other under the plan, each bound on those before."""
     read = read_plan(plan, name=plan_name, limits=settings.limits)
     past: list[LookAsUsed] = []
     views: list[ClosedView] = []

@@ -19,8 +19,8 @@ from app.verification.check import CheckLine, CheckReport, check_report, check_t
 
 SQLITE_HEADER = b"SQLite format 3\x00"
 WHAT_IT_CANNOT = (
-    "What this cannot prove: a whole file rewritten by someone who holds it. The committee's minutes, which name the "
-    "head printed in each report, are the witness."
+    "What this cannot prove: a whole file rewritten by someone who holds it. "
+    "The committee's minutes, which name the head printed in each report, are the witness."
 )
 
 
@@ -61,7 +61,7 @@ def verify_desk(desk: Desk) -> CheckReport:
 
 
 def _reports_again(desk: Desk) -> Iterator[CheckLine]:
-    """Each closed report set again from the same point of the history: the same bytes where it was made here."""
+    """Each closed report set again from its point of the history: the same bytes where it was made here."""
     try:
         frozen = [look.frozen for look in desk.trial.state().frozen_looks if look.frozen]
         yield from (_report_again(desk, each) for each in frozen)

@@ -47,7 +47,7 @@ class Cache:
 
 
 class Desk:
-    """What every action on a trial file needs. The open side's looks are cached apart from the closed side's."""
+    """What every action on a trial file needs; the open side's looks are cached apart from the closed's."""
 
     def __init__(self, settings: Settings, trial: Trial) -> None:
         self.settings = settings

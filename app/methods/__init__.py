@@ -21,7 +21,8 @@ class Method:
 METHODS: dict[str, Method] = {
     "kaplan-meier": Method(
         "Curves",
-        "Kaplan-Meier product-limit estimate, *S*(*t*) = ∏(1 − *d*/*n*); at one time events precede censorings.",
+        "Kaplan-Meier product-limit estimate, *S*(*t*) = ∏(1 − *d*/*n*); "
+        "at one time events precede censorings.",
         "Kaplan and Meier (1958), JASA 53, 457–481.",
     ),
     "greenwood": Method(
@@ -42,14 +43,15 @@ METHODS: dict[str, Method] = {
     ),
     "logrank": Method(
         "Statistic",
-        "Log-rank: *U* = *O* − *E* and hypergeometric variance *V* of the experimental arm, each summed over strata; "
-        "*z* = *s*(*E* − *O*)/√*V* with *s* = 1 for a bad event and −1 for a good one.",
-        "Mantel (1966), Cancer Chemotherapy Reports 50, 163–170; Mantel and Haenszel (1959), JNCI 22, 719–748.",
+        "Log-rank: *U* = *O* − *E* and hypergeometric variance *V* of the experimental arm, each summed over "
+        "strata; *z* = *s*(*E* − *O*)/√*V* with *s* = 1 for a bad event and −1 for a good one.",
+        "Mantel (1966), Cancer Chemotherapy Reports 50, 163–170; "
+        "Mantel and Haenszel (1959), JNCI 22, 719–748.",
     ),
     "cox": Method(
         "Hazard ratio",
-        "Cox’s partial likelihood, stratified as the test is, ties by Efron’s method; the interval is Wald’s on the "
-        "log scale and is not adjusted for looks.",
+        "Cox’s partial likelihood, stratified as the test is, ties by Efron’s method; "
+        "the interval is Wald’s on the log scale and is not adjusted for looks.",
         "Cox (1972), JRSS B 34, 187–220; Efron (1977), JASA 72, 557–565.",
     ),
     "information": Method(
@@ -59,8 +61,8 @@ METHODS: dict[str, Method] = {
     ),
     "variance-ratio": Method(
         "Variance ratio",
-        "*V*/(*d* *p* *q*): the log-rank variance over events times the planned shares of the arms. Well below 1, "
-        "events overstate the information.",
+        "*V*/(*d* *p* *q*): the log-rank variance over events times the planned shares of the arms. "
+        "Well below 1, events overstate the information.",
         "Schoenfeld (1981), Biometrika 68, 316–319.",
     ),
     "o'brien-fleming-type": Method(
@@ -75,8 +77,8 @@ METHODS: dict[str, Method] = {
     ),
     "boundary": Method(
         "Boundary",
-        "Solved so that the chance of a first crossing here, under no effect, is the alpha spent here; correlations "
-        "√(*I*₁/*I*₂) use the information recorded at each look. Earlier bounds stand as used.",
+        "Solved so that the chance of a first crossing here, under no effect, is the alpha spent here; "
+        "correlations √(*I*₁/*I*₂) use the information recorded at each look. Earlier bounds stand as used.",
         "Armitage, McPherson and Rowe (1969), JRSS A 132, 235–244.",
     ),
     "bound-hazard-ratio": Method(
@@ -86,19 +88,20 @@ METHODS: dict[str, Method] = {
     ),
     "changes": Method(
         "Changes",
-        "This extract is compared with the last one subject by subject. An event is new, reversed (counted before, not "
-        "now) or moved (counted in both, at another time).",
+        "This extract is compared with the last one subject by subject. An event is new, reversed "
+        "(counted before, not now) or moved (counted in both, at another time).",
         "Common practice.",
     ),
     "person-time": Method(
         "Person-time",
-        "The sum of the subjects’ times to event or censoring.",
+        "The sum of the subjects’ times to event or censoring; days are shown as years of 365.25 days.",
         "Common practice.",
     ),
     "chain": Method(
         "Chain",
-        "Each entry holds the SHA-256 of its canonical JSON and of the entry before it. The head witnesses all "
-        "entries up to it; a whole file rewritten by its holder is found only against a head kept elsewhere.",
+        "Each entry holds the SHA-256 of its canonical JSON and of the entry before it. The head witnesses "
+        "all entries up to it; a whole file rewritten by its holder is found only against a head kept "
+        "elsewhere.",
         "RFC 8785 (canonical JSON); FIPS 180-4 (SHA-256).",
     ),
 }

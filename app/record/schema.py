@@ -32,8 +32,8 @@ LOGRANK = {
                 "variance": NUMBER}],
 }  # fmt: skip
 COX = {
-    "log_hazard_ratio": NUMBER, "std_error": NUMBER, "hazard_ratio": NUMBER, "ci_low": NUMBER, "ci_high": NUMBER,
-    "level": NUMBER, "ties": str,
+    "log_hazard_ratio": NUMBER, "std_error": NUMBER, "hazard_ratio": NUMBER,
+    "ci_low": NUMBER, "ci_high": NUMBER, "level": NUMBER, "ties": str,
 }  # fmt: skip
 CURVE = {
     "arm": str, "time": [NUMBER], "at_risk": [int], "events": [int], "censored": [int], "survival": [NUMBER],
@@ -65,7 +65,8 @@ CHANGES = {
     "reversed_events": int, "moved_events": int, "changed_arm": int, "changed_stratum": int,
 }  # fmt: skip
 LOOK = {
-    "number": int, "kind": str, "final": bool, "time_unit": str, "cutoff": Maybe(str), "extracted": Maybe(str),
+    "number": int, "kind": str, "final": bool, "time_unit": str,
+    "cutoff": Maybe(str), "extracted": Maybe(str),
     "information": INFORMATION, "changes": Maybe(CHANGES),
     "calendar": Maybe({"day": [int], "randomised": [int], "events": [int]}),
     "logrank": LOGRANK, "logrank_unstratified": LOGRANK, "cox": COX, "cox_unstratified": COX,

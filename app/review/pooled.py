@@ -15,7 +15,7 @@ from app.survival import kaplan_meier
 def review_pooled(
     plan: Plan, sample: PooledSample, declared: LookDeclared, past: Sequence[tuple[int, float, int]]
 ) -> PooledResult:
-    """Counts, follow-up, calendar and the pooled curve; `past` are (number, fraction, events) of earlier looks."""
+    """Counts, follow-up, calendar and the pooled curve; `past`: number, fraction, events of earlier looks."""
     time = times_of(sample)
     all_subjects = arm_counts(time, sample.event)
     return PooledResult(

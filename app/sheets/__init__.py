@@ -1,1 +1,1 @@
-"""View -> Sheet: the only home of words and number formats. Page, report and table files are set from these."""
+"""View -> Sheet: the only home of words and number formats, from which page, report and tables are set."""

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
-
-import numpy as np
 
 from app.model.extract import TimeUnit
 from app.model.survival import SurvivalCurve
@@ -15,19 +14,34 @@ FEWEST_AT_RISK = 20
 STEPS = (1, 2, 3, 6, 12, 24, 36, 60, 120)
 PLAIN_STEPS = (1, 2, 5, 10, 20, 25, 50, 100, 200, 500, 1000, 2000, 5000)
 MOST_TICKS = 7
+MONTHS_PER_YEAR = 12.0
 
 
 @dataclass(frozen=True)
 class TimeAxis:
-    """`scale` units of the data make one unit of display, whose name is `unit` ("months")."""
+    """`scale` units of the data make one unit of display, whose name is `unit` ("months").
+
+    `enough_at_risk` says whether the axis ends where too few are left, or shows all follow-up; `known` is how
+    far every curve is observed, in the unit of display.
+    """
 
     unit: str
     scale: float
     ticks: tuple[float, ...]
+    enough_at_risk: bool
+    known: float
 
     @property
     def end(self) -> float:
         return self.ticks[-1]
+
+    @property
+    def named(self) -> float:
+        """What a sentence speaks of: the last whole year, else the last tick, that all curves reach."""
+        last = max(tick for tick in self.ticks if tick <= max(self.known, self.ticks[0]))
+        if self.unit == "months" and last >= MONTHS_PER_YEAR:
+            return MONTHS_PER_YEAR * math.floor(last / MONTHS_PER_YEAR)
+        return last or self.ticks[1]
 
     def shown(self, time: Floats) -> Floats:
         return time / self.scale
@@ -43,14 +57,21 @@ def display_unit(time_unit: TimeUnit) -> tuple[str, float]:
 def time_axis(curves: tuple[SurvivalCurve, ...], time_unit: TimeUnit) -> TimeAxis:
     """Ticks from 0 by a round step; the axis ends at the last tick with 20 at risk in each arm.
 
-    With fewer than 20 in an arm to begin with, it ends at the first tick at or after the last time.
+    Where not even the first tick has 20, it ends at the first tick at or after the last time.
     """
     unit, scale = display_unit(time_unit)
     reach = min(_last_time_with(curve, FEWEST_AT_RISK) for curve in curves) / scale
-    whole = max(float(curve.time[-1]) for curve in curves) / scale
-    step = _step(reach or whole, unit)
-    last = int(np.floor(reach / step)) if reach >= step else int(np.ceil(whole / step))
-    return TimeAxis(unit, scale, tuple(float(index * step) for index in range(max(1, last) + 1)))
+    known = min(_last_time_with(curve, 1) for curve in curves) / scale
+    step = _step(reach, unit)
+    if reach >= step:
+        return TimeAxis(unit, scale, _ticks(step, math.floor(reach / step)), True, known)
+    whole = max(_last_time_with(curve, 1) for curve in curves) / scale
+    step = _step(whole, unit)
+    return TimeAxis(unit, scale, _ticks(step, math.ceil(whole / step)), False, known)
+
+
+def _ticks(step: float, number: int) -> tuple[float, ...]:
+    return tuple(index * step for index in range(max(1, number) + 1))
 
 
 def _last_time_with(curve: SurvivalCurve, fewest: int) -> float:

@@ -68,7 +68,7 @@ class Row:
 
 @dataclass(frozen=True)
 class Table:
-    """`columns` excludes the row-head column, whose head is `corner`; without any head text no head is set."""
+    """`columns` excludes the row-head column, whose head is `corner`; without head texts no head is set."""
 
     caption: Line
     columns: tuple[Column, ...]
@@ -154,7 +154,7 @@ class LaneRow:
 
 @dataclass(frozen=True)
 class BoundaryFigure:
-    """z by information. `layout` "one lane" (unmasked) or "two lanes" (masked: left as if A were experimental)."""
+    """z by information. `layout` "one lane", or "two lanes" when masked: left as if A were experimental."""
 
     title: str
     description: str
@@ -202,7 +202,7 @@ class CountsFigure:
 
 @dataclass(frozen=True)
 class InformationStrip:
-    """The spine lying down: looks held (fraction, events; the last is now) on 0 to 1, planned fractions below."""
+    """The spine lying down, 0 to 1: looks held (fraction, events; the last is now), planned ones below."""
 
     title: str
     description: str
@@ -279,7 +279,7 @@ class ActLink:
 
 @dataclass(frozen=True)
 class Sheet:
-    """One question, answered. `number` is None for At a glance; `answer` has two lines when two readings exist.
+    """One question, answered. `number` is None for At a glance; `answer` has two lines for two readings.
 
     `tables` stand beside the figure, `wide_tables` under it; `figure_table` says the figure in numbers.
     """
@@ -301,7 +301,7 @@ class Sheet:
 
 @dataclass(frozen=True)
 class SpineLook:
-    """One look on the spine. `planned` is the plan's fraction bound to it; `key` the look's number for links."""
+    """One look on the spine; `planned` is the plan's fraction bound to it."""
 
     number: int
     fraction: float

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 from app.model.boundary import Bound, LookAsUsed
 from app.model.survival import LogrankResult
 from app.model.values import Absent, Estimate
@@ -18,7 +20,7 @@ from app.sheets.blocks import (
     Span,
     Table,
 )
-from app.sheets.curves import against, cox_level
+from app.sheets.curves import NOT_ADJUSTED, against, cox_level
 from app.sheets.methods import methods, spending_key
 from app.sheets.words import (
     MINUS,
@@ -29,6 +31,7 @@ from app.sheets.words import (
     count,
     decimal,
     interval,
+    level_text,
     line,
     listed,
     number,
@@ -40,6 +43,11 @@ from app.views.closed import ClosedView, Reading
 
 QUESTION = "Where does the test stand?"
 CROSSED = Span("crossed", "crossed")
+DASH = Span("–", "quiet")
+FINAL_WORDS = (
+    " A final look spends all alpha that is left; "
+    "ending early because of comparative results does not release it."
+)
 
 
 def boundary_sheet(view: ClosedView) -> Sheet:
@@ -82,41 +90,39 @@ def _unmasked_sentence(view: ClosedView, reading: Reading) -> Line:
     bound = view.look.bound.efficacy_z
     z = _z_of(reading, bound)
     if is_over_running(view, reading):
-        first = reading.verdict.first_crossed
-        return line(
-            "The boundary was ",
-            CROSSED,
-            f" at look {first}. This look is over-running: ",
-            z,
-            ", no second test.",
-        )
+        at = f" at look{NO_BREAK}{reading.verdict.first_crossed}. This look is over-running: "
+        return line("The boundary was ", CROSSED, at, z, ", no second test.")
     if isinstance(bound, Absent):
         return line("No efficacy boundary applies: ", z, f". {_reason(bound)}.")
+    places = z_places(reading.z, bound)
     if reading.verdict.crossed == "efficacy":
-        return line(
-            "The efficacy boundary was ", CROSSED, ": ", z, " against ", _bound_of(reading, bound), "."
-        )
+        against_bound = line(": ", z, " against ", z_number(bound, places=places), ".")
+        return line("The efficacy boundary was ", CROSSED, against_bound)
     if reading.verdict.crossed == "control":
-        favours = label_of(view, view.against).in_sentence
-        return line(
-            "The boundary in favour of ", favours, " was ", CROSSED, ": ", z, " against ", _mirror(bound), "."
-        )
-    return line("The efficacy boundary was not crossed: ", z, " against ", _bound_of(reading, bound), ".")
+        start = line("The boundary in favour of ", label_of(view, view.against).in_sentence, " was ", CROSSED)
+        return line(start, ": ", z, " against ", _mirror(bound, places), ".")
+    if view.plan.design.sides == 2:
+        both = Span(f"±{decimal(bound, places)}", value=bound)
+        return line("No boundary was crossed: ", z, " against ", both, ".")
+    return line(
+        "The efficacy boundary was not crossed: ", z, " against ", z_number(bound, places=places), "."
+    )
 
 
 def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
     bound = view.look.bound.efficacy_z
     start = line(f"If {reading.experimental} is experimental: ", _z_of(reading, bound))
     if is_over_running(view, reading):
-        first = reading.verdict.first_crossed
-        return line(start, ", the boundary was ", CROSSED, f" at look {first}; no second test.")
+        at = f" at look{NO_BREAK}{reading.verdict.first_crossed}; no second test."
+        return line(start, ", the boundary was ", CROSSED, at)
     if isinstance(bound, Absent):
         return line(start, ", no efficacy boundary applies.")
+    places = z_places(reading.z, bound)
     if reading.verdict.crossed == "efficacy":
-        return line(start, ", efficacy bound ", _bound_of(reading, bound), NO_BREAK, CROSSED, ".")
+        return line(start, ", efficacy bound ", z_number(bound, places=places), NO_BREAK, CROSSED, ".")
     if reading.verdict.crossed == "control":
         other = "B" if reading.experimental == "A" else "A"
-        return line(start, ", bound ", _mirror(bound), f" in favour of {other} ", CROSSED, ".")
+        return line(start, ", bound ", _mirror(bound, places), f" in favour of {other} ", CROSSED, ".")
     return line(start, ", no boundary crossed.")
 
 
@@ -128,13 +134,9 @@ def _z_of(reading: Reading, bound: Estimate) -> Line:
     return line(Z, NO_BREAK, z_number(reading.z, places=z_places(reading.z, bound)))
 
 
-def _bound_of(reading: Reading, bound: Estimate) -> Span:
-    return z_number(bound, places=z_places(reading.z, bound))
-
-
-def _mirror(bound: float) -> Span:
+def _mirror(bound: float, places: int) -> Span:
     """The lower bound of a symmetric region: the recorded bound with its sign turned."""
-    return Span(MINUS + decimal(bound, 3), value=bound)
+    return Span(MINUS + decimal(bound, places), value=bound)
 
 
 # --- the figure -----------------------------------------------------------------------------------------
@@ -145,8 +147,8 @@ def boundary_figure(view: ClosedView) -> BoundaryFigure:
     two_lanes = view.masked and view.plan.design.sides == 1
     return BoundaryFigure(
         title="z against its boundary, by information",
-        description="Each look is a gauge at its information fraction: z as a mark, the efficacy bound as a bar, "
-        "the region beyond the bound in grey. The same numbers stand in the table.",
+        description="Each look is a gauge at its information fraction: z as a mark, the efficacy bound as "
+        "a bar, the region beyond the bound in grey. The same numbers stand in the table.",
         y_title=line(Z, f", {against(view)}"),
         favours_up=f"favours {of.in_sentence}",
         favours_down=f"favours {other.in_sentence}",
@@ -168,14 +170,14 @@ def _all_over(view: ClosedView) -> bool:
 
 
 def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
-    upper, lower = _bounds_shown(view, held.efficacy_z, held.number)
+    upper, lower = _bounds_shown(view, held.z, held.efficacy_z, held.number)
     firsts = {reading.verdict.first_crossed for reading in view.readings}
     return Lane(
         look=held.number,
         fraction=held.fraction,
         state="past",
         final=held.final,
-        z=None if held.z is None else z_number(held.z),
+        z=_z_shown(held.z, held.efficacy_z),
         upper=upper,
         lower=lower,
         crossed=held.number in firsts,
@@ -183,28 +185,40 @@ def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
 
 
 def _lane_now(view: ClosedView) -> Lane:
-    look, reading = view.look, view.readings[0]
-    upper, lower = _bounds_shown(view, look.bound.efficacy_z, look.number)
-    z = (
-        None
-        if isinstance(reading.z, Absent)
-        else z_number(reading.z, places=z_places(reading.z, look.bound.efficacy_z))
-    )
+    look, z = view.look, _z_now(view)
+    upper, lower = _bounds_shown(view, z, look.bound.efficacy_z, look.number)
     crossed = any(each.verdict.crossed != "none" for each in view.readings)
-    fraction = look.bound.information_fraction
-    return Lane(look.number, fraction, "now", look.final, z, upper, lower, crossed)
+    fraction, shown = look.bound.information_fraction, _z_shown(z, look.bound.efficacy_z)
+    return Lane(look.number, fraction, "now", look.final, shown, upper, lower, crossed)
 
 
 def _planned_lane(view: ClosedView, bound: Bound) -> Lane:
-    upper, lower = _bounds_shown(view, bound.efficacy_z, bound.number)
+    upper, lower = _bounds_shown(view, None, bound.efficacy_z, bound.number)
     return Lane(bound.number, bound.information_fraction, "planned", bound.final, None, upper, lower)
 
 
-def _bounds_shown(view: ClosedView, bound: Estimate, look: int) -> tuple[Span | None, Span | None]:
+def _z_now(view: ClosedView) -> float | None:
+    z = view.readings[0].z
+    return None if isinstance(z, Absent) else z
+
+
+def _z_shown(z: float | None, bound: Estimate) -> Span | None:
+    return None if z is None else z_number(z, places=z_places(z, bound))
+
+
+def _places(z: float | None, bound: Estimate) -> int:
+    """The places of a bound beside the z of its look, if it has one yet."""
+    return 3 if z is None else z_places(z, bound)
+
+
+def _bounds_shown(
+    view: ClosedView, z: float | None, bound: Estimate, look: int
+) -> tuple[Span | None, Span | None]:
     """The bounds a lane draws: none where none exists, or where that reading had crossed before this look."""
     if isinstance(bound, Absent):
         return None, None
-    upper, lower = z_number(bound), _mirror(bound)
+    places = _places(z, bound)
+    upper, lower = z_number(bound, places=places), _mirror(bound, places)
     if view.masked and view.plan.design.sides == 1:
         tested = [not _crossed_before(reading, look) for reading in view.readings]
         return (upper if tested[0] else None), (lower if tested[1] else None)
@@ -218,44 +232,64 @@ def _crossed_before(reading: Reading, look: int) -> bool:
     return first is not None and first < look
 
 
+@dataclass(frozen=True)
+class _Column:
+    """The numbers under one lane, of a look held, shown or to come."""
+
+    fraction: float
+    events: int
+    z: float | None
+    bound: Estimate
+    ratio: Estimate
+    spent: float
+
+
+def _columns(view: ClosedView) -> tuple[_Column, ...]:
+    held = (
+        _Column(
+            each.fraction, each.events, each.z, each.efficacy_z, each.efficacy_hazard_ratio, each.alpha_spent
+        )
+        for each in view.readings[0].history
+    )
+    ahead = () if _all_over(view) else view.look.planned
+    return (*held, _of_bound(view.look.bound, _z_now(view)), *(_of_bound(bound, None) for bound in ahead))
+
+
+def _of_bound(bound: Bound, z: float | None) -> _Column:
+    return _Column(
+        bound.information_fraction,
+        bound.events,
+        z,
+        bound.efficacy_z,
+        bound.efficacy_hazard_ratio,
+        bound.alpha_spent,
+    )
+
+
 def _lane_rows(view: ClosedView) -> tuple[LaneRow, ...]:
     """The numbers under the lanes, in the order the question asks them: how far, where, against what."""
-    history, look, ahead = view.readings[0].history, view.look, view.look.planned
-    ahead = () if _all_over(view) else ahead
-    bounds = (look.bound, *ahead)
+    columns = _columns(view)
     plus_minus = ", ±" if view.masked or view.plan.design.sides == 2 else ""
-    fractions = [held.fraction for held in history] + [bound.information_fraction for bound in bounds]
-    events = [held.events for held in history] + [bound.events for bound in bounds]
-    zs = [held.z for held in history] + [
-        None if isinstance(view.readings[0].z, Absent) else view.readings[0].z
-    ]
-    bound_z = [held.efficacy_z for held in history] + [bound.efficacy_z for bound in bounds]
-    ratios = [held.efficacy_hazard_ratio for held in history] + [
-        bound.efficacy_hazard_ratio for bound in bounds
-    ]
-    spent = [held.alpha_spent for held in history] + [bound.alpha_spent for bound in bounds]
-    z_cells = tuple(None if z is None else z_number(z) for z in zs) + (None,) * len(ahead)
+    fractions = tuple(number(each.fraction, 3) for each in columns)
+    bounds = tuple(_or_dash(each.bound, _places(each.z, each.bound)) for each in columns)
+    ratios = tuple(_or_dash(each.ratio, 3) for each in columns)
     rows = (
+        LaneRow(line("Information fraction"), line("Fraction"), fractions),
+        LaneRow(line("Events"), line("Events"), tuple(count(each.events) for each in columns)),
+        LaneRow(line(Z), line(Z), tuple(_z_shown(each.z, each.bound) for each in columns), rule_above=True),
+        LaneRow(line(f"Efficacy bound{plus_minus}"), line("Efficacy"), bounds),
+        LaneRow(line("as a hazard ratio"), line("as HR"), ratios, indent=True),
         LaneRow(
-            line("Information fraction"), line("Fraction"), tuple(number(value, 3) for value in fractions)
-        ),
-        LaneRow(line("Events"), line("Events"), tuple(count(value) for value in events)),
-        LaneRow(line(Z), line(Z), z_cells, rule_above=True),
-        LaneRow(
-            line(f"Efficacy bound{plus_minus}"), line("Efficacy"), tuple(_or_dash(value) for value in bound_z)
-        ),
-        LaneRow(
-            line("as a hazard ratio"), line("as HR"), tuple(_or_dash(value) for value in ratios), indent=True
-        ),
-        LaneRow(
-            line(f"Alpha spent, {_side_words(view)}"), line("Alpha"), tuple(alpha(value) for value in spent)
+            line(f"Alpha spent, {_side_words(view)}"),
+            line("Alpha"),
+            tuple(alpha(each.spent) for each in columns),
         ),
     )
     return rows if not view.masked else tuple(row for row in rows if row.short_head != line("as HR"))
 
 
-def _or_dash(value: Estimate) -> Span:
-    return Span("–", "quiet") if isinstance(value, Absent) else number(value, 3)
+def _or_dash(value: Estimate, places: int) -> Span:
+    return DASH if isinstance(value, Absent) else number(value, places)
 
 
 def _side_words(view: ClosedView) -> str:
@@ -278,11 +312,9 @@ def _observed_beside_bound(view: ClosedView) -> Table:
         caption=line(f"Look{NO_BREAK}{view.look.number}, {against(view)}"),
         columns=(Column(line("observed")), Column(line("efficacy bound"))),
         rows=(
-            Row(line(Z), _pair(number(reading.z, places), _existing(bound.efficacy_z, places))),
-            Row(
-                line(P, ", one-sided"), _pair(p_observed, _existing_span(bound.efficacy_p_one_sided, p_bound))
-            ),
-            Row(line("Hazard ratio"), _pair(number(ratio, 3), _existing(bound.efficacy_hazard_ratio, 3))),
+            Row(line(Z), _pair(number(reading.z, places), _or_dash(bound.efficacy_z, places))),
+            Row(line(P, ", one-sided"), _pair(p_observed, _existing(bound.efficacy_p_one_sided, p_bound))),
+            Row(line("Hazard ratio"), _pair(number(ratio, 3), _or_dash(bound.efficacy_hazard_ratio, 3))),
         ),
     )
 
@@ -291,42 +323,51 @@ def _pair(left: Span, right: Span) -> tuple[Cell, Cell]:
     return Cell((left,)), Cell((right,))
 
 
-def _existing(value: Estimate, places: int) -> Span:
-    return _existing_span(value, number(value, places))
-
-
-def _existing_span(value: Estimate, span: Span) -> Span:
-    return Span("–", "quiet") if isinstance(value, Absent) else span
+def _existing(value: Estimate, span: Span) -> Span:
+    return DASH if isinstance(value, Absent) else span
 
 
 def _interval_table(view: ClosedView) -> Table:
     cox = view.cox
     shown = line(number(cox, 3)) if isinstance(cox, Absent) else interval(cox.ci_low, cox.ci_high, 3)
     return Table(
-        caption=line(f"Hazard ratio, {cox_level(cox):.0%} interval"),
+        caption=line(f"Hazard ratio, {level_text(cox_level(view))} interval"),
         columns=(Column(()),),
-        rows=(Row(line("not adjusted for looks"), (Cell(shown),)),),
+        rows=(Row(line(NOT_ADJUSTED), (Cell(shown),)),),
     )
 
 
 def _masked_tables(view: ClosedView) -> tuple[Table, ...]:
-    first, second = view.readings
-    bound = view.look.bound
-    p_first, p_second = p_values(first.p_one_sided, second.p_one_sided)
+    p_bound = view.look.bound.efficacy_p_one_sided
+    *p_observed, p_at_bound = p_values(*(each.p_one_sided for each in view.readings), p_bound)
+    z = [_z_and_bound(view, each) for each in view.readings]
     both = Table(
         caption=line(f"Look{NO_BREAK}{view.look.number}, both readings"),
         columns=tuple(Column(line(f"if {each.experimental} is experimental")) for each in view.readings),
         rows=(
-            Row(
-                line(Z),
-                _pair(*(number(each.z, z_places(each.z, bound.efficacy_z)) for each in view.readings)),
-            ),
-            Row(line("Efficacy bound"), _pair(*(_existing(bound.efficacy_z, 3) for _ in view.readings))),
+            Row(line(Z), _pair(z[0][0], z[1][0])),
+            Row(line("Efficacy bound"), _pair(z[0][1], z[1][1])),
             Row(line("Crossed"), _pair(*(_crossing_word(view, each) for each in view.readings))),
-            Row(line(P, ", one-sided"), _pair(p_first, p_second)),
+            Row(line(P, ", one-sided"), _pair(*p_observed)),
+            Row(
+                line("at the bound"),
+                _pair(*(_tested(view, each, _existing(p_bound, p_at_bound)) for each in view.readings)),
+                indent=True,
+            ),
         ),
     )
     return both, _whichever_table(view)
+
+
+def _z_and_bound(view: ClosedView, reading: Reading) -> tuple[Span, Span]:
+    bound = view.look.bound.efficacy_z
+    places = z_places(reading.z, bound)
+    return number(reading.z, places), _tested(view, reading, _or_dash(bound, places))
+
+
+def _tested(view: ClosedView, reading: Reading, bound: Span) -> Span:
+    """The bound, or a dash where this reading crossed before, so that nothing is tested here."""
+    return DASH if is_over_running(view, reading) else bound
 
 
 def _crossing_word(view: ClosedView, reading: Reading) -> Span:
@@ -346,7 +387,7 @@ def _whichever_table(view: ClosedView) -> Table:
     else:
         rows.append(Row(line("Hazard ratio"), (Cell(line(number(cox.hazard_ratio, 3))),)))
         limits = interval(cox.ci_low, cox.ci_high, 3)
-        rows.append(Row(line(f"{cox.level:.0%} interval, not adjusted"), (Cell(limits),)))
+        rows.append(Row(line(f"{level_text(cox.level)} interval, {NOT_ADJUSTED}"), (Cell(limits),)))
     of, other = (label_of(view, arm).letter for arm in view.arms)
     return Table(line(f"{of} against {other}, whichever is experimental"), (Column(()),), tuple(rows))
 
@@ -363,7 +404,7 @@ def _logrank_table(view: ClosedView) -> Table:
     ]
     if view.plan.columns.strata:
         z = plain if isinstance(plain, Absent) else plain.z
-        rows.append(Row(line(Z, ", not stratified"), (Cell(line(number(z, 3))),)))
+        rows.append(Row(line(Z, ", not stratified, descriptive"), (Cell(line(number(z, 3))),)))
     return Table(caption, (Column(()),), tuple(rows))
 
 
@@ -402,11 +443,15 @@ def _looks_table(view: ClosedView) -> Table:
     rows = tuple(
         Row(
             line(f"{lane.look}, {_state_word(lane, view)}"),
-            tuple(Cell(() if row.cells[index] is None else (row.cells[index],)) for row in figure_rows),
+            tuple(_cell(row.cells[index]) for row in figure_rows),
         )
         for index, lane in enumerate(lanes)
     )
     return Table(line(f"The looks and their bounds, {against(view)}"), columns, rows, line("Look"))
+
+
+def _cell(span: Span | None) -> Cell:
+    return Cell(() if span is None else (span,))
 
 
 def _state_word(lane: Lane, view: ClosedView) -> str:
@@ -418,15 +463,24 @@ def _state_word(lane: Lane, view: ClosedView) -> str:
 
 
 def _note(view: ClosedView) -> Line:
-    figure = boundary_figure(view)
     lanes = "Each look has two lanes: the left reads as if A, the right as if B were experimental. "
-    start = lanes if figure.layout == "two lanes" else ""
+    start = lanes if boundary_figure(view).layout == "two lanes" else ""
     past = [str(held.number) for held in view.look.past]
     as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: bounds as used." if past else ""
     return line(
-        f"{start}Grey: beyond the efficacy bound. Bounds exist at looks only; the dotted line guides the eye.{as_used}",
+        f"{start}Grey: beyond the efficacy bound. "
+        f"Bounds exist at looks only; the dotted line guides the eye.{as_used}",
         *_ahead_words(view),
+        _no_bound_words(view),
+        FINAL_WORDS if view.look.final and view.look.information.fraction < 1 else "",
     )
+
+
+def _no_bound_words(view: ClosedView) -> str:
+    """Why a dash stands in place of a bound."""
+    held = [(each.number, each.efficacy_z) for each in view.readings[0].history]
+    bounds = [*held, (view.look.number, view.look.bound.efficacy_z)]
+    return "".join(f" Look {look}: {bound.reason}." for look, bound in bounds if isinstance(bound, Absent))
 
 
 def _ahead_words(view: ClosedView) -> tuple[Span, ...]:

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from app.model.survival import CoxResult, SurvivalCurve
-from app.model.values import Absent, Estimate
+from app.model.values import Absent, Bools, Estimate, Floats
 from app.sheets.arms import label_of
 from app.sheets.axis import FEWEST_AT_RISK, TimeAxis, time_axis
 from app.sheets.blocks import (
@@ -28,8 +28,11 @@ from app.sheets.blocks import (
 from app.sheets.methods import methods
 from app.sheets.words import (
     NO_BREAK,
+    NO_BREAK_HYPHEN,
     decimal,
+    from_to,
     interval,
+    level_text,
     line,
     listed,
     number,
@@ -42,6 +45,7 @@ from app.views.open import OpenView
 QUESTION = "What happened to the patients?"
 MOST_STROKES = 250
 NOT_ADJUSTED = "not adjusted for looks"
+NOT_FOLLOWED = Absent("not estimable: nobody was followed that long")
 
 
 @dataclass(frozen=True, eq=False)
@@ -102,14 +106,19 @@ def event_free_sentence(view: ClosedView) -> Line:
 
 
 def _sentence(shown: Sequence[CurveShown], axis: TimeAxis) -> Line:
-    at = named_time(axis)
-    start = line(f"At {said_time(at)}{NO_BREAK}{axis.unit} ")
-    parts: list[Line] = []
-    for item in shown:
-        where = "" if item.label is None else f" {preposition(item.label)}{NO_BREAK}{item.label.in_sentence}"
-        parts.append(line(percent(survival_at(item.curve, at * axis.scale)), f"%{where}"))
-    end = " were event‑free." if len(shown) > 1 else " of all subjects were event‑free."
+    start = line(f"At {said_time(axis.named)}{NO_BREAK}{axis.unit} ")
+    parts = [_event_free(item, axis.named * axis.scale) for item in shown]
+    whose = "" if len(shown) > 1 else " of all subjects"
+    end = f"{whose} were event{NO_BREAK_HYPHEN}free."
     return line(start, *_joined(parts), end)
+
+
+def _event_free(item: CurveShown, time: float) -> Line:
+    """ "57.5% on tablet"."""
+    share = percent(survival_at(item.curve, time))
+    sign = "" if share.value is None else "%"
+    where = "" if item.label is None else f" {preposition(item.label)}{NO_BREAK}{item.label.in_sentence}"
+    return line(share, f"{sign}{where}")
 
 
 def _joined(parts: list[Line]) -> tuple[Line, ...]:
@@ -125,23 +134,24 @@ def said_time(value: float) -> str:
     return decimal(value, 0) if value == int(value) else f"{value:g}"
 
 
-def named_time(axis: TimeAxis) -> float:
-    """The time the sentence speaks of: the last whole year shown, else the last tick."""
-    if axis.unit == "months" and axis.end >= 12:
-        return 12.0 * math.floor(axis.end / 12)
-    return axis.end
-
-
-def survival_at(curve: SurvivalCurve, time: float) -> float:
-    """The right-continuous curve at `time`, 0-1."""
+def survival_at(curve: SurvivalCurve, time: float) -> Estimate:
+    """The right-continuous curve at `time`, 0-1; one that ends above 0 says nothing after its last time."""
+    if time > curve.time[-1] and curve.survival[-1] > 0.0:
+        return NOT_FOLLOWED
     return _before(curve.survival, _index_at(curve, time), 1.0)
+
+
+def limits_at(curve: SurvivalCurve, time: float) -> tuple[float, float]:
+    """The limits of the curve at `time`, NaN where there are none."""
+    index = _index_at(curve, time)
+    return _before(curve.ci_low, index, math.nan), _before(curve.ci_high, index, math.nan)
 
 
 def _index_at(curve: SurvivalCurve, time: float) -> int:
     return int(np.searchsorted(curve.time, time, side="right"))
 
 
-def _before(values: np.ndarray, index: int, start: float) -> float:
+def _before(values: Floats, index: int, start: float) -> float:
     return start if index == 0 else float(values[index - 1])
 
 
@@ -173,17 +183,26 @@ def _curve_line(item: CurveShown, axis: TimeAxis) -> CurveLine:
     )
 
 
-def _limits(values: np.ndarray) -> tuple[float | None, ...]:
+def _limits(values: Floats) -> tuple[float | None, ...]:
     return tuple(None if math.isnan(value) else 100 * float(value) for value in values)
 
 
 def _strokes(curve: SurvivalCurve, axis: TimeAxis) -> tuple[tuple[float, float], ...]:
     """Censoring strokes inside the axis; none when there would be too many to tell apart."""
-    inside = (curve.censored > 0) & (curve.time <= axis.end * axis.scale)
-    if int(inside.sum()) > MOST_STROKES:
+    inside = _censorings_shown(curve, axis)
+    if _too_many(inside):
         return ()
     times = axis.shown(curve.time[inside]).tolist()
     return tuple(zip(times, (100 * curve.survival[inside]).tolist(), strict=True))
+
+
+def _censorings_shown(curve: SurvivalCurve, axis: TimeAxis) -> Bools:
+    inside: Bools = (curve.censored > 0) & (curve.time <= axis.end * axis.scale)
+    return inside
+
+
+def _too_many(strokes: Bools) -> bool:
+    return int(strokes.sum()) > MOST_STROKES
 
 
 def rows_at_ticks(curve: SurvivalCurve, subjects: int, axis: TimeAxis) -> AtRiskRow:
@@ -196,10 +215,9 @@ def rows_at_ticks(curve: SurvivalCurve, subjects: int, axis: TimeAxis) -> AtRisk
 
 
 def _estimates(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
-    level = shown[0].curve.level
-    named = sorted({at for at in (named_time(axis) / 2, named_time(axis)) if at == int(at)})
+    named = sorted({at for at in (axis.named / 2, axis.named) if at == int(at)})
     return Table(
-        caption=line(f"Estimates with {level:.0%} intervals"),
+        caption=line(f"Estimates with {level_text(shown[0].curve.level)} intervals"),
         columns=tuple(
             Column(line(item.label.name if item.label else "All subjects"), arm=item.label) for item in shown
         ),
@@ -211,7 +229,7 @@ def _estimates(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
             Row(line(f"Median, {axis.unit}"), tuple(_median(item.curve, axis) for item in shown)),
             *(
                 Row(
-                    line(f"Event‑free at {said_time(at)}{NO_BREAK}{axis.unit}, %"),
+                    line(f"Event{NO_BREAK_HYPHEN}free at {said_time(at)}{NO_BREAK}{axis.unit}, %"),
                     tuple(_survival_cell(item.curve, at * axis.scale) for item in shown),
                 )
                 for at in named
@@ -232,14 +250,15 @@ def in_unit(value: Estimate, scale: float) -> Span:
 
 
 def _median(curve: SurvivalCurve, axis: TimeAxis) -> Cell:
-    limits = line(in_unit(curve.median_ci_low, axis.scale), " to ", in_unit(curve.median_ci_high, axis.scale))
+    limits = from_to(in_unit(curve.median_ci_low, axis.scale), in_unit(curve.median_ci_high, axis.scale))
     return Cell(line(in_unit(curve.median, axis.scale)), limits)
 
 
 def _survival_cell(curve: SurvivalCurve, time: float) -> Cell:
-    index = _index_at(curve, time)
-    low, high = _before(curve.ci_low, index, math.nan), _before(curve.ci_high, index, math.nan)
-    return Cell(line(percent(survival_at(curve, time))), interval(low, high, 1, scale=100))
+    survival = survival_at(curve, time)
+    if isinstance(survival, Absent):
+        return Cell(line(percent(survival)))
+    return Cell(line(percent(survival)), interval(*limits_at(curve, time), 1, scale=100))
 
 
 def hazard_ratio_table(view: ClosedView) -> Table:
@@ -247,18 +266,19 @@ def hazard_ratio_table(view: ClosedView) -> Table:
     return Table(
         caption=line(f"Hazard ratio, {against(view)}"),
         columns=(Column(()),),
-        rows=(Row(line(f"{cox_level(view.cox):.0%} interval {NOT_ADJUSTED}"), (Cell(*_ratio(view.cox)),)),),
+        rows=(Row(line(f"{level_text(cox_level(view))} interval, {NOT_ADJUSTED}"), (_ratio(view.cox),)),),
     )
 
 
-def cox_level(cox: CoxResult | Absent) -> float:
-    return 0.95 if isinstance(cox, Absent) else cox.level
+def cox_level(view: ClosedView) -> float:
+    """The level asked for, which stands also where the ratio cannot be estimated."""
+    return view.plan.analysis.confidence
 
 
-def _ratio(cox: CoxResult | Absent) -> tuple[Line, Line]:
+def _ratio(cox: CoxResult | Absent) -> Cell:
     if isinstance(cox, Absent):
-        return line(number(cox, 3)), ()
-    return line(number(cox.hazard_ratio, 3)), interval(cox.ci_low, cox.ci_high, 3)
+        return Cell(line(number(cox, 3)))
+    return Cell(line(number(cox.hazard_ratio, 3)), interval(cox.ci_low, cox.ci_high, 3))
 
 
 def against(view: ClosedView) -> str:
@@ -268,15 +288,24 @@ def against(view: ClosedView) -> str:
 
 
 def _note(shown: Sequence[CurveShown], axis: TimeAxis) -> Line:
-    many = any(int((item.curve.censored > 0).sum()) > MOST_STROKES for item in shown)
+    many = any(_too_many(_censorings_shown(item.curve, axis)) for item in shown)
     strokes = f"Censorings at more than {MOST_STROKES} times: not drawn." if many else "Strokes: censored."
     months = " A month is 30.4375 days." if axis.unit == "months" and axis.scale != 1 else ""
-    arms = "each arm" if len(shown) > 1 else "all"
     return line(
-        f"Bands and intervals: {shown[0].curve.interval}, pointwise. Follow-up: median, reverse Kaplan-Meier. {strokes} "
-        f"Events and censored: before the tick; with those at risk they add up to the subjects. "
-        f"The axis ends at the last tick with {FEWEST_AT_RISK} at risk in {arms}.{months}"
+        f"Bands and intervals: {shown[0].curve.interval}, pointwise. "
+        f"Follow-up: median, reverse Kaplan-Meier. {strokes} "
+        "Events and censored: before the tick; with those at risk they add up to the subjects. "
+        f"{_end_words(axis, len(shown))}{months}"
     )
+
+
+def _end_words(axis: TimeAxis, curves: int) -> str:
+    """The rule by which the axis ends, as it applied here."""
+    if axis.enough_at_risk:
+        arms = "each arm" if curves > 1 else "all"
+        return f"The axis ends at the last tick with {FEWEST_AT_RISK} at risk in {arms}."
+    arm = " in an arm" if curves > 1 else ""
+    return f"Fewer than {FEWEST_AT_RISK}{arm} are at risk at the first tick: all follow-up is shown."
 
 
 def _figure_table(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
@@ -284,7 +313,10 @@ def _figure_table(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
     heads: list[Column] = []
     for item in shown:
         name = item.label.name if item.label else "All subjects"
-        heads += [Column(line(f"{name}, {what}"), arm=item.label) for what in ("event‑free, %", "at risk")]
+        heads += [
+            Column(line(f"{name}, {what}"), arm=item.label)
+            for what in (f"event{NO_BREAK_HYPHEN}free, %", "at risk")
+        ]
     rows = []
     for index, tick in enumerate(axis.ticks):
         cells: list[Cell] = []

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from app.model.extract import Acknowledgement, Changes, Extract, Finding, Snapshot, with_severity
 from app.sheets.blocks import Cell, Column, CountsFigure, Line, Row, Sheet, Span, Table
 from app.sheets.methods import methods
-from app.sheets.words import NO_BREAK, count, counted, day_text, line, of_total
+from app.sheets.words import NO_BREAK, count, counted, day_text, line, moment, of_total
 from app.views.closed import ClosedView
 from app.views.open import OpenView
 
@@ -80,38 +80,49 @@ def changes_figure(view: ClosedView) -> CountsFigure:
 
 
 def _kinds_of_change(changes: Changes) -> tuple[tuple[str, tuple[str, ...]], ...]:
+    """What the committee asks about first, in the order it asks."""
     return (
         ("new events", changes.new_events),
         ("reversed", changes.reversed_events),
         ("moved", changes.moved_events),
         ("vanished subjects", changes.vanished_subjects),
         ("changed arm", changes.changed_arm),
+    )
+
+
+def _further_changes(changes: Changes) -> tuple[tuple[str, tuple[str, ...]], ...]:
+    """What it takes besides to get from the events before to the events now."""
+    return (
         ("changed stratum", changes.changed_stratum),
         ("new subjects", changes.new_subjects),
+        ("new subjects with an event", changes.new_subjects_with_event),
+        ("vanished subjects with an event", changes.vanished_with_event),
     )
 
 
 def _changes_table(changes: Changes | None) -> Table | None:
     if changes is None:
         return None
-    rows = tuple(
-        Row(line(words[:1].upper() + words[1:]), (Cell((count(len(subjects)),)),))
-        for words, subjects in _kinds_of_change(changes)
-    )
+    kinds = (*_kinds_of_change(changes), *_further_changes(changes))
+    rows = tuple(Row(line(_capital(words)), (Cell((count(len(subjects)),)),)) for words, subjects in kinds)
     caption = line("Changes since the last snapshot; ", counted(changes.n_common, "subject"), " in both")
     return Table(caption, (Column(()),), rows)
+
+
+def _capital(words: str) -> str:
+    return words[:1].upper() + words[1:]
 
 
 def _identifiers_table(changes: Changes | None) -> tuple[Table, ...]:
     """Whom to ask the data centre about: identifiers as received, of all changes but new ones."""
     if changes is None:
         return ()
-    named = [(words, ids) for words, ids in _kinds_of_change(changes) if ids and not words.startswith("new")]
+    kinds = (*_kinds_of_change(changes), ("changed stratum", changes.changed_stratum))
+    named = [(words, ids) for words, ids in kinds if ids and not words.startswith("new")]
     if not named:
         return ()
     rows = tuple(
-        Row(line(words[:1].upper() + words[1:]), (Cell((count(len(ids)),)), Cell(line(_some(ids)))))
-        for words, ids in named
+        Row(line(_capital(words)), (Cell((count(len(ids)),)), Cell(line(_some(ids))))) for words, ids in named
     )
     columns = (Column(line("subjects")), Column(line("identifiers as received"), "words"))
     return (Table(line("Whom to ask the data centre about"), columns, rows, line("Change")),)
@@ -130,7 +141,7 @@ def _received_table(snapshot: Snapshot) -> Table:
         ("Declared as", snapshot.kind),
         ("Data cutoff", day_text(snapshot.cutoff)),
         ("Extract", extracted),
-        ("Received", snapshot.received_at.replace("T", " ").replace("+00:00", " UTC")),
+        ("Received", moment(snapshot.received_at)),
         ("Recorded by", snapshot.by),
     ]
     return Table(

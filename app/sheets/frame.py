@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from datetime import date
 from typing import Literal
 
 from app.model.boundary import Crossed
 from app.model.extract import LookKind
+from app.sequential.design import events_by
 from app.sheets.blocks import DateMark, PageFrame, Spine, SpineLook
 from app.sheets.words import day_text
 from app.views.closed import ClosedView
@@ -68,7 +69,7 @@ def closed_frame(
     )
 
 
-def _crossing(view: ClosedView, number: int | None) -> Crossed:
+def _crossing(view: ClosedView, number: int) -> Crossed:
     """What the spine's diamond stands for; it is the same mark whichever bound was crossed."""
     for reading in view.readings:
         if number == view.look.number and reading.verdict.crossed != "none":
@@ -96,7 +97,7 @@ def open_frame(
     )
 
 
-def spine(around: Surroundings, shown: int, crossed: dict[int | None, Crossed]) -> Spine:
+def spine(around: Surroundings, shown: int, crossed: Mapping[int, Crossed]) -> Spine:
     held = [
         SpineLook(
             number=look.number,
@@ -125,7 +126,7 @@ def _still_planned(around: Surroundings) -> Sequence[SpineLook]:
         SpineLook(
             number=first + index,
             fraction=fraction,
-            events=-int(-fraction * around.planned_events // 1),
+            events=events_by(fraction, around.planned_events),
             kind="final" if fraction == 1 else "planned",
             state="planned",
             planned=fraction,

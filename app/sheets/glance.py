@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 from app.model.values import Absent
 from app.sheets.arms import label_of
 from app.sheets.axis import time_axis
@@ -19,7 +21,7 @@ from app.sheets.boundary import CROSSED, boundary_answer, boundary_figure
 from app.sheets.curves import (
     NOT_ADJUSTED,
     event_free_sentence,
-    named_time,
+    limits_at,
     open_curves_sheet,
     said_time,
     survival_at,
@@ -32,9 +34,11 @@ from app.sheets.information import (
     open_information_sheet,
 )
 from app.sheets.methods import methods, spending_key
-from app.sheets.words import NO_BREAK, count, interval, line, number, of_total
+from app.sheets.words import NO_BREAK, count, interval, level_text, line, number, of_total
 from app.views.closed import ArmView, ClosedView
 from app.views.open import OpenView
+
+NO_BOUND_HERE = "no efficacy boundary applies at this look."
 
 
 def glance_sheet(view: ClosedView, around: Surroundings, record: Line) -> Sheet:
@@ -89,6 +93,8 @@ def _answer(view: ClosedView) -> Line:
     if not view.masked:
         return line(start, _crossing_words(view))
     crossed = [reading.experimental for reading in view.readings if reading.verdict.first_crossed is not None]
+    if not crossed and isinstance(view.look.bound.efficacy_z, Absent):
+        return line(start, NO_BOUND_HERE)
     if not crossed:
         return line(start, "no boundary was crossed in either reading.")
     if len(crossed) == 2:
@@ -98,6 +104,8 @@ def _answer(view: ClosedView) -> Line:
 
 def _crossing_words(view: ClosedView) -> Line:
     verdict = view.readings[0].verdict
+    if verdict.first_crossed is None and isinstance(view.look.bound.efficacy_z, Absent):
+        return line(NO_BOUND_HERE)
     if verdict.first_crossed is None:
         return line("no boundary was crossed.")
     if verdict.first_crossed < view.look.number:
@@ -132,29 +140,29 @@ def _ratio_words(view: ClosedView) -> Line:
     of, other = (label_of(view, arm).letter for arm in view.arms)
     which = f"Hazard ratio of {of} to {other} " if view.masked else "Hazard ratio "
     ratio = line(which, number(cox.hazard_ratio, 3))
-    return line(ratio, f" ({cox.level:.0%} interval ", limits, f", {NOT_ADJUSTED}).")
+    return line(ratio, f" ({level_text(cox.level)} interval ", limits, f", {NOT_ADJUSTED}).")
 
 
 def _curves_strip(view: ClosedView) -> IntervalStrip:
     axis = time_axis(tuple(arm.curve for arm in view.arms), view.look.time_unit)
-    at = named_time(axis)
     return IntervalStrip(
-        title=f"Event-free at {said_time(at)} {axis.unit}",
-        description=f"Percent event-free at {said_time(at)} {axis.unit}, with its interval, by arm.",
+        title=f"Event-free at {said_time(axis.named)} {axis.unit}",
+        description=f"Percent event-free at {said_time(axis.named)} {axis.unit}, with its interval, by arm.",
         unit="Event-free, %",
         ticks=(0.0, 25.0, 50.0, 75.0, 100.0),
-        marks=tuple(_mark(view, arm, at * axis.scale) for arm in view.arms),
+        marks=tuple(mark for arm in view.arms for mark in _marks(view, arm, axis.named * axis.scale)),
     )
 
 
-def _mark(view: ClosedView, arm: ArmView, time: float) -> IntervalMark:
-    at = int((arm.curve.time <= time).sum()) - 1
-    low, high = (
-        (float(arm.curve.ci_low[at]), float(arm.curve.ci_high[at])) if at >= 0 else (float("nan"),) * 2
-    )
-    known = low == low and high == high
+def _marks(view: ClosedView, arm: ArmView, time: float) -> tuple[IntervalMark, ...]:
+    """The arm's mark; none where its curve says nothing at this time."""
+    survival = survival_at(arm.curve, time)
+    if isinstance(survival, Absent):
+        return ()
+    low, high = limits_at(arm.curve, time)
+    known = not (math.isnan(low) or math.isnan(high))
     limits = (100 * low, 100 * high) if known else (None, None)
-    return IntervalMark(label_of(view, arm), 100 * survival_at(arm.curve, time), *limits)
+    return (IntervalMark(label_of(view, arm), 100 * survival, *limits),)
 
 
 def _boundary_line(view: ClosedView) -> Line:

@@ -232,8 +232,8 @@ def _notes(view: ClosedView) -> tuple[Line, ...]:
     information = view.look.information
     notes = [line("Follow-up: median, reverse Kaplan-Meier.")]
     if not isinstance(information.variance_ratio, Absent) and information.variance_ratio < LOW_VARIANCE_RATIO:
-        low = "Doubt: the log-rank variance is less than 0.9 of events × shares, so events overstate the information."
-        notes.append(line(low))
+        low = f"Doubt: the log-rank variance is less than {LOW_VARIANCE_RATIO} of events × shares"
+        notes.append(line(f"{low}, so events overstate the information."))
     if view.masked and view.plan.arms.unequal:
         notes.append(line(unequal_words(view)))
     return tuple(notes)
@@ -242,6 +242,6 @@ def _notes(view: ClosedView) -> tuple[Line, ...]:
 def unequal_words(view: ClosedView) -> str:
     control, experimental = view.plan.arms.allocation
     return (
-        f"The plan allocates {control}:{experimental} (control : experimental): the numbers of subjects identify the "
-        "letters."
+        f"The plan allocates {control}:{experimental} (control : experimental): "
+        "the numbers of subjects identify the letters."
     )

@@ -19,7 +19,7 @@ from app.ledger.entries import (
 from app.ledger.history import Look, State
 from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Table
 from app.sheets.methods import methods
-from app.sheets.words import NO_BREAK, count, line, listed
+from app.sheets.words import NO_BREAK, count, line, listed, moment
 
 QUESTION = "What was shown, what was advised?"
 NOT_A_SIGNATURE = "Names are recorded as they were given; this is not an electronic signature."
@@ -37,7 +37,7 @@ class Freezing:
 
 @dataclass(frozen=True)
 class History:
-    """The state of the trial file and its entries with their bodies, in order; `freezing` while a report is set."""
+    """The state of the trial file and its entries with their bodies; `freezing` while a report is set."""
 
     state: State
     entries: tuple[tuple[Entry, Body], ...]
@@ -84,11 +84,6 @@ def _are(number: int) -> str:
     return "is" if number == 1 else "are"
 
 
-def moment(at: str) -> str:
-    """ "2027-01-26 09:30 UTC" from an entry's time."""
-    return f"{at[:10]} {at[11:16]}{NO_BREAK}UTC"
-
-
 def _look_table(look: Look, number: int, freezing: Freezing | None) -> Table:
     rows = [("Received", moment(look.received_at)), ("Received by", look.snapshot.by)]
     if freezing is not None:
@@ -133,7 +128,7 @@ def _words_table(caption: str, rows: Sequence[tuple[str, str]]) -> Table:
 
 
 def grouped(digest: str) -> str:
-    """The first and last digits of a digest, as a person compares them; the record holds it whole."""
+    """The first and last digits of a digest, as a person compares them; the entry holds it whole."""
     return f"{digest[:4]} {digest[4:8]} … {digest[-4:]}"
 
 
@@ -159,7 +154,8 @@ def said(body: Body) -> str:
         case PlanLocked():
             return f"Plan locked for trial {body.name}"
         case SnapshotReceived():
-            doubts = f", {len(body.acknowledgements)} doubts answered" if body.acknowledgements else ""
+            number = len(body.acknowledgements)
+            doubts = f", {number} doubt{'s' if number > 1 else ''} answered" if number else ""
             return f"Snapshot {body.number} received for a {body.kind} look, cutoff {body.cutoff}{doubts}"
         case ResultsOpened():
             return f"Comparative results of look {body.look} opened, {body.view}"

@@ -4,17 +4,21 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from datetime import date, datetime
+from datetime import date
 
 from app.model.values import Absent, Estimate
 from app.sheets.blocks import ArmLabel, Letter, Line, Span, Tone
 
-MINUS = "−"
-NO_BREAK = " "
-NO_BREAK_HYPHEN = "‑"
+MINUS = "\u2212"
+NO_BREAK = "\u00a0"
+NO_BREAK_HYPHEN = "\u2011"
 NOT_REACHED = "not reached"
 NOT_ESTIMABLE = "not estimable"
 DAYS_PER_MONTH = 30.4375
+FEWEST_Z_PLACES = 3
+MOST_Z_PLACES = 17  # any two doubles near a bound differ by then
+LONGEST_P = 8
+LONGEST_ALPHA = 10
 
 Part = str | Span | Line
 
@@ -57,7 +61,7 @@ def number(value: Estimate, places: int, *, tone: Tone = "plain") -> Span:
 
 def count(value: int, *, tone: Tone = "plain") -> Span:
     """A count; thousands are kept together without a mark up to 9999, spaced beyond."""
-    text = f"{value:,}".replace(",", " ") if value >= 10_000 else str(value)
+    text = f"{value:,}".replace(",", NO_BREAK) if value >= 10_000 else str(value)
     return Span(text, tone, value=float(value))
 
 
@@ -84,57 +88,65 @@ def z_number(value: Estimate, *, tone: Tone = "plain", places: int = 3) -> Span:
 
 
 def z_places(z: Estimate, bound: Estimate) -> int:
-    """Three places, or as many as it takes for a z and its bound to read differently when they differ."""
-    if isinstance(z, Absent) or isinstance(bound, Absent):
-        return 3
-    return next(
-        (
-            places
-            for places in range(3, 16)
-            if abs(z) == abs(bound) or f"{z:.{places}f}" != f"{bound:.{places}f}"
-        ),
-        16,
-    )
+    """Three places, or as many as it takes for a z and its bound to read differently when they differ.
+
+    Sizes are compared, since a bound stands on either side where the test has two or the arms are masked.
+    """
+    if isinstance(z, Absent) or isinstance(bound, Absent) or abs(z) == abs(bound):
+        return FEWEST_Z_PLACES
+    places = FEWEST_Z_PLACES
+    while places < MOST_Z_PLACES and decimal(abs(z), places) == decimal(abs(bound), places):
+        places += 1
+    return places
 
 
 def places_for(value: float, significant: int) -> int:
-    """Decimal places that show `value` with so many significant digits."""
+    """Decimal places that show `value` with so many significant digits, once it is rounded to them."""
     if value <= 0:
         return significant
-    return max(0, significant - 1 - math.floor(math.log10(value)))
+    exponent = int(f"{value:.{significant - 1}e}".partition("e")[2])
+    return max(0, significant - 1 - exponent)
 
 
 def p_values(*values: Estimate) -> tuple[Span, ...]:
-    """p-values that stand beside each other: two significant digits of the smallest, one precision for all."""
+    """p-values beside each other: two significant digits of the smallest, one precision for all."""
     known = [value for value in values if not isinstance(value, Absent) and value > 0]
     places = max((places_for(value, 2) for value in known), default=4)
     return tuple(_p_value(value, max(2, places)) for value in values)
 
 
-LONGEST_P = 7
-
-
 def _p_value(value: Estimate, places: int) -> Span:
     if isinstance(value, Absent):
         return number(value, 4)
-    if 0 < value < 0.5 * 10**-LONGEST_P:
+    if value < 10**-LONGEST_P:
         return Span(f"<{NO_BREAK}0.{'0' * (LONGEST_P - 1)}1", value=value)
     return Span(decimal(value, min(places, LONGEST_P)), value=value)
 
 
 def alpha(value: float) -> Span:
-    """Alpha with three significant digits, never in powers of ten where ten decimals will do."""
+    """Alpha with three significant digits, in powers of ten only where ten decimals will not do."""
     if value == 0:
         return Span("0", value=0.0)
     places = places_for(value, 3)
-    if places > 10:
-        return Span(f"<{NO_BREAK}0.0000000001", value=value)
+    if places > LONGEST_ALPHA:
+        digits, _, exponent = f"{value:.2e}".partition("e")
+        return Span(f"{digits}e{MINUS}{-int(exponent)}", value=value)
     return Span(decimal(value, places), value=value)
 
 
+def level_text(level: float) -> str:
+    """ "95%", "97.5%": a confidence level as the plan writes it."""
+    return f"{100 * level:.10g}%"
+
+
 def interval(low: Estimate, high: Estimate, places: int, *, scale: float = 1.0) -> Line:
-    """ "0.658 to 0.983"; an open end is said in words."""
-    return line(_scaled(low, places, scale), " to ", _scaled(high, places, scale))
+    """ "0.658 to 0.983"; an open end is said in words, once where neither end exists."""
+    return from_to(_scaled(low, places, scale), _scaled(high, places, scale))
+
+
+def from_to(low: Span, high: Span) -> Line:
+    """Two limits; once where both are the same word."""
+    return (low,) if low == high and low.value is None else line(low, " to ", high)
 
 
 def _scaled(value: Estimate, places: int, scale: float) -> Span:
@@ -149,8 +161,9 @@ def day_text(day: date) -> str:
     return f"{day.day}{NO_BREAK}{day:%b}{NO_BREAK}{day:%Y}"
 
 
-def moment_text(moment: datetime) -> str:
-    return f"{day_text(moment.date())}, {moment:%H:%M} UTC"
+def moment(at: str) -> str:
+    """ "2027-01-26 09:30 UTC" from an entry's time, which is in UTC."""
+    return f"{at[:10]} {at[11:16]}{NO_BREAK}UTC"
 
 
 def listed(words: Sequence[str]) -> str:

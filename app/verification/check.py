@@ -121,6 +121,6 @@ def check_report(report: bytes) -> Iterator[CheckLine]:
         yield CheckLine(False, "The record in the report is not the one whose SHA-256 the report prints.")
     yield CheckLine(
         True,
-        f"SHA-256 of the report: {digest(report)}. Compare it with the freeze entry of the trial file; the report "
-        "alone cannot prove that it is the one that was frozen.",
+        f"SHA-256 of the report: {digest(report)}. Compare it with the freeze entry of the trial file; "
+        "the report alone cannot prove that it is the one that was frozen.",
     )
