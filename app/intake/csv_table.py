@@ -25,6 +25,7 @@ from app.settings import Limits
 
 _QUOTE, _COMMA, _NEWLINE = b'",\n'
 _BYTE_ORDER_MARK = b"\xef\xbb\xbf"
+LONGEST_HEADER = 100_000
 _UTF16_MARKS = (b"\xff\xfe", b"\xfe\xff")
 
 Texts = NDArray[np.object_]
@@ -89,7 +90,18 @@ def read_header(file: ReceivedFile) -> tuple[str, ...]:
 
 
 def _header(content: bytes, file: str) -> tuple[str, ...]:
-    names = _names(content[: _first_line_end(content)])
+    header = content[: _first_line_end(content)]
+    if not header or len(header) > LONGEST_HEADER or header.count(b'"') % 2:
+        raise _refused(
+            "header-unreadable",
+            "header that cannot be read",
+            file,
+            found=f"a first row of {len(header):,} bytes"
+            + (" with a quotation mark that is never closed" if header.count(b'"') % 2 else ""),
+            accepted=f"a first row of column names divided by commas, of at most {LONGEST_HEADER:,} bytes",
+            remedy="export the file again as CSV",
+        )
+    names = tuple(next(csv.reader([header.decode("utf-8")])))
     if len(names) == 1 and any(other in names[0] for other in ";\t|"):
         raise _refused(
             "delimiter-not-comma",
@@ -171,15 +183,13 @@ def _not_utf8(name: str, found: str) -> TableRefused:
 
 
 def _first_line_end(content: bytes) -> int:
-    """The place of the newline that ends the header, which may hold quoted newlines."""
+    """The place of the newline that ends the header, which may hold quoted newlines; the last one at most."""
     end = content.index(b"\n")
-    while content.count(b'"', 0, end) % 2 and content.find(b"\n", end + 1) >= 0:
-        end = content.index(b"\n", end + 1)
+    inside_quotes = content.count(b'"', 0, end) % 2
+    while inside_quotes and end + 1 < len(content):
+        start, end = end + 1, content.index(b"\n", end + 1)
+        inside_quotes ^= content.count(b'"', start, end) % 2
     return end
-
-
-def _names(header: bytes) -> tuple[str, ...]:
-    return tuple(next(csv.reader([header.decode("utf-8")])))
 
 
 def _check_names(names: tuple[str, ...], file: str) -> None:

@@ -10,6 +10,7 @@ from itertools import pairwise
 from typing import Any
 
 LONGEST_TEXT = 200
+LARGEST_WHOLE = 10**9
 
 
 def _same(value: Any) -> Any:
@@ -27,11 +28,13 @@ class Domain:
 
 def is_number(value: Any) -> bool:
     """A finite number; TOML's true and false are none, although Python counts with them."""
-    return isinstance(value, int | float) and not isinstance(value, bool) and math.isfinite(value)
+    if isinstance(value, float):
+        return math.isfinite(value)
+    return is_whole(value)
 
 
 def is_whole(value: Any) -> bool:
-    return isinstance(value, int) and not isinstance(value, bool)
+    return isinstance(value, int) and not isinstance(value, bool) and abs(value) <= LARGEST_WHOLE
 
 
 def is_text(value: Any) -> bool:
@@ -57,7 +60,9 @@ def one_of(*words: str) -> Domain:
 
 
 def whole(least: int) -> Domain:
-    return Domain(f"a whole number of at least {least}", lambda value: is_whole(value) and value >= least)
+    return Domain(
+        f"a whole number from {least} to {LARGEST_WHOLE:,}", lambda value: is_whole(value) and value >= least
+    )
 
 
 def number(accepted: str, holds: Callable[[float], bool]) -> Domain:

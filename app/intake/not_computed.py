@@ -24,36 +24,44 @@ class NotComputed:
 
 
 NOT_COMPUTED = (
-    NotComputed("futility", "futility bounds are"),
-    NotComputed("harm", "a harm boundary is"),
-    NotComputed("hypothesis", "further hypotheses are"),
-    NotComputed("held", "looks held before the trial file existed are"),
-    NotComputed("trial", "a planned end date is", key="planned_end_date"),
+    NotComputed("futility", "futility bounds are not computed"),
+    NotComputed("harm", "a harm boundary is not computed"),
+    NotComputed("hypothesis", "further hypotheses are not computed"),
+    NotComputed("held", "looks held before the trial file existed are not computed"),
+    NotComputed("trial", "a planned end date is not used", key="planned_end_date"),
     NotComputed(
         "efficacy",
-        "bounds by this spending function or family are",
+        "bounds by this spending function or family are not computed",
         key="spending",
         computed=("O'Brien-Fleming-type", "Pocock-type"),
     ),
-    NotComputed("design", "information by score variance is", key="information", computed=("events",)),
-    NotComputed("design", "spending by the calendar is", key="spending_clock", computed=("information",)),
-    NotComputed("design", "carrying on by crossing probability is", key="carry_on", computed=("nominal",)),
-    NotComputed("design", "alpha for safety looks is", key="safety_spend", computed=(0,)),
-    NotComputed("enrolment", "a monthly rate of enrolment is", key="planned_per_month"),
-    NotComputed("enrolment", "drop-out for forecasts is", key="dropout_per_year"),
-    NotComputed("analysis", "this treatment of ties is", key="ties", computed=("Efron",)),
-    NotComputed("analysis", "this curve interval is", key="curve_interval", computed=("log-log",)),
-    NotComputed("analysis", "a restricted mean is", key="restricted_mean_at"),
-    NotComputed("analysis", "landmark survival is", key="landmarks_at"),
-    NotComputed("analysis", "weighted tests are", key="weights"),
-    NotComputed("analysis", "subgroups are", key="subgroups"),
-    NotComputed("analysis", "a prior for predictive power is", key="prior_hazard_ratio"),
-    NotComputed("analysis", "a prior for predictive power is", key="prior_std_error"),
-    NotComputed("columns", "an adjudication column is", key="adjudicated"),
-    NotComputed("columns", "a cause column is", key="cause"),
-    NotComputed("columns", "a site column is", key="site"),
-    NotComputed("columns", "a last-contact column is", key="last_contact"),
-    NotComputed("columns", "an analysis-set column is", key="analysis_set"),
+    NotComputed(
+        "design", "information by score variance is not computed", key="information", computed=("events",)
+    ),
+    NotComputed(
+        "design", "spending by the calendar is not computed", key="spending_clock", computed=("information",)
+    ),
+    NotComputed(
+        "design", "carrying on by crossing probability is not computed", key="carry_on", computed=("nominal",)
+    ),
+    NotComputed("design", "alpha for safety looks is not computed", key="safety_spend", computed=(0,)),
+    NotComputed("enrolment", "a monthly rate of enrolment is not used", key="planned_per_month"),
+    NotComputed("enrolment", "drop-out for forecasts is not used", key="dropout_per_year"),
+    NotComputed("analysis", "this treatment of ties is not computed", key="ties", computed=("Efron",)),
+    NotComputed(
+        "analysis", "this curve interval is not computed", key="curve_interval", computed=("log-log",)
+    ),
+    NotComputed("analysis", "a restricted mean is not computed", key="restricted_mean_at"),
+    NotComputed("analysis", "landmark survival is not computed", key="landmarks_at"),
+    NotComputed("analysis", "weighted tests are not computed", key="weights"),
+    NotComputed("analysis", "subgroups are not computed", key="subgroups"),
+    NotComputed("analysis", "a prior for predictive power is not used", key="prior_hazard_ratio"),
+    NotComputed("analysis", "a prior for predictive power is not used", key="prior_std_error"),
+    NotComputed("columns", "an adjudication column is not read", key="adjudicated"),
+    NotComputed("columns", "a cause column is not read", key="cause"),
+    NotComputed("columns", "a site column is not read", key="site"),
+    NotComputed("columns", "a last-contact column is not read", key="last_contact"),
+    NotComputed("columns", "an analysis-set column is not read", key="analysis_set"),
 )
 
 
@@ -76,17 +84,17 @@ def not_computed_parts(
 
 def _refused_table(part: NotComputed, place: Place) -> DesignInvalid:
     return DesignInvalid(
-        f"{part.what} not computed by this version",
+        f"{part.what} by this version",
         where=str(place),
-        remedy="remove the table, or use a version that computes it",
+        remedy="remove the table, or use a version that does so",
     )
 
 
 def _refused_key(part: NotComputed, key: str, value: Any, place: Place) -> DesignInvalid:
     return DesignInvalid(
-        f"{part.what} not computed by this version",
+        f"{part.what} by this version",
         where=str(place.key(key)),
         found=shown(value),
         accepted=", ".join(map(shown, part.computed)) or "the table without this key",
-        remedy="change the plan, or use a version that computes it",
+        remedy="change the plan, or use a version that does so",
     )

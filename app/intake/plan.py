@@ -133,7 +133,8 @@ def _unknown_key(key: str, known: Sequence[str], place: Place) -> DesignInvalid:
         if re.search(words, key, re.IGNORECASE) and key.lower() not in known:
             return DesignInvalid(
                 what,
-                where=str(place.key(key)),
+                where=str(place),
+                found=f"key {shown(key)}",
                 accepted="two arms, followed from randomisation, compared for superiority",
                 remedy="remove the key",
             )

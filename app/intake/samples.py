@@ -49,7 +49,7 @@ def sample_of(endpoint: EndpointRows, plan: Plan) -> Sample:
     subject = rows.parts["subject"]
     return Sample(
         parameter=plan.endpoint.parameter,
-        subject=tuple(subject.at(row) for row in range(len(rows))),
+        subject=tuple(subject.texts[code] for code in subject.codes.tolist()),
         time=read_only(endpoint.time, np.float64),
         event=read_only(endpoint.event, np.bool_),
         experimental=read_only(

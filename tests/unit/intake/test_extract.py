@@ -7,9 +7,11 @@ from datetime import date
 
 import numpy as np
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from app.intake.extract import KEPT, TIME_TO_EVENT, received_file
-from app.model.extract import with_severity
+from app.model.extract import Extract, with_severity
 from tests.unit.intake.trial import CUTOFF, file_of, ids, plan, read, rows, text_of, without
 
 
@@ -263,3 +265,24 @@ def test_equal_bytes_have_equal_digests():
     assert file.digest == received_file("other.csv", text_of(rows()).encode()).digest
     assert read(file).files[0].digest == file.digest
     assert read(replace(file, name="x.csv")).files[0].name == "x.csv"
+
+
+SOUND = text_of(rows()).encode()
+PLAN = plan()
+
+
+@given(st.binary(max_size=80))
+def test_no_bytes_bring_the_reader_down(content):
+    assert read(received_file("adtte.csv", content), under=PLAN).sample is None
+
+
+@given(
+    st.integers(0, len(SOUND)),
+    st.integers(0, 12),
+    st.sampled_from([b"", b'"', b",", b"\n", b"\r", b"\0", b"\xff", b"-", b".", b"9"]),
+)
+def test_no_slip_in_a_sound_file_brings_the_reader_down(place, removed, put):
+    content = SOUND[:place] + put + SOUND[place + removed :]
+    extract = read(received_file("adtte.csv", content), under=PLAN)
+    assert isinstance(extract, Extract)
+    assert (extract.sample is None) == bool(extract.blocking)
