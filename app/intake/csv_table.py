@@ -91,13 +91,13 @@ def read_header(file: ReceivedFile) -> tuple[str, ...]:
 
 def _header(content: bytes, file: str) -> tuple[str, ...]:
     header = content[: _first_line_end(content)]
-    if not header or len(header) > LONGEST_HEADER or header.count(b'"') % 2:
+    _outside_quotes(np.frombuffer(header + b"\n", dtype=np.uint8), file)
+    if not header or len(header) > LONGEST_HEADER:
         raise _refused(
             "header-unreadable",
             "header that cannot be read",
             file,
-            found=f"a first row of {len(header):,} bytes"
-            + (" with a quotation mark that is never closed" if header.count(b'"') % 2 else ""),
+            found=f"a first row of {len(header):,} bytes",
             accepted=f"a first row of column names divided by commas, of at most {LONGEST_HEADER:,} bytes",
             remedy="export the file again as CSV",
         )
