@@ -110,7 +110,7 @@ def render_page(
     sheet_key: str | None = None,
     **context: Any,
 ) -> str:
-    """Any page that extends base.html. `frame` is None before a look exists; `base` is "/closed" or "/open"."""
+    """Any page that extends base.html; `frame` is None before a look exists, `base` is "/closed" or "/open"."""
     page = environment.get_template(template)
     return page.render(frame=frame, base=base, sheet_key=sheet_key, **context)
 
@@ -124,7 +124,7 @@ def render_sheet(
     template: str = "sheet.html",
     **context: Any,
 ) -> str:
-    """One sheet of a look; `template` may extend sheet.html and fill its block `acts`, with `context` for it."""
+    """One sheet of a look; `template` may extend sheet.html and fill its blocks, with `context` for them."""
     sheet = book.sheet(sheet_key)
     if sheet is None:
         raise SheetMissing(

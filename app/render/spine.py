@@ -1,4 +1,4 @@
-"""Where everything on the spine stands: places in thousandths of the rail, as classes, for no page styles inline."""
+"""Where everything on the spine stands: places in thousandths of the rail, as classes of the style sheet."""
 
 from __future__ import annotations
 

@@ -24,7 +24,7 @@ from app.render.svg.lane_plot import (
 )
 from app.render.svg.lane_words import lane_labels, look_names, rows_under
 from app.render.svg.lettering import SMALL, text_width, words
-from app.sheets.blocks import BoundaryFigure, Lane, Span
+from app.sheets.blocks import BoundaryFigure, Lane, Line, Span
 
 MOST_TICKS = 7
 
@@ -70,11 +70,20 @@ def _axis(plot: LanePlot) -> tuple[Element, ...]:
     ticks, page = z_ticks(plot.y.low, plot.y.high), plot.page
     grid = (horizontal(plot.y(t), page.left, page.right, *([HAIRLINE] if t == 0 else [])) for t in ticks)
     numbers = (small_print(signed(t), page.numbers_end, plot.y(t) + 4, "end") for t in ticks)
+    title = words(axis_title(plot), title_at(plot), 14, size=SMALL, fill=INK_2)
+    return (title, *grid, *numbers)
+
+
+def axis_title(plot: LanePlot) -> Line:
+    """On a narrow drawing the direction stands in the title."""
     title = plot.figure.y_title
-    if page.short:
-        title = (*title, Span(f"; up {plot.figure.favours_up}"))
-    start = page.numbers_end - text_width(signed(max(ticks)), SMALL)
-    return (words(title, start, 14, size=SMALL, fill=INK_2), *grid, *numbers)
+    return (*title, Span(f"; up {plot.figure.favours_up}")) if plot.page.short else title
+
+
+def title_at(plot: LanePlot) -> float:
+    """Over the axis, where its numbers begin."""
+    highest = max(z_ticks(plot.y.low, plot.y.high))
+    return plot.page.numbers_end - text_width(signed(highest), SMALL)
 
 
 def _direction(plot: LanePlot) -> tuple[Element, ...]:

@@ -73,7 +73,7 @@ def _drawn(figure: CalendarFigure, page: Page) -> Drawing:
             *(_line(series, x, y) for series in figure.series),
             *_discs(figure, x, y),
             *_date_axis(figure, page, x),
-            *_end_labels(figure, page, x, y),
+            *(part for label in end_labels(figure, page, y) for part in _drawn_label(label, page)),
             *rows,
         ),
     )
@@ -115,11 +115,23 @@ def count_on(series: Series, day: int) -> int:
 
 
 def _count_axis(figure: CalendarFigure, page: Page, y: Scale) -> tuple[Element, ...]:
-    ticks = round_ticks(0, y.high, 5, WHOLE_STEPS)
-    widest = text_width(f"{ticks[-1]:g}", SMALL)
+    ticks = count_ticks(y)
     grid = (horizontal(y(tick), page.plot.left, page.plot.right) for tick in ticks[1:])
     numbers = (small_print(f"{tick:g}", page.numbers_end, y(tick) + 4, "end") for tick in ticks)
-    return (small_print(figure.y_title, page.numbers_end - widest, 14), *grid, *numbers)
+    return (small_print(figure.y_title, y_title_at(page, y), 14), *grid, *numbers)
+
+
+def count_ticks(y: Scale) -> tuple[float, ...]:
+    return round_ticks(0, y.high, 5, WHOLE_STEPS)
+
+
+def y_title_at(page: Page, y: Scale) -> float:
+    """Over the axis, where its numbers begin."""
+    return page.numbers_end - text_width(f"{count_ticks(y)[-1]:g}", SMALL)
+
+
+def x_title_y(page: Page) -> float:
+    return page.plot.bottom + (20 if page.width == WIDE else 38)
 
 
 def _planned(figure: CalendarFigure, page: Page, y: Scale) -> tuple[Element, ...]:
@@ -135,7 +147,6 @@ def _date_axis(figure: CalendarFigure, page: Page, x: Scale) -> tuple[Element, .
     below = page.plot.bottom + 20
     ticks = month_ticks(round(x.low), round(x.high), page.most_ticks)
     places = [x(day_number(tick)) for tick in ticks]
-    title_at = below if page.width == WIDE else below + 18
     return (
         axis_line(page.plot.bottom, page.plot.left, page.plot.right),
         ticks_below(page.plot.bottom, places),
@@ -143,7 +154,7 @@ def _date_axis(figure: CalendarFigure, page: Page, x: Scale) -> tuple[Element, .
             small_print(f"{tick:%b}\u00a0{tick.year}", at, below, "middle")
             for tick, at in zip(ticks, places, strict=True)
         ),
-        small_print("Calendar date", 0, title_at),
+        small_print("Calendar date", 0, x_title_y(page)),
     )
 
 
@@ -177,19 +188,31 @@ def _discs(figure: CalendarFigure, x: Scale, y: Scale) -> tuple[Element, ...]:
     return tuple(parts)
 
 
-def _end_labels(figure: CalendarFigure, page: Page, x: Scale, y: Scale) -> tuple[Element, ...]:
-    """What each line counts, at its end, and the planned number at its level."""
-    left, room = page.plot.right + 10, page.width - page.plot.right - 10
-    labels = [(y(series.count[-1] if series.count else 0), series.label, INK) for series in figure.series]
+@dataclass(frozen=True)
+class EndLabel:
+    """What stands right of the plot, on the baseline `y`."""
+
+    text: str
+    y: float
+    fill: str
+
+
+def end_labels(figure: CalendarFigure, page: Page, y: Scale) -> tuple[EndLabel, ...]:
+    """What each line counts, at its end, and the planned number at its level; kept apart."""
+    named = [(y(series.count[-1] if series.count else 0), series.label, INK) for series in figure.series]
     if figure.planned is not None:
-        labels.append((y(figure.planned[0]), figure.planned[1], INK_2))
-    placed = apart_within([level for level, _, _ in labels], LABEL_GAP, page.plot.top, page.plot.bottom - 6)
-    parts: list[Element] = []
-    for (_, text, fill), middle in zip(labels, placed, strict=True):
-        said = shortened(text, room)
-        parts.append(ground(left, middle + BASELINE, text_width(said, LABEL)))
-        parts.append(words(said, left, middle + BASELINE, fill=fill))
-    return tuple(parts)
+        named.append((y(figure.planned[0]), figure.planned[1], INK_2))
+    placed = apart_within([at for at, _, _ in named], LABEL_GAP, page.plot.top, page.plot.bottom - 6)
+    room = page.width - page.plot.right - 10
+    return tuple(
+        EndLabel(shortened(text, room), middle + BASELINE, fill)
+        for (_, text, fill), middle in zip(named, placed, strict=True)
+    )
+
+
+def _drawn_label(label: EndLabel, page: Page) -> tuple[Element, Element]:
+    left = page.plot.right + 10
+    return ground(left, label.y, text_width(label.text)), words(label.text, left, label.y, fill=label.fill)
 
 
 # --- rows -------------------------------------------------------------------------------------------------
@@ -199,7 +222,7 @@ def _rows(figure: CalendarFigure, page: Page, x: Scale) -> tuple[tuple[Element, 
     """The cutoffs by name, then each series' count there, digits in line under the cutoff."""
     y = page.plot.bottom + page.rows_apart
     places = [x(day) for day, _ in figure.marks]
-    if not places or not _rows_fit(figure, places):
+    if not places or not rows_fit(figure, places):
         return (), y - ROW_PITCH
     parts = [words("Data cutoff", 0, y, fill=INK_2), *_mark_names(figure.marks, places, page, y)]
     for series in figure.series:
@@ -223,7 +246,7 @@ def _mark_names(
     return named
 
 
-def _rows_fit(figure: CalendarFigure, places: Sequence[float]) -> bool:
+def rows_fit(figure: CalendarFigure, places: Sequence[float]) -> bool:
     halves = [text_width(label, LABEL, semibold=True) / 2 for _, label in figure.marks]
     reach = [(text_width("Data cutoff") + 5, 0.0), *zip(places, halves, strict=True)]
     return all(a + half_a + 6 <= b - half_b for (a, half_a), (b, half_b) in itertools.pairwise(reach))

@@ -58,7 +58,7 @@ def narrow(figure: CurvesFigure) -> Drawing:
 
 def _drawn(figure: CurvesFigure, page: Page) -> Drawing:
     x = Scale(figure.ticks[0], figure.ticks[-1], page.plot.left, page.plot.right)
-    y = Scale(0, 100, page.plot.bottom, page.plot.top)
+    y = percent_scale(page)
     rows, height = _rows(figure, page, x)
     return Drawing(
         page.width,
@@ -71,28 +71,37 @@ def _drawn(figure: CurvesFigure, page: Page) -> Drawing:
             *(stroke for line in figure.lines for stroke in _line(line, x, y)),
             *(_strokes(line, x, y, upwards=_is_upper(line, figure.lines)) for line in figure.lines),
             *_time_axis(figure, page, x),
-            *_end_labels(figure, page, y),
+            *_end_labels(figure, page),
             *rows,
         ),
     )
+
+
+def percent_scale(page: Page) -> Scale:
+    """Event-free from 0 to 100 always."""
+    return Scale(0, 100, page.plot.bottom, page.plot.top)
 
 
 # --- axes -----------------------------------------------------------------------------------------------
 
 
 def _percent_axis(figure: CurvesFigure, page: Page, y: Scale) -> tuple[Element, ...]:
-    title_at = page.numbers_end - text_width("100", SMALL)
     grid = (
         horizontal(y(tick), page.plot.left, page.plot.right, *([HAIRLINE] if tick == 50 else []))
         for tick in PERCENT_TICKS[1:]
     )
     numbers = (small_print(f"{tick:g}", page.numbers_end, y(tick) + 4, "end") for tick in PERCENT_TICKS)
-    return (small_print(figure.y_title, title_at, 14), *grid, *numbers)
+    return (small_print(figure.y_title, y_title_at(page), 14), *grid, *numbers)
+
+
+def y_title_at(page: Page) -> float:
+    """Over the axis, where its numbers begin."""
+    return page.numbers_end - text_width("100", SMALL)
 
 
 def _time_axis(figure: CurvesFigure, page: Page, x: Scale) -> tuple[Element, ...]:
     below = page.plot.bottom + 20
-    shown = _shown_ticks(figure, x)
+    shown = shown_ticks(figure, x)
     title_at = below + (18 if page.name_above else 0)
     return (
         axis_line(page.plot.bottom, page.plot.left, page.plot.right),
@@ -105,7 +114,7 @@ def _time_axis(figure: CurvesFigure, page: Page, x: Scale) -> tuple[Element, ...
     )
 
 
-def _shown_ticks(figure: CurvesFigure, x: Scale) -> tuple[int, ...]:
+def shown_ticks(figure: CurvesFigure, x: Scale) -> tuple[int, ...]:
     """Every tick, or every second, third ... one when their numbers would touch."""
     counts = [str(n) for line in figure.lines for row in _counts(line) for n in row]
     room = widest(counts, LABEL, semibold=True) + 6
@@ -148,7 +157,7 @@ def _within(
 
 def _band(line: CurveLine, x: Scale, y: Scale) -> Element:
     """The pointwise interval, wherever there is one."""
-    paths = (_band_path(run, x, y) for run in _runs_with_limits(line, x.high))
+    paths = (_band_path(run, x, y) for run in runs_with_limits(line, x.high))
     ink = arm_ink(line.arm)
     return element("path", d="".join(paths) or "M0 0", fill=ink.line, fill_opacity=BAND_OPACITY)
 
@@ -156,7 +165,7 @@ def _band(line: CurveLine, x: Scale, y: Scale) -> Element:
 Limits = tuple[float, float, float]  # time, low, high
 
 
-def _runs_with_limits(line: CurveLine, end: float) -> list[list[Limits]]:
+def runs_with_limits(line: CurveLine, end: float) -> list[list[Limits]]:
     """Stretches of time over which both limits exist; each ends where the next step begins."""
     until = (*line.time[1:], end)
     steps = zip(line.time, line.ci_low, line.ci_high, until, strict=True)
@@ -198,27 +207,31 @@ def _is_upper(line: CurveLine, lines: Sequence[CurveLine]) -> bool:
 # --- labels and rows ------------------------------------------------------------------------------------
 
 
-def _end_labels(figure: CurvesFigure, page: Page, y: Scale) -> tuple[Element, ...]:
-    """The arm's name at the end of its line, kept apart from the other's."""
-    named = [(line, _name_lines(line, page)) for line in figure.lines]
-    gap = LABEL_GAP * max([1, *(len(lines) for _, lines in named)])
-    ends = [y(line.survival[-1]) for line, _ in named]
-    placed = apart_within(ends, gap, page.plot.top, page.plot.bottom)
-    left = page.plot.right + (5 if page.name_above else 10)
+def _end_labels(figure: CurvesFigure, page: Page) -> tuple[Element, ...]:
+    """The arm's name at the end of its line, in as many lines as it takes."""
     return tuple(
-        words(
-            text,
-            left,
-            middle + BASELINE + LABEL_GAP * (row - (len(lines) - 1) / 2),
-            fill=arm_ink(line.arm).text,
-            semibold=True,
-        )
-        for (line, lines), middle in zip(named, placed, strict=True)
-        for row, text in enumerate(lines)
+        words(text, label_left(page), baseline + LABEL_GAP * row, fill=arm_ink(line.arm).text, semibold=True)
+        for line, baseline in zip(figure.lines, end_labels_at(figure, page), strict=True)
+        for row, text in enumerate(name_lines(line, page))
     )
 
 
-def _name_lines(line: CurveLine, page: Page) -> tuple[str, ...]:
+def label_left(page: Page) -> float:
+    return page.plot.right + (5 if page.name_above else 10)
+
+
+def end_labels_at(figure: CurvesFigure, page: Page) -> tuple[float, ...]:
+    """The first baseline of each arm's name: beside the end of its line, and apart from the other's."""
+    y = percent_scale(page)
+    rows = [len(name_lines(line, page)) for line in figure.lines]
+    ends = [y(line.survival[-1]) for line in figure.lines]
+    placed = apart_within(ends, LABEL_GAP * max([1, *rows]), page.plot.top, page.plot.bottom)
+    return tuple(
+        middle + BASELINE - LABEL_GAP * (count - 1) / 2 for middle, count in zip(placed, rows, strict=True)
+    )
+
+
+def name_lines(line: CurveLine, page: Page) -> tuple[str, ...]:
     """On a narrow drawing only the letter has room."""
     if page.name_above:
         return (line.arm.letter,) if line.arm else ()
@@ -229,17 +242,22 @@ def _counts(line: CurveLine) -> tuple[tuple[int, ...], ...]:
     return line.rows.at_risk, line.rows.events, line.rows.censored
 
 
+def row_heights(figure: CurvesFigure, page: Page) -> tuple[float, ...]:
+    """The baseline of each arm's first row of numbers."""
+    name = ROW_PITCH if page.name_above else 0.0
+    first = page.plot.bottom + 44.5 + 2 * name
+    return tuple(first + index * (3 * ROW_PITCH + ARM_GAP + name) for index in range(len(figure.lines)))
+
+
 def _rows(figure: CurvesFigure, page: Page, x: Scale) -> tuple[tuple[Element, ...], float]:
     """Three rows an arm under the ticks, and the height of the drawing that holds them."""
     parts: list[Element] = []
-    y = page.plot.bottom + 44.5 + (16 if page.name_above else 0)
-    for line in figure.lines:
-        parts.extend(_arm_name(line, page, y))
-        y += ROW_PITCH if page.name_above else 0
+    tops = row_heights(figure, page)
+    for line, top in zip(figure.lines, tops, strict=True):
+        parts.extend(_arm_name(line, page, top - (ROW_PITCH if page.name_above else 0)))
         for number, (word, counts) in enumerate(zip(page.row_words, _counts(line), strict=True)):
-            parts.extend(_row(word, counts, figure, page, x, y + ROW_PITCH * number, strong=number == 0))
-        y += 3 * ROW_PITCH + ARM_GAP
-    return tuple(parts), y - ROW_PITCH - ARM_GAP + 4.5
+            parts.extend(_row(word, counts, figure, page, x, top + ROW_PITCH * number, strong=number == 0))
+    return tuple(parts), tops[-1] + 2 * ROW_PITCH + 4.5
 
 
 def _arm_name(line: CurveLine, page: Page, y: float) -> tuple[Element, ...]:
@@ -266,6 +284,6 @@ def _row(
     head = words(word, page.words_at, y, fill=INK if strong else INK_2, semibold=strong)
     numbers = (
         words(str(counts[index]), x(figure.ticks[index]) + UNITS_AT, y, anchor="end", semibold=strong)
-        for index in _shown_ticks(figure, x)
+        for index in shown_ticks(figure, x)
     )
     return (head, *numbers)

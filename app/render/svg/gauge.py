@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 from app.render.palette import CROSSED, CROSSED_ZONE, EFFICACY_ZONE, HAIRLINE, HATCH, INK, INK_3, PAPER
 from app.render.svg.drawing import diamond, disc, rectangle
 from app.render.svg.element import Element, coordinate, element
-from app.render.svg.geometry import Box, hatching, snapped
+from app.render.svg.geometry import Box, Segment, hatching, snapped
 from app.render.svg.lane_plot import LanePlot, is_crossed_above, is_crossed_below, lower_bound, number
 from app.render.svg.lettering import words
 from app.sheets.blocks import Lane
@@ -27,56 +28,83 @@ class Reading:
     hatch_above: float | None = None
 
 
+@dataclass(frozen=True)
+class Zone:
+    """A part of a lane beyond a bound: filled, or hatched."""
+
+    box: Box
+    colour: str
+    hatched: bool = False
+
+    @property
+    def segments(self) -> tuple[Segment, ...]:
+        return hatching(self.box, HATCH_APART)
+
+
+@dataclass(frozen=True)
+class Bar:
+    """A bound: a stroke across its lane at height `y`."""
+
+    left: float
+    right: float
+    y: float
+    colour: str
+    width: float
+    dashed: bool
+
+
 def gauge(plot: LanePlot, lane: Lane) -> tuple[Element, ...]:
     """Paper, zones, edges, bars, mark: in this order, so that each lies on the one before."""
-    readings = _readings(plot, lane)
-    edge = INK_3 if lane.state == "now" else HAIRLINE
+    readings = lane_readings(plot, lane)
     return (
-        rectangle(_column(plot, lane), PAPER),
-        *(part for reading in readings for part in _zones(plot, lane, reading)),
-        *(rectangle(reading.box, "none", edge) for reading in readings),
-        *(part for reading in readings for part in _bars(plot, lane, reading)),
+        rectangle(column(plot, lane), PAPER),
+        *(_drawn_zone(zone) for reading in readings for zone in zones(plot, lane, reading)),
+        *(rectangle(reading.box, "none", edge_colour(lane)) for reading in readings),
+        *(_drawn_bar(bar) for reading in readings for bar in bars(plot, lane, reading)),
         *_letters(plot, readings),
         *_mark(plot, lane),
     )
 
 
-def _column(plot: LanePlot, lane: Lane) -> Box:
+def column(plot: LanePlot, lane: Lane) -> Box:
     middle, half = plot.middle(lane), plot.lane_width / 2
     return Box(snapped(middle - half), plot.area.top, snapped(middle + half), plot.area.bottom)
 
 
-def _readings(plot: LanePlot, lane: Lane) -> tuple[Reading, ...]:
+def edge_colour(lane: Lane) -> str:
+    return INK_3 if lane.state == "now" else HAIRLINE
+
+
+def lane_readings(plot: LanePlot, lane: Lane) -> tuple[Reading, ...]:
     """Masked, the left half is read as if A were experimental, the right one, mirrored, as if B were."""
-    column, upper, lower, futility = (
-        _column(plot, lane),
+    box, upper, lower, futility = (
+        column(plot, lane),
         number(lane.upper),
         lower_bound(lane),
         number(lane.futility),
     )
     if not plot.is_masked:
-        return (Reading(column, above=upper, below=lower, hatch_below=futility),)
+        return (Reading(box, above=upper, below=lower, hatch_below=futility),)
     middle = plot.middle(lane)
-    left = Box(column.left, column.top, middle, column.bottom)
-    right = Box(middle, column.top, column.right, column.bottom)
+    left = Box(box.left, box.top, middle, box.bottom)
+    right = Box(middle, box.top, box.right, box.bottom)
     mirrored = None if futility is None else -futility
     return Reading(left, above=upper, hatch_below=futility), Reading(right, below=lower, hatch_above=mirrored)
 
 
-# --- zones --------------------------------------------------------------------------------------------------
+# --- zones and bars -----------------------------------------------------------------------------------------
 
 
-def _zones(plot: LanePlot, lane: Lane, reading: Reading) -> tuple[Element, ...]:
-    zones: list[Element] = []
+def zones(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Zone]:
+    grey, hatch = EFFICACY_ZONE[lane.state], HATCH[lane.state]
     if reading.above is not None:
-        zones.append(rectangle(_over(plot, reading, reading.above), _grey(lane, is_crossed_above(lane))))
+        yield Zone(_over(plot, reading, reading.above), CROSSED_ZONE if is_crossed_above(lane) else grey)
     if reading.below is not None:
-        zones.append(rectangle(_under(plot, reading, reading.below), _grey(lane, is_crossed_below(lane))))
+        yield Zone(_under(plot, reading, reading.below), CROSSED_ZONE if is_crossed_below(lane) else grey)
     if reading.hatch_below is not None:
-        zones.append(_hatch(lane, _under(plot, reading, reading.hatch_below)))
+        yield Zone(_under(plot, reading, reading.hatch_below), hatch, hatched=True)
     if reading.hatch_above is not None:
-        zones.append(_hatch(lane, _over(plot, reading, reading.hatch_above)))
-    return tuple(zones)
+        yield Zone(_over(plot, reading, reading.hatch_above), hatch, hatched=True)
 
 
 def _over(plot: LanePlot, reading: Reading, z: float) -> Box:
@@ -87,46 +115,42 @@ def _under(plot: LanePlot, reading: Reading, z: float) -> Box:
     return Box(reading.box.left, plot.y(z), reading.box.right, reading.box.bottom)
 
 
-def _grey(lane: Lane, is_crossed: bool) -> str:
-    return CROSSED_ZONE if is_crossed else EFFICACY_ZONE[lane.state]
-
-
-def _hatch(lane: Lane, box: Box) -> Element:
-    """Computed segments: printers of SVG know no pattern."""
-    segments = (
-        f"M{coordinate(x1)} {coordinate(y1)}L{coordinate(x2)} {coordinate(y2)}"
-        for x1, y1, x2, y2 in hatching(box, HATCH_APART)
-    )
-    return element("path", d="".join(segments) or "M0 0", fill="none", stroke=HATCH[lane.state])
-
-
-# --- bars, letters, mark ------------------------------------------------------------------------------------
-
-
-def _bars(plot: LanePlot, lane: Lane, reading: Reading) -> tuple[Element, ...]:
+def bars(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Bar]:
     """The bounds themselves, in ink over the zone's edge: solid for efficacy, dashed for futility."""
+    left, right, is_now = reading.box.left, reading.box.right, lane.state == "now"
     solid = ((reading.above, is_crossed_above(lane)), (reading.below, is_crossed_below(lane)))
-    dashed = (reading.hatch_below, reading.hatch_above)
-    is_now = lane.state == "now"
-    return (
-        *(
-            _bar(plot, reading, bound, CROSSED if is_crossed else INK, 2.5 if is_now else 1.5)
-            for bound, is_crossed in solid
-            if bound is not None
-        ),
-        *(
-            _bar(plot, reading, bound, INK, 1.75 if is_now else 1.0, dashes="3 2")
-            for bound in dashed
-            if bound is not None
-        ),
+    for bound, is_crossed in solid:
+        if bound is not None:
+            colour, width = CROSSED if is_crossed else INK, 2.5 if is_now else 1.5
+            yield Bar(left, right, plot.y(bound), colour, width, dashed=False)
+    for bound in (reading.hatch_below, reading.hatch_above):
+        if bound is not None:
+            yield Bar(left, right, plot.y(bound), INK, 1.75 if is_now else 1.0, dashed=True)
+
+
+def _drawn_zone(zone: Zone) -> Element:
+    """Hatching as computed segments: printers of SVG know no pattern."""
+    if not zone.hatched:
+        return rectangle(zone.box, zone.colour)
+    drawn = (
+        f"M{coordinate(x1)} {coordinate(y1)}L{coordinate(x2)} {coordinate(y2)}"
+        for x1, y1, x2, y2 in zone.segments
+    )
+    return element("path", d="".join(drawn) or "M0 0", fill="none", stroke=zone.colour)
+
+
+def _drawn_bar(bar: Bar) -> Element:
+    return element(
+        "path",
+        d=f"M{coordinate(bar.left)} {coordinate(bar.y)}H{coordinate(bar.right)}",
+        fill="none",
+        stroke=bar.colour,
+        stroke_width=bar.width,
+        stroke_dasharray="3 2" if bar.dashed else None,
     )
 
 
-def _bar(
-    plot: LanePlot, reading: Reading, bound: float, stroke: str, width: float, dashes: str | None = None
-) -> Element:
-    across = f"M{coordinate(reading.box.left)} {coordinate(plot.y(bound))}H{coordinate(reading.box.right)}"
-    return element("path", d=across, stroke=stroke, stroke_width=width, stroke_dasharray=dashes, fill="none")
+# --- letters and mark ---------------------------------------------------------------------------------------
 
 
 def _letters(plot: LanePlot, readings: tuple[Reading, ...]) -> tuple[Element, ...]:
@@ -143,8 +167,7 @@ def _mark(plot: LanePlot, lane: Lane) -> tuple[Element, ...]:
     z = number(lane.z)
     if z is None:
         return ()
-    x, y = plot.middle(lane), plot.y(z)
-    radius = min(6.5 if lane.state == "now" else 4.5, plot.lane_width / 2 + 1)
+    x, y, radius = plot.middle(lane), plot.y(z), mark_radius(plot, lane)
     if plot.is_masked:
         return _level(plot, lane, y), disc(x, y, radius + 2, PAPER), disc(x, y, radius, INK)
     if not lane.crossed:
@@ -154,12 +177,12 @@ def _mark(plot: LanePlot, lane: Lane) -> tuple[Element, ...]:
     return (diamond(x, y, radius, PAPER, CROSSED, 1.75),)  # a bound that does not bind: an open diamond
 
 
+def mark_radius(plot: LanePlot, lane: Lane) -> float:
+    return min(6.5 if lane.state == "now" else 4.5, plot.lane_width / 2 + 1)
+
+
 def _level(plot: LanePlot, lane: Lane, y: float) -> Element:
     """A hairline through both readings at the height of z."""
-    column = _column(plot, lane)
-    return element(
-        "path",
-        d=f"M{coordinate(column.left)} {coordinate(y)}H{coordinate(column.right)}",
-        stroke=INK,
-        fill="none",
-    )
+    across = column(plot, lane)
+    path = f"M{coordinate(across.left)} {coordinate(y)}H{coordinate(across.right)}"
+    return element("path", d=path, stroke=INK, fill="none")

@@ -24,6 +24,9 @@ class Scale:
     def __call__(self, value: float) -> float:
         return self.start + (value - self.low) / (self.high - self.low) * (self.end - self.start)
 
+    def inverse(self, place: float) -> float:
+        return self.low + (place - self.start) / (self.end - self.start) * (self.high - self.low)
+
 
 @dataclass(frozen=True)
 class Box:

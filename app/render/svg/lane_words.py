@@ -20,6 +20,7 @@ POINT_AT = -7.0  # decimal points stand here from the lane's middle
 UNITS_AT = 10.0  # and the last digit of a whole number ends here
 NAMES_APART = 56.0
 INDENT = 14.0
+RULE_ROOM = 9.0
 
 
 # --- beside the lanes ---------------------------------------------------------------------------------------
@@ -112,46 +113,66 @@ def _z_label(plot: LanePlot, lane: Lane) -> list[Label]:
 # --- under the lanes ----------------------------------------------------------------------------------------
 
 
+def looks_by_number(plot: LanePlot) -> bool:
+    """Where lanes are close, numbers alone stand under them, and the word at the left."""
+    return plot.page.short or plot.pitch < NAMES_APART
+
+
+def look_name(plot: LanePlot, lane: Lane) -> str:
+    return str(lane.look) if looks_by_number(plot) else f"Look\u00a0{lane.look}"
+
+
 def look_names(plot: LanePlot) -> tuple[Element, ...]:
-    """ "Look 3" under each lane; where lanes are close, numbers alone and the word at the left."""
-    only_numbers = plot.page.short or plot.pitch < NAMES_APART
+    """ "Look 3" under each lane."""
+    by_number = looks_by_number(plot)
     middles = [plot.middle(lane) for lane in plot.figure.lanes]
-    placed = apart_within(middles, LABEL_GAP if only_numbers else 48, 0, plot.page.width)
-    names = (
-        _look_name(plot, lane, x, only_number=only_numbers)
-        for lane, x in zip(plot.figure.lanes, placed, strict=True)
-    )
-    head = (words("Look", 0, plot.area.bottom + 20, fill=INK_2),) if only_numbers else ()
+    placed = apart_within(middles, LABEL_GAP if by_number else 48, 0, plot.page.width)
+    names = (_look_name(plot, lane, x) for lane, x in zip(plot.figure.lanes, placed, strict=True))
+    head = (words("Look", 0, plot.area.bottom + 20, fill=INK_2),) if by_number else ()
     return (ticks_below(plot.area.bottom, middles), *head, *names)
 
 
-def _look_name(plot: LanePlot, lane: Lane, x: float, *, only_number: bool) -> Element:
+def _look_name(plot: LanePlot, lane: Lane, x: float) -> Element:
     is_now = lane.state == "now"
     return words(
-        str(lane.look) if only_number else f"Look\u00a0{lane.look}",
+        look_name(plot, lane),
         x,
         plot.area.bottom + 20,
-        size=LABEL if only_number else SMALL,
+        size=LABEL if looks_by_number(plot) else SMALL,
         fill=INK if is_now else INK_2,
         anchor="middle",
         semibold=is_now,
     )
 
 
-def rows_under(plot: LanePlot) -> tuple[tuple[Element, ...], float]:
-    """The numbers under the lanes, decimal points in line, and the height of the drawing that holds them."""
-    parts: list[Element] = []
-    y = plot.area.bottom + 37.5
+@dataclass(frozen=True)
+class PlacedRow:
+    """A row that has room, with the words for its page, on its baseline."""
+
+    row: LaneRow
+    head: Line
+    y: float
+
+
+def placed_rows(plot: LanePlot) -> tuple[PlacedRow, ...]:
+    """The rows that have room; a rule above one is drawn 20 over its baseline and takes 9 more."""
+    placed: list[PlacedRow] = []
+    y = plot.area.bottom + 37.5 - ROW_PITCH
     for row in plot.figure.rows:
         head = row.short_head if plot.page.short else row.head
-        if not head or not _has_room(plot, row, head):
-            continue
-        if row.rule_above:
-            y += 9
-            parts.append(rule(y - 20, 0, plot.page.width))
-        parts.extend(_row(plot, row, head, y))
-        y += ROW_PITCH
-    return tuple(parts), y - ROW_PITCH + 5
+        if head and _has_room(plot, row, head):
+            y += ROW_PITCH + (RULE_ROOM if row.rule_above else 0)
+            placed.append(PlacedRow(row, head, y))
+    return tuple(placed)
+
+
+def rows_under(plot: LanePlot) -> tuple[tuple[Element, ...], float]:
+    """The numbers under the lanes, decimal points in line, and the height of the drawing that holds them."""
+    placed = placed_rows(plot)
+    rules = (rule(each.y - 20, 0, plot.page.width) for each in placed if each.row.rule_above)
+    rows = (part for each in placed for part in _row(plot, each.row, each.head, each.y))
+    last = placed[-1].y if placed else plot.area.bottom + 20
+    return (*rules, *rows), last + 5
 
 
 def _row(plot: LanePlot, row: LaneRow, head: Line, y: float) -> list[Element]:
@@ -160,10 +181,10 @@ def _row(plot: LanePlot, row: LaneRow, head: Line, y: float) -> list[Element]:
         for lane, cell in zip(plot.figure.lanes, row.cells, strict=True)
         if cell is not None
     )
-    return [words(head, _indent(plot, row), y, fill=INK_2), *cells]
+    return [words(head, row_indent(plot, row), y, fill=INK_2), *cells]
 
 
-def _indent(plot: LanePlot, row: LaneRow) -> float:
+def row_indent(plot: LanePlot, row: LaneRow) -> float:
     return INDENT if row.indent and not plot.page.short else 0.0
 
 
@@ -184,7 +205,7 @@ def _cell_place(plot: LanePlot, lane: Lane, cell: Span) -> tuple[float, Anchor]:
 
 def _has_room(plot: LanePlot, row: LaneRow, head: Line) -> bool:
     """A row whose numbers would touch gives way to the table."""
-    reach = [(0.0, line_width(head) + _indent(plot, row))]
+    reach = [(0.0, line_width(head) + row_indent(plot, row))]
     reach += [
         _reach(plot, lane, cell)
         for lane, cell in zip(plot.figure.lanes, row.cells, strict=True)

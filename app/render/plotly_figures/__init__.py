@@ -1,0 +1,18 @@
+"""The figures to zoom into: plotly.js figures as plain dicts, in the places and faces of the drawings."""
+
+from __future__ import annotations
+
+from app.render.plotly_figures import boundary, calendar, curves
+from app.render.plotly_figures.setting import Json
+from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, Figure
+
+
+def plotly_figure(figure: Figure) -> Json | None:
+    """What figure.json answers: a figure for each width, or None when there is nothing to zoom into."""
+    if isinstance(figure, CurvesFigure):
+        return {"wide": curves.wide(figure), "narrow": curves.narrow(figure)}
+    if isinstance(figure, BoundaryFigure):
+        return {"wide": boundary.wide(figure), "narrow": boundary.narrow(figure)}
+    if isinstance(figure, CalendarFigure):
+        return {"wide": calendar.wide(figure), "narrow": calendar.narrow(figure)}
+    return None
