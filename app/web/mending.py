@@ -14,18 +14,19 @@ T = TypeVar("T")
 
 @dataclass(frozen=True)
 class Mend:
-    """One thing to mend: the clause that links to its field, and the rest of the sentence."""
+    """One thing to mend: the clause that links to its field, the rest, and the words at the field."""
 
     field: str
     clause: str
     rest: str
+    short: str
 
     @classmethod
     def of(cls, problem: AppError | Finding, field: str) -> Mend:
         whole, clause = str(problem), sentence(problem.what, problem.where).rstrip(".")
         if "\n" in whole or not whole.startswith(clause):  # several problems told at once
-            return cls(field, whole, "")
-        return cls(field, clause, whole[len(clause) :].lstrip(". "))
+            return cls(field, whole, "", "See above")
+        return cls(field, clause, whole[len(clause) :].lstrip(". "), sentence(problem.what).rstrip("."))
 
 
 def read_field(text: str, field: str, read: Callable[[str], T], mends: list[Mend]) -> T | None:

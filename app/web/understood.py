@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 from app.actions.receive import Incoming, Understanding
 from app.model.extract import Changes, Extract
@@ -21,16 +22,19 @@ def declared_table(incoming: Incoming) -> Table:
     return Table(line("As declared"), (Column((), "words"),), cells)
 
 
-def understood_tables(understood: Understanding) -> tuple[Table, ...]:
-    """In the order in which a person checks: the right size, what moved, the right files and endpoint."""
+@dataclass(frozen=True)
+class Tables:
+    """In the order in which a person checks: the right size, what moved, the right files and endpoints."""
+
+    narrow: tuple[Table, ...]
+    wide: tuple[Table, ...]
+
+
+def understood_tables(understood: Understanding) -> Tables:
     extract = understood.extract
-    tables = (
-        counts_table(understood),
-        changes_table(understood.changes),
-        files_table(extract),
-        endpoints_table(extract),
-    )
-    return tuple(table for table in tables if table.rows)
+    narrow = (counts_table(understood), endpoints_table(extract))
+    wide = (changes_table(understood.changes), files_table(extract))
+    return Tables(*(tuple(table for table in tables if table.rows) for tables in (narrow, wide)))
 
 
 def files_table(extract: Extract) -> Table:

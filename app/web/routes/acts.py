@@ -81,7 +81,9 @@ def unmask_arms(site: TheSite, session: TheSession, form: SubmittedForm) -> Resp
 @router.get("/closed/verify")
 def verify_trial_file(site: TheSite) -> Response:
     """Without the frame of a look: it must also come up when no look can be opened any more."""
-    return site.pages.show("verify", base=CLOSED, report=verify_desk(site.desk), name=site.desk.path.name)
+    return site.pages.show(
+        "verify", base=CLOSED, report=verify_desk(site.desk), file_name=site.desk.path.name
+    )
 
 
 def show(site: Site, session: Session, form: str, mends: list[Mend], **context: Any) -> Response:

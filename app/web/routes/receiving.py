@@ -10,7 +10,7 @@ from starlette.responses import RedirectResponse, Response
 
 from app.actions.names import recorded_name, recorded_reason
 from app.actions.receive import Incoming, Understanding, receive, understand
-from app.errors import InputError
+from app.errors import InputError, ValueRejected
 from app.intake.answers import read_day, read_kind
 from app.model.extract import Finding, LookKind, with_severity
 from app.web.forms import Submitted, SubmittedForm
@@ -73,7 +73,7 @@ def show_form(
     mends: list[Mend],
     understood: Understanding | None = None,
 ) -> Response:
-    tables = understood_tables(understood) if understood else ()
+    tables = understood_tables(understood) if understood else None
     return show(site, session, "receive", mends, answers=answers, kinds=KINDS, tables=tables)
 
 
@@ -125,13 +125,23 @@ def receive_upload(site: TheSite, session: TheSession, form: SubmittedForm) -> R
 def unanswered(upload: Upload, reasons: Mapping[str, str], form: Submitted) -> list[Mend]:
     """Doubts without a reason, and a freeze that was not agreed to."""
     mends: list[Mend] = []
-    for doubt in doubts_by_id(upload):
-        read_field(reasons.get(doubt, ""), REASON + doubt, recorded_reason, mends)
+    for doubt, findings in doubts_by_id(upload).items():
+        read = partial(reason_for, findings[0])
+        read_field(reasons.get(doubt, ""), REASON + doubt, read, mends)
     freezes = upload.understood.freezes
     if freezes is not None and not form.is_ticked("freeze"):
         remedy = "Tick the box, or leave the new snapshot for later"
         mends.append(Mend.of(InputError(f"look {freezes} is still open", remedy=remedy), "freeze"))
     return mends
+
+
+def reason_for(doubt: Finding, text: str) -> str:
+    """The reason, or a refusal that says which doubt it is about."""
+    try:
+        return recorded_reason(text)
+    except InputError as error:
+        where = f"the doubt {doubt.what!r}"
+        raise ValueRejected(error.what, where=where, accepted=error.accepted, remedy=error.remedy) from error
 
 
 def doubts_by_id(upload: Upload) -> dict[str, list[Finding]]:
@@ -153,7 +163,7 @@ def show_upload(
         mends,
         upload=upload,
         understood=understood,
-        dates=declared_table(upload.incoming),
+        declared=declared_table(upload.incoming),
         tables=understood_tables(understood),
         notes=with_severity(understood.extract.findings, "note"),
         doubts=doubts_by_id(upload),
