@@ -7,7 +7,7 @@ from datetime import date
 
 from app.model.boundary import Bound, LookAsUsed, Verdict
 from app.model.extract import Changes, Finding, LookKind, TimeUnit
-from app.model.survival import CoxResult, LogrankResult, SurvivalCurve
+from app.model.survival import ArmComparison, CoxResult, LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate, Ints
 
 
@@ -67,12 +67,15 @@ class LookResult:
     findings: tuple[Finding, ...]
     changes: Changes | None
     information: Information
-    information_used: float  # what correlations use of this look: events, or score variance where the plan says so
+    information_used: (
+        float  # what correlations use of this look: events, or score variance where the plan says so
+    )
     calendar: CalendarCounts | None
     logrank: LogrankResult | Absent
     logrank_unstratified: LogrankResult | Absent
     cox: CoxResult | Absent
     cox_unstratified: CoxResult | Absent
+    mirrored: ArmComparison  # the same, control against experimental
     control_curve: SurvivalCurve
     experimental_curve: SurvivalCurve
     bound: Bound

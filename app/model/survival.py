@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from app.model.values import Estimate, Floats, Ints
+from app.model.values import Absent, Estimate, Floats, Ints
 
 
 @dataclass(frozen=True, eq=False)
@@ -77,3 +77,13 @@ class CoxResult:
     ci_high: float
     level: float
     ties: str
+
+
+@dataclass(frozen=True)
+class ArmComparison:
+    """The plan's test and hazard ratio of one arm against the other, and both again without the strata."""
+
+    logrank: LogrankResult | Absent
+    logrank_unstratified: LogrankResult | Absent
+    cox: CoxResult | Absent
+    cox_unstratified: CoxResult | Absent

@@ -12,11 +12,12 @@ from app.model.look import Information, LookResult
 from app.model.plan import Plan
 from app.model.survival import LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate
-from app.review.counts import arm_counts, calendar_counts, or_reason, strata_counts, times_of
+from app.review.comparison import compare_arms
+from app.review.counts import arm_counts, calendar_counts, strata_counts, times_of
 from app.sequential.boundary import LookAhead, bounds_ahead, efficacy_rule
 from app.sequential.design import planned_looks
 from app.sequential.verdict import verdict
-from app.survival import cox_two_arms_of, kaplan_meier, logrank_of, two_arm_table
+from app.survival import kaplan_meier
 
 
 @dataclass(frozen=True)
@@ -35,14 +36,11 @@ class LookDeclared:
 def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequence[LookAsUsed]) -> LookResult:
     """Compute everything of one look.
 
-    `past` are the looks as used, in order. The bound does not depend on what earlier looks crossed: a crossing
-    depends on which arm is experimental, and the masked view reads the same bound both ways.
+    `past` are the looks as used, in order. The bound does not depend on what earlier looks crossed: a
+    crossing depends on which arm is experimental, and the masked view reads the same bound both ways.
     """
-    time = times_of(sample)
-    direction, analysis = plan.endpoint.direction, plan.analysis
-    stratified = two_arm_table(time, sample.event, sample.experimental, sample.stratum)
-    plain = two_arm_table(time, sample.event, sample.experimental)
-    test = or_reason(lambda: logrank_of(stratified, direction=direction))
+    compared, mirrored = compare_arms(plan, sample)
+    test = compared.logrank
     information = _information(plan, sample, test)
     now, *planned = _bounds(plan, information, declared, past)
     curves = [_curve(plan, sample, arm) for arm in (False, True)]
@@ -59,11 +57,10 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
         information_used=_information_used(information),
         calendar=calendar_counts(sample),
         logrank=test,
-        logrank_unstratified=or_reason(lambda: logrank_of(plain, direction=direction)),
-        cox=or_reason(lambda: cox_two_arms_of(stratified, ties=analysis.ties, level=analysis.confidence)),
-        cox_unstratified=or_reason(
-            lambda: cox_two_arms_of(plain, ties=analysis.ties, level=analysis.confidence)
-        ),
+        logrank_unstratified=compared.logrank_unstratified,
+        cox=compared.cox,
+        cox_unstratified=compared.cox_unstratified,
+        mirrored=mirrored,
         control_curve=curves[0],
         experimental_curve=curves[1],
         bound=now,

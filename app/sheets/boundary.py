@@ -59,7 +59,7 @@ def boundary_sheet(view: ClosedView) -> Sheet:
         answer=boundary_answer(view),
         figure=boundary_figure(view),
         tables=(*_standing_tables(view), _logrank_table(view)),
-        wide_tables=_strata_table(view),
+        folded=_strata_table(view),
         notes=(_note(view),),
         methods=methods(
             "logrank", spending_key(view.plan.efficacy.spending), "boundary", "bound-hazard-ratio", "cox"
@@ -465,7 +465,7 @@ def _state_word(lane: Lane, view: ClosedView) -> str:
 def _note(view: ClosedView) -> Line:
     lanes = "Each look has two lanes: the left reads as if A, the right as if B were experimental. "
     start = lanes if boundary_figure(view).layout == "two lanes" else ""
-    past = [str(held.number) for held in view.look.past]
+    past = [str(held.number) for held in view.look.past if not isinstance(held.efficacy_z, Absent)]
     as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: bounds as used." if past else ""
     return line(
         f"{start}Grey: beyond the efficacy bound. "

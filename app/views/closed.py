@@ -6,7 +6,6 @@ and every one-directional quantity stands in two readings: "if A is experimental
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass, replace
 from typing import Literal
 
@@ -15,7 +14,7 @@ from scipy.special import ndtr
 from app.model.boundary import Bound, Crossed, LookAsUsed, Verdict
 from app.model.look import ArmCounts, LookResult
 from app.model.plan import Plan, Sides
-from app.model.survival import CoxResult, LogrankResult, LogrankStratum, SurvivalCurve
+from app.model.survival import ArmComparison, CoxResult, LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate
 from app.sequential.verdict import crossed, first_crossed, verdict
 
@@ -94,43 +93,47 @@ class ClosedView:
 
 def unmasked_view(look: LookResult, plan: Plan, letters: Letters) -> ClosedView:
     """Arms by name, experimental against control: the one true reading."""
-    view = _view(look, plan, letters, masked=False, of="experimental")
-    return replace(view, look=_without_second_test(look, view.readings[0].verdict))
+    return _without_second_tests(_view(look, plan, letters, masked=False, of="experimental"))
 
 
 def full_view(look: LookResult, plan: Plan) -> ClosedView:
-    """What the trial file keeps: named arms, and each bound whatever was crossed before, so that it can be read both ways."""
+    """What the trial file keeps: named arms, and every bound whatever was crossed, to be read both ways."""
     return _view(look, plan, Letters("A"), masked=False, of="experimental")
 
 
 def masked_view(look: LookResult, plan: Plan, letters: Letters) -> ClosedView:
     """Arms by letter, A against B, with both readings. Nothing in it depends on which letter is which."""
     of: Role = "control" if letters.control == "A" else "experimental"
-    return _view(look, plan, letters, masked=True, of=of)
+    return _without_second_tests(_view(look, plan, letters, masked=True, of=of))
 
 
 def _view(look: LookResult, plan: Plan, letters: Letters, *, masked: bool, of: Role) -> ClosedView:
     against: Role = "control" if of == "experimental" else "experimental"
     turned = of == "control"
-    arms = tuple(_arm(look, plan, letters, role, masked) for role in (of, against))
-    true, mirrored = _reading(look, plan, turned=False), _reading(look, plan, turned=True)
-    if masked:
-        first, second = (mirrored, true) if turned else (true, mirrored)
-        readings = (replace(first, experimental="A"), replace(second, experimental="B"))
-    else:
-        readings = (replace(true, experimental=plan.arms.experimental),)
+    compared = look.mirrored if turned else _experimental_against_control(look)
     return ClosedView(
         plan=plan,
         look=look,
         masked=masked,
-        arms=(arms[0], arms[1]),
+        arms=(_arm(look, plan, letters, of, masked), _arm(look, plan, letters, against, masked)),
         strata=_strata(look, turned),
-        logrank=turn_logrank(look.logrank) if turned else look.logrank,
-        logrank_unstratified=turn_logrank(look.logrank_unstratified) if turned else look.logrank_unstratified,
-        cox=turn_cox(look.cox) if turned else look.cox,
-        cox_unstratified=turn_cox(look.cox_unstratified) if turned else look.cox_unstratified,
-        readings=readings,
+        logrank=compared.logrank,
+        logrank_unstratified=compared.logrank_unstratified,
+        cox=_lettered(compared.cox) if masked else compared.cox,
+        cox_unstratified=_lettered(compared.cox_unstratified) if masked else compared.cox_unstratified,
+        readings=_readings(look, plan, compared, turned) if masked else (_true_reading(look, plan),),
     )
+
+
+def _experimental_against_control(look: LookResult) -> ArmComparison:
+    return ArmComparison(look.logrank, look.logrank_unstratified, look.cox, look.cox_unstratified)
+
+
+def _lettered(cox: CoxResult | Absent) -> CoxResult | Absent:
+    """A reason that names the arms by their part names them by letter: the one compared is A."""
+    if not isinstance(cox, Absent):
+        return cox
+    return Absent(cox.reason.replace("the experimental arm", "arm A").replace("the control arm", "arm B"))
 
 
 def _arm(look: LookResult, plan: Plan, letters: Letters, role: Role, masked: bool) -> ArmView:
@@ -156,72 +159,81 @@ def _strata(look: LookResult, turned: bool) -> tuple[StratumView, ...]:
     return tuple(views)
 
 
-def turn_logrank(result: LogrankResult | Absent) -> LogrankResult | Absent:
-    """The same test of the other arm: O and E become the other arm's, z changes sign."""
+def _true_reading(look: LookResult, plan: Plan) -> Reading:
+    return _reading(look, plan, plan.arms.experimental, look.logrank, look.past)
+
+
+def _readings(look: LookResult, plan: Plan, compared: ArmComparison, turned: bool) -> tuple[Reading, Reading]:
+    """If A is experimental, if B is; `compared` is A against B, and bounds are the same in both."""
+    mirrored = _turned_history(look.past, plan.design.sides)
+    histories = (mirrored, look.past) if turned else (look.past, mirrored)
+    return (
+        _reading(look, plan, "A", compared.logrank, histories[0]),
+        _reading(look, plan, "B", _turned(compared.logrank), histories[1]),
+    )
+
+
+def _turned(result: LogrankResult | Absent) -> LogrankResult | Absent:
+    """z and its one-sided p from the other side; + 0.0 so that no -0.0 tells what was turned."""
     if isinstance(result, Absent):
         return result
-    events = sum(stratum.events for stratum in result.strata)
-    return replace(
-        result,
-        observed=events - result.observed,
-        expected=events - result.expected,
-        z=-result.z,
-        p_one_sided=float(ndtr(result.z)),
-        strata=tuple(_turn_stratum(stratum) for stratum in result.strata),
-    )
+    return replace(result, z=-result.z + 0.0, p_one_sided=float(ndtr(result.z)))
 
 
-def _turn_stratum(stratum: LogrankStratum) -> LogrankStratum:
-    return replace(
-        stratum, observed=stratum.events - stratum.observed, expected=stratum.events - stratum.expected
-    )
+def _reading(
+    look: LookResult,
+    plan: Plan,
+    experimental: str,
+    test: LogrankResult | Absent,
+    history: tuple[LookAsUsed, ...],
+) -> Reading:
+    if isinstance(test, Absent):
+        stands = verdict(history, None, look.bound, plan.design.sides)
+        return Reading(experimental, test, test, stands, history)
+    stands = verdict(history, test.z, look.bound, plan.design.sides)
+    return Reading(experimental, test.z, test.p_one_sided, stands, history)
 
 
-def turn_cox(result: CoxResult | Absent) -> CoxResult | Absent:
-    """The same model with the arms exchanged: the log ratio changes sign, the rest follows from it."""
-    if isinstance(result, Absent):
-        return result
-    log_low, log_high = -math.log(result.ci_high), -math.log(result.ci_low)
-    return replace(
-        result,
-        log_hazard_ratio=-result.log_hazard_ratio,
-        hazard_ratio=math.exp(-result.log_hazard_ratio),
-        ci_low=math.exp(log_low),
-        ci_high=math.exp(log_high),
-    )
-
-
-def _reading(look: LookResult, plan: Plan, *, turned: bool) -> Reading:
-    """The verdicts as they are, or as they would be were the arms exchanged (bounds do not depend on z)."""
-    if isinstance(look.logrank, Absent):
-        z, p = look.logrank, look.logrank
-    else:
-        z = -look.logrank.z if turned else look.logrank.z
-        p = float(ndtr(-z))
-    history = _turn_history(look.past, plan.design.sides) if turned else look.past
-    stands = verdict(history, None if isinstance(z, Absent) else z, look.bound, plan.design.sides)
-    return Reading(experimental="", z=z, p_one_sided=p, verdict=stands, history=history)
-
-
-def _turn_history(past: tuple[LookAsUsed, ...], sides: Sides) -> tuple[LookAsUsed, ...]:
+def _turned_history(past: tuple[LookAsUsed, ...], sides: Sides) -> tuple[LookAsUsed, ...]:
+    """The looks held as they would read were the arms exchanged: z turned, crossings decided anew."""
     turned: list[LookAsUsed] = []
     for held in past:
-        z = None if held.z is None else -held.z
+        z = None if held.z is None else -held.z + 0.0
         here: Crossed = "none" if first_crossed(turned) else crossed(z, held, sides)
         turned.append(replace(held, z=z, crossed=here))
     return tuple(turned)
 
 
-def _without_second_test(look: LookResult, stands: Verdict) -> LookResult:
-    """After a crossing the bound is no test any more: over-running is shown beside it (DESIGN: after a crossing)."""
-    first = stands.first_crossed
-    if first is None:
-        return look
-    if first == look.number:
-        return replace(look, planned=())
-    reason = Absent(f"the boundary was crossed at look {first}: over-running, with no second test")
-    spent = look.past[-1].alpha_spent
-    return replace(look, planned=(), bound=_no_bound(look.bound, spent, reason))
+def _without_second_tests(view: ClosedView) -> ClosedView:
+    """Once every reading has crossed, no later bound is a test: over-running is shown beside the crossing."""
+    firsts = [reading.verdict.first_crossed for reading in view.readings]
+    known = [first for first in firsts if first is not None]
+    if len(known) < len(firsts):
+        return view
+    last = max(known)
+    readings = tuple(replace(each, history=_until(last, each.history)) for each in view.readings)
+    look = replace(view.look, past=_until(last, view.look.past), planned=())
+    if last < look.number:
+        look = replace(look, bound=_no_bound(look.bound, _spent_by(last, look.past), _over_running(last)))
+    return replace(view, look=look, readings=readings)
+
+
+def _until(last: int, past: tuple[LookAsUsed, ...]) -> tuple[LookAsUsed, ...]:
+    """The looks as used, those after look `last` without a bound."""
+    return tuple(each if each.number <= last else _untested(each, last, past) for each in past)
+
+
+def _untested(held: LookAsUsed, last: int, past: tuple[LookAsUsed, ...]) -> LookAsUsed:
+    none, spent = _over_running(last), _spent_by(last, past)
+    return replace(held, efficacy_z=none, efficacy_hazard_ratio=none, alpha_spent=spent)
+
+
+def _spent_by(last: int, past: tuple[LookAsUsed, ...]) -> float:
+    return next(each.alpha_spent for each in past if each.number == last)
+
+
+def _over_running(last: int) -> Absent:
+    return Absent(f"the boundary was crossed at look {last}: over-running, with no second test")
 
 
 def _no_bound(bound: Bound, alpha_spent: float, reason: Absent) -> Bound:
