@@ -1,12 +1,13 @@
 """The names of a record, fixed for ever, and a check that a record keeps to them.
 
 A shape is a Python value: a type or tuple of types for a leaf, a dict for an object with exactly these keys,
-a one-element list for a list. `Maybe(shape)` may also be null (not asked); every leaf number may also be
-`{"not_estimable": reason}`.
+a one-element list for a list. `Maybe(shape)` may also be null (not asked), `Estimable(shape)` may also be
+`{"not_estimable": reason}`. NaN and infinities are no numbers of a record.
 """
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Any
@@ -19,7 +20,13 @@ class Maybe:
     shape: Any
 
 
+@dataclass(frozen=True)
+class Estimable:
+    shape: Any
+
+
 NUMBER = (int, float)
+ESTIMATE = Estimable(NUMBER)
 
 FINDING = {
     "id": str, "severity": str, "what": str, "where": str, "found": str, "accepted": str, "remedy": str,
@@ -37,41 +44,49 @@ COX = {
 }  # fmt: skip
 CURVE = {
     "arm": str, "time": [NUMBER], "at_risk": [int], "events": [int], "censored": [int], "survival": [NUMBER],
-    "std_error": [NUMBER], "ci_low": [NUMBER], "ci_high": [NUMBER], "interval": str, "level": NUMBER,
-    "median": NUMBER, "median_ci_low": NUMBER, "median_ci_high": NUMBER, "follow_up_median": NUMBER,
+    "std_error": [ESTIMATE], "ci_low": [ESTIMATE], "ci_high": [ESTIMATE], "interval": str, "level": NUMBER,
+    "median": ESTIMATE, "median_ci_low": ESTIMATE, "median_ci_high": ESTIMATE, "follow_up_median": ESTIMATE,
 }  # fmt: skip
 BOUND = {
     "number": int, "information_fraction": NUMBER, "events": int, "final": bool, "sides": int,
-    "alpha_spent": NUMBER, "alpha_spent_here": NUMBER, "efficacy_z": NUMBER, "efficacy_p_one_sided": NUMBER,
-    "efficacy_hazard_ratio": NUMBER, "futility_z": Maybe(NUMBER), "type_two_spent": Maybe(NUMBER),
-    "harm_z": Maybe(NUMBER), "harm_alpha_spent": Maybe(NUMBER),
+    "alpha_spent": NUMBER, "alpha_spent_here": NUMBER, "efficacy_z": ESTIMATE,
+    "efficacy_p_one_sided": ESTIMATE, "efficacy_hazard_ratio": ESTIMATE, "futility_z": Maybe(ESTIMATE),
+    "type_two_spent": Maybe(NUMBER), "harm_z": Maybe(ESTIMATE), "harm_alpha_spent": Maybe(NUMBER),
 }  # fmt: skip
 CROSSING = {"crossed": Maybe(str), "first_crossed": Maybe(int)}
-READING = {"experimental": str, "z": NUMBER, "p_one_sided": NUMBER, **CROSSING}
+READING = {"experimental": str, "z": ESTIMATE, "p_one_sided": ESTIMATE, **CROSSING}
 HISTORY = {
     "number": int, "kind": str, "information": NUMBER, "events": int, "fraction": NUMBER, "z": Maybe(NUMBER),
-    "efficacy_z": NUMBER, "efficacy_hazard_ratio": NUMBER, "alpha_spent": NUMBER, "final": bool,
+    "efficacy_z": ESTIMATE, "efficacy_hazard_ratio": ESTIMATE, "alpha_spent": NUMBER, "final": bool,
     "crossed": Maybe(str),
 }  # fmt: skip
 INFORMATION = {
     "subjects": int, "events": int, "fraction": NUMBER, "planned_events": int, "planned_subjects": Maybe(int),
-    "score_variance": NUMBER, "variance_ratio": NUMBER,
-    "arms": [{"arm": str, "subjects": int, "events": int, "person_time": NUMBER, "follow_up_median": NUMBER}],
+    "score_variance": ESTIMATE, "variance_ratio": ESTIMATE,
+    "arms": [{"arm": str, "subjects": int, "events": int, "person_time": NUMBER,
+              "follow_up_median": ESTIMATE}],
     "strata": [{"label": str, "subjects": int, "events": int,
                 "arms": [{"arm": str, "subjects": int, "events": int}]}],
 }  # fmt: skip
 CHANGES = {
     "subjects_in_both": int, "new_subjects": int, "vanished_subjects": int, "new_events": int,
     "reversed_events": int, "moved_events": int, "changed_arm": int, "changed_stratum": int,
+    "new_subjects_with_event": int, "vanished_with_event": int,
 }  # fmt: skip
+NOT_ASKED = (
+    "proportionality", "restricted_mean", "weighted", "weighted_maximum", "landmarks", "outlook",
+    "repeated_interval", "stopping", "hypotheses",
+)  # fmt: skip
+"""Parts of a look that a plan of this version cannot ask for: null, so that a reader finds every name."""
 LOOK = {
     "number": int, "kind": str, "final": bool, "time_unit": str,
     "cutoff": Maybe(str), "extracted": Maybe(str),
     "information": INFORMATION, "changes": Maybe(CHANGES),
     "calendar": Maybe({"day": [int], "randomised": [int], "events": [int]}),
-    "logrank": LOGRANK, "logrank_unstratified": LOGRANK, "cox": COX, "cox_unstratified": COX,
+    "logrank": Estimable(LOGRANK), "logrank_unstratified": Estimable(LOGRANK),
+    "cox": Estimable(COX), "cox_unstratified": Estimable(COX),
     "curves": [CURVE], "boundary": {**BOUND, "information": NUMBER, **CROSSING}, "readings": Maybe([READING]),
-    "history": [HISTORY], "ahead": [BOUND],
+    "history": [HISTORY], "ahead": [BOUND], **dict.fromkeys(NOT_ASKED, Maybe(())),
 }  # fmt: skip
 ENVELOPE = {
     "format": int, "kind": str, "program": {"name": str, "version": str}, "plan_digest": str,
@@ -80,8 +95,9 @@ ENVELOPE = {
 }  # fmt: skip
 LOOKS_RECORD = {**ENVELOPE, "looks": [LOOK]}
 BOUNDARY_RECORD = {
-    **ENVELOPE, "sides": int, "looks": [BOUND], "noncentrality": NUMBER, "power": NUMBER, "inflation": NUMBER,
-    "expected_information_fraction": {"null": NUMBER, "half": NUMBER, "design": NUMBER},
+    **ENVELOPE, "sides": int, "looks": [BOUND], "noncentrality": ESTIMATE, "power": NUMBER,
+    "inflation": ESTIMATE,
+    "expected_information_fraction": {"null": ESTIMATE, "half": ESTIMATE, "design": ESTIMATE},
 }  # fmt: skip
 
 
@@ -90,9 +106,11 @@ def differences(record: Any, shape: Any, where: str = "record") -> Iterator[str]
     if isinstance(shape, Maybe):
         if record is not None:
             yield from differences(record, shape.shape, where)
-    elif isinstance(record, dict) and set(record) == {"not_estimable"} and shape is not str:
-        if not (isinstance(record["not_estimable"], str) and record["not_estimable"]):
-            yield f"{where}: not_estimable without a reason"
+    elif isinstance(shape, Estimable):
+        if isinstance(record, dict) and record.keys() == {"not_estimable"}:
+            yield from _reason_differences(record["not_estimable"], where)
+        else:
+            yield from differences(record, shape.shape, where)
     elif isinstance(shape, dict):
         yield from _object_differences(record, shape, where)
     elif isinstance(shape, list):
@@ -103,6 +121,11 @@ def differences(record: Any, shape: Any, where: str = "record") -> Iterator[str]
             yield f"{where}: {type(record).__name__} where a list belongs"
     elif not _is_leaf(record, shape):
         yield f"{where}: {record!r} is not of the kind recorded there"
+
+
+def _reason_differences(reason: Any, where: str) -> Iterator[str]:
+    if not (isinstance(reason, str) and reason):
+        yield f"{where}: not_estimable without a reason"
 
 
 def _object_differences(record: Any, shape: dict[str, Any], where: str) -> Iterator[str]:
@@ -119,4 +142,5 @@ def _object_differences(record: Any, shape: dict[str, Any], where: str) -> Itera
 
 def _is_leaf(value: Any, shape: Any) -> bool:
     kinds = shape if isinstance(shape, tuple) else (shape,)
-    return isinstance(value, kinds) and (bool in kinds or not isinstance(value, bool))
+    finite = not isinstance(value, float) or math.isfinite(value)
+    return isinstance(value, kinds) and finite and (bool in kinds or not isinstance(value, bool))

@@ -14,7 +14,7 @@ from app.model.look import CalendarCounts
 from app.model.survival import CoxResult, LogrankResult
 from app.model.values import Absent
 from app.record.numbers import column, estimate, not_estimable
-from app.record.schema import FORMAT
+from app.record.schema import FORMAT, NOT_ASKED
 from app.views.closed import ArmView, ClosedView, Reading
 
 Record = dict[str, Any]
@@ -98,6 +98,7 @@ def look_record(view: ClosedView) -> Record:
         "readings": [_reading(reading) for reading in view.readings] if view.masked else None,
         "history": [_held(held, view) for held in view.readings[0].history],
         "ahead": [bound_record(bound, sides) for bound in look.planned],
+        **dict.fromkeys(NOT_ASKED),
     }
 
 
@@ -151,6 +152,8 @@ def _changes(changes: Changes | None) -> Record | None:
         "moved_events": len(changes.moved_events),
         "changed_arm": len(changes.changed_arm),
         "changed_stratum": len(changes.changed_stratum),
+        "new_subjects_with_event": len(changes.new_subjects_with_event),
+        "vanished_with_event": len(changes.vanished_with_event),
     }
 
 
