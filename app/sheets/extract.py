@@ -24,11 +24,10 @@ def data_sheet(view: ClosedView, snapshot: Snapshot, extract: Extract) -> Sheet:
         question=QUESTION,
         answer=(data_sentence(view),),
         figure=changes_figure(view),
-        tables=(_received_table(snapshot), _files_table(extract)),
+        tables=(_received_table(snapshot), _files_table(extract), _endpoints_table(extract)),
         wide_tables=(
             *_findings_table(look.findings, snapshot.acknowledgements),
             *_identifiers_table(look.changes),
-            _endpoints_table(extract),
         ),
         notes=_notes(extract),
         methods=methods("changes"),

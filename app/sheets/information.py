@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from datetime import date
+
 from app.model.extract import TimeUnit
 from app.model.look import CalendarCounts
 from app.model.values import Absent, Estimate
@@ -10,12 +12,13 @@ from app.sheets.axis import display_unit
 from app.sheets.blocks import CalendarFigure, Cell, Column, Line, Row, Series, Sheet, Span, Table
 from app.sheets.curves import in_unit, preposition
 from app.sheets.methods import methods
-from app.sheets.words import NO_BREAK, count, decimal, line, number, of_total
+from app.sheets.words import NO_BREAK, count, day_text, decimal, line, number, of_total
 from app.views.closed import ClosedView, StratumView
 from app.views.open import OpenView
 
 QUESTION = "How much do we know?"
 DAYS_PER_YEAR = 365.25
+EPOCH = date(1970, 1, 1).toordinal()
 LOW_VARIANCE_RATIO = 0.9
 
 
@@ -34,7 +37,7 @@ def information_sheet(view: ClosedView, planned: float | None) -> Sheet:
         ),
         figure=calendar_figure(look.calendar, information.planned_events, look.cutoff_day),
         tables=(_arms_table(view), _variance_table(view)),
-        wide_tables=_strata_table(view),
+        folded=_strata_table(view),
         notes=_notes(view),
         methods=methods("information", "variance-ratio", "person-time", "follow-up"),
         figure_table=calendar_table(look.calendar),
@@ -51,7 +54,7 @@ def open_information_sheet(view: OpenView, planned: float | None) -> Sheet:
         answer=(information_sentence(look.events, look.planned_events, look.fraction, planned),),
         figure=calendar_figure(look.calendar, look.planned_events, look.cutoff_day),
         tables=(_pooled_table(view),),
-        wide_tables=_pooled_strata_table(view),
+        folded=_pooled_strata_table(view),
         methods=methods("information", "person-time", "follow-up"),
         figure_table=calendar_table(look.calendar),
     )
@@ -101,8 +104,8 @@ def calendar_figure(
             Series("Randomised", days, tuple(calendar.randomised.tolist())),
             Series("Events", days, tuple(calendar.events.tolist())),
         ),
-        marks=() if cutoff is None else ((cutoff, "data cutoff"),),
-        planned=(float(planned_events), f"{planned_events} planned events"),
+        marks=() if cutoff is None else ((cutoff, day_text(date.fromordinal(EPOCH + cutoff))),),
+        planned=(float(planned_events), f"{planned_events} planned"),
     )
 
 
