@@ -54,9 +54,7 @@ def _folder_lines(folder: Path) -> Iterator[CheckLine]:
 
 def verify_desk(desk: Desk) -> CheckReport:
     """The full check of an open trial file."""
-    lines = [CheckLine(False, f"Damage found when opening: {problem}") for problem in desk.trial.damage]
-    lines += check_trial(desk.trial, desk.settings.limits)
-    lines += _reports_again(desk)
+    lines = (*check_trial(desk.trial, desk.settings.limits), *_reports_again(desk))
     return CheckReport((*lines, CheckLine(True, WHAT_IT_CANNOT)))
 
 
@@ -64,9 +62,16 @@ def _reports_again(desk: Desk) -> Iterator[CheckLine]:
     """Each closed report set again from its point of the history: the same bytes where it was made here."""
     try:
         frozen = [look.frozen for look in desk.trial.state().frozen_looks if look.frozen]
-        yield from (_report_again(desk, each) for each in frozen)
     except AppError as unreadable:
         yield CheckLine(False, f"The reports cannot be set again: {unreadable}")
+        return
+    for each in frozen:
+        try:
+            yield _report_again(desk, each)
+        except AppError as unreadable:
+            yield CheckLine(
+                False, f"Look {each.body.look}, closed report: it cannot be set again: {unreadable}"
+            )
 
 
 def _report_again(desk: Desk, frozen: Frozen) -> CheckLine:
@@ -86,7 +91,7 @@ def _report_again(desk: Desk, frozen: Frozen) -> CheckLine:
 
 def record_verification(desk: Desk, checked: CheckReport) -> None:
     """Enter a verification that found nothing; nothing is written into a damaged or read-only file."""
-    if not checked.ok or desk.read_only:
+    if not (checked.ok and desk.may_write):
         return
     with desk.trial.act() as act:
         entries = desk.trial.entries()

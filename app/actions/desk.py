@@ -15,6 +15,7 @@ from app.settings import Settings
 
 T = TypeVar("T")
 LOOKS_KEPT = 8
+COUNTS_KEPT = 1000
 
 
 @dataclass(frozen=True)
@@ -28,7 +29,8 @@ class UploadedFile:
 class Cache:
     """The last few computed values by key. A look never changes under its key, so nothing is ever stale."""
 
-    def __init__(self) -> None:
+    def __init__(self, kept: int = LOOKS_KEPT) -> None:
+        self._kept = kept
         self._values: OrderedDict[Any, Any] = OrderedDict()
         self._lock = Lock()
 
@@ -41,7 +43,7 @@ class Cache:
         value = compute()
         with self._lock:
             self._values[key] = value
-            while len(self._values) > LOOKS_KEPT:
+            while len(self._values) > self._kept:
                 self._values.popitem(last=False)
         return value
 
@@ -54,6 +56,7 @@ class Desk:
         self.trial = trial
         self.closed_looks = Cache()
         self.open_looks = Cache()
+        self.open_counts = Cache(COUNTS_KEPT)
 
     @classmethod
     def open(cls, settings: Settings, path: Path) -> Self:
@@ -66,6 +69,11 @@ class Desk:
     @property
     def read_only(self) -> bool:
         return self.trial.read_only
+
+    @property
+    def may_write(self) -> bool:
+        """False for a file that may only be read, and for one in which damage was found."""
+        return not (self.trial.read_only or self.trial.damage)
 
     def close(self) -> None:
         self.trial.close()

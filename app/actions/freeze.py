@@ -11,7 +11,7 @@ from app.actions.looks import assembled_look, closed_book_of, history_of
 from app.actions.names import recorded_name
 from app.assets import asset
 from app.errors import LedgerError
-from app.ledger.entries import LookFrozen
+from app.ledger.entries import LookFrozen, View
 from app.ledger.trial import Act
 from app.record.canonical import digest
 from app.record.text import record_bytes
@@ -44,7 +44,7 @@ def freeze_within(desk: Desk, act: Act, *, by: str) -> FrozenLook:
     look = act.state.open_look
     if look is None:
         raise LedgerError("No look is open", remedy="receive a snapshot first: it opens the next look")
-    disclosure = "unmasked" if act.state.unmasked else "masked"
+    disclosure: View = "unmasked" if act.state.unmasked else "masked"
     head_before = act.state.head.digest
     history = history_of(act.state, desk.trial.entries(), Freezing(act.at, by, head_before, disclosure))
     assembled = assembled_look(desk, look.number)

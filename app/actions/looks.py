@@ -60,7 +60,7 @@ def closed_book_of(desk: Desk, number: int, history: History, run_on: date) -> L
 def _record_opening(desk: Desk, look: int, session: str) -> None:
     """Once per look and session; a file that may only be read is read without it."""
     state = desk.trial.state()
-    if desk.read_only or desk.trial.damage or state.opened(look, session):
+    if not desk.may_write or state.opened(look, session):
         return
     with desk.trial.act() as act:
         if not act.state.opened(look, session):
@@ -100,14 +100,14 @@ def surroundings(
 
 
 def _on_file(desk: Desk, plan: Plan, state: State, look: Look, freezing: Freezing | None) -> LookOnFile:
-    pooled = pooled_look(desk, look.number)
+    _, fraction, events = pooled_counts(desk, look.number)
     kinds = [earlier.snapshot.kind for earlier in state.looks[: look.number]]
     frozen = look.frozen is not None or (freezing is not None and look is state.open_look)
     return LookOnFile(
         number=look.number,
         kind=look.snapshot.kind,
-        fraction=pooled.fraction,
-        events=pooled.events,
+        fraction=fraction,
+        events=events,
         state="frozen" if frozen else "open",
         planned=planned_fraction(plan.design.looks, kinds),
     )
@@ -122,11 +122,23 @@ def pooled_look(desk: Desk, number: int) -> PooledResult:
     return desk.open_looks.get((number, look.plan_digest), lambda: _pool(desk, number, look.plan_digest))
 
 
+def pooled_counts(desk: Desk, number: int) -> tuple[int, float, int]:
+    """Number, information fraction and events of a look: all that the looks after it say of it.
+
+    Kept for every look, since each look needs them of all before it.
+    """
+    look = desk.trial.state().look(number)
+    return desk.open_counts.get((number, look.plan_digest), lambda: _counts(pooled_look(desk, number)))
+
+
+def _counts(pooled: PooledResult) -> tuple[int, float, int]:
+    return pooled.number, pooled.fraction, pooled.events
+
+
 def _pool(desk: Desk, number: int, plan_digest: str) -> PooledResult:
     limits = desk.settings.limits
     plan = plan_under(desk.trial, plan_digest, limits)
-    earlier = [pooled_look(desk, before) for before in range(1, number)]
-    past = [(look.number, look.fraction, look.events) for look in earlier]
+    past = [pooled_counts(desk, before) for before in range(1, number)]
     return pool_delivery(plan, delivery_of(desk.trial.snapshot(number)), past, number=number, limits=limits)
 
 

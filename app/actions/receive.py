@@ -100,9 +100,21 @@ def receive(
         )
     name = recorded_name(by)
     with desk.trial.act() as act:
+        _refuse_overtaken(act, understood)
         if act.state.open_look is not None and freeze_open:
             freeze_within(desk, act, by=name)
         return _store(act, understood, answered, name)
+
+
+def _refuse_overtaken(act: Act, understood: Understanding) -> None:
+    """What was understood is stored; another snapshot that came in since would be the one compared with."""
+    if act.state.next_number != understood.look:
+        raise LedgerError(
+            "Another snapshot came in meanwhile",
+            found=f"look {act.state.next_number - 1} on file",
+            accepted=f"this extract as look {understood.look}",
+            remedy="receive the extract again",
+        )
 
 
 def _store(act: Act, understood: Understanding, answered: tuple[Acknowledgement, ...], by: str) -> int:

@@ -50,7 +50,7 @@ def write_report(desk: Desk, look: int, folder: Path) -> tuple[Path, ...]:
     }
     for path, content in wanted.items():
         _write_whole(path, content)
-    if not desk.read_only:
+    if desk.may_write:
         with desk.trial.act() as act:
             act.append(ReportWritten(look, act.state.frozen_look(look).body.report_digest))
     return tuple(wanted)

@@ -281,8 +281,8 @@ class ActLink:
 class Sheet:
     """One question, answered. `number` is None for At a glance; `answer` has two lines for two readings.
 
-    `tables` stand beside the figure, `wide_tables` under it, `folded` ones behind a fold on a page and open in
-    print; `figure_table` says the figure in numbers.
+    `tables` stand beside the figure, `wide_tables` under it, `folded` ones behind a fold on a page and open
+    in print; `figure_table` says the figure in numbers.
     """
 
     key: str

@@ -48,6 +48,8 @@ def frozen_record(trial: Trial, number: int) -> dict[str, Any]:
     record: dict[str, Any] = parse_strict(trial.content(frozen.body.record_digest), where)
     for difference in differences(record, LOOKS_RECORD):
         raise LedgerChanged("A frozen record that is not a record", where=where, found=difference)
+    if [look["number"] for look in record["looks"]] != [number]:
+        raise LedgerChanged("A frozen record of other looks", where=where, accepted=f"look {number} alone")
     return record
 
 
@@ -63,7 +65,16 @@ def compute(trial: Trial, number: int, limits: Limits) -> Assembled:
     snapshot = trial.snapshot(number)
     earlier = delivery_of(trial.snapshot(number - 1)) if number > 1 else None
     past = looks_as_used(trial, number)
-    reviewed = review_delivery(plan, delivery_of(snapshot), earlier, past, number=number, limits=limits)
+    try:
+        reviewed = review_delivery(plan, delivery_of(snapshot), earlier, past, number=number, limits=limits)
+    except (
+        ValueError
+    ) as fault:  # elsewhere a bug; here the frozen records of the looks before say what cannot be
+        raise LedgerChanged(
+            "Looks as used that cannot have been",
+            where=f"the frozen records before look {number}",
+            found=str(fault),
+        ) from fault
     return Assembled(plan, snapshot, reviewed.extract, reviewed.result)
 
 
@@ -77,8 +88,8 @@ def assemble(trial: Trial, number: int, limits: Limits) -> Assembled:
 
 
 def letters_for(plan: Plan, trial: Trial) -> Letters:
-    """The drawn letters; a plan that starts unmasked gives the second ink to the experimental arm."""
-    return Letters(trial.letter_key().letters.control) if plan.arms.masked else Letters("A")
+    """The drawn letters; a plan that starts unmasked shows none and gives A's ink to experimental."""
+    return Letters(trial.letter_key().letters.control) if plan.arms.masked else Letters(control="B")
 
 
 def closed_view(

@@ -43,7 +43,7 @@ class CheckReport:
 
 def check_trial(trial: Trial, limits: Limits) -> Iterator[CheckLine]:
     """Everything that the trial file alone can prove, a line at a time."""
-    problems = trial.check_chain()
+    problems = dict.fromkeys((*trial.damage, *trial.check_chain()))
     yield from (CheckLine(False, str(problem)) for problem in problems)
     if not problems:
         entries = trial.entries()
