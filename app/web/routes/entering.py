@@ -28,7 +28,7 @@ def ask_to_enter(site: TheSite, request: Request, key: str) -> Response:
 @router.post("/enter")
 def enter(site: TheSite, request: Request, form: SubmittedForm) -> Response:
     """Exchange a key for the cookie of a new session."""
-    side = site.keys.side_of(form.text("key"))
+    side = site.keys.side_of(form.fields.get("key", ""))
     if side is None:
         return answer(site.pages, wrong_key(), request.url.path)
     response = RedirectResponse("/", SEE_OTHER)

@@ -26,7 +26,7 @@ router = APIRouter()
 FORM = "/closed/receive"
 CONFIRM = "/closed/receive/confirm"
 KINDS: tuple[tuple[LookKind, str], ...] = (
-    ("planned", "one of the plan's looks"),
+    ("planned", "one of the plan’s looks"),
     ("unplanned", "asked for in between; it spends the alpha that belongs to its information"),
     ("safety", "no efficacy bound; it spends nothing, or what the plan says"),
     ("final", "the last one; it spends all alpha that is left"),
