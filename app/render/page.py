@@ -35,6 +35,7 @@ def page_environment(templates: Path) -> Environment:
     )
     environment.globals.update(
         static=STATIC,
+        fonts=templates.parent / "static" / "fonts",  # a report carries them inside
         caution=CAUTION,
         caution_lead=LEAD,
         disclosed=DISCLOSED,
@@ -110,7 +111,7 @@ def render_page(
     sheet_key: str | None = None,
     **context: Any,
 ) -> str:
-    """Any page that extends base.html; `frame` is None before a look exists, `base` is "/closed" or "/open"."""
+    """Any page that extends base.html; `frame` is None before a look, `base` is "/closed" or "/open"."""
     page = environment.get_template(template)
     return page.render(frame=frame, base=base, sheet_key=sheet_key, **context)
 
@@ -124,7 +125,7 @@ def render_sheet(
     template: str = "sheet.html",
     **context: Any,
 ) -> str:
-    """One sheet of a look; `template` may extend sheet.html and fill its blocks, with `context` for them."""
+    """One sheet of a look; `template` may extend sheet.html and fill its blocks from `context`."""
     sheet = book.sheet(sheet_key)
     if sheet is None:
         raise SheetMissing(

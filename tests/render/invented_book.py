@@ -128,7 +128,7 @@ def boundary_figure(state: State) -> BoundaryFigure:
             text("Futility"),
             tuple(futility_cell(look) for look in range(4)),
         ),
-        LaneRow(text("Alpha spent, one-sided"), (), tuple(map(Span, SPENT))),
+        LaneRow(text("Alpha spent, one‑sided"), (), tuple(map(Span, SPENT))),
     )
     return BoundaryFigure(
         title="z against the boundary, by information",
@@ -285,7 +285,7 @@ def looks_table() -> Table:
         "Efficacy bound",
         "as a hazard ratio",
         "Futility bound",
-        "Alpha spent, one-sided",
+        "Alpha spent, one‑sided",
     )
     rows = tuple(
         Row(
