@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from datetime import datetime
 
+from app import __version__
 from app.actions.desk import Desk
 from app.actions.environment import environment
 from app.actions.looks import assembled_look, closed_book_of, history_of
@@ -18,6 +19,7 @@ from app.record.text import record_bytes
 from app.render.page import page_environment
 from app.render.report import ReportFacts, render_report
 from app.sheets.record import Freezing, History
+from app.sheets.words import moment_text
 from app.verification.assembly import closed_view
 from app.views.closed import full_view
 from app.views.record import looks_record
@@ -73,13 +75,14 @@ def closed_report(desk: Desk, number: int, history: History) -> bytes:
     view = closed_view(desk.trial, history.state, assembled)
     record = record_bytes(looks_record("look", [view], run_at=freezing.at))
     facts = ReportFacts(
-        frozen_at=frozen_at,
+        frozen_at=moment_text(frozen_at),
         by=freezing.by,
         head_before=freezing.head_before,
         plan_digest=assembled.result.plan_digest,
         snapshot_digests=assembled.result.snapshot_digests,
         record_json=record.decode("utf-8"),
         record_digest=digest(record),
+        program=f"Lookledger {__version__}",
     )
     book = closed_book_of(desk, number, history, frozen_at.date())
     return render_report(page_environment(asset("templates")), book, frozen=facts)

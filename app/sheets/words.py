@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from datetime import date
+from datetime import date, datetime
 
 from app.model.values import Absent, Estimate
 from app.sheets.blocks import ArmLabel, Letter, Line, Span, Tone
@@ -164,6 +164,11 @@ def day_text(day: date) -> str:
 def moment(at: str) -> str:
     """ "2027-01-26 09:30 UTC" from an entry's time, which is in UTC."""
     return f"{at[:10]} {at[11:16]}{NO_BREAK}UTC"
+
+
+def moment_text(moment: datetime) -> str:
+    """ "8 Jan 2027, 14:05 UTC", unbroken within the date."""
+    return f"{day_text(moment.date())}, {moment:%H:%M}{NO_BREAK}UTC"
 
 
 def listed(words: Sequence[str]) -> str:

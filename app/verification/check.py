@@ -21,7 +21,7 @@ from app.views.record import looks_record
 
 MOST_NAMED = 5
 RECORD_IN_REPORT = re.compile(rb'<pre[^>]*\bid="record"[^>]*>(.*?)</pre>', re.DOTALL)
-DIGEST_IN_REPORT = re.compile(rb'data-record-digest="([0-9a-f]{64})"')
+DIGEST_IN_REPORT = re.compile(rb"<dt>Record</dt><dd>SHA-256 ([0-9a-f]{64})</dd>")
 
 
 @dataclass(frozen=True)
