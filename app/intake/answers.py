@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 from datetime import date
 from difflib import get_close_matches
-from typing import cast, get_args
+from typing import get_args
 
 from app.errors import ValueRejected
 from app.model.extract import LookKind
@@ -37,7 +37,7 @@ def _refuse_day(text: str, where: str) -> date:
 def read_kind(text: str, *, where: str) -> LookKind:
     """The declared kind of a look."""
     if text in LOOK_KINDS:
-        return cast(LookKind, text)
+        return text
     nearest = get_close_matches(text, LOOK_KINDS, n=1)
     raise ValueRejected(
         "this is no kind of look" if text else "the kind of look is missing",

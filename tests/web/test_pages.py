@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import csv
 import html
+import io
 import json
+import zipfile
 from pathlib import Path
 from typing import Any
 
@@ -92,6 +95,27 @@ def test_figures_and_records_are_json(served: Served) -> None:
     record = served.get("/closed/looks/3/record.json").json()
     assert (record["format"], record["looks"][0]["number"]) == (1, 3)
     assert record["orientation"] == {"of": "A", "against": "B"}
+
+
+@pytest.mark.parametrize(
+    ("path", "name", "first"),
+    [
+        ("/closed/looks/3/curves", "Q17-look-3-closed-masked-cutoff-2025-10-13-curves.zip", "curves-1.csv"),
+        ("/open/looks/3/data", "Q17-look-3-open-pooled-cutoff-2025-10-13-data.zip", "data-1.csv"),
+    ],
+)
+def test_tables_are_taken_away_as_csv_under_a_name_that_says_what_they_are(
+    served: Served, path: str, name: str, first: str
+) -> None:
+    served.enter()
+    assert f'href="{path}/tables.zip"' in served.get(path).text
+    taken = served.get(f"{path}/tables.zip")
+    assert taken.headers["content-disposition"].endswith(name)
+    with zipfile.ZipFile(io.BytesIO(taken.content)) as files:
+        assert files.namelist()[0] == first
+        rows = list(csv.reader(io.StringIO(files.read(first).decode())))
+    assert len({len(row) for row in rows}) == 1
+    assert taken.content == served.get(f"{path}/tables.zip").content
 
 
 def test_reading_a_record_counts_as_opening_its_results_once(served: Served) -> None:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from typing import Any
-from urllib.parse import quote
 
 from fastapi import APIRouter
 from starlette.responses import RedirectResponse, Response
@@ -15,6 +14,7 @@ from app.actions.names import recorded_name, recorded_reason
 from app.actions.report import report
 from app.actions.unmask import unmask
 from app.errors import LookAlreadyFrozen
+from app.web.files import attachment
 from app.web.forms import SubmittedForm
 from app.web.mending import Mend, read_field
 from app.web.routes.looks import CLOSED, closed_look, newest_frame, require_look
@@ -51,14 +51,10 @@ def require_open(site: Site, look: int) -> None:
 
 @router.get("/closed/looks/{look}/report")
 def download_report(site: TheSite, session: TheSession, look: LookNumber) -> Response:
-    """The frozen bytes as a file. Should a browser open it here after all, the sandbox keeps it powerless."""
+    """The frozen bytes, as they were stored."""
     closed_look(site, session, look)
     files = report(site.desk, look)
-    headers = {
-        "Content-Disposition": f"attachment; filename*=UTF-8''{quote(files.stem)}.html",
-        "Content-Security-Policy": "sandbox",
-    }
-    return Response(files.html, media_type="text/html; charset=utf-8", headers=headers)
+    return attachment(files.html, f"{files.stem}.html", "text/html; charset=utf-8")
 
 
 @router.get("/closed/unmask")

@@ -8,9 +8,11 @@ from starlette.responses import HTMLResponse, JSONResponse, Response
 
 from app.actions.looks import closed_book, looks, open_book, record_of
 from app.record.text import record_bytes
+from app.render.csv_tables import sheet_tables
 from app.render.page import render_sheet
 from app.render.plotly_figures import plotly_figure
 from app.sheets.blocks import LookBook, PageFrame, Sheet
+from app.web.files import archive, attachment, tables_stem
 from app.web.sessions import Session
 from app.web.site import LookNumber, Site, TheSession, TheSite
 
@@ -32,6 +34,11 @@ def closed_figure(site: TheSite, session: TheSession, look: LookNumber, sheet: s
     return figure(closed_look(site, session, look), sheet)
 
 
+@router.get("/closed/looks/{look}/{sheet}/tables.zip")
+def closed_tables(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
+    return tables(closed_look(site, session, look), sheet)
+
+
 @router.get("/closed/looks/{look}/{sheet}")
 def closed_sheet(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
     return page(site, closed_look(site, session, look), sheet, CLOSED)
@@ -40,6 +47,11 @@ def closed_sheet(site: TheSite, session: TheSession, look: LookNumber, sheet: st
 @router.get("/open/looks/{look}/{sheet}/figure.json")
 def open_figure(site: TheSite, look: LookNumber, sheet: str) -> Response:
     return figure(open_look(site, look), sheet)
+
+
+@router.get("/open/looks/{look}/{sheet}/tables.zip")
+def open_tables(site: TheSite, look: LookNumber, sheet: str) -> Response:
+    return tables(open_look(site, look), sheet)
 
 
 @router.get("/open/looks/{look}/{sheet}")
@@ -81,6 +93,14 @@ def figure(book: LookBook, sheet: str) -> Response:
     if interactive is None:
         raise HTTPException(404)
     return JSONResponse(interactive)
+
+
+def tables(book: LookBook, key: str) -> Response:
+    """The tables of a sheet as CSV files in one archive, named after the look and its data cutoff."""
+    files = sheet_tables(require_sheet(book, key))
+    if not files:
+        raise HTTPException(404)
+    return attachment(archive(files), f"{tables_stem(book.frame)}-{key}.zip", "application/zip")
 
 
 def require_sheet(book: LookBook, key: str) -> Sheet:
