@@ -1,0 +1,126 @@
+"""The invented trial looked at: its views and books of sheets, made from its extracts without a file."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, fields, is_dataclass
+from datetime import date
+from typing import Any
+
+from app.intake.extract import received_file
+from app.ledger.entries import SnapshotReceived
+from app.ledger.history import Look, State
+from app.model.extract import Acknowledgement, Extract, LookKind, Snapshot
+from app.model.look import LookResult
+from app.model.plan import Plan
+from app.review import as_used
+from app.review.look import planned_fraction
+from app.review.received import Delivery, review_delivery
+from app.settings import Limits
+from app.sheets.blocks import LookBook, Sheet, Span
+from app.sheets.book import closed_book
+from app.sheets.frame import LookOnFile, Surroundings
+from app.sheets.record import History
+from app.views.closed import ClosedView, Letters, masked_view, unmasked_view
+from tests.unit.review.invented_trial import CUTOFFS, Patients, patients, plan
+
+A_IS_CONTROL, A_IS_EXPERIMENTAL = Letters("A"), Letters("B")
+
+
+@dataclass(frozen=True, eq=False)
+class Held:
+    """One look of the trial as it was computed, with what it was made from."""
+
+    plan: Plan
+    result: LookResult
+    snapshot: Snapshot
+    extract: Extract
+
+    def view(self, letters: Letters | None = None) -> ClosedView:
+        """Unmasked without letters, masked with them."""
+        if letters is None:
+            return unmasked_view(self.result, self.plan, A_IS_CONTROL)
+        return masked_view(self.result, self.plan, letters)
+
+
+def held(
+    under: Plan | None = None,
+    people: Patients | None = None,
+    cutoffs: Sequence[date] = CUTOFFS,
+    kinds: Sequence[LookKind] = (),
+) -> tuple[Held, ...]:
+    """The looks at these cutoffs, one after the other; `kinds` are planned unless said."""
+    under, people = under or plan(), people or patients()
+    looks: list[Held] = []
+    earlier: Delivery | None = None
+    for number, cutoff in enumerate(cutoffs, 1):
+        kind = kinds[number - 1] if number <= len(kinds) else "planned"
+        file = received_file(f"adtte-{number}.csv", people.at(cutoff).csv())
+        delivery = Delivery((file,), kind, cutoff)
+        past = [as_used(look.result) for look in looks]
+        reviewed = review_delivery(under, delivery, earlier, past, number=number, limits=Limits())
+        reasons = tuple(Acknowledgement(doubt.id, "Known") for doubt in reviewed.extract.doubts)
+        at = f"{cutoff}T09:00:00Z"
+        snapshot = Snapshot(number, (file,), kind, cutoff, None, at, "M. Berg", reasons)
+        looks.append(Held(under, reviewed.result, snapshot, reviewed.extract))
+        earlier = delivery
+    return tuple(looks)
+
+
+def surroundings(looks: Sequence[Held]) -> Surroundings:
+    design = looks[0].plan.design
+    kinds = [look.result.kind for look in looks]
+    on_file = (
+        LookOnFile(
+            number=look.result.number,
+            kind=look.result.kind,
+            fraction=look.result.information.fraction,
+            events=look.result.information.events,
+            state="open",
+            planned=planned_fraction(design.looks, kinds[: look.result.number]),
+        )
+        for look in looks
+    )
+    return Surroundings(tuple(on_file), design.looks, design.planned_events, 1, looks[-1].snapshot.cutoff)
+
+
+def book(looks: Sequence[Held], letters: Letters | None = None) -> LookBook:
+    """All sheets of the last of these looks, for the closed side."""
+    on_file = tuple(
+        Look(SnapshotReceived.of(look.snapshot, look.extract.findings), look.snapshot.received_at, "")
+        for look in looks
+    )
+    history = History(State(looks=on_file, letters=None), ())
+    last = looks[-1]
+    return closed_book(last.view(letters), surroundings(looks), last.snapshot, last.extract, history)
+
+
+def text(line: Sequence[Span]) -> str:
+    """A line as it is read, spaces that do not break as plain ones."""
+    return "".join(span.text for span in line).replace("\u00a0", " ").replace("\u2011", "-")
+
+
+def answers(sheet: Sheet) -> list[str]:
+    return [text(answer) for answer in sheet.answer]
+
+
+def table_texts(sheet: Sheet, caption: str) -> dict[str, list[str]]:
+    """Row heads and cells of the one table whose caption begins so."""
+    tables = (*sheet.tables, *sheet.wide_tables, *sheet.folded, *filter(None, [sheet.figure_table]))
+    (table,) = [each for each in tables if text(each.caption).startswith(caption)]
+    return {text(row.head): [text(cell.line) for cell in row.cells] for row in table.rows}
+
+
+def parts(value: Any, kind: type) -> Iterator[Any]:
+    """Every part of this kind anywhere in a value made of dataclasses and tuples."""
+    if isinstance(value, kind):
+        yield value
+    elif is_dataclass(value) and not isinstance(value, type):
+        for field in fields(value):
+            yield from parts(getattr(value, field.name), kind)
+    elif isinstance(value, tuple | list):
+        for item in value:
+            yield from parts(item, kind)
+    elif isinstance(value, dict):
+        for item in value.values():
+            yield from parts(item, kind)
