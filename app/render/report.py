@@ -7,6 +7,7 @@ import hashlib
 import re
 from dataclasses import dataclass
 from functools import cache
+from itertools import count
 from pathlib import Path
 
 from jinja2 import Environment
@@ -15,7 +16,7 @@ from markupsafe import Markup
 from app.render.page import DISCLOSED
 from app.render.palette import INK, PAPER
 from app.render.spine import spine_marks
-from app.sheets.blocks import LookBook, PageFrame, Sheet, Table
+from app.sheets.blocks import LookBook, MethodLine, PageFrame, Sheet, Table
 from app.sheets.caution import CAUTION, LEAD
 
 
@@ -43,32 +44,44 @@ def render_report(environment: Environment, book: LookBook, *, frozen: ReportFac
         style_digest=base64.b64encode(hashlib.sha256(style.encode()).digest()).decode(),
         links={sheet.key: f"#{sheet.key}" for sheet in book.sheets},
         numbered_tables=numbered_tables,
+        methods=methods_once(book),
     )
     return page.encode()
+
+
+def methods_once(book: LookBook) -> tuple[MethodLine, ...]:
+    """How everything in the report was computed, each entry where it is first needed and once."""
+    entries = (entry for sheet in book.sheets if sheet.number is not None for entry in sheet.methods)
+    return tuple(dict.fromkeys(entries))
 
 
 # --- tables -------------------------------------------------------------------------------------------------
 
 
+Numbered = tuple[tuple[str, Table], ...]
+
+
 @dataclass(frozen=True)
 class NumberedTables:
-    """Tables with their numbers: those as wide as the page first, then those that stand in two columns."""
+    """Tables with their numbers: in two columns under the figure, as wide as the page, and at the end."""
 
-    wide: tuple[tuple[str, Table], ...]
-    narrow: tuple[tuple[str, Table], ...]
+    narrow: Numbered
+    wide: Numbered
+    further: Numbered
 
 
 def numbered_tables(sheet: Sheet) -> NumberedTables:
     """4.1, 4.2 ... in the order in which they stand."""
-    wide = (*((sheet.figure_table,) if sheet.figure_table else ()), *sheet.wide_tables)
-    numbers = [
-        f"{sheet.number}.{n}" if sheet.number is not None else ""
-        for n in range(1, len(wide) + len(sheet.tables) + 1)
-    ]
+    own = (sheet.figure_table,) if sheet.figure_table else ()
+    parts = (sheet.tables, (*own, *sheet.wide_tables), sheet.folded)
+    counter = count(1)
     return NumberedTables(
-        tuple(zip(numbers[: len(wide)], wide, strict=True)),
-        tuple(zip(numbers[len(wide) :], sheet.tables, strict=True)),
+        *(tuple((_table_number(sheet, next(counter)), table) for table in part) for part in parts)
     )
+
+
+def _table_number(sheet: Sheet, place: int) -> str:
+    return f"{sheet.number}.{place}" if sheet.number is not None else ""
 
 
 # --- style --------------------------------------------------------------------------------------------------

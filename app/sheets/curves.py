@@ -315,13 +315,14 @@ def _figure_table(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
         name = item.label.name if item.label else "All subjects"
         heads += [
             Column(line(f"{name}, {what}"), arm=item.label)
-            for what in (f"event{NO_BREAK_HYPHEN}free, %", "at risk")
+            for what in (f"event{NO_BREAK_HYPHEN}free, %", "interval", "at risk")
         ]
     rows = []
     for index, tick in enumerate(axis.ticks):
         cells: list[Cell] = []
         for item in shown:
-            cells.append(_survival_cell(item.curve, tick * axis.scale))
+            estimated = _survival_cell(item.curve, tick * axis.scale)
+            cells += [Cell(estimated.line), Cell(estimated.below)]
             at_risk = rows_at_ticks(item.curve, item.subjects, axis).at_risk[index]
             cells.append(Cell(line(str(at_risk))))
         rows.append(Row(line(said_time(tick)), tuple(cells)))

@@ -110,15 +110,13 @@ def calendar_figure(
 
 
 def calendar_table(calendar: CalendarCounts | None) -> Table | None:
-    """The figure in numbers: the last day of each quarter that the extract reaches."""
+    """The figure in numbers: the last day of each half-year that the extract reaches."""
     if calendar is None:
         return None
     days = calendar.day.astype("datetime64[D]")
-    quarters = (days.astype("datetime64[M]").astype(int)) // 3
+    halves = days.astype("datetime64[M]").astype(int) // 6
     last = [
-        index
-        for index in range(days.size)
-        if index + 1 == days.size or quarters[index + 1] != quarters[index]
+        index for index in range(days.size) if index + 1 == days.size or halves[index + 1] != halves[index]
     ]
     rows = tuple(
         Row(
@@ -128,7 +126,7 @@ def calendar_table(calendar: CalendarCounts | None) -> Table | None:
         for index in last
     )
     columns = (Column(line("randomised")), Column(line("events")))
-    return Table(line("Subjects randomised and events so far, by quarter"), columns, rows, line("Up to"))
+    return Table(line("Subjects randomised and events so far, by half-year"), columns, rows, line("Up to"))
 
 
 # --- the tables -----------------------------------------------------------------------------------------
