@@ -18,7 +18,7 @@ from app.render.svg.drawing import (
 )
 from app.render.svg.element import Element, coordinate, element
 from app.render.svg.geometry import Box, Scale, apart_within, step_path, thinned
-from app.render.svg.lettering import LABEL, SMALL, broken, text_width, widest, words
+from app.render.svg.lettering import LABEL, SMALL, broken, shortened, text_width, widest, words
 from app.sheets.blocks import CurveLine, CurvesFigure
 
 PERCENT_TICKS = (0.0, 25.0, 50.0, 75.0, 100.0)
@@ -91,7 +91,11 @@ def _percent_axis(figure: CurvesFigure, page: Page, y: Scale) -> tuple[Element, 
         for tick in PERCENT_TICKS[1:]
     )
     numbers = (small_print(f"{tick:g}", page.numbers_end, y(tick) + 4, "end") for tick in PERCENT_TICKS)
-    return (small_print(figure.y_title, y_title_at(page), 14), *grid, *numbers)
+    return (
+        small_print(shortened(figure.y_title, page.width / 2, size=SMALL), y_title_at(page), 14),
+        *grid,
+        *numbers,
+    )
 
 
 def y_title_at(page: Page) -> float:
@@ -103,6 +107,7 @@ def _time_axis(figure: CurvesFigure, page: Page, x: Scale) -> tuple[Element, ...
     below = page.plot.bottom + 20
     shown = shown_ticks(figure, x)
     title_at = below + (18 if page.name_above else 0)
+    room = page.width if page.name_above else page.plot.left - 12
     return (
         axis_line(page.plot.bottom, page.plot.left, page.plot.right),
         ticks_below(page.plot.bottom, [x(figure.ticks[index]) for index in shown]),
@@ -110,7 +115,7 @@ def _time_axis(figure: CurvesFigure, page: Page, x: Scale) -> tuple[Element, ...
             small_print(f"{figure.ticks[index]:g}", x(figure.ticks[index]), below, "middle")
             for index in shown
         ),
-        small_print(figure.x_title, 0, title_at),
+        small_print(shortened(figure.x_title, room, size=SMALL), 0, title_at),
     )
 
 

@@ -126,7 +126,8 @@ def look_names(plot: LanePlot) -> tuple[Element, ...]:
     """ "Look 3" under each lane."""
     by_number = looks_by_number(plot)
     middles = [plot.middle(lane) for lane in plot.figure.lanes]
-    placed = apart_within(middles, LABEL_GAP if by_number else 48, 0, plot.page.width)
+    first = text_width("Look") + 12 if by_number else 0.0
+    placed = apart_within(middles, LABEL_GAP if by_number else 48, first, plot.page.width - 7)
     names = (_look_name(plot, lane, x) for lane, x in zip(plot.figure.lanes, placed, strict=True))
     head = (words("Look", 0, plot.area.bottom + 20, fill=INK_2),) if by_number else ()
     return (ticks_below(plot.area.bottom, middles), *head, *names)

@@ -130,6 +130,8 @@ def broken(
     text: str, width: float, *, most_lines: int, size: float = LABEL, semibold: bool = False
 ) -> tuple[str, ...]:
     """`text` in lines no wider than `width`; what does not fit into `most_lines` ends in an ellipsis."""
+    if text_width(text, size, semibold=semibold) <= width:
+        return (text,)
     lines: list[str] = []
     for word in text.split():
         candidate = f"{lines[-1]} {word}" if lines else word

@@ -1,0 +1,114 @@
+"""Charts to zoom into: plain JSON, no markup in words, in the places of the drawings."""
+
+from __future__ import annotations
+
+import json
+import re
+from typing import Any
+
+import pytest
+
+from app.render import figures
+from app.render.plotly_figures import plotly_figure
+from app.render.plotly_figures.setting import in_line
+from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure
+from tests.render import invented_book as invented
+from tests.render.drawn_figures import FIGURES
+
+HEIGHTS: dict[type, dict[str, float]] = {
+    CurvesFigure: {"wide": 250, "narrow": 200},
+    BoundaryFigure: {"wide": 236, "narrow": 220},
+    CalendarFigure: {"wide": 250, "narrow": 200},
+}
+CHARTS = {name: plotly_figure(figure) for name, figure in FIGURES.items()}
+every_chart = pytest.mark.parametrize("name", [name for name, chart in CHARTS.items() if chart is not None])
+
+
+def strings(part: Any) -> list[str]:
+    if isinstance(part, str):
+        return [part]
+    children = part.values() if isinstance(part, dict) else part if isinstance(part, list) else ()
+    return [text for child in children for text in strings(child)]
+
+
+def test_counts_have_no_chart() -> None:
+    assert CHARTS["counts"] is None
+
+
+@every_chart
+def test_a_chart_is_plain_json(name: str) -> None:
+    text = json.dumps(CHARTS[name], allow_nan=False)
+    assert json.loads(text) == CHARTS[name]
+    assert text == json.dumps(plotly_figure(FIGURES[name]), allow_nan=False)
+
+
+@every_chart
+def test_no_word_of_a_chart_is_markup(name: str) -> None:
+    """plotly.js sets tags with inline styles, which the pages forbid; <extra></extra> it takes out itself."""
+    allowed = ("<extra></extra>",)
+    found = [text for text in strings(CHARTS[name]) if re.search(r"<(?!extra>|/extra>)", text)]
+    assert found == []
+    assert all(text.count("<") == 2 for text in strings(CHARTS[name]) if allowed[0] in text)
+
+
+@every_chart
+@pytest.mark.parametrize("page", ["wide", "narrow"])
+def test_a_chart_brings_its_own_plain_look_and_fits_the_drawing(name: str, page: str) -> None:
+    chart = CHARTS[name]
+    assert chart is not None
+    layout = chart[page]["layout"]
+    drawing = getattr(figures, page)(FIGURES[name])
+    assert layout["template"] == {}
+    assert layout["margin"]["l"] + layout["margin"]["r"] < drawing.width
+    plot = layout["yaxis"]["domain"][1] - layout["yaxis"]["domain"][0]
+    assert 0 <= layout["yaxis2"]["domain"][1] < layout["yaxis"]["domain"][0] < 1
+    assert plot * (drawing.height - layout["margin"]["t"]) == pytest.approx(
+        HEIGHTS[type(FIGURES[name])][page], abs=9
+    )
+
+
+def test_rows_at_risk_are_text_under_the_axis_that_they_follow() -> None:
+    chart = CHARTS["curves"]
+    assert chart is not None
+    rows = [trace for trace in chart["wide"]["data"] if trace["mode"] == "text"]
+    assert len(rows) == 6
+    figure = invented.curves_figure()
+    for row, counts in zip(
+        rows[:3], (figure.lines[0].rows.at_risk, figure.lines[0].rows.events), strict=False
+    ):
+        assert row["x"] == list(figure.ticks)
+        assert row["yaxis"] == "y2"
+        assert "xaxis" not in row  # that is, the one of the curves
+        assert [int(text) for text in row["text"]] == list(counts)
+        assert {len(text) for text in row["text"]} == {3}
+
+
+def test_a_curve_can_be_read_at_each_step_with_its_limits() -> None:
+    chart = CHARTS["curves"]
+    assert chart is not None
+    line = invented.curves_figure().lines[0]
+    trace = next(t for t in chart["wide"]["data"] if t.get("name") == line.label)
+    assert trace["line"]["shape"] == "hv"
+    assert trace["y"][: len(line.survival)] == list(line.survival)
+    assert trace["customdata"][1] == f"{line.ci_low[1]:.1f} to {line.ci_high[1]:.1f}"
+
+
+def test_marks_and_bounds_answer_the_pointer_with_their_own_words() -> None:
+    chart = CHARTS["boundary"]
+    assert chart is not None
+    said = strings(chart["wide"]["data"])
+    for words in ("Look 3: z 2.129", "Look 3: efficacy bound 2.434", "Look 3: futility bound 0.958"):
+        assert words in said
+
+
+@pytest.mark.parametrize(
+    ("text", "padded"),
+    [
+        ("0.714", "0.714"),
+        ("−0.770", "−0.770\u2007"),
+        ("0.0000138", "\u2007" * 4 + "0.0000138"),
+        ("538", "538"),
+    ],
+)
+def test_a_number_is_padded_so_that_its_point_stays_in_line(text: str, padded: str) -> None:
+    assert in_line(text) == padded

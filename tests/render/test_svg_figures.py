@@ -1,0 +1,245 @@
+"""The drawings: well-formed, the same each time, in line, nothing on top of anything else."""
+
+from __future__ import annotations
+
+import re
+from itertools import combinations
+from xml.etree import ElementTree
+
+import pytest
+
+from app.render import palette
+from app.render.svg import boundary, curves
+from app.render.svg.element import coordinate
+from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, LanePage, lane_plot
+from app.render.svg.lettering import broken, point_offset, text_width
+from tests.render import invented_book as invented
+from tests.render.drawn_figures import FIGURES, HOSTILE, SVG, Text, drawings, texts
+
+DRAWN = drawings()
+every_drawing = pytest.mark.parametrize("svg", DRAWN.values(), ids=DRAWN.keys())
+
+ELEMENTS = {"svg", "title", "desc", "rect", "circle", "polygon", "path", "text", "tspan"}
+ATTRIBUTES = {
+    *("viewBox", "width", "height", "role", "x", "y", "cx", "cy", "r", "d", "points"),
+    *("fill", "fill-opacity", "stroke", "stroke-width", "stroke-dasharray"),
+    *("font-family", "font-size", "font-style", "font-weight", "text-anchor"),
+}
+
+
+def test_the_same_figure_gives_the_same_bytes() -> None:
+    assert drawings() == DRAWN
+
+
+@every_drawing
+def test_a_drawing_uses_presentation_attributes_and_nothing_that_a_printer_does_not_know(svg: str) -> None:
+    for element in ElementTree.fromstring(svg).iter():
+        assert element.tag.removeprefix(SVG) in ELEMENTS
+        assert set(element.attrib) <= ATTRIBUTES
+
+
+@every_drawing
+def test_a_drawing_has_a_title_and_a_description_first(svg: str) -> None:
+    root = ElementTree.fromstring(svg)
+    assert root.get("role") == "img"
+    first, second = list(root)[:2]
+    assert (first.tag, second.tag) == (f"{SVG}title", f"{SVG}desc")
+    assert first.text
+    assert second.text
+
+
+@every_drawing
+def test_no_text_lies_on_another(svg: str) -> None:
+    assert [(a.words, b.words) for a, b in combinations(texts(svg), 2) if a.overlaps(b)] == []
+
+
+@every_drawing
+def test_every_text_keeps_inside_the_drawing(svg: str) -> None:
+    root = ElementTree.fromstring(svg)
+    width, height = float(root.get("width", "0")), float(root.get("height", "0"))
+    outside = [
+        t.words
+        for t in texts(svg)
+        if t.left < -1 or t.right > width + 1 or t.y > height or t.y < 0.6 * t.size
+    ]
+    assert outside == []
+
+
+@every_drawing
+def test_every_colour_is_one_of_the_palette(svg: str) -> None:
+    named = {value for value in vars(palette).values() if isinstance(value, str) and value.startswith("#")}
+    arms = {colour for ink in (palette.ARM_A, palette.ARM_B) for colour in (ink.line, ink.text)}
+    assert set(re.findall(r"#[0-9A-Fa-f]{3,8}\b", svg)) <= named | arms
+
+
+@every_drawing
+def test_no_number_is_written_with_an_exponent_or_as_none(svg: str) -> None:
+    places = ("x", "y", "cx", "cy", "r", "d", "points", "width", "height", "stroke-width")
+    values = " ".join(
+        element.get(place, "") for element in ElementTree.fromstring(svg).iter() for place in places
+    )
+    assert not re.search(r"[eE]|nan|inf", values)
+
+
+def test_coordinates_have_two_decimals_at_most_and_no_negative_zero() -> None:
+    assert [coordinate(v) for v in (1.0, 1.5, 1.256, -0.001, 123456.789)] == [
+        "1",
+        "1.5",
+        "1.26",
+        "0",
+        "123456.79",
+    ]
+
+
+def test_hostile_names_stay_text() -> None:
+    svg = DRAWN["curves with hostile names, wide"]
+    assert "<script" not in svg
+    title = ElementTree.fromstring(svg).find(f"{SVG}title")
+    assert title is not None
+    assert title.text == HOSTILE.replace("\x00", "\ufffd").replace("\x0b", "\ufffd")
+
+
+# --- curves -------------------------------------------------------------------------------------------------
+
+
+def counts_under(svg: str, figure_ticks: tuple[float, ...]) -> list[Text]:
+    """Whole numbers in the rows: right-aligned, in the size of labels."""
+    return [t for t in texts(svg) if t.anchor == "end" and t.size == 13 and t.words.isdigit()]
+
+
+def test_digits_at_risk_end_ten_units_right_of_their_tick() -> None:
+    figure = invented.curves_figure()
+    left, right = curves.WIDE_PAGE.plot.left, curves.WIDE_PAGE.plot.right
+    expected = [left + tick / 30 * (right - left) + 10 for tick in figure.ticks]
+    found = counts_under(DRAWN["curves, wide"], figure.ticks)
+    assert len(found) == 2 * 3 * len(figure.ticks)
+    for row in range(6):
+        row_of_six = found[6 * row : 6 * row + 6]
+        assert [t.x for t in row_of_six] == pytest.approx(expected, abs=0.01)
+
+
+def test_at_risk_events_and_censored_add_up_to_the_arm_at_every_tick() -> None:
+    found = [int(t.words) for t in counts_under(DRAWN["curves, wide"], invented.curves_figure().ticks)]
+    for arm in (found[:18], found[18:]):
+        assert [sum(arm[tick + row * 6] for row in range(3)) for tick in range(6)] == [450] * 6
+
+
+def test_arms_are_told_apart_without_colour() -> None:
+    """Arm B is drawn twice: a wide stroke and a paper core in it; arm A once."""
+    svg = DRAWN["curves, wide"]
+    assert svg.count(f'stroke="{palette.ARM_A.line}" stroke-width="1.75"') == 2  # curve and sample
+    assert svg.count(f'stroke="{palette.ARM_B.line}" stroke-width="3.25"') == 2
+    assert svg.count(f'stroke="{palette.PAPER}" stroke-width="1.25"') == 2
+
+
+def test_ink_belongs_to_the_letter_masked_or_not() -> None:
+    for name in ("curves, wide", "curves masked, wide"):
+        words = re.findall(rf'fill="{palette.ARM_A.text}">([^<]*)<', DRAWN[name])
+        assert set(words) <= {"Placebo\u00a0(A)", "Arm\u00a0A"}
+        assert words
+
+
+def test_a_curve_of_many_steps_stays_small() -> None:
+    """100,000 steps are told apart to a quarter of a unit: about four steps a unit at most."""
+    line = invented.curves_figure().lines[0]
+    steps = 100_000
+    times = tuple(30 * step / steps for step in range(steps))
+    survival = tuple(100 - 60 * step / steps for step in range(steps))
+    many = type(line)(
+        line.arm, times, survival, (None,) * steps, (None,) * steps, ((1.0, 99.0),), line.rows, line.label
+    )
+    svg = str(curves.wide(type(invented.curves_figure())("t", "d", "x", "y", (0, 30), (many,))))
+    assert len(svg) < 120_000
+
+
+# --- boundary -----------------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(("name", "page"), [("wide", WIDE_PAGE), ("narrow", NARROW_PAGE)])
+def test_decimal_points_stand_seven_units_left_of_their_lane(name: str, page: LanePage) -> None:
+    plot = lane_plot(invented.boundary_figure("not crossed"), page)
+    middles = [plot.middle(lane) for lane in plot.figure.lanes]
+    decimals = [
+        t
+        for t in texts(DRAWN[f"boundary, {name}"])
+        if t.y > plot.area.bottom and re.fullmatch(r"−?\d+\.\d+", t.words)
+    ]
+    assert len(decimals) >= 4 * 4
+    for t in decimals:
+        point = t.x + point_offset(t.words, semibold=t.semibold)
+        assert min(abs(point - (middle - 7)) for middle in middles) < 0.01
+
+
+def test_z_and_bounds_stand_at_their_height() -> None:
+    figure = invented.boundary_figure("not crossed")
+    plot = lane_plot(figure, WIDE_PAGE)
+    svg = DRAWN["boundary, wide"]
+    assert f'cy="{coordinate(plot.y(2.129))}" r="6.5" fill="{palette.INK}"' in svg
+    assert f"{coordinate(plot.y(2.434))}H" in svg
+
+
+def test_a_crossed_look_is_a_diamond_with_its_bar_and_zone_in_the_colour_of_crossed() -> None:
+    crossed, not_crossed = DRAWN["boundary crossed, wide"], DRAWN["boundary, wide"]
+    assert palette.CROSSED not in not_crossed
+    assert f'fill="{palette.CROSSED_ZONE}"' in crossed
+    assert re.search(rf'<polygon [^>]*fill="{palette.CROSSED}"', crossed)
+    assert re.search(rf'<path [^>]*stroke="{palette.CROSSED}" stroke-width="2.5"', crossed)
+
+
+def test_masked_the_two_readings_mirror_each_other() -> None:
+    """Left lane and right lane swap and turn over when z changes its sign: the drawing favours neither."""
+    plot = lane_plot(invented.boundary_figure("masked"), WIDE_PAGE)
+    assert plot.y.low == -plot.y.high
+    assert plot.y(0) == pytest.approx((plot.area.top + plot.area.bottom) / 2)
+    for lane in plot.figure.lanes:
+        assert lane.upper is not None
+        assert lane.lower is not None
+        assert plot.y(lane.upper.value) + plot.y(lane.lower.value) == pytest.approx(2 * plot.y(0))
+
+
+def test_masked_nothing_is_drawn_as_crossed() -> None:
+    assert palette.CROSSED not in DRAWN["boundary masked, wide"]
+
+
+def test_only_a_look_ahead_is_called_needed() -> None:
+    words = [t.words for t in texts(DRAWN["boundary, wide"])]
+    assert "needed\u00a02.005" in words
+    assert not any("needed" in t.words for t in texts(DRAWN["boundary masked, wide"]))
+
+
+def test_rows_that_would_touch_give_way_to_the_table() -> None:
+    twenty = [t.words for t in texts(DRAWN["boundary at twenty looks, wide"])]
+    assert "Information fraction" not in twenty
+    assert [w for w in twenty if w.isdigit()][-20:] == [str(look) for look in range(1, 21)]
+
+
+def test_a_fraction_over_one_is_on_the_same_scale() -> None:
+    plot = lane_plot(FIGURES["boundary run over"], WIDE_PAGE)  # type: ignore[arg-type]
+    assert plot.x(1.13) == pytest.approx(639)
+    assert plot.x(0.4) == pytest.approx(168 + 0.4 / 1.13 * 471)
+
+
+def test_a_title_of_the_narrow_drawing_says_which_way_is_up() -> None:
+    assert any(
+        t.words.endswith("; up favours tablet")
+        for t in texts(str(boundary.narrow(invented.boundary_figure("not crossed"))))
+    )
+
+
+# --- lettering ----------------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("text", "semibold", "units"),
+    [("0.714", False, 2237), ("−20.80", False, 2734), ("At risk", True, 2707), ("Placebo (A)", False, 4722)],
+)
+def test_text_widths_agree_with_the_font_files(text: str, semibold: bool, units: int) -> None:
+    """Sums of the advances in SourceSans3-Regular and -Semibold (1000 units an em), without kerning."""
+    assert text_width(text, 1000, semibold=semibold) == pytest.approx(units, rel=0.02)
+
+
+def test_a_long_name_is_broken_and_at_last_cut() -> None:
+    lines = broken("Extended-release tablet with titration (B)", 82, most_lines=2, semibold=True)
+    assert len(lines) == 2
+    assert lines[-1].endswith("…")
+    assert all(text_width(line, semibold=True) <= 82 for line in lines)
