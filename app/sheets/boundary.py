@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from app.model.boundary import Bound, LookAsUsed
-from app.model.survival import LogrankResult
+from app.model.survival import LogrankResult, LogrankStratum
 from app.model.values import Absent, Estimate
 from app.sheets.arms import label_of, labels
 from app.sheets.blocks import (
@@ -58,7 +58,7 @@ def boundary_sheet(view: ClosedView) -> Sheet:
         question=QUESTION,
         answer=boundary_answer(view),
         figure=boundary_figure(view),
-        tables=(*_standing_tables(view), _logrank_table(view)),
+        tables=_standing_tables(view),
         folded=_strata_table(view),
         notes=(_note(view),),
         methods=methods(
@@ -300,7 +300,11 @@ def _side_words(view: ClosedView) -> str:
 
 
 def _standing_tables(view: ClosedView) -> tuple[Table, ...]:
-    return _masked_tables(view) if view.masked else (_observed_beside_bound(view), _interval_table(view))
+    """Masked, both readings leave no room for the score itself: it stands with its strata, behind the fold."""
+    if not view.masked:
+        return (_observed_beside_bound(view), _interval_table(view), _logrank_table(view))
+    tables = _masked_tables(view)
+    return tables if view.plan.columns.strata else (*tables, _logrank_table(view))
 
 
 def _observed_beside_bound(view: ClosedView) -> Table:
@@ -412,7 +416,8 @@ def _strata_table(view: ClosedView) -> tuple[Table, ...]:
     """O, E and V of each stratum, in the arm the orientation is of; only when the plan has strata."""
     if isinstance(view.logrank, Absent) or not view.plan.columns.strata:
         return ()
-    rows = tuple(_stratum_row(view, view.logrank, index) for index in range(len(view.logrank.strata)))
+    strata = tuple(_stratum_row(view, view.logrank, index) for index in range(len(view.logrank.strata)))
+    rows = (*strata, _all_strata_row(view, view.logrank))
     columns = ("subjects", "events", "observed", "expected", "variance")
     caption = line(f"Log-rank by stratum; observed and expected events {_in_arm(view)}")
     return (Table(caption, tuple(Column(line(name)) for name in columns), rows, line("Stratum")),)
@@ -425,14 +430,18 @@ def _in_arm(view: ClosedView) -> str:
 
 def _stratum_row(view: ClosedView, result: LogrankResult, index: int) -> Row:
     part = result.strata[index]
-    cells = (
-        count(part.subjects),
-        count(part.events),
-        count(int(part.observed)),
-        number(part.expected, 2),
-        number(part.variance, 2),
-    )
-    return Row(line(view.strata[part.stratum].label), tuple(Cell((span,)) for span in cells))
+    counts = (count(part.subjects), count(part.events), *_score_spans(part))
+    return Row(line(view.strata[part.stratum].label), tuple(Cell((span,)) for span in counts))
+
+
+def _all_strata_row(view: ClosedView, result: LogrankResult) -> Row:
+    information = view.look.information
+    counts = (count(information.subjects), count(information.events), *_score_spans(result))
+    return Row(line("All strata"), tuple(Cell((span,)) for span in counts))
+
+
+def _score_spans(part: LogrankResult | LogrankStratum) -> tuple[Span, Span, Span]:
+    return count(int(part.observed)), number(part.expected, 2), number(part.variance, 2)
 
 
 def _looks_table(view: ClosedView) -> Table:
