@@ -300,7 +300,7 @@ def _side_words(view: ClosedView) -> str:
 
 
 def _standing_tables(view: ClosedView) -> tuple[Table, ...]:
-    """Masked, both readings leave no room for the score itself: it stands with its strata, behind the fold."""
+    """Masked, both readings leave no room for the score itself: it stands with its strata, folded."""
     if not view.masked:
         return (_observed_beside_bound(view), _interval_table(view), _logrank_table(view))
     tables = _masked_tables(view)
