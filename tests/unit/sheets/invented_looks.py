@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, fields, is_dataclass
+from dataclasses import dataclass, fields, is_dataclass, replace
 from datetime import date
 from typing import Any
 
@@ -13,7 +13,8 @@ from app.ledger.history import Look, State
 from app.model.extract import Acknowledgement, Extract, LookKind, Snapshot
 from app.model.look import LookResult
 from app.model.plan import Plan
-from app.review import as_used
+from app.model.values import Absent
+from app.review import LookDeclared, as_used, review_look
 from app.review.look import planned_fraction
 from app.review.received import Delivery, review_delivery
 from app.settings import Limits
@@ -21,10 +22,11 @@ from app.sheets.blocks import LookBook, Sheet, Span
 from app.sheets.book import closed_book
 from app.sheets.frame import LookOnFile, Surroundings
 from app.sheets.record import History
-from app.views.closed import ClosedView, Letters, masked_view, unmasked_view
+from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
 from tests.unit.review.invented_trial import CUTOFFS, Patients, patients, plan
 
 A_IS_CONTROL, A_IS_EXPERIMENTAL = Letters("A"), Letters("B")
+TWO_SIDED = ("alpha = 0.025\nsides = 1", "alpha = 0.05\nsides = 2")
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,6 +67,26 @@ def held(
         looks.append(Held(under, reviewed.result, snapshot, reviewed.extract))
         earlier = delivery
     return tuple(looks)
+
+
+def with_z(look: LookResult, z: float) -> LookResult:
+    """The same look, had its test given this z for experimental, and -z for control."""
+    assert not isinstance(look.logrank, Absent)
+    direct = replace(look.logrank, z=z)
+    return replace(look, logrank=direct, mirrored=replace(look.mirrored, logrank=replace(direct, z=-z + 0.0)))
+
+
+def life(*zs: float, sides: int = 1) -> list[LookResult]:
+    """Looks of the invented trial with these z's in place of their own, each resting on those before."""
+    under = plan(*([TWO_SIDED] if sides == 2 else []))
+    looks: list[LookResult] = []
+    for number, (cutoff, z) in enumerate(zip(CUTOFFS, zs, strict=False), 1):
+        past = [as_used(look) for look in looks]
+        look = review_look(under, patients().at(cutoff).sample(), LookDeclared(number, "planned"), past)
+        look = with_z(look, z)
+        verdict = full_view(look, under).readings[0].verdict
+        looks.append(replace(look, verdict=verdict))
+    return looks
 
 
 def surroundings(looks: Sequence[Held]) -> Surroundings:

@@ -13,29 +13,7 @@ from app.model.values import Absent, read_only
 from app.review import LookDeclared, as_used, review_look
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
 from tests.unit.review.invented_trial import CONTROL, CUTOFFS, EXPERIMENTAL, patients, plan
-from tests.unit.sheets.invented_looks import A_IS_CONTROL, A_IS_EXPERIMENTAL, held
-
-TWO_SIDED = ("alpha = 0.025\nsides = 1", "alpha = 0.05\nsides = 2")
-
-
-def with_z(look: LookResult, z: float) -> LookResult:
-    """The same look, had its test given this z for experimental, and -z for control."""
-    assert not isinstance(look.logrank, Absent)
-    direct = replace(look.logrank, z=z)
-    return replace(look, logrank=direct, mirrored=replace(look.mirrored, logrank=replace(direct, z=-z + 0.0)))
-
-
-def life(*zs: float, sides: int = 1) -> list[LookResult]:
-    """Looks of the invented trial with these z's in place of their own, each resting on those before."""
-    under = plan(*([TWO_SIDED] if sides == 2 else []))
-    looks: list[LookResult] = []
-    for number, (cutoff, z) in enumerate(zip(CUTOFFS, zs, strict=False), 1):
-        past = [as_used(look) for look in looks]
-        look = review_look(under, patients().at(cutoff).sample(), LookDeclared(number, "planned"), past)
-        look = with_z(look, z)
-        verdict = full_view(look, under).readings[0].verdict
-        looks.append(replace(look, verdict=verdict))
-    return looks
+from tests.unit.sheets.invented_looks import A_IS_CONTROL, A_IS_EXPERIMENTAL, TWO_SIDED, held, life
 
 
 def masked(look: LookResult, letters: Letters = A_IS_CONTROL, sides: int = 1) -> ClosedView:

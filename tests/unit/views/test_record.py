@@ -20,9 +20,8 @@ from app.review import LookDeclared, review_look
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
 from app.views.record import looks_record
 from tests.unit.review.invented_trial import CUTOFFS, patients, plan
-from tests.unit.sheets.invented_looks import A_IS_CONTROL, Held, held
+from tests.unit.sheets.invented_looks import A_IS_CONTROL, TWO_SIDED, Held, held
 
-TWO_SIDED = (("alpha = 0.025\nsides = 1", "alpha = 0.05\nsides = 2"),)
 WITHOUT_STRATA = (('strata = ["REGION"]', ""),)
 GOOD_EVENT = (('event_is = "bad"', 'event_is = "good"'), ("hazard_ratio = 0.5", "hazard_ratio = 2.0"))
 
@@ -38,7 +37,7 @@ def record(view: ClosedView) -> dict[str, Any]:
 
 @pytest.mark.parametrize(
     "changes",
-    [(), TWO_SIDED, WITHOUT_STRATA, GOOD_EVENT],
+    [(), (TWO_SIDED,), WITHOUT_STRATA, GOOD_EVENT],
     ids=["plain", "two sides", "no strata", "good event"],
 )
 @pytest.mark.parametrize("kinds", [(), ("safety", "unplanned", "final")], ids=["planned", "other kinds"])
@@ -89,7 +88,9 @@ def test_an_unmasked_record_has_one_direction_and_no_readings() -> None:
 
 def test_two_sided_alphas_are_of_one_side_and_carry_their_sides() -> None:
     """Two-sided 0.05 is two sides of 0.025: the same bound at the same events."""
-    one, two = (record(held(plan(*changes))[0].view())["looks"][0]["boundary"] for changes in ((), TWO_SIDED))
+    one, two = (
+        record(held(plan(*changes))[0].view())["looks"][0]["boundary"] for changes in ((), (TWO_SIDED,))
+    )
     assert (one.pop("sides"), two.pop("sides")) == (1, 2)
     assert one == two
 
