@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import os
 import re
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -68,7 +69,8 @@ def _write_whole(path: Path, content: bytes) -> None:
             os.fsync(file.fileno())
         os.replace(unfinished, path)
     except OSError as fault:
-        unfinished.unlink(missing_ok=True)
+        with suppress(OSError):  # the folder may be none at all
+            unfinished.unlink()
         raise SetupError(
             "A report file cannot be written",
             where=str(path),
