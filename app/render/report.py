@@ -42,7 +42,7 @@ def render_report(environment: Environment, book: LookBook, *, frozen: ReportFac
         frozen=frozen,
         style=Markup(style),  # made of our own template and of strings escaped for CSS
         style_digest=base64.b64encode(hashlib.sha256(style.encode()).digest()).decode(),
-        links={sheet.key: f"#{sheet.key}" for sheet in book.sheets},
+        links={sheet.key: f"#sheet-{sheet.key}" for sheet in book.sheets},
         numbered_tables=numbered_tables,
         methods=methods_once(book),
     )

@@ -90,7 +90,7 @@ def test_what_a_report_is_bound_to_is_printed_in_it(report: str) -> None:
 
 def test_every_sheet_is_in_it_in_order_and_how_it_was_computed_is_open(report: str) -> None:
     assert re.findall(r'<section id="([a-z-]+)">', report) == [
-        *(sheet.key for sheet in invented.book().sheets),
+        *(f"sheet-{sheet.key}" for sheet in invented.book().sheets),
         "computed",
         "the-record",
     ]
