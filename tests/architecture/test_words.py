@@ -16,7 +16,7 @@ BANNED = {
     r"(?i)\btran[s]cripts?\b|\blec[t]ures?\b|\bseed[ ]document": "the publication itself",
 }
 
-NAMES_NO_PLACE = r"https?://(?!www\.w3\.org/|127\\?\.0\\?\.0\\?\.1|localhost|\[::1\]|[\w.-]+\.(?:example|test|invalid)\b|[{$\"'`\s)])\S*"
+NAMES_NO_PLACE = r"https?://(?!www\.w3\.org/|127\\?\.0\\?\.0\\?\.1|localhost|[\w.-]+\.(?:example|test|invalid)\b|[\[{$\"'`\s)])\S*"
 
 
 @pytest.mark.parametrize("pattern", BANNED, ids=BANNED.values())
