@@ -67,9 +67,8 @@ def compute(trial: Trial, number: int, limits: Limits) -> Assembled:
     past = looks_as_used(trial, number)
     try:
         reviewed = review_delivery(plan, delivery_of(snapshot), earlier, past, number=number, limits=limits)
-    except (
-        ValueError
-    ) as fault:  # elsewhere a bug; here the frozen records of the looks before say what cannot be
+    except (ValueError, ArithmeticError) as fault:
+        # elsewhere a bug; here it is the frozen records of the looks before that say what cannot be
         raise LedgerChanged(
             "Looks as used that cannot have been",
             where=f"the frozen records before look {number}",
