@@ -1,0 +1,84 @@
+"""A masked book and a masked record name no arm, whatever the look holds."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from app.record.text import record_bytes
+from app.sheets.blocks import ArmLabel, LookBook
+from app.views.record import looks_record
+from tests.unit.review.invented_trial import CUTOFFS, Patients, patients, plan
+from tests.unit.sheets.invented_looks import (
+    A_IS_CONTROL,
+    A_IS_EXPERIMENTAL,
+    TWO_SIDED,
+    book,
+    held,
+    parts,
+    text,
+)
+
+
+def without_events_in_one_arm() -> Patients:
+    people = patients()
+    return replace(people, time=np.where(people.experimental, 9999.0, people.time))
+
+
+WORLDS = {
+    "crossed": (plan(), patients()),
+    "two sides": (plan(TWO_SIDED), patients()),
+    "no ratio": (plan(), without_events_in_one_arm()),
+    "two to one": (plan(("allocation = [1, 1]", "allocation = [1, 2]")), patients()),
+}
+
+
+def without_methods(whole: LookBook) -> LookBook:
+    """Formulas speak of the experimental arm in general, the same on every page."""
+    return replace(whole, sheets=tuple(replace(sheet, methods=()) for sheet in whole.sheets))
+
+
+@pytest.mark.parametrize("world", WORLDS)
+@pytest.mark.parametrize(
+    "letters", [A_IS_CONTROL, A_IS_EXPERIMENTAL], ids=["A is control", "A is experimental"]
+)
+def test_nothing_masked_names_an_arm(world: str, letters: object) -> None:
+    under, people = WORLDS[world]
+    looks = held(under, people)
+    for number in range(1, len(looks) + 1):
+        view = looks[number - 1].view(letters)  # type: ignore[arg-type]
+        record = record_bytes(looks_record("look", [view], run_at="")).decode()
+        shown = repr(without_methods(book(looks[:number], letters)))  # type: ignore[arg-type]
+        for word in ("pelletol", "syrupine", "control arm", "experimental arm"):
+            assert word not in record.lower()
+            assert word not in shown.lower()
+
+
+def test_unmasked_the_names_do_stand_there() -> None:
+    """The search above finds what there is to find."""
+    shown = repr(book(held()[:1]))
+    assert "Pelletol" in shown
+    assert "syrupine" in shown
+
+
+@pytest.mark.parametrize("letters", [A_IS_CONTROL, A_IS_EXPERIMENTAL])
+def test_arms_stand_in_the_order_of_their_letters(letters: object) -> None:
+    labels = list(parts(book(held()[:2], letters), ArmLabel))  # type: ignore[arg-type]
+    assert {label.letter for label in labels} == {"A", "B"}
+    pairs = list(zip(labels[::2], labels[1::2], strict=True))
+    assert all(
+        (first.letter, second.letter) in (("A", "B"), ("A", "A"), ("B", "B")) for first, second in pairs
+    )
+
+
+def test_with_unequal_allocation_the_page_says_that_counts_identify_the_letters() -> None:
+    under, people = WORLDS["two to one"]
+    said = "The plan allocates 1:2 (control : experimental): the numbers of subjects identify the letters."
+    masked = book(held(under, people, cutoffs=CUTOFFS[:1]), A_IS_CONTROL).sheet("information")
+    equal = book(held(cutoffs=CUTOFFS[:1]), A_IS_CONTROL).sheet("information")
+    assert masked is not None
+    assert equal is not None
+    assert said in [text(note) for note in masked.notes]
+    assert said not in [text(note) for note in equal.notes]
