@@ -30,8 +30,8 @@ OPEN_SHEETS = ("glance", "data", "information", "curves")
 
 
 def words(response: Any) -> str:
-    """The text of a page as a person reads it."""
-    return html.unescape(response.text)
+    """The text of a page as a person reads it: spaces that do not break are spaces."""
+    return html.unescape(response.text).replace("\u00a0", " ").replace("\u202f", " ")
 
 
 @pytest.mark.parametrize("sheet", QUESTIONS)
