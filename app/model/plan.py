@@ -1,4 +1,4 @@
-"""The plan: what was fixed before any result was seen. One class a TOML table, one field a key (DESIGN: plan file)."""
+"""The plan: what was fixed before any result was seen. One class a TOML table, one field a key."""
 
 from __future__ import annotations
 
@@ -124,7 +124,7 @@ class Futility:
 
 @dataclass(frozen=True)
 class Harm:
-    """Harm boundary with its own one-sided alpha; `endpoint_parameter` (key `parameter`) names another endpoint."""
+    """Harm boundary with its own one-sided alpha; `endpoint_parameter` names another endpoint."""
 
     spending: str
     alpha: float

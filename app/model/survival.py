@@ -34,7 +34,7 @@ class SurvivalCurve:
 
 @dataclass(frozen=True)
 class LogrankStratum:
-    """One stratum's share: `observed` and `expected` events in the experimental arm, `variance` of the score."""
+    """One stratum: `observed` and `expected` events in the experimental arm, `variance` of the score."""
 
     stratum: int
     subjects: int
