@@ -106,7 +106,7 @@ def event_free_sentence(view: ClosedView) -> Line:
 
 
 def _sentence(shown: Sequence[CurveShown], axis: TimeAxis) -> Line:
-    start = line(f"At {said_time(axis.named)}{NO_BREAK}{axis.unit} ")
+    start = line(f"At {time_words(axis, axis.named)} ")
     parts = [_event_free(item, axis.named * axis.scale) for item in shown]
     whose = "" if len(shown) > 1 else " of all subjects"
     end = f"{whose} were event{NO_BREAK_HYPHEN}free."
@@ -128,6 +128,11 @@ def _joined(parts: list[Line]) -> tuple[Line, ...]:
 def preposition(label: ArmLabel) -> str:
     """Patients are "on tablet" but "in arm A"."""
     return "in" if label.in_sentence.startswith("arm" + NO_BREAK) else "on"
+
+
+def time_words(axis: TimeAxis, at: float) -> str:
+    """ "24 months", "1 month"."""
+    return f"{said_time(at)}{NO_BREAK}{axis.unit.removesuffix('s') if at == 1 else axis.unit}"
 
 
 def said_time(value: float) -> str:
@@ -159,7 +164,7 @@ def curves_figure(shown: Sequence[CurveShown], axis: TimeAxis) -> CurvesFigure:
     names = listed([item.label.name for item in shown if item.label]) or "All subjects"
     return CurvesFigure(
         title=f"Event-free survival, {names}",
-        description=f"Kaplan-Meier curves in percent from 0 to {said_time(axis.end)} {axis.unit} since "
+        description=f"Kaplan-Meier curves in percent from 0 to {time_words(axis, axis.end)} since "
         "randomisation, with numbers at risk, events and censored under the axis.",
         x_title=f"{axis.unit.capitalize()} since randomisation",
         y_title="Event-free, %",
@@ -229,7 +234,7 @@ def _estimates(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
             Row(line(f"Median, {axis.unit}"), tuple(_median(item.curve, axis) for item in shown)),
             *(
                 Row(
-                    line(f"Event{NO_BREAK_HYPHEN}free at {said_time(at)}{NO_BREAK}{axis.unit}, %"),
+                    line(f"Event{NO_BREAK_HYPHEN}free at {time_words(axis, at)}, %"),
                     tuple(_survival_cell(item.curve, at * axis.scale) for item in shown),
                 )
                 for at in named

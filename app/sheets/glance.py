@@ -23,8 +23,8 @@ from app.sheets.curves import (
     event_free_sentence,
     limits_at,
     open_curves_sheet,
-    said_time,
     survival_at,
+    time_words,
 )
 from app.sheets.extract import changed_events_sentence, changes_figure, data_sentence, open_data_sheet
 from app.sheets.frame import Surroundings
@@ -146,8 +146,8 @@ def _ratio_words(view: ClosedView) -> Line:
 def _curves_strip(view: ClosedView) -> IntervalStrip:
     axis = time_axis(tuple(arm.curve for arm in view.arms), view.look.time_unit)
     return IntervalStrip(
-        title=f"Event-free at {said_time(axis.named)} {axis.unit}",
-        description=f"Percent event-free at {said_time(axis.named)} {axis.unit}, with its interval, by arm.",
+        title=f"Event-free at {time_words(axis, axis.named)}",
+        description=f"Percent event-free at {time_words(axis, axis.named)}, with its interval, by arm.",
         unit="Event-free, %",
         ticks=(0.0, 25.0, 50.0, 75.0, 100.0),
         marks=tuple(mark for arm in view.arms for mark in _marks(view, arm, axis.named * axis.scale)),
