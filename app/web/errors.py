@@ -15,11 +15,22 @@ from starlette.types import ASGIApp, Message, Receive, Scope, Send
 from app.errors import AppError
 from app.settings import Settings
 from app.web.pages import Pages
-from app.web.problems import Problem, answer, broke, no_such_page, not_understood, problem_of, wrong_method
+from app.web.problems import (
+    Problem,
+    answer,
+    broke,
+    no_such_page,
+    not_for_the_open_side,
+    not_understood,
+    problem_of,
+    wrong_method,
+)
+from app.web.sessions import Session
 
 LOG = logging.getLogger("lookledger.web")
 
 INCIDENT_BYTES = 4
+OPEN = "/open/"
 EXPECTED = (AppError, HTTPException, RequestValidationError)
 
 
@@ -35,13 +46,19 @@ def answer_errors(app: FastAPI, pages: Pages) -> None:
 
 def problem_for(error: Exception, request: Request) -> Problem:
     if isinstance(error, AppError):
-        return problem_of(error)
+        return not_for_the_open_side(error) if is_open_side(request) else problem_of(error)
     if isinstance(error, HTTPException) and error.status_code == 405:
         return wrong_method(request.method)
     if isinstance(error, HTTPException) and error.status_code != 404:
         return not_understood(error.detail)
     # the only parts of a request that fastapi checks by itself are the numbers inside addresses
     return no_such_page(request.url.path)
+
+
+def is_open_side(request: Request) -> bool:
+    """Whether the answer goes to who may see pooled results only, or stands for a page of theirs."""
+    session: Session | None = request.state.session
+    return request.url.path.startswith(OPEN) or (session is not None and session.side == "open")
 
 
 class UnexpectedErrors:

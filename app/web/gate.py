@@ -112,7 +112,7 @@ def wrong_host(address: Address) -> Problem:
         accepted=" or ".join(address.hosts),
         remedy="Use the link that the program printed when it started",
     )
-    return Problem(400, "This server has another name.", error)
+    return Problem(400, "This server has another name.", error, ways_on=())
 
 
 def came_from_elsewhere() -> Problem:
@@ -121,7 +121,7 @@ def came_from_elsewhere() -> Problem:
         accepted="links and buttons of these pages, in a browser that says where a request comes from",
         remedy="Nothing was done; open the page here and use its own button",
     )
-    return Problem(403, "This came from somewhere else.", error)
+    return Problem(403, "This came from somewhere else.", error, ways_on=())
 
 
 def no_session() -> Problem:
@@ -130,7 +130,7 @@ def no_session() -> Problem:
         accepted="the link that the program printed when it started, or one that was handed to you",
         remedy="Open that link and press its button",
     )
-    return Problem(403, "A key is needed here.", error)
+    return Problem(403, "A key is needed here.", error, ways_on=())
 
 
 def wrong_key() -> Problem:
@@ -139,13 +139,13 @@ def wrong_key() -> Problem:
         accepted="a key of the running program; each start makes new ones",
         remedy="Use the link that it printed when it was last started",
     )
-    return Problem(403, "This key does not fit.", error)
+    return Problem(403, "This key does not fit.", error, ways_on=())
 
 
 def other_side() -> Problem:
     error = Refused(
         "this page is not part of what your key opens",
         accepted="the open, pooled pages",
-        remedy="Go back to the newest look at /",
+        remedy="Go back to the newest look",
     )
     return Problem(403, "This page is closed to you.", error)

@@ -6,19 +6,32 @@ from dataclasses import dataclass
 
 from starlette.responses import JSONResponse, Response
 
-from app.errors import AccuracyNotReached, AppError, InputError, LedgerError, NotEstimable, SetupError
+from app.errors import (
+    AccuracyNotReached,
+    AppError,
+    InputError,
+    LedgerChanged,
+    LedgerError,
+    NotEstimable,
+    SetupError,
+)
 from app.web.pages import Pages
 
 FOR_PROGRAMS = (".json", ".csv")
 
 
+TO_THE_NEWEST = ("/", "To the newest look")
+TO_VERIFYING = ("/closed/verify", "Verify the trial file")
+
+
 @dataclass(frozen=True)
 class Problem:
-    """An answer that is not what was asked for: its status, the line on top, and the sentence."""
+    """An answer that is not what was asked for: its status, the line on top, the sentence, the ways on."""
 
     status: int
     heading: str
     error: AppError
+    ways_on: tuple[tuple[str, str], ...] = (TO_THE_NEWEST,)
 
 
 class Refused(AppError):
@@ -29,6 +42,7 @@ BY_CLASS: tuple[tuple[type[AppError], int, str], ...] = (
     (InputError, 422, "This cannot be done as given."),
     (NotEstimable, 422, "The extract cannot answer this."),
     (AccuracyNotReached, 500, "The accuracy wanted was not reached."),
+    (LedgerChanged, 409, "The trial file is not as it was written."),
     (LedgerError, 409, "The history does not allow this."),
     (SetupError, 500, "The machine or folder is not ready for this."),
 )
@@ -36,10 +50,20 @@ BY_CLASS: tuple[tuple[type[AppError], int, str], ...] = (
 
 def problem_of(error: AppError) -> Problem:
     """The status and heading that belong to the class of an error."""
+    ways_on = (TO_VERIFYING,) if isinstance(error, LedgerChanged) else (TO_THE_NEWEST,)
     for kind, status, heading in BY_CLASS:
         if isinstance(error, kind):
-            return Problem(status, heading, error)
-    return Problem(422, "This cannot be done as given.", error)
+            return Problem(status, heading, error, ways_on)
+    return Problem(422, "This cannot be done as given.", error, ways_on)
+
+
+def not_for_the_open_side(error: AppError) -> Problem:
+    """What failed may name bytes, digests or rows of closed data: the open side is told that, and no more."""
+    told = Refused(
+        "this page cannot be shown at present",
+        remedy="Ask the statistician who serves the closed side",
+    )
+    return Problem(problem_of(error).status, "This cannot be shown.", told, ways_on=())
 
 
 def no_such_page(path: str) -> Problem:
@@ -47,7 +71,7 @@ def no_such_page(path: str) -> Problem:
         "there is no page at this address",
         found=repr(path[:80]),
         accepted="the addresses that the pages link to",
-        remedy="Go back to the newest look at /",
+        remedy="Go back to the newest look",
     )
     return Problem(404, "There is no such page.", error)
 

@@ -310,7 +310,7 @@ def test_an_unknown_address_for_a_program_is_answered_in_one_json_form(site: Sur
         "where": "",
         "found": "'/closed/nowhere.json'",
         "accepted": "the addresses that the pages link to",
-        "remedy": "Go back to the newest look at /",
+        "remedy": "Go back to the newest look",
     }
 
 
