@@ -1,4 +1,4 @@
-"""A trial file with a changed byte: the closed side is told what and where, the open side no more than that."""
+"""A trial file with a changed byte: the closed side is told what and where, the open side no more."""
 
 from __future__ import annotations
 

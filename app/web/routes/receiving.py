@@ -73,8 +73,17 @@ def show_form(
     mends: list[Mend],
     understood: Understanding | None = None,
 ) -> Response:
-    tables = understood_tables(understood) if understood else None
-    return show(site, session, "receive", mends, answers=answers, kinds=KINDS, tables=tables)
+    """The form; after an extract that cannot be used also what was understood of it, and its doubts."""
+    return show(
+        site,
+        session,
+        "receive",
+        mends,
+        answers=answers,
+        kinds=KINDS,
+        tables=understood_tables(understood) if understood else None,
+        doubts=understood.extract.doubts if understood else (),
+    )
 
 
 def read_answers(form: Submitted) -> Incoming | list[Mend]:
