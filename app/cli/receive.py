@@ -58,10 +58,11 @@ def run(options: Namespace, settings: Settings) -> int:
 
 
 def tell(understood: Understanding) -> None:
-    """What was understood on standard output, what was noticed on standard error."""
+    """What was understood on standard output, doubts and notes on standard error; what blocks is the error."""
     sys.stdout.write(as_text(understood))
     for finding in understood.extract.findings:
-        print(f"{finding.severity} {finding.id}: {finding}", file=sys.stderr)
+        if finding.severity != "block":
+            print(f"{finding.severity} {finding.id}: {finding}", file=sys.stderr)
 
 
 def as_text(understood: Understanding) -> str:
