@@ -8,6 +8,7 @@ from datetime import date
 from typing import Any
 
 from app.actions.desk import UploadedFile
+from app.errors import InputError
 from app.intake.extract import received_file
 from app.intake.plan import read_plan
 from app.model.boundary import LookAsUsed
@@ -40,6 +41,8 @@ def evaluate(
     settings: Settings, *, plan_name: str, plan: bytes, looks: Sequence[LookGiven]
 ) -> dict[str, Any]:
     """The record of these looks, held one after the other under the plan, each bound on those before."""
+    if not looks:
+        raise InputError("No look to evaluate", accepted="the files of at least one look")
     read = read_plan(plan, name=plan_name, limits=settings.limits)
     past: list[LookAsUsed] = []
     views: list[ClosedView] = []

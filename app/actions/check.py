@@ -32,12 +32,22 @@ def verify(settings: Settings, path: Path) -> CheckReport:
         raise InputError(
             "Nothing to verify", where=str(path), accepted="a trial file, a report or a folder of reports"
         )
-    with path.open("rb") as file:
-        is_report = file.read(len(SQLITE_HEADER)) != SQLITE_HEADER and path.suffix == ".html"
-    if is_report:
-        return CheckReport(tuple(check_report(path.read_bytes())))
+    if path.suffix == ".html" and not (report := _read(path)).startswith(SQLITE_HEADER):
+        return CheckReport(tuple(check_report(report)))
     with Trial.open(path, settings, read_only=True) as trial:
         return verify_desk(Desk(settings, trial))
+
+
+def _read(path: Path) -> bytes:
+    try:
+        return path.read_bytes()
+    except OSError as fault:
+        raise InputError(
+            "A report that cannot be read",
+            where=str(path),
+            found=fault.strerror or type(fault).__name__,
+            accepted="a file that can be read",
+        ) from fault
 
 
 def _folder_lines(folder: Path) -> Iterator[CheckLine]:
@@ -47,9 +57,7 @@ def _folder_lines(folder: Path) -> Iterator[CheckLine]:
             "No report to verify", where=str(folder), accepted="a folder that holds closed reports (.html)"
         )
     for path in reports:
-        yield from (
-            CheckLine(line.ok, f"{path.name}: {line.text}") for line in check_report(path.read_bytes())
-        )
+        yield from (CheckLine(line.ok, f"{path.name}: {line.text}") for line in check_report(_read(path)))
 
 
 def verify_desk(desk: Desk) -> CheckReport:

@@ -255,6 +255,7 @@ def test_report_files_are_written_whole_named_plainly_and_entered(tmp_path: Path
     ]
     assert paths[0].read_bytes() == html
     assert json.loads(paths[1].read_bytes()) == record_in_report(html)
+    assert f"SHA-256 {digest(paths[1].read_bytes())}".encode() in html
     assert set(json.loads(paths[2].read_bytes())) == {
         "machine",
         "numpy",

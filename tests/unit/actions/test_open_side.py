@@ -51,12 +51,11 @@ def assigned_anew(people: Patients, seed: int) -> Patients:
 
 
 def books(folder: Path, people: Patients, name: str) -> tuple[list[LookBook], list[LookBook]]:
-    """The open and the closed book of each of three looks, two of them frozen."""
-    with desk(held(folder, 3, people=people, name=name)) as open_desk:
-        numbers = (1, 2, 3)
+    """The open and the closed book of each of two looks, one of them frozen."""
+    with desk(held(folder, 2, people=people, name=name), 2) as open_desk:
         return (
-            [open_book(open_desk, look) for look in numbers],
-            [closed_book(open_desk, look, session=None) for look in numbers],
+            [open_book(open_desk, look) for look in (1, 2)],
+            [closed_book(open_desk, look, session=None) for look in (1, 2)],
         )
 
 
@@ -64,9 +63,7 @@ def test_open_pages_are_the_same_whoever_got_which_arm(tmp_path: Path) -> None:
     """The arms exchanged, and the arms dealt anew; the pages that may compare do differ."""
     people = patients()
     open_books, closed_books = books(tmp_path, people, "k4.trial")
-    for index, other in enumerate(
-        [people.with_arms_exchanged(), assigned_anew(people, 1), assigned_anew(people, 2)]
-    ):
+    for index, other in enumerate([people.with_arms_exchanged(), assigned_anew(people, 1)]):
         open_others, closed_others = books(tmp_path, other, f"k4-{index}.trial")
         assert repr(open_others) == repr(open_books)
         assert repr(closed_others) != repr(closed_books)
