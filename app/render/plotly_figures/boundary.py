@@ -14,7 +14,17 @@ from app.render.plotly_figures.setting import (
     words_at,
 )
 from app.render.svg import boundary as drawing
-from app.render.svg.gauge import Bar, Zone, bars, column, edge_colour, lane_readings, mark_radius, zones
+from app.render.svg.gauge import (
+    ROOM_FOR_LETTERS,
+    Bar,
+    Zone,
+    bars,
+    column,
+    edge_colour,
+    lane_readings,
+    mark_radius,
+    zones,
+)
 from app.render.svg.geometry import Box
 from app.render.svg.lane_plot import (
     NARROW_PAGE,
@@ -203,7 +213,7 @@ def _rows(plot: LanePlot) -> list[Json]:
 
 def _letters(plot: LanePlot, sheet: Sheet) -> list[Json]:
     """A and B over the two lanes of a look, following the axis when it is zoomed."""
-    if not plot.is_masked:
+    if not plot.is_masked or plot.lane_width < ROOM_FOR_LETTERS:
         return []
     return [
         words_at(
