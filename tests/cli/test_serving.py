@@ -84,6 +84,7 @@ class Visitor:
 
 def test_the_demo_lets_in_by_its_links_and_stops_at_ctrl_c(tmp_path: Path) -> None:
     with running("demo", "--to", str(tmp_path / "demo.trial"), "--no-browser") as server:
+        assert "data cutoff 2026-10-09, extract taken 2026-10-23, a final look" in server.printed
         assert "Enter the closed pages" in Visitor().read(server.links["closed"])
         assert "in five lines?" in Visitor().enter(server.links["closed"])
         assert "show to the open side?" in Visitor().enter(server.links["open"])
