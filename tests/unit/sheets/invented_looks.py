@@ -23,7 +23,7 @@ from app.sheets.book import closed_book
 from app.sheets.frame import LookOnFile, Surroundings
 from app.sheets.record import History
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
-from tests.unit.review.invented_trial import CUTOFFS, Patients, patients, plan
+from tests.unit.review.invented_trial import CUTOFFS, FIRST_DAY, Patients, patients, plan
 
 A_IS_CONTROL, A_IS_EXPERIMENTAL = Letters("A"), Letters("B")
 TWO_SIDED = ("alpha = 0.025\nsides = 1", "alpha = 0.05\nsides = 2")
@@ -112,7 +112,8 @@ def book(looks: Sequence[Held], letters: Letters | None = None) -> LookBook:
         Look(SnapshotReceived.of(look.snapshot, look.extract.findings), look.snapshot.received_at, "")
         for look in looks
     )
-    history = History(State(looks=on_file, letters=None), ())
+    state = State(looks=on_file, locked_at=f"{FIRST_DAY}T09:00:00Z", locked_by="M. Berg")
+    history = History(state, ())
     last = looks[-1]
     return closed_book(last.view(letters), surroundings(looks), last.snapshot, last.extract, history)
 
