@@ -92,14 +92,22 @@ def _answer(view: ClosedView) -> Line:
         return line(start, "the test cannot be computed.")
     if not view.masked:
         return line(start, _crossing_words(view))
-    crossed = [reading.experimental for reading in view.readings if reading.verdict.first_crossed is not None]
+    return line(start, _crossing_words_masked(view))
+
+
+def _crossing_words_masked(view: ClosedView) -> Line:
+    crossed = [reading for reading in view.readings if reading.verdict.first_crossed is not None]
     if not crossed and isinstance(view.look.bound.efficacy_z, Absent):
-        return line(start, NO_BOUND_HERE)
+        return line(NO_BOUND_HERE)
     if not crossed:
-        return line(start, "no boundary was crossed in either reading.")
+        return line("no boundary was crossed in either reading.")
     if len(crossed) == 2:
-        return line(start, "the boundary was ", CROSSED, " in both readings.")
-    return line(start, "the boundary was ", CROSSED, f" if {crossed[0]} is experimental, and not otherwise.")
+        return line("the boundary was ", CROSSED, " in both readings.")
+    first = crossed[0].verdict.first_crossed
+    at = "" if first == view.look.number else f" at look{NO_BREAK}{first}"
+    return line(
+        "the boundary was ", CROSSED, f"{at} if {crossed[0].experimental} is experimental, and not otherwise."
+    )
 
 
 def _crossing_words(view: ClosedView) -> Line:

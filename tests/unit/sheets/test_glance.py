@@ -58,6 +58,10 @@ def test_masked_the_answer_names_the_reading_that_crosses() -> None:
     assert answers(book(looks[:3], A_IS_CONTROL).sheets[0]) == [
         "With 82 of 80 planned events, the boundary was crossed if B is experimental, and not otherwise."
     ]
+    assert answers(book(looks, A_IS_CONTROL).sheets[0]) == [
+        "With 107 of 80 planned events, "
+        "the boundary was crossed at look 3 if B is experimental, and not otherwise."
+    ]
 
 
 @pytest.mark.parametrize("letters", [None, A_IS_CONTROL])
