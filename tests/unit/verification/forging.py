@@ -37,20 +37,37 @@ def flip_a_byte(file: Path, key: str) -> None:
 
 def forge_record(file: Path, look: int, change: Callable[[dict[str, Any]], None]) -> None:
     """Change something inside the frozen record of a look, and redo its digest and the whole chain."""
+
+    def forged(content: bytes) -> bytes:
+        record = json.loads(content)
+        change(record)
+        return record_bytes(record)
+
+    _forge(file, look, "record_digest", forged)
+
+
+def forge_report(file: Path, look: int, old: bytes, new: bytes) -> None:
+    """Exchange words of a frozen report, and redo its digest and the whole chain."""
+
+    def forged(content: bytes) -> bytes:
+        assert old in content
+        return content.replace(old, new, 1)
+
+    _forge(file, look, "report_digest", forged)
+
+
+def _forge(file: Path, look: int, named: str, forged: Callable[[bytes], bytes]) -> None:
     with unguarded(file) as tables:
         rows = tables.execute("SELECT id, at, kind, body FROM entry ORDER BY id").fetchall()
         bodies = [json.loads(body) for *_, body in rows]
-        (frozen,) = [
-            b for b, row in zip(bodies, rows, strict=True) if row[2] == "look frozen" and b["look"] == look
-        ]
-        key = frozen["record_digest"]
+        freezes = [body for body, row in zip(bodies, rows, strict=True) if row[2] == "look frozen"]
+        (frozen,) = [body for body in freezes if body["look"] == look]
+        key = frozen[named]
         (content,) = tables.execute("SELECT bytes FROM content WHERE digest = ?", (key,)).fetchone()
-        record = json.loads(content)
-        change(record)
-        forged = record_bytes(record)
-        frozen["record_digest"] = digest(forged)
+        changed = forged(content)
+        frozen[named] = digest(changed)
         tables.execute(
-            "UPDATE content SET bytes = ?, digest = ? WHERE digest = ?", (forged, digest(forged), key)
+            "UPDATE content SET bytes = ?, digest = ? WHERE digest = ?", (changed, digest(changed), key)
         )
         _chain_again(tables, rows, bodies)
 

@@ -17,7 +17,7 @@ from app.ledger.entries import Verification, read_body
 from app.verification.check import CheckReport
 from tests.unit.actions.invented_file import BY, desk, held, settings
 from tests.unit.review.invented_trial import CUTOFFS
-from tests.unit.verification.forging import flip_a_byte, forge_record
+from tests.unit.verification.forging import flip_a_byte, forge_record, forge_report
 
 WHOLE = "is whole, and every stored byte is as received."
 
@@ -157,6 +157,18 @@ def test_a_changed_number_that_later_bounds_rest_on_is_told_there_too(file: Path
     found = faults(file)
     assert any(text.startswith("look 1, frozen record, looks[0].boundary.alpha_spent") for text in found)
     assert any(text.startswith("look 2, frozen record, looks[0].history[0].alpha_spent") for text in found)
+
+
+def test_a_number_changed_in_a_report_s_record_is_named(file: Path) -> None:
+    forge_report(file, 2, b"&#34;events&#34;: 52", b"&#34;events&#34;: 53")
+    found = faults(file)
+    assert found[0] == "look 2, record in its report, looks[0].information.events: stored 53, computed 52"
+
+
+def test_a_word_changed_in_a_report_is_found_by_setting_it_again(file: Path) -> None:
+    """The record is as it was, and so is every digest; only the page says something else."""
+    forge_report(file, 2, b"no boundary crossed", b"all went very well")
+    assert "Look 2, closed report: set again from its snapshot, it has other bytes." in faults(file)
 
 
 def information_that_cannot_be(record: dict[str, Any]) -> None:
