@@ -183,6 +183,23 @@ def test_the_bound_as_a_hazard_ratio_uses_the_variance_observed() -> None:
     assert look.bound.efficacy_hazard_ratio == pytest.approx(at_bound, rel=1e-14)
 
 
+def test_when_the_event_is_good_everything_turns_round_but_the_ratio() -> None:
+    """z favours experimental when it has more events; the bound is a ratio above 1."""
+    good = plan(('event_is = "bad"', 'event_is = "good"'), ("hazard_ratio = 0.5", "hazard_ratio = 2.0"))
+    sample = patients().at(CUTOFFS[1]).sample()
+    bad_look, good_look = (
+        review_look(under, sample, LookDeclared(1, "planned"), ()) for under in (plan(), good)
+    )
+    assert not isinstance(bad_look.logrank, Absent)
+    assert not isinstance(good_look.logrank, Absent)
+    assert good_look.logrank.z == -bad_look.logrank.z
+    assert good_look.cox == bad_look.cox
+    assert good_look.bound.efficacy_z == bad_look.bound.efficacy_z
+    assert not isinstance(bad_look.bound.efficacy_hazard_ratio, Absent)
+    turned = 1 / bad_look.bound.efficacy_hazard_ratio
+    assert good_look.bound.efficacy_hazard_ratio == pytest.approx(turned, rel=1e-14)
+
+
 def test_a_reason_takes_the_place_of_what_cannot_be_estimated() -> None:
     assert or_reason(lambda: 2.5) == 2.5
     alone = np.ones(3, dtype=bool)

@@ -96,6 +96,14 @@ def test_the_boundary_line_names_what_the_next_look_needs() -> None:
     assert "is needed" not in text(unmasked(0.0, 2.6).glance[3].sentence)
 
 
+def test_when_the_event_is_good_the_next_look_needs_a_ratio_above_one() -> None:
+    good = plan(('event_is = "bad"', 'event_is = "good"'), ("hazard_ratio = 0.5", "hazard_ratio = 2.0"))
+    looks = held(good, cutoffs=CUTOFFS[:1])
+    said = text(book(looks).sheets[0].glance[3].sentence)
+    assert said.endswith("or more.")
+    assert float(said.split()[-3]) > 1
+
+
 def test_an_interval_on_the_strip_is_marked_for_each_arm_that_was_followed() -> None:
     for look in range(1, 5):
         (strip,) = parts(book(held()[:look]).sheets[0], IntervalStrip)
