@@ -8,6 +8,8 @@ from dataclasses import dataclass, field
 from typing import Annotated
 
 from fastapi import Depends, Request
+from python_multipart.exceptions import FormParserError
+from python_multipart.multipart import parse_options_header
 from starlette.datastructures import UploadFile
 from starlette.exceptions import HTTPException
 from starlette.formparsers import FormParser, MultiPartException, MultiPartParser
@@ -47,22 +49,26 @@ class Submitted:
 
 async def submitted(request: Request) -> Submitted:
     """Read the form that a request carries; anything else reads as a form without answers."""
-    kind = request.headers.get("content-type", "").partition(";")[0].strip().lower()
+    kind, options = parse_options_header(request.headers.get("content-type"))
+    if options.get(b"charset", b"utf-8").lower() != b"utf-8":  # no page of ours sends another one
+        raise HTTPException(400, detail="a form in another character set than UTF-8")
+    parser = parser_of(kind, request)
+    if parser is None:
+        return Submitted({})
     try:
-        if kind == "multipart/form-data":
-            parser = InMemoryParser(
-                request.headers, request.stream(), max_files=MAX_FILES, max_fields=MAX_FIELDS
-            )
-            form = await parser.parse()
-        elif kind == "application/x-www-form-urlencoded":
-            form = await FormParser(request.headers, request.stream(), max_fields=MAX_FIELDS).parse()
-        else:
-            return Submitted({})
-    except (MultiPartException, KeyError) as refusal:
-        raise HTTPException(
-            400, detail=str(getattr(refusal, "message", "a form without its boundary"))
-        ) from None
-    return read_into_memory(form.multi_items())
+        return read_into_memory((await parser.parse()).multi_items())
+    except MultiPartException as refusal:
+        raise HTTPException(400, detail=refusal.message) from refusal
+    except FormParserError as refusal:
+        raise HTTPException(400, detail="a form that breaks off or has no boundary") from refusal
+
+
+def parser_of(kind: bytes, request: Request) -> InMemoryParser | FormParser | None:
+    if kind == b"multipart/form-data":
+        return InMemoryParser(request.headers, request.stream(), max_files=MAX_FILES, max_fields=MAX_FIELDS)
+    if kind == b"application/x-www-form-urlencoded":
+        return FormParser(request.headers, request.stream(), max_fields=MAX_FIELDS)
+    return None
 
 
 def read_into_memory(items: list[tuple[str, str | UploadFile]]) -> Submitted:

@@ -32,12 +32,6 @@ class Session:
     seen: datetime
     by: str = ""
     upload: Upload | None = None
-    notice: str = ""
-
-    def take_notice(self) -> str:
-        """What the last act has to say, once."""
-        said, self.notice = self.notice, ""
-        return said
 
 
 class Sessions:

@@ -120,6 +120,15 @@ def test_no_body_breaks_the_server(running: Served, path: str, kind: str, body: 
     assert response.status_code in (200, 400, 403, 409, 422), response.text
 
 
+@pytest.mark.parametrize("charset", ["idna", "undefined", "utf-7", "utf-16", "latin-1"])
+@pytest.mark.parametrize("field", ['name="cutoff"', 'name="files"; filename="xn--\xff"'])
+def test_a_form_in_another_character_set_is_not_guessed_at(running: Served, charset: str, field: str) -> None:
+    body = f"--x\r\nContent-Disposition: form-data; {field}\r\n\r\n+2AA-\r\n--x--\r\n".encode("latin-1")
+    kind = f"multipart/form-data; boundary=x; charset={charset}"
+    response = running.client.post("/closed/receive", content=body, headers={**OWN, "Content-Type": kind})
+    assert (response.status_code, "another character set than UTF-8" in response.text) == (400, True)
+
+
 @settings(max_examples=EXAMPLES // 3)
 @given(name=anything, at=st.integers(0, 2000), piece=st.binary(min_size=1, max_size=40))
 def test_no_damaged_extract_breaks_the_server_or_enters_the_trial_file(

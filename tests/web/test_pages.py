@@ -173,7 +173,7 @@ def test_a_confirmation_freezes_the_open_look_and_opens_the_next_in_one_act(serv
     assert (done.status_code, done.headers["location"]) == (303, "/closed/looks/4/glance")
     history = words(served.get("/closed/looks/4/record"))
     assert "Look 3 frozen, masked" in history
-    assert "Snapshot 4 received for a final look, cutoff 2026-10-09, 3 doubts answered" in history
+    assert "Snapshot 4 received for a final look, cutoff 9 Oct 2026, 3 doubts answered" in history
     assert served.get("/closed/receive/confirm").headers["location"] == "/closed/receive"
 
 
