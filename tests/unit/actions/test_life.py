@@ -353,7 +353,7 @@ def test_the_record_sheet_tells_the_state_in_a_sentence(tmp_path: Path) -> None:
         first = closed_book(open_desk, 1, session=None).sheet("record")
         assert first is not None
         assert answers(first) == [
-            "Look 1 was frozen on 2024-12-08 09:00 UTC by M. Berg. The arms are masked."
+            "Look 1 was frozen on 8 Dec 2024, 09:00 UTC, by M. Berg. The arms are masked."
         ]
         assert text(sheet.notes[0]).endswith("this is not an electronic signature.")
 
