@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from datetime import date
 
 from app.ledger.entries import (
     ArmsUnmasked,
@@ -19,7 +20,7 @@ from app.ledger.entries import (
 from app.ledger.history import Look, State
 from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Table
 from app.sheets.methods import methods
-from app.sheets.words import NO_BREAK, count, line, listed, moment
+from app.sheets.words import NO_BREAK, count, day_text, line, listed, moment
 
 QUESTION = "What was shown, what was advised?"
 NOT_A_SIGNATURE = "Names are recorded as they were given; this is not an electronic signature."
@@ -67,10 +68,10 @@ def state_sentence(history: History, number: int) -> Line:
     arms = "The arms are unmasked." if state.unmasked else "The arms are masked."
     look = state.look(number)
     if history.freezing is not None:
-        when = f"on {moment(history.freezing.at)} by {history.freezing.by}"
+        when = f"on {moment(history.freezing.at)}, by {history.freezing.by}"
         return line(f"Look{NO_BREAK}{number} was frozen {when}. {arms}")
     if look.frozen is not None:
-        when = f"on {moment(look.frozen.at)} by {look.frozen.body.by}"
+        when = f"on {moment(look.frozen.at)}, by {look.frozen.body.by}"
         return line(f"Look{NO_BREAK}{number} was frozen {when}. {arms}")
     others = (
         f"; look{'s' if len(frozen) > 1 else ''}{NO_BREAK}{listed(frozen)} {_are(len(frozen))} frozen"
@@ -156,7 +157,8 @@ def said(body: Body) -> str:
         case SnapshotReceived():
             number = len(body.acknowledgements)
             doubts = f", {number} doubt{'s' if number > 1 else ''} answered" if number else ""
-            return f"Snapshot {body.number} received for a {body.kind} look, cutoff {body.cutoff}{doubts}"
+            cutoff = day_text(date.fromisoformat(body.cutoff))
+            return f"Snapshot {body.number} received for a {body.kind} look, cutoff {cutoff}{doubts}"
         case ResultsOpened():
             return f"Comparative results of look {body.look} opened, {body.view}"
         case ArmsUnmasked():

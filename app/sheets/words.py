@@ -162,8 +162,8 @@ def day_text(day: date) -> str:
 
 
 def moment(at: str) -> str:
-    """ "2027-01-26 09:30 UTC" from an entry's time, which is in UTC."""
-    return f"{at[:10]} {at[11:16]}{NO_BREAK}UTC"
+    """ "26 Jan 2027, 09:30 UTC" from the time of an entry."""
+    return moment_text(datetime.fromisoformat(at))
 
 
 def moment_text(moment: datetime) -> str:

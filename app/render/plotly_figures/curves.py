@@ -49,6 +49,7 @@ def _chart(figure: CurvesFigure, page: Page, height: float) -> Json:
     sheet = Sheet(page.width, height, page.plot)
     start, end = figure.ticks[0], figure.ticks[-1]
     x = {"range": [start, end], "tickmode": "array", "tickvals": list(figure.ticks), "hoverformat": ".1f"}
+    x["ticktext"] = [f"{tick:g}" for tick in figure.ticks]
     y = {"range": [0, 100], "tickmode": "array", "tickvals": list(PERCENT_TICKS), "fixedrange": False}
     traces = [
         *(band for line in figure.lines for band in _bands(line, end)),

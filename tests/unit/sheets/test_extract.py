@@ -120,6 +120,6 @@ def test_the_snapshot_is_shown_as_received() -> None:
         "Declared as": ["planned"],
         "Data cutoff": ["1 Dec 2024"],
         "Extract": ["not stated"],
-        "Received": ["2024-12-01 09:00 UTC"],
+        "Received": ["1 Dec 2024, 09:00 UTC"],
         "Recorded by": ["M. Berg"],
     }

@@ -66,14 +66,14 @@ def test_the_state_of_every_look_is_a_sentence() -> None:
         "Look 4 is open; looks 1, 2 and 3 are frozen. The arms are unmasked."
     ]
     assert answers(sheet(2, 1, 1)) == [
-        "Look 1 was frozen on 2025-09-09 10:30 UTC by M. Berg. The arms are masked."
+        "Look 1 was frozen on 9 Sep 2025, 10:30 UTC, by M. Berg. The arms are masked."
     ]
 
 
 def test_in_its_own_report_a_look_is_frozen_already_and_nothing_can_be_done() -> None:
     freezing = Freezing("2025-10-01T11:00:00Z", "J. Ro", DIGEST, "masked")
     shown = sheet(2, 1, 2, freezing=freezing)
-    assert answers(shown) == ["Look 2 was frozen on 2025-10-01 11:00 UTC by J. Ro. The arms are masked."]
+    assert answers(shown) == ["Look 2 was frozen on 1 Oct 2025, 11:00 UTC, by J. Ro. The arms are masked."]
     assert shown.acts == ()
     assert table_texts(shown, "Look 2")["Head before the freeze"] == ["8c41 77d0 … 19e2"]
 
@@ -87,12 +87,15 @@ def test_what_can_be_done_depends_on_what_was_done() -> None:
     assert "unmask" not in acts(sheet(2, 1, 2, unmasked=True))
 
 
+CUTOFF = "1\u00a0Feb\u00a02025"
+
+
 def test_each_kind_of_entry_is_said_in_words() -> None:
     words: dict[str, Body] = {
         "Plan locked for trial Q17": PlanLocked("Q17", "", DIGEST, DIGEST, "M. Berg"),
-        "Snapshot 2 received for a planned look, cutoff 2025-02-01": received(2),
-        "Snapshot 2 received for a planned look, cutoff 2025-02-01, 1 doubt answered": received(2, doubts=1),
-        "Snapshot 2 received for a planned look, cutoff 2025-02-01, 3 doubts answered": received(2, doubts=3),
+        f"Snapshot 2 received for a planned look, cutoff {CUTOFF}": received(2),
+        f"Snapshot 2 received for a planned look, cutoff {CUTOFF}, 1 doubt answered": received(2, doubts=1),
+        f"Snapshot 2 received for a planned look, cutoff {CUTOFF}, 3 doubts answered": received(2, doubts=3),
         "Comparative results of look 2 opened, masked": ResultsOpened(2, "evening", "masked"),
         "Arms unmasked: Asked in session": ArmsUnmasked("Asked in session", Letters("A", "B"), "", "M. Berg"),
         "Look 2 frozen, masked": frozen(2).body,
