@@ -10,7 +10,8 @@ from app.actions.environment import environment
 from app.actions.freeze import closed_report
 from app.actions.looks import history_of
 from app.errors import AppError, InputError
-from app.ledger.entries import Verification, read_body
+from app.ledger.bodies import Verification
+from app.ledger.entries import read_body
 from app.ledger.history import Frozen, fold
 from app.ledger.trial import Trial
 from app.settings import Settings

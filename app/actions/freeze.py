@@ -12,7 +12,7 @@ from app.actions.looks import assembled_look, closed_book_of, history_of
 from app.actions.names import recorded_name
 from app.assets import asset
 from app.errors import LedgerError
-from app.ledger.entries import LookFrozen, View
+from app.ledger.bodies import LookFrozen, View
 from app.ledger.trial import Act
 from app.record.canonical import digest
 from app.record.text import record_bytes

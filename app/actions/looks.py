@@ -7,7 +7,8 @@ from datetime import date
 from typing import Any
 
 from app.actions.desk import Desk
-from app.ledger.entries import Entry, ResultsOpened, read_body
+from app.ledger.bodies import ResultsOpened
+from app.ledger.entries import Entry, read_body
 from app.ledger.history import Look, State
 from app.model.look import PooledResult
 from app.model.plan import Plan

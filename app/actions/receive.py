@@ -11,7 +11,7 @@ from app.actions.freeze import freeze_within
 from app.actions.names import recorded_name, recorded_reason
 from app.errors import LedgerError, ValueRejected
 from app.intake.extract import received_file
-from app.ledger.entries import SnapshotReceived
+from app.ledger.bodies import SnapshotReceived
 from app.ledger.history import State
 from app.ledger.trial import Act
 from app.model.extract import Acknowledgement, Changes, Extract, LookKind, Snapshot

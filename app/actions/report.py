@@ -11,7 +11,7 @@ from pathlib import Path
 
 from app.actions.desk import Desk
 from app.errors import SetupError
-from app.ledger.entries import ReportWritten
+from app.ledger.bodies import ReportWritten
 from app.record.text import record_bytes
 from app.verification.check import record_in_report
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from app.actions.desk import Desk
 from app.actions.names import recorded_name, recorded_reason
-from app.ledger.entries import ArmsUnmasked
+from app.ledger.bodies import ArmsUnmasked
 
 
 def unmask(desk: Desk, *, reason: str, by: str) -> None:

@@ -10,9 +10,10 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Iterator, Sequence
 
 from app.errors import LedgerChanged, LedgerError
+from app.ledger.bodies import Body, Named
 from app.ledger.chain import Problem, chain_problems
 from app.ledger.database import Database
-from app.ledger.entries import Body, Entry, Named, read_body
+from app.ledger.entries import Entry, read_body
 from app.ledger.history import State, follow
 from app.ledger.rows import Table, entry_rows, kept_bytes, kept_digests
 from app.ledger.schema import schema_problems

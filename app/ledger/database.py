@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import sqlite3
 from collections.abc import Iterator
-from contextlib import AbstractContextManager, contextmanager
+from contextlib import contextmanager
 from pathlib import Path
 from threading import RLock
 from typing import Any
@@ -19,6 +19,13 @@ SAFEGUARDS = (
     "PRAGMA synchronous = EXTRA",  # the folder is synced too: an act told as done is done
     "PRAGMA cache_spill = OFF",  # pages reach the file at COMMIT only: a copy taken before it is whole
 )
+
+WAIT_SECONDS = 5.0
+"""How long an act waits for another program's act to end."""
+
+FORGET = "PRAGMA shrink_memory"
+"""Pages are read anew in each transaction: SQLite would keep those of before when the file was overwritten in
+place by another that was changed as often."""
 
 
 class Database:
@@ -70,6 +77,7 @@ class Database:
         with self.lock:
             if self._connection.in_transaction:
                 raise ValueError("an act within an act")
+            self.run(FORGET)
             self.run(begin)
             try:
                 yield
@@ -78,9 +86,23 @@ class Database:
                 if self._connection.in_transaction:
                     self.run("ROLLBACK")
 
-    def reading(self) -> AbstractContextManager[None]:
-        """A view of the file that stands still while it is read."""
-        return self.transaction("BEGIN", end="ROLLBACK")
+    @contextmanager
+    def reading(self) -> Iterator[None]:
+        """A view of the file that stands still while it is read; within an act, the act's own."""
+        with self.lock:
+            if self._connection.in_transaction:
+                yield
+                return
+            with self.transaction("BEGIN", end="ROLLBACK"):
+                yield
+
+    def copy_to(self, other: Database) -> None:
+        """Every page into another file, by SQLite's own interface for backups."""
+        with self.lock, other.lock:
+            try:
+                self._connection.backup(other._connection)
+            except sqlite3.Error as fault:
+                raise told(fault, other.path) from fault
 
     def close(self) -> None:
         with self.lock:

@@ -1,32 +1,15 @@
-"""What an entry of the history holds, kind by kind. Kinds and fields are for ever.
-
-Reserved for later, with the names they will have: 'plan amended', 'refusal recorded', 'recommendation',
-'erratum', 'backup'. A new kind is a class in BODIES, a rule in history.py, and a new schema version, so that
-an older program says it is older. A new field of an old kind has a default, so that older entries still read.
-"""
+"""An entry of the history: its line, its digest, and what ties it to the one before."""
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import asdict, dataclass, replace
-from typing import Any, ClassVar, Literal, NamedTuple, Self
+from typing import Any, NamedTuple
 
 from app.errors import InputError, LedgerChanged
-from app.ledger.letters import LetterKey, Letters
+from app.ledger.bodies import BODIES, Body
 from app.ledger.reading import read_as
-from app.model.extract import Finding, LookKind, Severity, Snapshot
 from app.record.canonical import canonical_bytes, digest, parse_strict
-
-Kind = Literal[
-    "plan locked",
-    "snapshot received",
-    "results opened",
-    "arms unmasked",
-    "look frozen",
-    "report written",
-    "verification",
-]
-View = Literal["masked", "unmasked"]
 
 
 class Head(NamedTuple):
@@ -38,186 +21,6 @@ class Head(NamedTuple):
 
 BEFORE_THE_FIRST = Head(0, "0" * 64)
 """What the first entry follows."""
-
-
-class Named(NamedTuple):
-    """A stored content as an entry names it: where a person would look for it, and its digest."""
-
-    place: str
-    digest: str
-
-
-@dataclass(frozen=True)
-class Body:
-    """What one kind of entry says."""
-
-    entry_kind: ClassVar[Kind]
-
-    def contents(self) -> Iterable[Named]:
-        """The stored bytes that this entry stands for."""
-        return ()
-
-    def secrets(self) -> Iterable[Named]:
-        """The stored bytes that this entry commits to without showing them."""
-        return ()
-
-
-@dataclass(frozen=True)
-class PlanLocked(Body):
-    """The first entry. `trial` is drawn at random and tells this trial file from every other."""
-
-    entry_kind: ClassVar[Kind] = "plan locked"
-    name: str
-    trial: str
-    plan_digest: str
-    letters_commitment: str
-    by: str
-
-    def contents(self) -> Iterator[Named]:
-        yield Named("the locked plan", self.plan_digest)
-
-    def secrets(self) -> Iterator[Named]:
-        yield Named("the sealed arm letters", self.letters_commitment)
-
-
-@dataclass(frozen=True)
-class FileKept:
-    name: str
-    digest: str
-
-
-@dataclass(frozen=True)
-class FindingKept:
-    id: str
-    severity: Severity
-    count: int
-    sentence: str
-
-
-@dataclass(frozen=True)
-class DoubtAnswered:
-    finding: str
-    reason: str
-
-
-@dataclass(frozen=True)
-class SnapshotReceived(Body):
-    """An extract as received. `kind` of look is declared here, before any result of it is opened."""
-
-    entry_kind: ClassVar[Kind] = "snapshot received"
-    number: int
-    kind: LookKind
-    cutoff: str
-    extracted: str | None
-    files: tuple[FileKept, ...]
-    findings: tuple[FindingKept, ...]
-    acknowledgements: tuple[DoubtAnswered, ...]
-    by: str
-
-    @classmethod
-    def of(cls, snapshot: Snapshot, findings: Sequence[Finding]) -> Self:
-        """The entry for a snapshot and what was found in it."""
-        return cls(
-            number=snapshot.number,
-            kind=snapshot.kind,
-            cutoff=snapshot.cutoff.isoformat(),
-            extracted=snapshot.extracted.isoformat() if snapshot.extracted else None,
-            files=tuple(FileKept(file.name, file.digest) for file in snapshot.files),
-            findings=tuple(FindingKept(f.id, f.severity, f.count, str(f)) for f in findings),
-            acknowledgements=tuple(DoubtAnswered(a.finding_id, a.reason) for a in snapshot.acknowledgements),
-            by=snapshot.by,
-        )
-
-    def contents(self) -> Iterator[Named]:
-        for file in self.files:
-            yield Named(f"snapshot {self.number}, file {file.name}", file.digest)
-
-
-@dataclass(frozen=True)
-class ResultsOpened(Body):
-    """The first sight of comparative results of a look in a session."""
-
-    entry_kind: ClassVar[Kind] = "results opened"
-    look: int
-    session: str
-    view: View
-
-
-@dataclass(frozen=True)
-class ArmsUnmasked(Body):
-    """The letters and the salt that the lock committed to, shown from here on."""
-
-    entry_kind: ClassVar[Kind] = "arms unmasked"
-    reason: str
-    letters: Letters
-    salt: str
-    by: str
-
-    @classmethod
-    def of(cls, key: LetterKey, reason: str, by: str) -> Self:
-        return cls(reason, key.letters, key.salt, by)
-
-    @property
-    def key(self) -> LetterKey:
-        return LetterKey(self.letters, self.salt)
-
-
-@dataclass(frozen=True)
-class LookFrozen(Body):
-    """What was shown at a look. `head_before` is the head that the closed report prints."""
-
-    entry_kind: ClassVar[Kind] = "look frozen"
-    look: int
-    record_digest: str
-    report_digest: str
-    disclosure: View
-    head_before: str
-    environment: dict[str, str]
-    by: str
-
-    def contents(self) -> Iterator[Named]:
-        yield Named(f"look {self.look}, frozen record", self.record_digest)
-        yield Named(f"look {self.look}, closed report", self.report_digest)
-
-
-@dataclass(frozen=True)
-class ReportWritten(Body):
-    """The closed report of a frozen look was written to a folder."""
-
-    entry_kind: ClassVar[Kind] = "report written"
-    look: int
-    report_digest: str
-
-    def contents(self) -> Iterator[Named]:
-        yield Named(f"look {self.look}, written report", self.report_digest)
-
-
-@dataclass(frozen=True)
-class Verification(Body):
-    """A verification that found nothing: `head` before it, and how much was gone through.
-
-    One that finds something is not an entry, because nothing is written into a damaged file.
-    """
-
-    entry_kind: ClassVar[Kind] = "verification"
-    head: str
-    entries: int
-    contents_hashed: int
-    looks_recomputed: tuple[int, ...]
-
-
-BODIES: dict[str, type[Body]] = {
-    body.entry_kind: body
-    for body in (
-        PlanLocked,
-        SnapshotReceived,
-        ResultsOpened,
-        ArmsUnmasked,
-        LookFrozen,
-        ReportWritten,
-        Verification,
-    )
-}
 
 
 @dataclass(frozen=True)

@@ -8,25 +8,30 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
-from datetime import date, datetime
+from datetime import UTC, date, datetime
 from functools import reduce, singledispatch
+from typing import TypeVar
 
 from app.errors import LedgerError, LookAlreadyFrozen
-from app.ledger.entries import (
-    BEFORE_THE_FIRST,
+from app.ledger.bodies import (
     ArmsUnmasked,
+    Backup,
     Body,
-    Entry,
-    Head,
+    Erratum,
     LookFrozen,
+    PlanAmended,
     PlanLocked,
+    Recommendation,
+    RefusalRecorded,
     ReportWritten,
     ResultsOpened,
     SnapshotReceived,
     Verification,
-    read_body,
 )
+from app.ledger.entries import BEFORE_THE_FIRST, Entry, Head, read_body
 from app.ledger.letters import Letters
+
+Moment = TypeVar("Moment", date, datetime)
 
 
 @dataclass(frozen=True)
@@ -39,17 +44,51 @@ class Frozen:
 
 
 @dataclass(frozen=True)
+class PlanVersion:
+    """A plan as locked (version 1) or amended. It governs the looks received while it was the last."""
+
+    version: int
+    plan_digest: str
+    entry: int
+    at: str
+    by: str
+    amended: PlanAmended | None = None
+
+
+@dataclass(frozen=True)
 class Look:
-    """A look as far as it has come: received, then frozen. `plan_digest` names the plan it is held under."""
+    """A look as far as it has come: received, then frozen.
+
+    The plan it is held under is the one in force when its snapshot was received; no amendment changes that.
+    """
 
     snapshot: SnapshotReceived
     received_at: str
-    plan_digest: str
+    plan: PlanVersion
     frozen: Frozen | None = None
+
+    @property
+    def plan_digest(self) -> str:
+        return self.plan.plan_digest
 
     @property
     def number(self) -> int:
         return self.snapshot.number
+
+
+@dataclass(frozen=True)
+class ClockWentBack:
+    """An entry that carries an earlier time than the one before it: a doubt about both times."""
+
+    entry: int
+    at: str
+    before: str
+
+    def __str__(self) -> str:
+        return (
+            f"The clock went back: entry {self.entry} carries {self.at}, the one before it {self.before}. "
+            "Check the clock of this machine; if a recorded time is wrong, say so in an erratum."
+        )
 
 
 @dataclass(frozen=True)
@@ -61,16 +100,32 @@ class State:
     trial: str = ""
     locked_at: str = ""
     locked_by: str = ""
-    plan_digest: str = ""
+    plans: tuple[PlanVersion, ...] = ()
     letters_commitment: str = ""
     letters: Letters | None = None
     looks: tuple[Look, ...] = ()
     openings: frozenset[tuple[int, str]] = frozenset()  # look, session
+    reports_written: frozenset[int] = frozenset()  # looks
+    clock_doubts: tuple[ClockWentBack, ...] = ()
     last_at: str = ""
+
+    @property
+    def plan(self) -> PlanVersion:
+        """The plan in force: for the next snapshot to be received."""
+        return self.plans[-1]
+
+    @property
+    def plan_digest(self) -> str:
+        return self.plan.plan_digest
 
     @property
     def unmasked(self) -> bool:
         return self.letters is not None
+
+    @property
+    def results_opened(self) -> tuple[int, ...]:
+        """The looks whose comparative results left the file: opened on a page, or written in a report."""
+        return tuple(sorted({look for look, _ in self.openings} | self.reports_written))
 
     @property
     def open_look(self) -> Look | None:
@@ -114,17 +169,20 @@ def fold(entries: Iterable[Entry], state: State | None = None) -> State:
 def follow(state: State, entry: Entry) -> State:
     """The state after one more entry; LedgerError says why it cannot follow."""
     body = read_body(entry)
-    refuse_no_time(datetime.fromisoformat, entry.at)
+    at = read_time(datetime.fromisoformat, entry.at)
     if isinstance(body, PlanLocked) != (state.head == BEFORE_THE_FIRST):
         raise LedgerError("A history begins with its plan being locked, once", found=f"{entry.kind!r} here")
     reached = advance(body, state, entry)
+    if state.last_at and at.replace(tzinfo=UTC) < datetime.fromisoformat(state.last_at).replace(tzinfo=UTC):
+        doubt = ClockWentBack(entry.id, entry.at, state.last_at)
+        reached = replace(reached, clock_doubts=(*reached.clock_doubts, doubt))
     return replace(reached, head=entry.head, last_at=entry.at)
 
 
-def refuse_no_time(read: Callable[[str], object], text: str) -> None:
+def read_time(read: Callable[[str], Moment], text: str) -> Moment:
     """A forged history may hold any text; what is shown as a time or date is one."""
     try:
-        read(text)
+        return read(text)
     except ValueError as fault:
         raise LedgerError("A time or date that is none", found=repr(text)) from fault
 
@@ -143,9 +201,35 @@ def _plan_locked(body: PlanLocked, state: State, entry: Entry) -> State:
         trial=body.trial,
         locked_at=entry.at,
         locked_by=body.by,
-        plan_digest=body.plan_digest,
+        plans=(PlanVersion(1, body.plan_digest, entry.id, entry.at, body.by),),
         letters_commitment=body.letters_commitment,
     )
+
+
+@advance.register
+def _plan_amended(body: PlanAmended, state: State, entry: Entry) -> State:
+    number = state.plan.version + 1
+    if body.version != number:
+        raise LedgerError(
+            "A plan version out of its turn", found=f"version {body.version}", accepted=f"version {number}"
+        )
+    if body.plan_digest == state.plan_digest or not body.changes:
+        raise LedgerError("An amendment that changes nothing", remedy="give it the changed plan")
+    if (body.results_opened, body.unmasked) != (state.results_opened, state.unmasked):
+        raise LedgerError(
+            "An amendment that states otherwise what was known when it was made",
+            found=known(body.results_opened, body.unmasked),
+            accepted=known(state.results_opened, state.unmasked),
+            remedy="amend again",
+        )
+    version = PlanVersion(number, body.plan_digest, entry.id, entry.at, body.by, body)
+    return replace(state, plans=(*state.plans, version))
+
+
+def known(results_opened: tuple[int, ...], unmasked: bool) -> str:
+    """ "results of looks 1, 2 opened, arms masked"."""
+    looks = f"results of looks {', '.join(map(str, results_opened))}" if results_opened else "no results"
+    return f"{looks} opened, arms {'unmasked' if unmasked else 'masked'}"
 
 
 @advance.register
@@ -163,11 +247,11 @@ def _snapshot_received(body: SnapshotReceived, state: State, entry: Entry) -> St
             found=f"snapshot {body.number}",
             accepted=f"snapshot {state.next_number}",
         )
-    refuse_no_time(date.fromisoformat, body.cutoff)
+    read_time(date.fromisoformat, body.cutoff)
     if body.extracted is not None:
-        refuse_no_time(date.fromisoformat, body.extracted)
+        read_time(date.fromisoformat, body.extracted)
     refuse_unanswered(body)
-    look = Look(body, received_at=entry.at, plan_digest=state.plan_digest)
+    look = Look(body, received_at=entry.at, plan=state.plan)
     return replace(state, looks=(*state.looks, look))
 
 
@@ -183,6 +267,20 @@ def refuse_unanswered(body: SnapshotReceived) -> None:
                 found=finding.sentence,
                 remedy="acknowledge it with a reason",
             )
+
+
+@advance.register
+def _refusal_recorded(body: RefusalRecorded, state: State, entry: Entry) -> State:
+    if not any(finding.severity == "block" for finding in body.findings):
+        raise LedgerError(
+            "A refusal without a finding that blocks",
+            accepted="an extract that cannot be used",
+            remedy="receive it instead",
+        )
+    read_time(date.fromisoformat, body.cutoff)
+    if body.extracted is not None:
+        read_time(date.fromisoformat, body.extracted)
+    return state
 
 
 @advance.register
@@ -227,8 +325,7 @@ def _look_frozen(body: LookFrozen, state: State, entry: Entry) -> State:
 
 def _with_freeze(state: State, look: Look, frozen: Frozen) -> State:
     """Only the last look can be open, so it is the one that is replaced."""
-    done = replace(look, frozen=frozen, plan_digest=state.plan_digest)
-    return replace(state, looks=(*state.looks[:-1], done))
+    return replace(state, looks=(*state.looks[:-1], replace(look, frozen=frozen)))
 
 
 @advance.register
@@ -236,16 +333,46 @@ def _report_written(body: ReportWritten, state: State, entry: Entry) -> State:
     frozen = state.frozen_look(body.look)
     if body.report_digest != frozen.body.report_digest:
         raise LedgerError(f"The report written is not the frozen report of look {body.look}")
+    return replace(state, reports_written=state.reports_written | {body.look})
+
+
+@advance.register
+def _recommendation(body: Recommendation, state: State, entry: Entry) -> State:
+    state.frozen_look(body.look)  # a recommendation rests on what was shown
+    read_time(date.fromisoformat, body.held_on)
+    return state
+
+
+@advance.register
+def _erratum(body: Erratum, state: State, entry: Entry) -> State:
+    if not 1 <= body.entry <= state.head.id:
+        raise LedgerError(
+            "An erratum to an entry that does not exist",
+            found=f"entry {body.entry}",
+            accepted=f"an entry from 1 to {state.head.id}",
+            remedy="name the entry that is to be corrected by its number",
+        )
+    return state
+
+
+@advance.register
+def _backup(body: Backup, state: State, entry: Entry) -> State:
+    refuse_grown(state, Head(body.entries, body.head), "it was copied", "make the backup again")
     return state
 
 
 @advance.register
 def _verification(body: Verification, state: State, entry: Entry) -> State:
-    if (body.entries, body.head) != state.head:
-        raise LedgerError(
-            "The history grew while it was verified",
-            found=f"entry {state.head.id}",
-            accepted=f"entry {body.entries} as the last",
-            remedy="verify again",
-        )
+    refuse_grown(state, Head(body.entries, body.head), "it was verified", "verify again")
     return state
+
+
+def refuse_grown(state: State, last: Head, meanwhile: str, remedy: str) -> None:
+    """What is said of a whole history is said of the history as it stands."""
+    if state.head != last:
+        raise LedgerError(
+            f"The history grew while {meanwhile}",
+            found=f"entry {state.head.id}",
+            accepted=f"entry {last.id} as the last",
+            remedy=remedy,
+        )

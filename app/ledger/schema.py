@@ -47,7 +47,20 @@ def lay_out_entries_contents_and_secrets(run: Run) -> None:
     run(refuse("INSERT", "entry", "follows the last one", out_of_turn))
 
 
-MIGRATIONS: tuple[Callable[[Run], None], ...] = (lay_out_entries_contents_and_secrets,)
+def admit_amendments_refusals_recommendations_errata_and_backups(run: Run) -> None:
+    """Version 2. The history may hold these kinds of entries; a program of version 1 then says it is older.
+
+    The tables serve them as they are. What is new in the file keeps the record of migrations in its order.
+    """
+    out_of_turn = " WHEN NEW.number IS NOT (SELECT coalesce(max(number), 0) + 1 FROM migration)"
+    run("DROP TRIGGER migration_insert")
+    run(refuse("INSERT", "migration", "follows the last one", out_of_turn))
+
+
+MIGRATIONS: tuple[Callable[[Run], None], ...] = (
+    lay_out_entries_contents_and_secrets,
+    admit_amendments_refusals_recommendations_errata_and_backups,
+)
 
 
 def version(database: Database) -> int:

@@ -12,22 +12,21 @@ from typing import Self
 
 from app.errors import LedgerChanged, LedgerError
 from app.ledger import schema
+from app.ledger.backup import copied_whole
+from app.ledger.bodies import ArmsUnmasked, Backup, Body, Named, PlanLocked, SnapshotReceived
 from app.ledger.chain import Problem, chain_problems
 from app.ledger.check import full_check, quick_check
 from app.ledger.creation import created_whole
-from app.ledger.database import Database
-from app.ledger.entries import ArmsUnmasked, Body, Entry, Named, PlanLocked, SnapshotReceived
+from app.ledger.database import WAIT_SECONDS, Database
+from app.ledger.entries import Entry
 from app.ledger.faults import MISSING, NOT_STORED, UNWRITABLE
-from app.ledger.history import State, fold, follow
+from app.ledger.history import ClockWentBack, State, fold, follow
 from app.ledger.letters import LetterKey, draw_letters
 from app.ledger.reading import read_as
 from app.ledger.rows import Table, insert_entry, is_kept, keep_bytes, kept_bytes, read_entries
 from app.model.extract import Acknowledgement, ReceivedFile, Snapshot
 from app.record.canonical import parse_strict
 from app.settings import Settings
-
-WAIT_SECONDS = 5.0
-"""How long an act waits for another program's act to end."""
 
 STARTS_UNMASKED = "The plan says that this committee sees the arms by name"
 
@@ -91,6 +90,7 @@ class Trial:
         self._settings = settings
         self._state = State()
         self._acting: Act | None = None
+        self._clock_doubts: tuple[ClockWentBack, ...] = ()
 
     @classmethod
     def create(
@@ -150,12 +150,20 @@ class Trial:
         self._refuse_writing()
         with self._database.transaction():
             act = Act(self._database, self._caught_up(), self._now())
+            n_doubts = len(act.state.clock_doubts)
             self._acting = act
             try:
                 yield act
                 act.refuse_loose_ends()
             finally:
                 self._acting = None
+        self._clock_doubts += act.state.clock_doubts[n_doubts:]
+
+    def take_clock_doubts(self) -> tuple[ClockWentBack, ...]:
+        """Doubts about the time of acts done since this was last asked."""
+        with self._database.lock:
+            doubts, self._clock_doubts = self._clock_doubts, ()
+        return doubts
 
     def state(self) -> State:
         """All that the history says now; inside an act, with what the act has added so far."""
@@ -191,9 +199,29 @@ class Trial:
         key: LetterKey = read_as(LetterKey, parse_strict(sealed, "the sealed arm letters"))
         return key
 
+    def check_quickly(self) -> None:
+        """Tables, triggers, chain and order, as before each freeze; LedgerChanged when any was changed."""
+        self._found(quick_check(self._database))
+        if self.damage:
+            self._refuse_writing()
+
+    def back_up(self, to: Path, *, by: str) -> Backup:
+        """Copy the trial file to a new name, verify the copy, and record it; no act comes between.
+
+        A file that is open for reading only is copied without a record of it.
+        """
+        if self.read_only and not self.damage:
+            return copied_whole(self.path, self.state().head, to, by=by)
+        with self.act() as act:
+            body = copied_whole(self.path, act.state.head, to, by=by)
+            act.append(body)
+        return body
+
     def check_chain(self, witnessed_heads: Sequence[str] = ()) -> tuple[Problem, ...]:
         """Walk the history and re-hash every stored byte (check.py); a problem ends all writing."""
-        problems = full_check(self._database, witnessed_heads)
+        return self._found(full_check(self._database, witnessed_heads))
+
+    def _found(self, problems: tuple[Problem, ...]) -> tuple[Problem, ...]:
         self.damage = tuple(dict.fromkeys((*self.damage, *problems)))
         self.read_only = self.read_only or bool(problems)
         return problems

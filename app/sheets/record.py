@@ -6,10 +6,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import date
 
-from app.ledger.entries import (
+from app.ledger.bodies import (
     ArmsUnmasked,
     Body,
-    Entry,
     LookFrozen,
     PlanLocked,
     ReportWritten,
@@ -17,6 +16,7 @@ from app.ledger.entries import (
     SnapshotReceived,
     Verification,
 )
+from app.ledger.entries import Entry
 from app.ledger.history import Look, State
 from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Table
 from app.sheets.methods import methods

@@ -3,13 +3,21 @@
 from __future__ import annotations
 
 import random
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
+from dataclasses import replace
 from datetime import UTC, date, datetime, timedelta
 from pathlib import Path
 
-from app.ledger.entries import (
+from app.ledger.bodies import (
     ArmsUnmasked,
+    Erratum,
+    FileKept,
+    FindingKept,
+    KeyChanged,
     LookFrozen,
+    PlanAmended,
+    Recommendation,
+    RefusalRecorded,
     ReportWritten,
     ResultsOpened,
     SnapshotReceived,
@@ -100,6 +108,37 @@ def record_verification(act: Act) -> None:
     act.append(Verification(head.digest, head.id, contents_hashed=1, looks_recomputed=()))
 
 
+def amend(act: Act) -> None:
+    state = act.state
+    version = state.plan.version + 1
+    act.append(
+        PlanAmended(
+            version=version,
+            plan_digest=act.store(PLAN + b"# version %d\n" % version),
+            changes=(KeyChanged("design.planned_events", "400", "520"),),
+            reason="Fewer events than foreseen",
+            decided_by="Steering committee",
+            results_opened=state.results_opened,
+            unmasked=state.unmasked,
+            by="M. Berg",
+        )
+    )
+
+
+def record_refusal(act: Act) -> None:
+    files = (FileKept("adtte-9.csv", digest(extract(9))),)
+    blocking = FindingKept.of(replace(DOUBT, severity="block"))
+    act.append(RefusalRecorded("planned", "2026-01-09", None, files, (blocking,), "M. Berg"))
+
+
+def recommend(act: Act, look: int) -> None:
+    act.append(Recommendation(look, "continue", "No concern", "2026-01-20", "M. Berg"))
+
+
+def correct(act: Act) -> None:
+    act.append(Erratum(1, "The name is M. Bergh", "M. Berg"))
+
+
 LIFE: dict[str, Callable[[Trial, Act], None]] = {
     "receive the first": lambda trial, act: receive(act, 1),
     "open results": lambda trial, act: open_results(act, 1),
@@ -112,12 +151,32 @@ LIFE: dict[str, Callable[[Trial, Act], None]] = {
     "record a verification": lambda trial, act: record_verification(act),
     "freeze the second": lambda trial, act: freeze(act, 2),
 }
-"""Every kind of act, in an order that history allows."""
+"""The kinds of act that schema 1 knew, in an order that history allows."""
+
+LATER: dict[str, Callable[[Trial, Act], None]] = {
+    "amend the plan": lambda trial, act: amend(act),
+    "record a refusal": lambda trial, act: record_refusal(act),
+    "recommend": lambda trial, act: recommend(act, 2),
+    "correct an entry": lambda trial, act: correct(act),
+}
+"""What schema 2 brought, to follow on LIFE; but for the backup, which makes a file of its own."""
 
 
 def live(trial: Trial, *, until: str | None = None) -> None:
     """Carry out the acts of LIFE, up to and without the one named."""
-    for name, do in LIFE.items():
+    carry_out(trial, LIFE, until=until)
+
+
+def live_on(trial: Trial) -> None:
+    """Carry out the acts of LATER, and back up."""
+    carry_out(trial, LATER)
+    trial.back_up(trial.path.with_suffix(".backup"), by="M. Berg")
+
+
+def carry_out(
+    trial: Trial, deeds: Mapping[str, Callable[[Trial, Act], None]], *, until: str | None = None
+) -> None:
+    for name, do in deeds.items():
         if name == until:
             return
         with trial.act() as act:

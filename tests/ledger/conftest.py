@@ -44,3 +44,10 @@ def lived(a_life: bytes, path: Path, settings: Settings) -> Iterator[Trial]:
     path.write_bytes(a_life)
     with Trial.open(path, settings) as trial:
         yield trial
+
+
+@pytest.fixture
+def lived_on(lived: Trial) -> Trial:
+    """The same with every kind of act of the present schema; its backup lies beside it."""
+    acts.live_on(lived)
+    return lived

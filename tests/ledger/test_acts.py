@@ -11,7 +11,7 @@ from pathlib import Path
 import pytest
 
 from app.errors import LedgerError, SetupError
-from app.ledger.entries import LookFrozen, ReportWritten
+from app.ledger.bodies import LookFrozen, ReportWritten
 from app.ledger.trial import Act, Trial
 from app.record.canonical import digest
 from app.settings import Settings

@@ -64,7 +64,7 @@ def test_a_file_of_a_newer_version_is_told(lived: Trial, settings: Settings) -> 
         Trial.open(lived.path, settings)
     assert str(refused.value) == (
         f"The trial file was written by a newer version of this program in {lived.path}. Found schema 99. "
-        "Accepted: schemas up to 1. Open it with the newer version; nothing was changed."
+        "Accepted: schemas up to 2. Open it with the newer version; nothing was changed."
     )
     assert lived.path.read_bytes() == before
 

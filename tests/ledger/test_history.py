@@ -9,17 +9,16 @@ from pathlib import Path
 import pytest
 
 from app.errors import LedgerChanged, LedgerError, LookAlreadyFrozen
-from app.ledger.entries import (
+from app.ledger.bodies import (
     BODIES,
     ArmsUnmasked,
-    Entry,
-    Head,
     LookFrozen,
     PlanLocked,
     ResultsOpened,
     SnapshotReceived,
     Verification,
 )
+from app.ledger.entries import Entry, Head
 from app.ledger.history import State, advance, fold, follow
 from app.ledger.letters import LetterKey, Letters
 from app.ledger.trial import Act, Trial

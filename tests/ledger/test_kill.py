@@ -9,6 +9,7 @@ from pathlib import Path
 
 import pytest
 
+from app.ledger import schema
 from app.ledger.trial import Trial
 from app.settings import Settings
 from tests.ledger import acts, killed
@@ -26,7 +27,7 @@ def deaths(tmp_path_factory: pytest.TempPathFactory) -> list[dict[str, object]]:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("name", acts.LIFE)
+@pytest.mark.parametrize("name", killed.DEEDS)
 def test_an_act_is_there_wholly_or_not_at_all(
     deaths: list[dict[str, object]], name: str, settings: Settings
 ) -> None:
@@ -52,6 +53,40 @@ def test_a_new_trial_file_is_there_whole_or_not_at_all(
         with Trial.open(path, settings) as trial:
             assert trial.check_chain() == ()
             assert len(trial.entries()) == 1
+
+
+@pytest.mark.slow
+def test_a_backup_is_there_whole_or_not_at_all_and_is_recorded_only_when_it_is(
+    deaths: list[dict[str, object]], settings: Settings
+) -> None:
+    of_this_act = [death for death in deaths if death["act"] == "back up"]
+    assert len(of_this_act) > 40  # statements of three connections, names taken and given back
+    for death in of_this_act:
+        path = Path(str(death["file"]))
+        backup = path.with_suffix(".backup")
+        with Trial.open(path, settings) as trial:
+            assert trial.check_chain() == ()
+            n_added = len(trial.entries()) - int(str(death["entries_before"]))
+            assert n_added == (1 if death["done"] else 0)
+            before = trial.entries()[: int(str(death["entries_before"]))]
+        assert backup.exists() or not n_added
+        if backup.exists():
+            with Trial.open(backup, settings) as copied:
+                assert copied.check_chain() == ()
+                assert copied.entries() == before
+
+
+@pytest.mark.slow
+def test_a_migration_is_done_or_is_done_at_the_next_opening(
+    deaths: list[dict[str, object]], settings: Settings
+) -> None:
+    of_this_act = [death for death in deaths if death["act"] == "migrate"]
+    assert len(of_this_act) > 10
+    for death in of_this_act:
+        with Trial.open(Path(str(death["file"])), settings) as trial:
+            assert schema.version(trial._database) == len(schema.MIGRATIONS)
+            assert trial.check_chain() == ()
+            assert len(trial.entries()) == death["entries_before"]
 
 
 @pytest.mark.slow

@@ -42,9 +42,31 @@ def test_a_file_of_an_older_schema_opens_and_goes_on(path: Path, settings: Setti
         assert trial.check_chain() == ()
         assert schema.version(trial._database) == len(schema.MIGRATIONS)
         assert [look.number for look in trial.state().frozen_looks] == [1, 2]
+        acts.live_on(trial)
         with trial.act() as act:
             acts.receive(act, 3)
         assert trial.check_chain() == ()
+
+
+@pytest.mark.parametrize("version", range(1, len(schema.MIGRATIONS) + 1))
+def test_a_file_of_an_older_schema_is_read_without_being_changed(
+    path: Path, settings: Settings, version: int
+) -> None:
+    released(version, path)
+    before = path.read_bytes()
+    with Trial.open(path, settings, read_only=True) as trial:
+        assert trial.check_chain() == ()
+        assert schema.version(trial._database) == version
+    assert path.read_bytes() == before
+
+
+def test_entries_written_under_an_older_schema_stay_as_they_are(path: Path, settings: Settings) -> None:
+    released(1, path)
+    with Trial.open(path, settings, read_only=True) as trial:
+        before = trial.entries()
+    with Trial.open(path, settings) as trial:
+        assert schema.version(trial._database) == len(schema.MIGRATIONS)
+        assert trial.entries() == before
 
 
 def test_the_head_of_the_first_released_history_is_what_it_was(path: Path, settings: Settings) -> None:
@@ -90,7 +112,11 @@ def test_a_later_migration_runs_once_and_leaves_its_record(
         with Trial.open(lived.path, settings) as trial:
             assert trial.check_chain() == ()
             ran = trial._database.run("SELECT number, name FROM migration ORDER BY number")
-    assert ran == [(1, "lay_out_entries_contents_and_secrets"), (2, "add_a_table_of_notes")]
+    assert ran == [
+        (1, "lay_out_entries_contents_and_secrets"),
+        (2, "admit_amendments_refusals_recommendations_errata_and_backups"),
+        (3, "add_a_table_of_notes"),
+    ]
 
 
 def test_a_file_open_for_reading_is_not_migrated(
