@@ -228,8 +228,9 @@ def _plan_amended(body: PlanAmended, state: State, entry: Entry) -> State:
 
 def known(results_opened: tuple[int, ...], unmasked: bool) -> str:
     """ "results of looks 1, 2 opened, arms masked"."""
-    looks = f"results of looks {', '.join(map(str, results_opened))}" if results_opened else "no results"
-    return f"{looks} opened, arms {'unmasked' if unmasked else 'masked'}"
+    noun = "look" if len(results_opened) == 1 else "looks"
+    results = f"results of {noun} {', '.join(map(str, results_opened))}" if results_opened else "no results"
+    return f"{results} opened, arms {'unmasked' if unmasked else 'masked'}"
 
 
 @advance.register

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from datetime import UTC, datetime
 from pathlib import Path
 
 import pytest
@@ -12,16 +13,24 @@ from app.errors import LedgerChanged, LedgerError, LookAlreadyFrozen
 from app.ledger.bodies import (
     BODIES,
     ArmsUnmasked,
+    Backup,
+    Erratum,
+    FindingKept,
+    KeyChanged,
     LookFrozen,
+    PlanAmended,
     PlanLocked,
+    Recommendation,
+    RefusalRecorded,
     ResultsOpened,
     SnapshotReceived,
     Verification,
 )
-from app.ledger.entries import Entry, Head
+from app.ledger.entries import Entry, Head, read_body
 from app.ledger.history import State, advance, fold, follow
 from app.ledger.letters import LetterKey, Letters
 from app.ledger.trial import Act, Trial
+from app.record.canonical import digest
 from app.settings import Settings
 from tests.ledger import acts
 
@@ -160,6 +169,180 @@ def test_a_note_needs_no_answer(trial: Trial) -> None:
     with trial.act() as act:
         act.append(SnapshotReceived.of(noted, [replace(acts.DOUBT, severity="note")]))
     assert trial.state().look(1).snapshot.findings[0].severity == "note"
+
+
+# --- amendments ---------------------------------------------------------------------------------------
+
+
+def amend_as(act: Act, **changes: object) -> None:
+    state = act.state
+    body = PlanAmended(
+        version=state.plan.version + 1,
+        plan_digest=act.store(acts.PLAN + b"# changed"),
+        changes=(KeyChanged("design.planned_events", "400", "520"),),
+        reason="Fewer events than foreseen",
+        decided_by="Steering committee",
+        results_opened=state.results_opened,
+        unmasked=state.unmasked,
+        by="M. Berg",
+    )
+    act.append(replace(body, **changes))
+
+
+def test_a_look_is_held_under_the_plan_in_force_when_its_snapshot_came(trial: Trial) -> None:
+    acts.live(trial, until="freeze the first")
+    locked = trial.state().plan_digest
+    for do in (amend_as, lambda act: acts.freeze(act, 1), lambda act: acts.receive(act, 2)):
+        with trial.act() as act:
+            do(act)
+    state = trial.state()
+    assert [(look.plan.version, look.plan_digest) for look in state.looks] == [
+        (1, locked),
+        (2, digest(acts.PLAN + b"# changed")),
+    ]
+    assert state.plan == state.plans[1]
+    assert [version.version for version in state.plans] == [1, 2]
+    assert trial.plan_bytes() == acts.PLAN + b"# changed"
+
+
+def test_an_amendment_says_which_results_had_been_opened_before(trial: Trial) -> None:
+    acts.live(trial, until="write its report")
+    with trial.act() as act:
+        amend_as(act)
+    amended = trial.state().plan.amended
+    assert amended is not None
+    assert (amended.results_opened, amended.unmasked) == ((1,), False)
+
+
+def test_a_written_report_counts_as_results_opened(trial: Trial) -> None:
+    for do in (lambda act: acts.receive(act, 1), lambda act: acts.freeze(act, 1)):
+        with trial.act() as act:
+            do(act)
+    assert trial.state().results_opened == ()
+    with trial.act() as act:
+        acts.write_report(act, 1)
+    assert trial.state().results_opened == (1,)
+
+
+WRONG_AMENDMENTS: dict[str, Do] = {
+    "A plan version out of its turn. Found version 3. Accepted: version 2.": lambda act: amend_as(
+        act, version=3
+    ),
+    "An amendment that changes nothing. Give it the changed plan.": lambda act: amend_as(act, changes=()),
+    "An amendment that states otherwise what was known when it was made. Found no results opened, arms "
+    "unmasked. Accepted: results of look 1 opened, arms unmasked. Amend again.": lambda act: amend_as(
+        act, results_opened=()
+    ),
+    "An amendment that states otherwise what was known when it was made. Found results of look 1 opened, "
+    "arms masked. Accepted: results of look 1 opened, arms unmasked. Amend again.": lambda act: amend_as(
+        act, unmasked=False
+    ),
+}
+
+
+@pytest.mark.parametrize("sentence", WRONG_AMENDMENTS)
+def test_what_an_amendment_cannot_state(lived: Trial, sentence: str) -> None:
+    assert refusal(lived, WRONG_AMENDMENTS[sentence]) == sentence
+
+
+def test_the_same_plan_again_is_no_amendment(lived: Trial) -> None:
+    sentence = refusal(lived, lambda act: amend_as(act, plan_digest=act.state.plan_digest))
+    assert sentence == "An amendment that changes nothing. Give it the changed plan."
+
+
+# --- refusals, recommendations, errata, backups -------------------------------------------------------
+
+
+def test_a_refusal_keeps_names_digests_and_sentences_and_not_one_byte(trial: Trial) -> None:
+    before = trial._database.value("SELECT count(*) FROM content")
+    with trial.act() as act:
+        acts.record_refusal(act)
+    body = read_body(trial.entries()[-1])
+    assert isinstance(body, RefusalRecorded)
+    assert body.files[0].digest == digest(acts.extract(9))
+    assert body.findings[0].sentence == str(acts.DOUBT)
+    assert list(body.contents()) == []
+    assert trial._database.value("SELECT count(*) FROM content") == before
+    assert trial.state().next_number == 1
+
+
+def test_a_refusal_needs_a_finding_that_blocks(trial: Trial) -> None:
+    body = RefusalRecorded("planned", "2026-01-09", None, (), (FindingKept.of(acts.DOUBT),), "M. Berg")
+    assert refusal(trial, lambda act: act.append(body)) == (
+        "A refusal without a finding that blocks. Accepted: an extract that cannot be used. "
+        "Receive it instead."
+    )
+
+
+def test_a_recommendation_rests_on_a_frozen_look(trial: Trial) -> None:
+    acts.live(trial, until="freeze the first")
+    assert refusal(trial, lambda act: acts.recommend(act, 1)) == "Look 1 is not frozen. Freeze it first."
+
+
+def test_a_committee_may_recommend_again(lived_on: Trial) -> None:
+    with lived_on.act() as act:
+        act.append(Recommendation(2, "stop for benefit", "Reconsidered", "2026-01-21", "M. Berg"))
+    kinds = [entry.kind for entry in lived_on.entries()]
+    assert kinds.count("recommendation") == 2
+
+
+def test_a_recommendation_has_the_day_of_its_meeting(lived: Trial) -> None:
+    body = Recommendation(2, "continue", "No concern", "soon", "M. Berg")
+    assert refusal(lived, lambda act: act.append(body)) == "A time or date that is none. Found 'soon'."
+
+
+@pytest.mark.parametrize("number", [0, 10, -1])
+def test_an_erratum_names_an_entry(lived: Trial, number: int) -> None:
+    assert refusal(lived, lambda act: act.append(Erratum(number, "No", "M. Berg"))) == (
+        f"An erratum to an entry that does not exist. Found entry {number}. "
+        "Accepted: an entry from 1 to 9. Name the entry that is to be corrected by its number."
+    )
+
+
+def test_an_erratum_leaves_the_entry_as_it_was(lived: Trial) -> None:
+    before = lived.entries()
+    with lived.act() as act:
+        acts.correct(act)
+    assert lived.entries()[:-1] == before
+
+
+def test_a_backup_of_another_head_is_not_recorded(lived: Trial) -> None:
+    body = Backup("copy.trial", "0" * 64, lived.head(), 8, "M. Berg")
+    assert refusal(lived, lambda act: act.append(body)) == (
+        "The history grew while it was copied. Found entry 9. Accepted: entry 8 as the last. "
+        "Make the backup again."
+    )
+
+
+# --- the clock ----------------------------------------------------------------------------------------
+
+
+def test_a_clock_that_goes_back_is_a_doubt_and_stays_recorded(path: Path) -> None:
+    hour = [10]
+    settings = Settings(clock=lambda: datetime(2026, 1, 15, hour[0], tzinfo=UTC))
+    with acts.start(path, settings) as trial:
+        hour[0] = 8
+        with trial.act() as act:
+            acts.receive(act, 1)
+        (doubt,) = trial.take_clock_doubts()
+        assert str(doubt) == (
+            "The clock went back: entry 2 carries 2026-01-15T08:00:00Z, the one before it "
+            "2026-01-15T10:00:00Z. Check the clock of this machine; if a recorded time is wrong, "
+            "say so in an erratum."
+        )
+        assert trial.take_clock_doubts() == ()  # told once
+        with trial.act() as act:
+            acts.open_results(act, 1)
+        assert trial.take_clock_doubts() == ()
+        assert trial.check_chain() == ()  # a doubt, no damage
+        assert trial.state().clock_doubts == (doubt,)  # for ever
+
+
+def test_a_clock_that_stands_still_is_no_doubt(path: Path) -> None:
+    settings = Settings(clock=lambda: datetime(2026, 1, 15, 9, tzinfo=UTC))
+    with acts.start(path, settings) as trial:
+        acts.live(trial)
+        assert trial.state().clock_doubts == ()
 
 
 def test_every_kind_of_entry_has_its_rule() -> None:
