@@ -59,14 +59,15 @@ def extract(number: int) -> bytes:
 
 def snapshot(number: int, kind: str = "planned") -> Snapshot:
     files = (("adtte", extract(number)), ("adsl", b"USUBJID,REGION\n%d,North\n" % number))
+    cutoff = date(2026, 1, 1) + timedelta(days=number - 1)
     return Snapshot(
         number=number,
         files=tuple(
             ReceivedFile(f"{name}-{number}.csv", content, digest(content)) for name, content in files
         ),
         kind=kind,
-        cutoff=date(2026, 1, number),
-        extracted=None if number == 1 else date(2026, 1, number + 1),
+        cutoff=cutoff,
+        extracted=None if number == 1 else cutoff + timedelta(days=1),
         received_at="",
         by="M. Berg",
         acknowledgements=(Acknowledgement(DOUBT.id, "Adjudicated again"),),

@@ -12,16 +12,20 @@ import pytest
 from app.ledger import schema
 from app.ledger.trial import Trial
 from app.settings import Settings
-from tests.ledger import acts, killed
+from tests.ledger import acts, killed, killed_at_random
 
 ROOT = Path(__file__).resolve().parents[2]
 
 
 @pytest.fixture(scope="module")
 def deaths(tmp_path_factory: pytest.TempPathFactory) -> list[dict[str, object]]:
-    folder = tmp_path_factory.mktemp("killed")
-    command = [sys.executable, killed.__file__, str(folder)]
-    environment = {"PYTHONPATH": str(ROOT), "OPENBLAS_NUM_THREADS": "1"}  # one thread: the process forks
+    return told_by(killed.__file__, str(tmp_path_factory.mktemp("killed")))
+
+
+def told_by(script: str, *words: str) -> list[dict[str, object]]:
+    """What a process says, a JSON object a line; it has a single thread, since it forks."""
+    environment = {"PYTHONPATH": str(ROOT), "OPENBLAS_NUM_THREADS": "1"}
+    command = [sys.executable, script, *words]
     done = subprocess.run(command, capture_output=True, text=True, check=True, env=environment, timeout=300)
     return [json.loads(line) for line in done.stdout.splitlines()]
 
@@ -96,3 +100,19 @@ def test_after_a_kill_the_act_can_be_done_again(deaths: list[dict[str, object]],
             with Trial.open(Path(str(death["file"])), settings) as trial:
                 acts.live(trial, until="unmask")
                 assert trial.check_chain() == ()
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("seed", range(4))
+def test_of_fifty_random_kills_none_takes_an_acknowledged_act(tmp_path: Path, seed: int) -> None:
+    lives = told_by(killed_at_random.__file__, str(tmp_path / "q17.trial"), "50", str(seed))
+    assert len(lives) == 50
+    before: list[str] = []
+    n_said = 0
+    for life in lives:
+        said, there = list(life["said"]), list(life["there"])
+        assert life["problems"] == []
+        assert there[: len(before) + len(said)] == [*before, *said]  # every act told as done, in its order
+        assert len(there) <= len(before) + len(said) + 1  # and at most the one whose word was cut short
+        before, n_said = there, n_said + len(said)
+    assert n_said > 50
