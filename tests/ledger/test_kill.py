@@ -107,7 +107,7 @@ def test_after_a_kill_the_act_can_be_done_again(deaths: list[dict[str, object]],
 def test_of_fifty_random_kills_none_takes_an_acknowledged_act(tmp_path: Path, seed: int) -> None:
     lives = told_by(killed_at_random.__file__, str(tmp_path / "q17.trial"), "50", str(seed))
     assert len(lives) == 50
-    before: list[str] = []
+    before = list(lives[0]["there"])[:1]  # the plan being locked
     n_said = 0
     for life in lives:
         said, there = list(life["said"]), list(life["there"])
