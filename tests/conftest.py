@@ -1,10 +1,13 @@
-"""What every test shares: which tests run, one seed for all, and the browser."""
+"""What every test shares: which tests run, one seed for all, the browser and a small disk."""
 
 from __future__ import annotations
 
 import os
 import shutil
+import subprocess
 from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
 from typing import TYPE_CHECKING
 
 import hypothesis
@@ -31,6 +34,7 @@ CHROMIUM_FLAGS = [
     "--disable-sync",
 ]
 NO_CHROMIUM = f"no Chromium on this machine (looked for {', '.join(CHROMIUM)})"
+NO_MOUNT = "this user may not mount a small disk (root may)"
 
 
 def pytest_addoption(parser: pytest.Parser) -> None:
@@ -48,6 +52,11 @@ def browser_available() -> bool:
     return chromium_path() is not None or bool(os.environ.get("CI"))
 
 
+def mount_available() -> bool:
+    """Whether tests on a small disk run: in CI they always do, and fail where it cannot be mounted."""
+    return os.geteuid() == 0 or bool(os.environ.get("CI"))
+
+
 @pytest.hookimpl(tryfirst=True)
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
     """Choose by --quick and --bench; mark browser tests before -m is read."""
@@ -59,6 +68,8 @@ def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item
             item.add_marker(pytest.mark.browser)
             if not browser_available():
                 item.add_marker(pytest.mark.skip(reason=NO_CHROMIUM))
+        if "small_disk" in getattr(item, "fixturenames", ()) and not mount_available():
+            item.add_marker(pytest.mark.skip(reason=NO_MOUNT))
 
 
 def is_left_out(item: pytest.Item, config: pytest.Config) -> bool:
@@ -69,11 +80,46 @@ def is_left_out(item: pytest.Item, config: pytest.Config) -> bool:
 
 
 def pytest_terminal_summary(terminalreporter: pytest.TerminalReporter) -> None:
-    """Say aloud that browser tests did not run; nothing else may skip."""
-    skipped = terminalreporter.stats.get("skipped", [])
-    if skipped and not browser_available():
-        terminalreporter.section("BROWSER TESTS DID NOT RUN", sep="!", red=True)
-        terminalreporter.line(f"{len(skipped)} left out: {NO_CHROMIUM}. On Debian: apt install chromium")
+    """Say aloud which tests did not run, and what they need; nothing else may skip."""
+    reasons = [str(report.longrepr) for report in terminalreporter.stats.get("skipped", [])]
+    for heading, reason, remedy in (
+        ("BROWSER TESTS DID NOT RUN", NO_CHROMIUM, "On Debian: apt install chromium"),
+        ("TESTS ON A FULL AND A READ-ONLY DISK DID NOT RUN", NO_MOUNT, "Run them as root, as CI does"),
+    ):
+        n_left_out = sum(reason in said for said in reasons)
+        if n_left_out:
+            terminalreporter.section(heading, sep="!", red=True)
+            terminalreporter.line(f"{n_left_out} left out: {reason}. {remedy}")
+
+
+@dataclass(frozen=True)
+class SmallDisk:
+    """A file system of its own, of one megabyte."""
+
+    path: Path
+
+    def fill(self, but_bytes: int) -> None:
+        """Leave room for so many bytes only, in whole pages of 4096."""
+        self.empty()
+        free = os.statvfs(self.path).f_bavail * 4096
+        (self.path / "ballast").write_bytes(b"x" * max(0, free - but_bytes))
+
+    def empty(self) -> None:
+        (self.path / "ballast").unlink(missing_ok=True)
+
+    def make_read_only(self) -> None:
+        subprocess.run(["mount", "-o", "remount,ro", str(self.path)], check=True)
+
+
+@pytest.fixture
+def small_disk(tmp_path: Path) -> Iterator[SmallDisk]:
+    path = tmp_path / "disk"
+    path.mkdir()
+    subprocess.run(["mount", "-t", "tmpfs", "-o", "size=1m,mode=700", "tmpfs", str(path)], check=True)
+    try:
+        yield SmallDisk(path)
+    finally:
+        subprocess.run(["umount", "--lazy", str(path)], check=True)
 
 
 @pytest.fixture(scope="session")
