@@ -148,16 +148,18 @@ class Trial:
     def act(self) -> Iterator[Act]:
         """One act, one transaction: what is stored and appended in the block enters whole, or not at all."""
         self._refuse_writing()
-        with self._database.transaction():
-            act = Act(self._database, self._caught_up(), self._now())
-            n_doubts = len(act.state.clock_doubts)
-            self._acting = act
-            try:
-                yield act
-                act.refuse_loose_ends()
-            finally:
-                self._acting = None
-        self._clock_doubts += act.state.clock_doubts[n_doubts:]
+        with self._database.lock:
+            with self._database.transaction():
+                before = self._caught_up()
+                act = Act(self._database, before, self._now())
+                self._acting = act
+                try:
+                    yield act
+                    act.refuse_loose_ends()
+                finally:
+                    self._acting = None
+            self._state = act.state  # what was told as done must be there at the next act
+            self._clock_doubts += act.state.clock_doubts[len(before.clock_doubts) :]
 
     def take_clock_doubts(self) -> tuple[ClockWentBack, ...]:
         """Doubts about the time of acts done since this was last asked."""

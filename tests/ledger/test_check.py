@@ -231,6 +231,43 @@ def test_a_history_exchanged_under_an_open_trial_is_noticed_at_the_next_act(
         trial.state()
 
 
+def test_a_copy_put_back_in_place_is_noticed_though_it_was_changed_as_often(
+    trial: Trial, settings: Settings, tmp_path: Path
+) -> None:
+    other = tmp_path / "other.trial"
+    other.write_bytes(trial.path.read_bytes())
+    with trial.act() as act:
+        acts.receive(act, 1)
+    with Trial.open(other, settings) as forked, forked.act() as act:
+        acts.correct(act)
+    there, here = other.read_bytes(), trial.path.read_bytes()
+    assert there[24:28] == here[24:28]  # SQLite's own count of changes cannot tell them apart
+    with trial.path.open("r+b") as file:
+        file.write(there)
+    with pytest.raises(LedgerChanged, match=r"A history that is not as it was written .* entry 2 gone"):
+        trial.state()
+    with pytest.raises(LedgerChanged, match="entry 2 gone"), trial.act():
+        pass
+    assert trial.path.read_bytes()[: len(there)] == there
+
+
+def test_before_a_freeze_the_chain_is_walked_again(lived: Trial) -> None:
+    lived.check_quickly()
+    with lived.act():
+        lived.check_quickly()  # within an act too
+    with shell_without_triggers(lived.path) as shell:
+        shell.execute("UPDATE entry SET at = '2026-02-01T00:00:00Z' WHERE id = 3")
+    with pytest.raises(LedgerChanged) as told:
+        lived.check_quickly()
+    assert str(told.value) == (
+        f"A damaged trial file is not written to in {lived.path}. "
+        "Found entry 3: changed: its digest is of something else. "
+        "Nothing of this act was stored; keep this file as it is and go on from a verified backup."
+    )
+    with pytest.raises(LedgerChanged, match="A damaged trial file"), lived.act():
+        pass
+
+
 def test_columns_of_another_type_are_found(lived: Trial, settings: Settings) -> None:
     with shell_without_triggers(lived.path) as shell:
         shell.execute("UPDATE entry SET body = x'ff' WHERE id = 2")

@@ -5,6 +5,8 @@ from __future__ import annotations
 import os
 import shutil
 import sqlite3
+import subprocess
+import sys
 from collections.abc import Callable
 from pathlib import Path
 
@@ -16,6 +18,8 @@ from app.ledger.faults import BY_RESULT, told
 from app.ledger.trial import Trial
 from app.settings import Settings
 from tests.ledger import acts
+
+ROOT = Path(__file__).resolve().parents[2]
 
 
 def another_database(path: Path) -> None:
@@ -81,6 +85,30 @@ def test_another_program_in_the_middle_of_an_act_is_told(trial: Trial, settings:
         "Nothing of this act was stored; let the other finish or end it, then repeat."
     )
     assert len(trial.state().looks) == 1
+
+
+def test_two_processes_take_turns_and_neither_loses_an_act(trial: Trial) -> None:
+    with trial.act() as act:
+        acts.receive(act, 1)
+    others = [
+        subprocess.Popen([sys.executable, "-c", OPENS_RESULTS, str(trial.path), name], cwd=ROOT)
+        for name in "ab"
+    ]
+    assert [other.wait(timeout=60) for other in others] == [0, 0]
+    assert len(trial.state().openings) == 40
+    assert trial.check_chain() == ()
+
+
+OPENS_RESULTS = """
+import sys
+from pathlib import Path
+from app.ledger.trial import Trial
+from tests.ledger import acts
+with Trial.open(Path(sys.argv[1]), acts.ticking_settings(), wait_seconds=30) as trial:
+    for number in range(20):
+        with trial.act() as act:
+            acts.open_results(act, 1, session=f"{sys.argv[2]} {number}")
+"""
 
 
 def test_an_act_waits_for_a_reader_and_fails_whole(trial: Trial, settings: Settings) -> None:
