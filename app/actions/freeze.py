@@ -42,7 +42,8 @@ def freeze(desk: Desk, *, by: str) -> FrozenLook:
 
 
 def freeze_within(desk: Desk, act: Act, *, by: str) -> FrozenLook:
-    """The freeze as part of a larger act."""
+    """The freeze as part of a larger act, after a quick verification of all that came before."""
+    desk.trial.check_quickly()
     look = act.state.open_look
     if look is None:
         raise LedgerError("No look is open", remedy="receive a snapshot first: it opens the next look")

@@ -89,26 +89,28 @@ def surroundings(
     desk: Desk, state: State, number: int, run_on: date, *, freezing: Freezing | None = None
 ) -> Surroundings:
     """The looks on file around this one. Pooled numbers only, read without the arm column."""
-    plan = plan_under(desk.trial, state.look(number).plan_digest, desk.settings.limits)
+    held = state.look(number).plan
+    plan = plan_under(desk.trial, held.plan_digest, desk.settings.limits)
     on_file = tuple(_on_file(desk, plan, state, look, freezing) for look in state.looks)
     return Surroundings(
         looks=on_file,
         planned=plan.design.looks,
         planned_events=plan.design.planned_events,
-        plan_version=1,
+        plan_version=held.version,
         run_on=run_on,
     )
 
 
 def _on_file(desk: Desk, plan: Plan, state: State, look: Look, freezing: Freezing | None) -> LookOnFile:
-    _, fraction, events = pooled_counts(desk, look.number)
+    events = pooled_counts(desk, look.number)[2]
     kinds = [earlier.snapshot.kind for earlier in state.looks[: look.number]]
     frozen = look.frozen is not None or (freezing is not None and look is state.open_look)
     return LookOnFile(
         number=look.number,
         kind=look.snapshot.kind,
-        fraction=fraction,
+        fraction=events / plan.design.planned_events,  # on the scale of the look shown, whatever its version
         events=events,
+        plan_version=look.plan.version,
         state="frozen" if frozen else "open",
         planned=planned_fraction(plan.design.looks, kinds),
     )

@@ -12,8 +12,11 @@ from pathlib import Path
 from app.actions.desk import Desk
 from app.errors import SetupError
 from app.ledger.bodies import ReportWritten
-from app.record.text import record_bytes
-from app.verification.check import record_in_report
+from app.ledger.entries import history_lines
+from app.verification import third_party
+from app.verification.check import record_text_in_report
+
+VERIFIER = "verify_report.py"
 
 
 @dataclass(frozen=True)
@@ -22,33 +25,42 @@ class ReportFiles:
 
     html: bytes
     record: bytes
+    history: bytes
     environment: bytes
     stem: str
+
+    @property
+    def by_name(self) -> dict[str, bytes]:
+        """Every file of the folder by its name, with the program by which anyone can check them."""
+        return {
+            f"{self.stem}.html": self.html,
+            f"{self.stem}.record.json": self.record,
+            f"{self.stem}.history.jsonl": self.history,
+            f"{self.stem}.environment.json": self.environment,
+            VERIFIER: Path(third_party.__file__).read_bytes(),
+        }
 
 
 def report(desk: Desk, look: int) -> ReportFiles:
     """The frozen bytes of a look; LedgerError while it is not frozen."""
     state = desk.trial.state()
-    frozen = state.frozen_look(look).body
+    freeze = state.frozen_look(look)
+    frozen = freeze.body
     html = desk.trial.content(frozen.report_digest)
     environment = json.dumps(frozen.environment, indent=1, sort_keys=True) + "\n"
     name = re.sub(r"[^A-Za-z0-9]+", "-", state.name).strip("-") or "trial"
     return ReportFiles(
         html=html,
-        record=record_bytes(record_in_report(html)),
+        record=record_text_in_report(html),
+        history=history_lines(entry for entry in desk.trial.entries() if entry.id <= freeze.head.id),
         environment=environment.encode("utf-8"),
         stem=f"{name}-look-{look}-closed-{frozen.disclosure}",
     )
 
 
 def write_report(desk: Desk, look: int, folder: Path) -> tuple[Path, ...]:
-    """Write report, record and environment into a folder, each whole or not at all, and record that."""
-    files = report(desk, look)
-    wanted = {
-        folder / f"{files.stem}.html": files.html,
-        folder / f"{files.stem}.record.json": files.record,
-        folder / f"{files.stem}.environment.json": files.environment,
-    }
+    """Write the files of a frozen look into a folder, each whole or not at all, and record that."""
+    wanted = {folder / name: content for name, content in report(desk, look).by_name.items()}
     for path, content in wanted.items():
         _write_whole(path, content)
     if desk.may_write:

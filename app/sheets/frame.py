@@ -11,7 +11,7 @@ from app.model.boundary import Crossed
 from app.model.extract import LookKind
 from app.sequential.design import events_by
 from app.sheets.blocks import DateMark, PageFrame, Spine, SpineLook
-from app.sheets.words import day_text
+from app.sheets.words import day_text, listed
 from app.views.closed import ClosedView
 from app.views.open import OpenView
 
@@ -20,7 +20,10 @@ LookState = Literal["frozen", "open"]
 
 @dataclass(frozen=True)
 class LookOnFile:
-    """One received look as both sides may know it; `planned` is the plan's fraction it used up."""
+    """One received look as both sides may know it; `planned` is the plan's fraction it used up.
+
+    `fraction` is of the events planned by the version of the look shown: the spine has one scale.
+    """
 
     number: int
     kind: LookKind
@@ -28,6 +31,7 @@ class LookOnFile:
     events: int
     state: LookState
     planned: float | None
+    plan_version: int = 1
 
 
 @dataclass(frozen=True)
@@ -151,4 +155,17 @@ def three_dates(cutoff: date | None, extracted: date | None, run_on: date) -> tu
 
 
 def _colophon(around: Surroundings, number: int, kind: LookKind) -> tuple[str, ...]:
-    return (f"Look {number}, {kind}, {around.state_of(number)}", f"Plan version {around.plan_version}")
+    return (f"Look {number}, {kind}, {around.state_of(number)}", versions_text(around))
+
+
+def versions_text(around: Surroundings) -> str:
+    """ "Plan version 2 (looks 1 and 2: version 1)": under which version the looks were held."""
+    others: dict[int, list[str]] = {}
+    for look in around.looks:
+        if look.plan_version != around.plan_version:
+            others.setdefault(look.plan_version, []).append(str(look.number))
+    held = [
+        f"look{'s' if len(looks) > 1 else ''} {listed(looks)}: version {version}"
+        for version, looks in sorted(others.items())
+    ]
+    return f"Plan version {around.plan_version}" + (f" ({'; '.join(held)})" if held else "")

@@ -8,9 +8,14 @@ from datetime import date
 
 from app.ledger.bodies import (
     ArmsUnmasked,
+    Backup,
     Body,
+    Erratum,
     LookFrozen,
+    PlanAmended,
     PlanLocked,
+    Recommendation,
+    RefusalRecorded,
     ReportWritten,
     ResultsOpened,
     SnapshotReceived,
@@ -18,8 +23,9 @@ from app.ledger.bodies import (
 )
 from app.ledger.entries import Entry
 from app.ledger.history import Look, State
-from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Table
+from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Span, Table
 from app.sheets.methods import methods
+from app.sheets.plan_versions import plan_tables
 from app.sheets.words import NO_BREAK, count, day_text, line, listed, moment
 
 QUESTION = "What was shown, what was advised?"
@@ -54,7 +60,7 @@ def record_sheet(history: History, number: int) -> Sheet:
         question=QUESTION,
         answer=(state_sentence(history, number),),
         tables=(_look_table(look, number, history.freezing), _file_table(history.state)),
-        wide_tables=(_history_table(history),),
+        wide_tables=(*_advice_tables(history), *plan_tables(history.state), _history_table(history)),
         notes=(line(NOT_A_SIGNATURE),),
         methods=methods("chain"),
         acts=() if history.freezing else _acts(history.state, look, number),
@@ -113,7 +119,7 @@ def _frozen_rows(at: str, by: str, disclosure: str, head_before: str) -> list[tu
 def _file_table(state: State) -> Table:
     rows = [
         ("Plan locked", f"{moment(state.locked_at)}, by {state.locked_by}"),
-        ("Plan, SHA-256", grouped(state.plan_digest)),
+        (f"Plan version {state.plan.version}, SHA-256", grouped(state.plan_digest)),
         ("Entries", str(state.head.id)),
         ("Head", grouped(state.head.digest)),
     ]
@@ -133,11 +139,33 @@ def grouped(digest: str) -> str:
     return f"{digest[:4]} {digest[4:8]} … {digest[-4:]}"
 
 
+def _advice_tables(history: History) -> tuple[Table, ...]:
+    """Every recommendation of the committee; nothing while there is none."""
+    rows = tuple(
+        Row(
+            line(f"Look{NO_BREAK}{body.look}"),
+            tuple(Cell(line(text)) for text in (body.advice, body.held_on, body.reason, body.by)),
+        )
+        for _, body in history.entries
+        if isinstance(body, Recommendation)
+    )
+    columns = tuple(
+        Column(line(head), "words") for head in ("recommended", "committee met", "in words", "recorded by")
+    )
+    return (Table(line("What the committee recommended"), columns, rows, line("After")),) if rows else ()
+
+
 def _history_table(history: History) -> Table:
+    errata = _errata(history)
+    doubts = {doubt.entry: doubt.before for doubt in history.state.clock_doubts}
     rows = tuple(
         Row(
             (count(entry.id),),
-            (Cell(line(moment(entry.at))), Cell(line(said(body))), Cell(line(getattr(body, "by", "")))),
+            (
+                Cell(line(moment(entry.at)), _clock_doubt(doubts.get(entry.id))),
+                Cell(line(said(body)), errata.get(entry.id, ())),
+                Cell(line(getattr(body, "by", ""))),
+            ),
         )
         for entry, body in history.entries
     )
@@ -147,6 +175,19 @@ def _history_table(history: History) -> Table:
         Column(line("recorded by"), "words"),
     )
     return Table(line("History"), columns, rows, line("Entry"))
+
+
+def _errata(history: History) -> dict[int, Line]:
+    """What stands under an entry that was corrected later."""
+    found: dict[int, list[str]] = {}
+    for entry, body in history.entries:
+        if isinstance(body, Erratum):
+            found.setdefault(body.entry, []).append(f"Entry {entry.id} corrects: {body.correction}")
+    return {number: line(" ".join(words)) for number, words in found.items()}
+
+
+def _clock_doubt(before: str | None) -> Line:
+    return (Span(f"Doubt: the entry before has {moment(before)}", "doubt"),) if before else ()
 
 
 def said(body: Body) -> str:
@@ -167,9 +208,26 @@ def said(body: Body) -> str:
             return f"Look {body.look} frozen, {body.disclosure}"
         case ReportWritten():
             return f"Report of look {body.look} written"
+        case PlanAmended():
+            keys = ", ".join(change.key for change in body.changes)
+            return f"Plan amended to version {body.version}: {keys}"
+        case RefusalRecorded():
+            return _refusal_said(body)
+        case Recommendation():
+            return f"Recommended after look {body.look}: {body.advice}"
+        case Erratum():
+            return f"Entry {body.entry} corrected: {body.correction}"
+        case Backup():
+            return f"Backed up to {body.name}, SHA-256 {grouped(body.file_digest)}"
         case Verification():
             return f"Verified up to entry {body.entries}"
     return body.entry_kind
+
+
+def _refusal_said(body: RefusalRecorded) -> str:
+    files = listed([f"{file.name} (SHA-256 {grouped(file.digest)})" for file in body.files])
+    blocking = " ".join(finding.sentence for finding in body.findings if finding.severity == "block")
+    return f"Extract refused, cutoff {body.cutoff}: {files}. {blocking}"
 
 
 def _acts(state: State, look: Look, number: int) -> tuple[ActLink, ...]:

@@ -4,17 +4,20 @@ from __future__ import annotations
 
 import html
 import re
-from collections.abc import Iterator
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from itertools import islice
 from typing import Any
 
 from app.errors import AppError
+from app.intake.amendment import plan_changes
+from app.ledger.entries import Entry
+from app.ledger.history import PlanVersion
 from app.ledger.trial import Trial
 from app.record.canonical import digest, parse_strict
 from app.record.text import record_bytes
 from app.settings import Limits
-from app.verification.assembly import closed_view, compute, frozen_record
+from app.verification.assembly import closed_view, compute, frozen_record, plan_under
 from app.verification.comparison import differences
 from app.views.closed import full_view
 from app.views.record import looks_record
@@ -41,29 +44,83 @@ class CheckReport:
         return all(line.ok for line in self.lines)
 
 
-def check_trial(trial: Trial, limits: Limits) -> Iterator[CheckLine]:
-    """Everything that the trial file alone can prove, a line at a time."""
-    problems = dict.fromkeys((*trial.damage, *trial.check_chain()))
+@dataclass(frozen=True)
+class Part:
+    """One part of a verification: what it goes through, and the lines that come of it."""
+
+    name: str
+    check: Callable[[], Iterable[CheckLine]]
+
+
+def parts_of_trial(trial: Trial, limits: Limits, heads: Sequence[str] = ()) -> tuple[Part, ...]:
+    """Everything that the trial file can prove, and whether it holds the `heads` that were kept elsewhere."""
+    chain = Part("the chain and every stored byte", lambda: _chain_lines(trial, heads))
+    try:
+        state = trial.state()
+    except AppError as fault:
+        unreadable = (CheckLine(False, str(fault)),)
+        return chain, Part("what the history adds up to", lambda: unreadable)
+    looks = [_look_part(trial, look.number, limits) for look in state.frozen_looks]
+    plans = [_plan_part(trial, version, limits) for version in state.plans if version.amended]
+    return chain, *plans, *looks
+
+
+def _look_part(trial: Trial, number: int, limits: Limits) -> Part:
+    return Part(
+        f"look {number}, computed again", lambda: _told(f"look {number}", _recomputed, trial, number, limits)
+    )
+
+
+def _plan_part(trial: Trial, version: PlanVersion, limits: Limits) -> Part:
+    name = f"plan version {version.version}"
+    return Part(f"{name}, what it changed", lambda: _told(name, _compared_plans, trial, version, limits))
+
+
+def _told(name: str, check: Callable[..., Iterator[CheckLine]], *given: Any) -> Iterator[CheckLine]:
+    """The lines of a check, and a failed one where it could not go on."""
+    try:
+        yield from check(*given)
+    except AppError as fault:
+        yield CheckLine(False, f"{name[:1].upper()}{name[1:]} cannot be computed again: {fault}")
+
+
+def _chain_lines(trial: Trial, heads: Sequence[str]) -> Iterator[CheckLine]:
+    problems = dict.fromkeys((*trial.damage, *trial.check_chain(heads)))
     yield from (CheckLine(False, str(problem)) for problem in problems)
-    if not problems:
-        entries = trial.entries()
-        yield CheckLine(
-            True, f"The chain of {len(entries)} entries is whole, and every stored byte is as received."
-        )
-    try:
-        frozen = [look.number for look in trial.state().frozen_looks]
-    except AppError as unreadable:
-        yield CheckLine(False, str(unreadable))
+    if problems:
         return
-    for number in frozen:
-        yield from _check_look(trial, number, limits)
+    entries = trial.entries()
+    yield CheckLine(
+        True, f"The chain of {len(entries)} entries is whole, and every stored byte is as received."
+    )
+    for entry in entries:
+        if entry.digest in heads:
+            yield CheckLine(True, f"{_witnessed(entry)}; {len(entries) - entry.id} entries follow it.")
+    yield from (CheckLine(True, f"Doubt: {doubt}") for doubt in trial.state().clock_doubts)
 
 
-def _check_look(trial: Trial, number: int, limits: Limits) -> Iterator[CheckLine]:
-    try:
-        yield from _recomputed(trial, number, limits)
-    except AppError as unreadable:
-        yield CheckLine(False, f"Look {number} cannot be computed again: {unreadable}")
+def _witnessed(entry: Entry) -> str:
+    return (
+        f"The head {entry.digest} is that of entry {entry.id}, written {entry.at}: "
+        "the history up to there is as it was when the head was written down"
+    )
+
+
+def _compared_plans(trial: Trial, version: PlanVersion, limits: Limits) -> Iterator[CheckLine]:
+    """What an amendment says it changed, against its plan and the one before."""
+    plans = trial.state().plans
+    before, after = (
+        plan_under(trial, each.plan_digest, limits) for each in (plans[version.version - 2], version)
+    )
+    changes = [(each.key, each.before, each.after) for each in plan_changes(before, after)]
+    said = (
+        [(each.key, each.before, each.after) for each in version.amended.changes] if version.amended else []
+    )
+    name = f"Plan version {version.version}"
+    if changes == said:
+        yield CheckLine(True, f"{name} changes what its entry says: {', '.join(key for key, _, _ in said)}.")
+    else:
+        yield CheckLine(False, f"{name} changes other keys than its entry says: {changes} against {said}.")
 
 
 def _recomputed(trial: Trial, number: int, limits: Limits) -> Iterator[CheckLine]:
