@@ -20,8 +20,11 @@ class BackupMade:
 
 
 def backup(desk: Desk, to: Path, *, by: str) -> BackupMade:
-    """Back up to the file `to`, or into the folder `to` under a name that carries the time."""
-    name = recorded_name(by)
+    """Back up to the file `to`, or into the folder `to` under a name that carries the time.
+
+    A program that runs by the clock may do it, so nobody needs to be named.
+    """
+    name = recorded_name(by) if by else ""
     path = to / f"{desk.path.stem}-{desk.settings.clock():%Y%m%dT%H%M%SZ}.trial" if to.is_dir() else to
     made = desk.trial.back_up(path, by=name)
     return BackupMade(path, made.file_digest, made.head, recorded=desk.may_write)

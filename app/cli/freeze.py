@@ -5,8 +5,8 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
-from app.actions.desk import Desk
 from app.actions.freeze import freeze
+from app.cli.at_desk import at_desk
 from app.cli.parsing import Command
 from app.settings import Settings
 
@@ -19,7 +19,7 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    with Desk.open(settings, options.trial) as desk:
+    with at_desk(settings, options.trial) as desk:
         frozen = freeze(desk, by=options.by)
     print(f"Look {frozen.look} is frozen; it cannot change any more.")
     print(f"Report  sha256 {frozen.report_digest}")

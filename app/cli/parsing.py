@@ -140,6 +140,17 @@ def port(text: str) -> int:
     )
 
 
+def entry_number(text: str) -> int:
+    if text.isdecimal() and 0 < len(text) <= 9 and int(text) > 0:
+        return int(text)
+    raise ValueRejected(
+        "there is no such entry",
+        where="ENTRY",
+        found=repr(text),
+        accepted="a number as the history on the Record sheet shows it, such as 7",
+    )
+
+
 def look_number(text: str) -> int:
     if text.isdecimal() and 0 < len(text) <= 4 and int(text) > 0:
         return int(text)

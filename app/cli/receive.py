@@ -6,16 +6,17 @@ import sys
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
-from app.actions.desk import Desk
 from app.actions.receive import Incoming, Understanding, receive, understand
 from app.cli import said
+from app.cli.at_desk import at_desk
 from app.cli.files import uploaded
 from app.cli.parsing import Command, acknowledgement, day_of, kind
 from app.model.extract import Changes, ReadingOfFile
 from app.settings import Settings
 
 
-def arguments(parser: ArgumentParser) -> None:
+def extract_arguments(parser: ArgumentParser) -> None:
+    """The trial file, the files of an extract, and what is declared about it."""
     parser.add_argument("trial", metavar="TRIAL", type=Path, help="the trial file")
     parser.add_argument("files", metavar="FILE", type=Path, nargs="+", help="the files of the extract")
     parser.add_argument(
@@ -34,6 +35,10 @@ def arguments(parser: ArgumentParser) -> None:
         metavar="KIND",
         help="planned (the default), unplanned, safety or final; it cannot be changed later",
     )
+
+
+def arguments(parser: ArgumentParser) -> None:
+    extract_arguments(parser)
     parser.add_argument(
         "--acknowledge",
         type=acknowledgement,
@@ -50,7 +55,7 @@ def arguments(parser: ArgumentParser) -> None:
 def run(options: Namespace, settings: Settings) -> int:
     files = tuple(map(uploaded, options.files))
     incoming = Incoming(files, options.cutoff, options.extracted, options.kind)
-    with Desk.open(settings, options.trial) as desk:
+    with at_desk(settings, options.trial) as desk:
         tell(understand(desk, incoming))
         look = receive(desk, incoming, acknowledgements=dict(options.acknowledge), by=options.by)
     print(f"Received as look {look}. It is open until it is frozen.")

@@ -5,8 +5,8 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
-from app.actions.desk import Desk
 from app.actions.report import write_report
+from app.cli.at_desk import at_desk
 from app.cli.parsing import Command, look_number
 from app.settings import Settings
 
@@ -20,7 +20,7 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    with Desk.open(settings, options.trial) as desk:
+    with at_desk(settings, options.trial) as desk:
         for path in write_report(desk, options.look, options.to):
             print(path)
     return 0

@@ -5,8 +5,8 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
-from app.actions.desk import Desk
 from app.actions.unmask import unmask
+from app.cli.at_desk import at_desk
 from app.cli.parsing import Command
 from app.settings import Settings
 
@@ -22,7 +22,7 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    with Desk.open(settings, options.trial) as desk:
+    with at_desk(settings, options.trial) as desk:
         unmask(desk, reason=options.reason, by=options.by)
     print("The arms are unmasked from now on; reports frozen before stay as they are.")
     return 0

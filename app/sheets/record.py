@@ -119,11 +119,17 @@ def _frozen_rows(at: str, by: str, disclosure: str, head_before: str) -> list[tu
 def _file_table(state: State) -> Table:
     rows = [
         ("Plan locked", f"{moment(state.locked_at)}, by {state.locked_by}"),
-        (f"Plan version {state.plan.version}, SHA-256", grouped(state.plan_digest)),
+        *_amended_rows(state),
+        ("Plan, SHA-256", grouped(state.plan_digest)),
         ("Entries", str(state.head.id)),
         ("Head", grouped(state.head.digest)),
     ]
     return _words_table("Trial file", rows)
+
+
+def _amended_rows(state: State) -> list[tuple[str, str]]:
+    versions = [version for version in state.plans if version.amended]
+    return [(f"Amended to version {each.version}", f"{moment(each.at)}, by {each.by}") for each in versions]
 
 
 def _words_table(caption: str, rows: Sequence[tuple[str, str]]) -> Table:

@@ -1,0 +1,47 @@
+"""What a person gives: the demo's plan with keys changed, and its extracts."""
+
+from __future__ import annotations
+
+from datetime import date
+
+from app.actions.desk import Desk, UploadedFile
+from app.actions.freeze import freeze
+from app.actions.receive import Incoming, receive
+from app.assets import asset
+
+PLAN = asset("demo_data", "plan.toml").read_bytes()
+BY = "Jane Roe"
+FOURTH = Incoming(
+    (UploadedFile("extract-4.csv", asset("demo_data", "extract-4.csv").read_bytes()),),
+    date(2026, 10, 9),
+    date(2026, 10, 23),
+    "planned",
+)
+REASONS = {
+    "time-zero": "Randomised on the day of the cutoff",
+    "time-disagrees-with-dates": "The data centre confirmed the dates",
+    "study-differs": "Digits exchanged in the study's name",
+}
+
+
+def plan_with(*changes: tuple[bytes, bytes]) -> bytes:
+    """The demo's plan with each text replaced, once."""
+    plan = PLAN
+    for before, after in changes:
+        assert plan.count(before) == 1
+        plan = plan.replace(before, after)
+    return plan
+
+
+def revised_plan() -> bytes:
+    """More events planned, another spending function, other looks."""
+    return plan_with(
+        (b"planned_events = 538", b"planned_events = 600"),
+        (b'spending = "O\'Brien-Fleming-type"', b'spending = "Pocock-type"'),
+        (b"looks = [0.25, 0.5, 0.75, 1.0]", b"looks = [0.3, 0.55, 0.8, 1.0]"),
+    )
+
+
+def freeze_and_receive_the_fourth(desk: Desk) -> int:
+    freeze(desk, by=BY)
+    return receive(desk, FOURTH, acknowledgements=REASONS, by=BY)

@@ -1,0 +1,106 @@
+"""What a new version of a plan changes, key by key, and what it cannot change."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import pytest
+
+from app.intake.amendment import FIXED, PlanChange, plan_changes, refuse_fixed, written
+from app.intake.plan import PlanRefused, read_plan
+from app.intake.plan_keys import TABLES
+from app.model.plan import Efficacy, Futility, Harm, HeldLook, Hypothesis, Plan
+from app.settings import Limits
+from tests.actions.given import PLAN, plan_with, revised_plan
+
+
+def plan(content: bytes = PLAN) -> Plan:
+    return read_plan(content, name="plan.toml", limits=Limits())
+
+
+def test_each_changed_key_is_told_as_it_was_and_as_it_is() -> None:
+    assert plan_changes(plan(), plan(revised_plan())) == (
+        PlanChange("design.planned_events", "538", "600"),
+        PlanChange("design.looks", "[0.25, 0.5, 0.75, 1.0]", "[0.3, 0.55, 0.8, 1.0]"),
+        PlanChange("efficacy.spending", '"O\'Brien-Fleming-type"', '"Pocock-type"'),
+    )
+
+
+def test_a_plan_written_otherwise_with_the_same_meaning_changes_nothing() -> None:
+    assert plan_changes(plan(), plan(PLAN + b"\n# a remark\n")) == ()
+    assert plan_changes(plan(), plan(plan_with((b"alpha = 0.025", b"alpha = 2.5e-2")))) == ()
+    assert plan_changes(plan(), plan(PLAN + b"\n[analysis]\nconfidence = 0.95\n")) == ()  # the default
+
+
+def test_a_key_that_was_left_out_was_not_set() -> None:
+    later = replace(plan(), columns=replace(plan().columns, site="SITEID"))
+    assert plan_changes(plan(), later) == (PlanChange("columns.site", "not set", '"SITEID"'),)
+    assert plan_changes(later, plan()) == (PlanChange("columns.site", '"SITEID"', "not set"),)
+
+
+def test_whole_tables_come_and_go_key_by_key() -> None:
+    later = replace(
+        plan(), futility=Futility(spending="power", exponent=2.0), harm=Harm("Pocock-type", 0.05, "DEATH")
+    )
+    assert plan_changes(plan(), later) == (
+        PlanChange("futility.spending", "not set", '"power"'),
+        PlanChange("futility.exponent", "not set", "2.0"),
+        PlanChange("futility.binding", "not set", "false"),
+        PlanChange("harm.spending", "not set", '"Pocock-type"'),
+        PlanChange("harm.alpha", "not set", "0.05"),
+        PlanChange("harm.parameter", "not set", '"DEATH"'),
+    )
+
+
+def test_repeated_tables_are_numbered() -> None:
+    death = Hypothesis("Death", "DEATH", "Death", "bad", 0.025, 300, Efficacy("Pocock-type"), after="primary")
+    keys = [change.key for change in plan_changes(plan(), replace(plan(), hypotheses=(death,)))]
+    assert keys[0] == "hypothesis[1].name"
+    assert "hypothesis[1].efficacy.spending" in keys
+
+
+def test_every_key_of_a_plan_has_the_name_that_the_plan_file_gives_it() -> None:
+    held = HeldLook(1, 100, 1.0, 3.0, 0.001, "Charter")
+    whole = replace(plan(), futility=Futility("power"), harm=Harm("Pocock-type", 0.05, "DEATH"), held=(held,))
+    bare = replace(plan(), held=())
+    for change in (*plan_changes(bare, whole), *plan_changes(plan(), plan(revised_plan()))):
+        table, _, key = change.key.replace("[1]", "").partition(".")
+        assert key in TABLES[table].known
+
+
+@pytest.mark.parametrize(
+    ("change", "key"),
+    [
+        ((b'name = "Q17"', b'name = "Q18"'), "trial.name"),
+        ((b'control = "PLACEBO"', b'control = "SHAM"'), "arms.control"),
+        ((b'experimental = "TABLET"', b'experimental = "DROPS"'), "arms.experimental"),
+        ((b"masked = true", b"masked = false"), "arms.masked"),
+        ((b'parameter = "DEATHHF"', b'parameter = "DEATH"'), "endpoint.parameter"),
+        ((b"sides = 1", b"sides = 2"), "design.sides"),
+    ],
+)
+def test_what_held_looks_rest_on_is_not_amended(change: tuple[bytes, bytes], key: str) -> None:
+    changes = plan_changes(plan(), plan(plan_with(change)))
+    with pytest.raises(PlanRefused) as refused:
+        refuse_fixed(changes, "plan-2.toml")
+    (told,) = str(refused.value).splitlines()
+    assert told.startswith(f"{key[0].upper()}{key[1:]} cannot be amended in plan-2.toml. Found ")
+    assert ", as it was locked. " in told
+    assert FIXED[key].rstrip(".")[1:] in told
+
+
+def test_looks_held_before_the_file_existed_are_not_amended() -> None:
+    later = replace(plan(), held=(HeldLook(1, 100, 1.0, 3.0, 0.001, "Charter"),))
+    with pytest.raises(PlanRefused, match="cannot be amended"):
+        refuse_fixed(plan_changes(plan(), later), "plan-2.toml")
+
+
+def test_everything_that_is_wrong_is_told_at_once() -> None:
+    both = plan_with((b'name = "Q17"', b'name = "Q18"'), (b"sides = 1", b"sides = 2"))
+    with pytest.raises(PlanRefused) as refused:
+        refuse_fixed(plan_changes(plan(), plan(both)), "plan-2.toml")
+    assert len(str(refused.value).splitlines()) == 2
+
+
+def test_values_are_written_as_a_plan_file_would_have_them() -> None:
+    assert written((0.5, True, "a", (1, 2))) == '[0.5, true, "a", [1, 2]]'
