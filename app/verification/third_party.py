@@ -50,7 +50,7 @@ def record_text(report: bytes) -> bytes:
 
 
 def read_history(content: bytes) -> tuple[list[dict[str, Any]], list[str]]:
-    """The entries of an exported history and the digests of its lines; ValueError where it is no chain."""
+    """The entries of an exported history and the digests of its lines; ValueError where it is broken."""
     entries: list[dict[str, Any]] = []
     digests = [BEFORE_THE_FIRST]
     for number, line in enumerate(content.splitlines(), 1):
@@ -61,6 +61,8 @@ def read_history(content: bytes) -> tuple[list[dict[str, Any]], list[str]]:
             raise ValueError(f"line {number} does not follow the line before it as that stands now")
         entries.append(entry)
         digests.append(sha256(line))
+    if not entries or entries[-1]["kind"] != "look frozen":
+        raise ValueError("its last line is no freeze")
     return entries, digests[1:]
 
 
@@ -70,7 +72,7 @@ def check_history(content: bytes, report: bytes, heads: Sequence[str]) -> Iterat
         entries, digests = read_history(content)
         last, freeze = entries[-1], entries[-1]["body"]
         frozen, head_before = freeze["report_digest"], freeze["head_before"]
-    except (ValueError, KeyError, IndexError, TypeError) as fault:
+    except (ValueError, KeyError, TypeError) as fault:
         yield False, f"The history is no chain that ends in a freeze: {fault}."
         return
     yield True, f"The history is one chain of {len(entries)} entries."

@@ -44,4 +44,8 @@ def revised_plan() -> bytes:
 
 def freeze_and_receive_the_fourth(desk: Desk) -> int:
     freeze(desk, by=BY)
+    return receive_the_fourth(desk)
+
+
+def receive_the_fourth(desk: Desk) -> int:
     return receive(desk, FOURTH, acknowledgements=REASONS, by=BY)

@@ -4,8 +4,6 @@ from __future__ import annotations
 
 import random
 import sqlite3
-from collections.abc import Iterator
-from contextlib import contextmanager
 from dataclasses import replace
 from hashlib import sha256
 from pathlib import Path
@@ -15,27 +13,12 @@ import pytest
 
 from app.errors import AppError, LedgerChanged
 from app.ledger.check import quick_check
-from app.ledger.entries import BEFORE_THE_FIRST, Entry, history_lines, read_body
+from app.ledger.entries import history_lines, read_body
 from app.ledger.trial import Trial
 from app.record.canonical import digest
 from app.settings import Settings
 from tests.ledger import acts
-
-Shell = sqlite3.Connection
-
-
-@contextmanager
-def shell_without_triggers(path: Path) -> Iterator[Shell]:
-    """An attacker with an SQL shell, who puts the triggers back afterwards."""
-    shell = sqlite3.connect(path)
-    triggers = shell.execute("SELECT name, sql FROM sqlite_master WHERE type = 'trigger'").fetchall()
-    for name, _ in triggers:
-        shell.execute(f"DROP TRIGGER {name}")
-    yield shell
-    for _, statement in triggers:
-        shell.execute(statement)
-    shell.commit()
-    shell.close()
+from tests.ledger.attacks import rechain, shell_without_triggers
 
 
 def problems(path: Path, settings: Settings, witnessed_heads: tuple[str, ...] = ()) -> list[str]:
@@ -48,20 +31,6 @@ def problems(path: Path, settings: Settings, witnessed_heads: tuple[str, ...] = 
                 pass
     assert path.read_bytes() == before
     return found
-
-
-def rechain(shell: Shell) -> None:
-    """Make every digest right again, as someone would who knows how."""
-    last = BEFORE_THE_FIRST
-    for row in shell.execute("SELECT * FROM entry ORDER BY id").fetchall():
-        unsealed = replace(Entry(*row), id=last.id + 1, previous=last.digest)
-        entry = replace(unsealed, digest=digest(unsealed.line))
-        shell.execute("DELETE FROM entry WHERE id = ?", (row[0],))
-        shell.execute(
-            "INSERT INTO entry VALUES (?, ?, ?, ?, ?, ?)",
-            (entry.id, entry.at, entry.kind, entry.body, entry.previous, entry.digest),
-        )
-        last = entry.head
 
 
 def test_a_file_as_it_was_written_has_no_problem(lived: Trial, settings: Settings) -> None:
@@ -188,24 +157,11 @@ def test_a_rewritten_history_is_found_by_a_witnessed_head_only(lived: Trial, set
     witnessed = lived.state().frozen_look(2).body.head_before
     with shell_without_triggers(lived.path) as shell:
         shell.execute("UPDATE entry SET at = '2026-01-15T08:00:00Z' WHERE id = 1")
-        rechain(shell)
-        forge_the_heads_that_freezes_name(shell)
+        rechain(shell, forge_heads=True)
     assert problems(lived.path, settings) == []
     assert problems(lived.path, settings, (witnessed,)) == [
         f"the head {witnessed}: no entry has it: the end was cut off, or the history rewritten"
     ]
-
-
-def forge_the_heads_that_freezes_name(shell: Shell) -> None:
-    """Freezes and verifications name the head before them: forge these one after the other."""
-    for number in (4, 8, 9):
-        (previous,) = shell.execute("SELECT previous FROM entry WHERE id = ?", (number,)).fetchone()
-        shell.execute(
-            "UPDATE entry SET body = json_set(body, CASE kind WHEN 'verification' THEN '$.head'"
-            " ELSE '$.head_before' END, ?) WHERE id = ?",
-            (previous, number),
-        )
-        rechain(shell)
 
 
 def test_an_older_copy_put_back_is_found_by_a_witnessed_head_only(trial: Trial, settings: Settings) -> None:
