@@ -61,4 +61,4 @@ def record(options: Namespace, settings: Settings, report: CheckReport) -> str:
     return "Recorded." if done else "Not recorded: something was found, or the file may only be read."
 
 
-COMMAND = Command(arguments, run, example="verify Q17.trial --head 3f0c...9ab1")
+COMMAND = Command(arguments, run, example="verify Q17.trial --record --by 'Jane Roe'")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from datetime import date
 
 from app.actions.desk import Desk, UploadedFile
@@ -16,6 +17,10 @@ FOURTH = Incoming(
     date(2026, 10, 9),
     date(2026, 10, 23),
     "planned",
+)
+BLOCKED = replace(
+    FOURTH,
+    files=(UploadedFile("extract-4.csv", FOURTH.files[0].content.replace(b"PLACEBO", b"PLACEBOS", 1)),),
 )
 REASONS = {
     "time-zero": "Randomised on the day of the cutoff",

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+from datetime import UTC, datetime
 from pathlib import Path
 
 import pytest
@@ -10,6 +11,7 @@ import pytest
 from app.assets import asset
 from app.cli import main
 from app.cli.columns import aligned
+from app.settings import Settings
 
 PLAN = str(asset("demo_data", "plan.toml"))
 REASONS = {
@@ -51,7 +53,7 @@ def test_a_trial_goes_from_plan_to_verified_report(
     assert "Look 1 is frozen; it cannot change any more." in printed.out
     assert "FAILED" not in printed.out
     assert printed.err == ""
-    assert {path.suffix for path in reports.iterdir()} == {".html", ".json"}
+    assert {path.suffix for path in reports.iterdir()} == {".html", ".json", ".jsonl", ".py"}
 
 
 def test_a_second_look_waits_until_the_first_is_frozen(
@@ -93,6 +95,89 @@ def test_unmasking_is_recorded_once(trial: str, capsys: pytest.CaptureFixture[st
     words = ["unmask", trial, "--reason", "asked for by the committee", "--by", "Jane Roe"]
     assert [main(words), main(words)] == [0, 4]
     assert "The arms are unmasked from now on" in capsys.readouterr().out
+
+
+def test_an_amendment_is_told_key_by_key(
+    trial: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    plan = tmp_path / "plan-2.toml"
+    plan.write_text(Path(PLAN).read_text().replace("planned_events = 538", "planned_events = 600"))
+    words = ["amend", trial, str(plan), "--reason", "slow accrual", "--by", "Jane Roe"]
+    assert main(words) == 0
+    assert capsys.readouterr().out == (
+        "Plan version 2 governs the looks received from now on. "
+        "Look 1 is open and stays under the version before.\n"
+        "  design.planned_events: 538 -> 600\n"
+        "Comparative results opened before: none; arms masked. Looks held stay as they were.\n"
+    )
+    assert main(words) == 4
+    assert "An amendment that changes nothing in plan-2.toml." in capsys.readouterr().err
+
+
+def test_a_recommendation_an_erratum_and_a_backup_are_recorded_and_verified(
+    trial: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    by = ["--by", "Jane Roe"]
+    copy = str(tmp_path / "copy.trial")
+    assert main(["freeze", trial, *by]) == 0
+    capsys.readouterr()
+    assert main(["recommend", trial, "stop for benefit", "--reason", "as minuted", *by]) == 0
+    assert main(["erratum", trial, "2", "--reason", "the extract was taken a day later", *by]) == 0
+    assert main(["backup", trial, copy, *by]) == 0
+    assert main(["verify", trial, "--record", *by]) == 0
+    said = capsys.readouterr().out
+    for sentence in (
+        "Recorded after look 1: stop for benefit.",
+        "Advising a stop for benefit without a crossing gives up the plan's error control;",
+        "The correction of entry 2 is recorded; the entry itself stays as it was.",
+        f"Backed up and verified: {copy}",
+        "The chain of 6 entries is whole",
+        "Recorded.",
+    ):
+        assert sentence in said
+    assert main(["verify", copy]) == 0
+
+
+def test_a_refused_extract_is_recorded_by_a_command_of_its_own(
+    trial: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    broken = tmp_path / "extract-2.csv"
+    broken.write_bytes(Path(extract(2)).read_bytes().replace(b"PLACEBO", b"PLACEBOS", 1))
+    words = ["refuse", trial, str(broken), "--cutoff", "2025-04-01", "--by", "Jane Roe"]
+    assert main(words) == 0
+    said = capsys.readouterr().out
+    assert said.startswith(
+        "The refusal is recorded: names, digests and these sentences, and nothing of the files."
+    )
+    assert "'PLACEBOS'" in said
+    assert main(["refuse", trial, extract(1), "--cutoff", "2025-04-01", "--by", "Jane Roe"]) == 2
+
+
+def test_a_head_kept_elsewhere_is_looked_for(trial: str, capsys: pytest.CaptureFixture[str]) -> None:
+    main(["freeze", trial, "--by", "Jane Roe"])
+    head = capsys.readouterr().out.split()[-1]
+    assert main(["verify", trial, "--head", head]) == 0
+    assert f"The head {head} is that of entry 3" in capsys.readouterr().out
+    assert main(["verify", trial, "--head", "0" * 64]) == 3
+    assert "FAILED  the head 000" in capsys.readouterr().out
+    assert main(["verify", trial, "--head", "123"]) == 2
+    assert "This is no head. Found '123'." in capsys.readouterr().err
+
+
+def test_a_verification_is_recorded_under_a_name(trial: str, capsys: pytest.CaptureFixture[str]) -> None:
+    assert main(["verify", trial, "--record"]) == 2
+    assert "Nobody is named in 'verify'. Accepted: --by NAME beside --record." in capsys.readouterr().err
+
+
+def test_a_clock_that_went_back_is_told_after_the_act(
+    trial: str, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    before = Settings(clock=lambda: datetime(2025, 1, 1, tzinfo=UTC))
+    monkeypatch.setattr("app.cli.Settings", lambda: before)
+    assert main(["freeze", trial, "--by", "Jane Roe"]) == 0
+    assert capsys.readouterr().err.startswith(
+        "doubt: The clock went back: entry 3 carries 2025-01-01T00:00:00Z"
+    )
 
 
 def test_nobody_acts_without_a_name(trial: str, capsys: pytest.CaptureFixture[str]) -> None:
