@@ -1,8 +1,8 @@
 """A process whose children carry out whole acts of a person and kill themselves before step n, for every n.
 
 Run as `python killed_acts.py FOLDER`. A step is a statement of the trial file's connection, or the naming
-of a report's file. Prints a JSON line for each child: the act, its folder, whether it lived to say that the act
-was done, and the entries before.
+of a report's file. Prints a JSON line for each child: the act, its folder, whether it lived to say that the
+act was done, and the entries before.
 """
 
 from __future__ import annotations

@@ -18,7 +18,8 @@ from app.actions.receive import DoubtsUnanswered, receive, understand
 from app.actions.report import report, write_report
 from app.actions.unmask import unmask
 from app.errors import AppError, InputError, LedgerError, SetupError
-from app.ledger.entries import ReportWritten, ResultsOpened, read_body
+from app.ledger.bodies import ReportWritten, ResultsOpened
+from app.ledger.entries import read_body
 from app.record.canonical import digest
 from app.record.schema import LOOKS_RECORD, differences
 from app.review.received import SnapshotBlocked
@@ -251,12 +252,14 @@ def test_report_files_are_written_whole_named_plainly_and_entered(tmp_path: Path
     assert [path.name for path in paths] == [
         f"{stem}.html",
         f"{stem}.record.json",
+        f"{stem}.history.jsonl",
         f"{stem}.environment.json",
+        "verify_report.py",
     ]
     assert paths[0].read_bytes() == html
     assert json.loads(paths[1].read_bytes()) == record_in_report(html)
     assert f"SHA-256 {digest(paths[1].read_bytes())}".encode() in html
-    assert set(json.loads(paths[2].read_bytes())) == {
+    assert set(json.loads(paths[3].read_bytes())) == {
         "machine",
         "numpy",
         "program",

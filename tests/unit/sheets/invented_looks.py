@@ -8,8 +8,8 @@ from datetime import date
 from typing import Any
 
 from app.intake.extract import received_file
-from app.ledger.entries import SnapshotReceived
-from app.ledger.history import Look, State
+from app.ledger.bodies import SnapshotReceived
+from app.ledger.history import Look, PlanVersion, State
 from app.model.extract import Acknowledgement, Extract, LookKind, Snapshot
 from app.model.look import LookResult
 from app.model.plan import Plan
@@ -106,13 +106,18 @@ def surroundings(looks: Sequence[Held]) -> Surroundings:
     return Surroundings(tuple(on_file), design.looks, design.planned_events, 1, looks[-1].snapshot.cutoff)
 
 
+LOCKED = PlanVersion(1, "", entry=1, at="2024-01-01T09:00:00Z", by="M. Berg")
+
+
 def book(looks: Sequence[Held], letters: Letters | None = None) -> LookBook:
     """All sheets of the last of these looks, for the closed side."""
     on_file = tuple(
-        Look(SnapshotReceived.of(look.snapshot, look.extract.findings), look.snapshot.received_at, "")
+        Look(SnapshotReceived.of(look.snapshot, look.extract.findings), look.snapshot.received_at, LOCKED)
         for look in looks
     )
-    state = State(looks=on_file, locked_at=f"{FIRST_DAY}T09:00:00Z", locked_by="M. Berg")
+    state = State(
+        looks=on_file, locked_at=f"{FIRST_DAY}T09:00:00Z", locked_by="M. Berg", plans=(LOCKED,)
+    )
     history = History(state, ())
     last = looks[-1]
     return closed_book(last.view(letters), surroundings(looks), last.snapshot, last.extract, history)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from app.ledger.entries import (
+from app.ledger.bodies import (
     ArmsUnmasked,
     Body,
     DoubtAnswered,
@@ -13,7 +13,7 @@ from app.ledger.entries import (
     SnapshotReceived,
     Verification,
 )
-from app.ledger.history import Frozen, Head, Look, State
+from app.ledger.history import Frozen, Head, Look, PlanVersion, State
 from app.ledger.letters import Letters
 from app.sheets.blocks import Sheet
 from app.sheets.record import Freezing, History, grouped, record_sheet, said
@@ -32,6 +32,9 @@ def frozen(number: int) -> Frozen:
     return Frozen(body, "2025-09-09T10:30:00Z", Head(9, DIGEST))
 
 
+LOCKED = PlanVersion(1, DIGEST, entry=1, at="2025-01-01T08:00:00Z", by="M. Berg")
+
+
 def history(
     looks: int, frozen_looks: int, *, unmasked: bool = False, freezing: Freezing | None = None
 ) -> History:
@@ -39,7 +42,7 @@ def history(
         Look(
             received(number),
             "2025-09-01T09:00:00Z",
-            DIGEST,
+            LOCKED,
             frozen(number) if number <= frozen_looks else None,
         )
         for number in range(1, looks + 1)
@@ -49,6 +52,7 @@ def history(
         head=Head(12, DIGEST),
         locked_at="2025-01-01T08:00:00Z",
         locked_by="M. Berg",
+        plans=(LOCKED,),
         looks=on_file,
         letters=letters,
     )
