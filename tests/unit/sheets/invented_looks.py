@@ -115,9 +115,7 @@ def book(looks: Sequence[Held], letters: Letters | None = None) -> LookBook:
         Look(SnapshotReceived.of(look.snapshot, look.extract.findings), look.snapshot.received_at, LOCKED)
         for look in looks
     )
-    state = State(
-        looks=on_file, locked_at=f"{FIRST_DAY}T09:00:00Z", locked_by="M. Berg", plans=(LOCKED,)
-    )
+    state = State(looks=on_file, locked_at=f"{FIRST_DAY}T09:00:00Z", locked_by="M. Berg", plans=(LOCKED,))
     history = History(state, ())
     last = looks[-1]
     return closed_book(last.view(letters), surroundings(looks), last.snapshot, last.extract, history)
