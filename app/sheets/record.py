@@ -150,7 +150,9 @@ def _advice_tables(history: History) -> tuple[Table, ...]:
     rows = tuple(
         Row(
             line(f"Look{NO_BREAK}{body.look}"),
-            tuple(Cell(line(text)) for text in (body.advice, body.held_on, body.reason, body.by)),
+            tuple(
+                Cell(line(text)) for text in (body.advice, iso_day_text(body.held_on), body.reason, body.by)
+            ),
         )
         for _, body in history.entries
         if isinstance(body, Recommendation)
@@ -196,6 +198,11 @@ def _clock_doubt(before: str | None) -> Line:
     return (Span(f"Doubt: the entry before has {moment(before)}", "doubt"),) if before else ()
 
 
+def iso_day_text(day: str) -> str:
+    """The day of an entry as it is read on a page."""
+    return day_text(date.fromisoformat(day))
+
+
 def said(body: Body) -> str:
     """One entry in words."""
     match body:
@@ -204,7 +211,7 @@ def said(body: Body) -> str:
         case SnapshotReceived():
             number = len(body.acknowledgements)
             doubts = f", {number} doubt{'s' if number > 1 else ''} answered" if number else ""
-            cutoff = day_text(date.fromisoformat(body.cutoff))
+            cutoff = iso_day_text(body.cutoff)
             return f"Snapshot {body.number} received for a {body.kind} look, cutoff {cutoff}{doubts}"
         case ResultsOpened():
             return f"Comparative results of look {body.look} opened, {body.view}"
@@ -233,7 +240,7 @@ def said(body: Body) -> str:
 def _refusal_said(body: RefusalRecorded) -> str:
     files = listed([f"{file.name} (SHA-256 {grouped(file.digest)})" for file in body.files])
     blocking = " ".join(finding.sentence for finding in body.findings if finding.severity == "block")
-    return f"Extract refused, cutoff {body.cutoff}: {files}. {blocking}"
+    return f"Extract refused, cutoff {iso_day_text(body.cutoff)}: {files}. {blocking}"
 
 
 def _acts(state: State, look: Look, number: int) -> tuple[ActLink, ...]:

@@ -63,7 +63,7 @@ def test_a_refusal_opens_no_look_and_is_told_on_the_record_sheet(desk: Desk) -> 
     record_refusal(desk, given.BLOCKED, by=given.BY)
     assert desk.trial.state().next_number == 4
     what, _, _ = history_said(desk)[-1]
-    assert what.startswith("Extract refused, cutoff 2026-10-09: extract-4.csv (SHA-256 ")
+    assert what.startswith("Extract refused, cutoff 9\u00a0Oct\u00a02026: extract-4.csv (SHA-256 ")
     assert "'PLACEBOS'" in what
 
 
@@ -113,7 +113,7 @@ def test_a_recommendation_names_its_look_and_its_day(desk: Desk) -> None:
     assert plain(table.caption) == "What the committee recommended"
     (row,) = table.rows
     assert [plain(row.head), *(plain(cell.line) for cell in row.cells)] == [
-        "Look\u00a01", "continue", "2024-09-20", "No concern", given.BY,
+        "Look\u00a01", "continue", "20\u00a0Sep\u00a02024", "No concern", given.BY,
     ]  # fmt: skip
 
 
@@ -175,7 +175,9 @@ def test_a_clock_that_went_back_is_a_doubt_on_the_record_sheet(path: Path, setti
     with Desk.open(earlier, path) as desk:
         erratum(desk, entry=1, correction="Nothing", by=given.BY)
     with Desk.open(settings, path) as desk:
-        assert history_said(desk)[-1][2] == "Doubt: the entry before has 2025-10-30 08:45\u00a0UTC"
+        assert (
+            history_said(desk)[-1][2] == "Doubt: the entry before has 30\u00a0Oct\u00a02025, 08:45\u00a0UTC"
+        )
 
 
 def test_nothing_of_the_later_acts_reaches_the_open_side(desk: Desk) -> None:

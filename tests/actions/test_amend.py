@@ -85,7 +85,7 @@ def test_the_record_sheet_tells_what_changed_who_decided_and_what_was_known(desk
     assert sheet is not None
     versions, changes, _ = sheet.wide_tables
     assert words(versions)[2] == [
-        "2", "2026-11-02 09:30 UTC", "none", "Slow accrual", given.BY,
+        "2", "2 Nov 2026, 09:30 UTC", "none", "Slow accrual", given.BY,
         "results of look 3 had been opened, arms masked",
     ]  # fmt: skip
     assert words(changes)[1:] == [
