@@ -1,4 +1,4 @@
-"""Efficacy bounds at looks that fall where they fall: spent here, final looks, bounds as used.
+"""Bounds at looks that fall where they fall: spent here, final looks, bounds as used.
 
 See DEVELOPERS.md, Methods: boundary.
 """
@@ -8,94 +8,95 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import Literal
 
 from scipy.special import ndtr
 
 from app.model.boundary import Bound, LookAsUsed
-from app.model.extract import LookKind
-from app.model.plan import Design, Efficacy, Sides
 from app.model.values import Absent, Estimate
-from app.sequential.density import Course, Region, start, upper_bound_for
-from app.sequential.spending import SMALLEST_SPEND, SpendingFunction, spending_function
+from app.sequential.density import (
+    Course,
+    Paths,
+    Region,
+    lower_bound_for,
+    start,
+    upper_bound_for,
+)
+from app.sequential.family import FixedFamily
+from app.sequential.rules import (
+    Direction,
+    EfficacyRule,
+    FutilityByConditionalPower,
+    FutilityByHazardRatio,
+    FutilityRule,
+    FutilitySpending,
+    HarmRule,
+    LookAhead,
+    efficacy_rule,
+    hazard_ratio_at,
+)
+from app.sequential.spending import SMALLEST_SPEND
 from app.sequential.verdict import first_crossed
 
+__all__ = ["EfficacyRule", "LookAhead", "bounds_ahead", "efficacy_rule", "hazard_ratio_at", "next_bound"]
+
 SAFETY = Absent("a safety look has no efficacy bound and spends no alpha")
+SAFETY_AT_A_PRICE = Absent(
+    "a safety look has no efficacy bound; it spends the alpha that the plan states for it"
+)
+SAFETY_WITHOUT_FUTILITY = Absent("a safety look has no futility bound and spends no type II error")
 NO_NEW_INFORMATION = Absent("no new information since the looks before: nothing is spent, no bound exists")
 NO_FINAL_BOUNDARY = Absent(
     "no new information at the final look: no boundary exists and the result is descriptive"
 )
 NOTHING_TO_SPEND = Absent("the alpha that may be spent by this information fraction is already spent")
-NO_SCORE_VARIANCE = Absent("the score variance is 0, so z does not correspond to a hazard ratio")
 ALL_SPENT = Absent("all alpha is already spent: no boundary exists and the result is descriptive")
 SPEND_TOO_SMALL = Absent(
     f"the alpha to spend here is below {SMALLEST_SPEND:.0e}, less than a double can hold: no bound exists"
 )
+NO_TYPE_TWO_TO_SPEND = Absent(
+    "the type II error that may be spent by this information fraction is already spent, or less than a "
+    "double can hold: no futility bound exists"
+)
+NO_HARM_ALPHA_TO_SPEND = Absent(
+    "the alpha for harm that may be spent by this information fraction is already spent, or less than a "
+    "double can hold: no harm bound exists"
+)
+NO_CRITERION = Absent("the last look has no efficacy bound, so there is no conditional power to be limited")
 
 
-@dataclass(frozen=True)
-class EfficacyRule:
-    """How alpha is spent, on how many sides, and which way z points (`direction`: +1 bad event, -1 good)."""
-
-    spending: SpendingFunction
-    sides: Sides
-    direction: Literal[1, -1]
-
-    @property
-    def alpha_one_side(self) -> float:
-        return self.spending.alpha
-
-    def region(self, efficacy_z: float) -> Region:
-        """Where the trial goes on: below the bound, or strictly between both when the test has two sides."""
-        return Region(-efficacy_z if self.sides == 2 else -math.inf, efficacy_z)
-
-
-@dataclass(frozen=True)
-class LookAhead:
-    """A look whose bound is wanted. Correlations use `information`; alpha is spent by `fraction`.
-
-    `score_variance` is the I of the hazard ratio at the bound: V observed for a look held, d p q for a
-    planned one, or the reason why there is none.
-    """
-
-    number: int
-    kind: LookKind
-    information: float
-    fraction: float
-    events: int
-    score_variance: Estimate
-
-    @property
-    def final(self) -> bool:
-        """Declared final, or at full information; a safety look has no part in the test."""
-        return self.kind == "final" or (self.kind != "safety" and self.fraction >= 1.0)
-
-
-def efficacy_rule(design: Design, efficacy: Efficacy, direction: Literal[1, -1]) -> EfficacyRule:
-    """The rule of a plan: its spending function at the level of one side, its sides, its direction."""
-    return EfficacyRule(spending_function(efficacy, design.alpha_one_side), design.sides, direction)
-
-
-def next_bound(rule: EfficacyRule, past: Sequence[LookAsUsed], look: LookAhead) -> Bound:
+def next_bound(
+    rule: EfficacyRule,
+    past: Sequence[LookAsUsed],
+    look: LookAhead,
+    *,
+    futility: FutilityRule | None = None,
+    harm: HarmRule | None = None,
+) -> Bound:
     """The bound at one look, after the looks held (see `bounds_ahead`)."""
-    return bounds_ahead(rule, past, (look,))[0]
+    return bounds_ahead(rule, past, (look,), futility=futility, harm=harm)[0]
 
 
 def bounds_ahead(
-    rule: EfficacyRule, past: Sequence[LookAsUsed], ahead: Sequence[LookAhead]
+    rule: EfficacyRule,
+    past: Sequence[LookAsUsed],
+    ahead: Sequence[LookAhead],
+    *,
+    futility: FutilityRule | None = None,
+    harm: HarmRule | None = None,
 ) -> tuple[Bound, ...]:
     """Bounds at looks to come, after the looks held, were each to come as given.
 
     Parameters
     ----------
     rule : the efficacy rule of the plan in force
-    past : looks held, in order; their bounds, information and alpha are taken as used, never recomputed
-    ahead : looks to come, in order
+    past : looks held, in order; their bounds, information and error spent are taken as used, never recomputed
+    ahead : looks to come, in order; where futility goes by conditional power, the last of them is the trial's
+    futility, harm : the rules of these boundaries, in a one-sided plan that has them
 
     Returns
     -------
     tuple of Bound, one a look ahead; alphas of one side, z at full precision. A bound that does not exist is
-    `Absent` with its reason.
+    `Absent` with its reason; what belongs to a boundary that the plan does not have is None.
 
     Raises
     ------
@@ -104,117 +105,316 @@ def bounds_ahead(
 
     Notes
     -----
-    *Convention*: spent here = max(0, f(t) - alpha recorded as spent); a final look spends all that is left;
-    a look with no more information than an earlier one spends nothing; after a crossing there is no second
-    test. The two-sided region is (-c, c), each side spending its own alpha.
+    *Convention*: spent here = max(0, f(t) - spent so far), so that the share of a look that was skipped is
+    caught up; a final look spends all that is left; a look with no more information than an earlier one
+    spends nothing; after a crossing there is no second test. The two-sided region is (-c, c), each side
+    spending its own alpha. Efficacy ignores futility unless that is binding, and always ignores harm.
+    Futility spends under the effect solved for the power and meets the efficacy bound at the final look;
+    where it would meet it earlier there is no futility bound. Harm is the mirror of a one-sided test at its
+    own alpha, and stands at safety looks too.
     *Accuracy*: 1e-10 in probability (stated), 1e-12 in z on the plans tested.
     *Checked*: against print (tests/published/test_sequential.py), other routes (tests/precise/), properties.
 
     References
     ----------
-    Lan & DeMets (1983), Biometrika 70, 659-663; Whitehead (1992), Controlled Clinical Trials 13, 106-121.
+    Lan & DeMets (1983), Biometrika 70, 659-663; Whitehead (1992), Controlled Clinical Trials 13, 106-121;
+    Pampallona, Tsiatis & Kim (2001), Drug Information Journal 35, 1113-1121; DeMets & Ware (1982), Biometrika
+    69, 661-663.
     """
-    standing = _standing_after(rule, past)
+    rules = _Rules(rule, futility, harm, _criterion(rule, past, ahead, futility))
+    standing = _standing_after(rules, past)
     bounds = []
     for look in ahead:
-        bound, standing = _bound_at(rule, standing, look)
+        bound, standing = _bound_at(rules, standing, look)
         bounds.append(bound)
     return tuple(bounds)
 
 
+@dataclass(frozen=True)
+class _Rules:
+    """All that decides bounds; `criterion` is the information and efficacy bound of the trial's last look."""
+
+    efficacy: EfficacyRule
+    futility: FutilityRule | None
+    harm: HarmRule | None
+    criterion: tuple[float, Estimate]
+
+    @property
+    def binding(self) -> bool:
+        return isinstance(self.futility, FutilitySpending) and self.futility.binding
+
+
+def _criterion(
+    rule: EfficacyRule,
+    past: Sequence[LookAsUsed],
+    ahead: Sequence[LookAhead],
+    futility: FutilityRule | None,
+) -> tuple[float, Estimate]:
+    """What a rule on conditional power is judged against; no other rule looks that far."""
+    if isinstance(futility, FutilityByConditionalPower) and ahead:
+        return ahead[-1].information, bounds_ahead(rule, past, ahead)[-1].efficacy_z
+    return math.inf, NO_CRITERION
+
+
 @dataclass(frozen=True, eq=False)
 class _Standing:
-    """What the looks so far leave for the next; `information` is the most that any of them held."""
+    """What the looks so far leave for the next; information is the most that any of them held.
+
+    `course` is under no effect and ends at efficacy and at binding futility; `course_under_effect` is under
+    the effect that futility supposes and ends at both; `harm_course` is under no effect, turned upside down.
+    """
 
     course: Course
+    course_under_effect: Course
+    harm_course: Course
     information: float = 0.0
+    harm_information: float = 0.0
     alpha_spent: float = 0.0
+    type_two_spent: float = 0.0
+    harm_alpha_spent: float = 0.0
     crossed_at: int | None = None
 
 
-def _standing_after(rule: EfficacyRule, past: Sequence[LookAsUsed]) -> _Standing:
-    """The looks held, as used; one without a bound stops nothing, so it leaves the course as it is."""
-    course = start()
+def _standing_after(rules: _Rules, past: Sequence[LookAsUsed]) -> _Standing:
+    """The looks held, as used; one without a bound stops nothing, so it leaves a course as it is."""
+    course, harm_course = start(), start()
+    under_effect = start(rules.futility.drift if rules.futility else 0.0)
+    crossing = 0.0
     for look in past:
-        if not isinstance(look.efficacy_z, Absent):
-            course = course.then(look.information, rule.region(look.efficacy_z))
+        if rules.efficacy.carry_on == "crossing" and not isinstance(look.efficacy_z, Absent):
+            crossing += course.before(look.information).above(look.information, look.efficacy_z)
+        lower = -math.inf if look.final else _finite(look.futility_z)
+        stays = rules.efficacy.region(look.efficacy_z, lower if rules.binding else -math.inf)
+        course = course.then(look.information, stays)
+        if rules.futility is not None:
+            stays = rules.efficacy.region(look.efficacy_z, lower)
+            under_effect = under_effect.then(look.information, stays)
+        harm_course = harm_course.then(_harm_information(look), Region(upper=-_finite(look.harm_z)))
     return _Standing(
         course,
+        under_effect,
+        harm_course,
         information=max((look.information for look in past), default=0.0),
-        alpha_spent=max((look.alpha_spent for look in past), default=0.0),
-        crossed_at=first_crossed(past),
+        harm_information=max(map(_harm_information, past), default=0.0),
+        alpha_spent=_alpha_spent(rules.efficacy, past, crossing),
+        type_two_spent=max((look.type_two_spent for look in past), default=0.0),
+        harm_alpha_spent=max((look.harm_alpha_spent for look in past), default=0.0),
+        crossed_at=first_crossed(past, binding=rules.binding),
     )
 
 
-def _bound_at(rule: EfficacyRule, standing: _Standing, look: LookAhead) -> tuple[Bound, _Standing]:
-    """The bound at one look, and what stands after it."""
-    spend = _spend_here(rule, standing, look)
-    if isinstance(spend, Absent):
-        bound = _absent_bound(look, standing.alpha_spent, spend)
-        return bound, _stand(standing, look, standing.course, standing.alpha_spent)
-    paths = standing.course.before(look.information)
-    z = upper_bound_for(paths, look.information, spend)
-    spent = rule.alpha_one_side if look.final else rule.spending(look.fraction)
-    course = Course(paths, look.information, rule.region(z))
-    return _bound(rule, look, spent, spend, z), _stand(standing, look, course, spent)
+def _finite(z: Estimate | None) -> float:
+    """A lower bound, or where there is none the place that nothing lies below."""
+    return -math.inf if z is None or isinstance(z, Absent) else z
 
 
-def _stand(standing: _Standing, look: LookAhead, course: Course, alpha_spent: float) -> _Standing:
-    information = max(standing.information, look.information)
-    return _Standing(course, information, alpha_spent, standing.crossed_at)
+def _harm_information(look: LookAsUsed | LookAhead) -> float:
+    return look.information if look.harm_information is None else look.harm_information
 
 
-def _spend_here(rule: EfficacyRule, standing: _Standing, look: LookAhead) -> Estimate:
-    """Alpha of one side to spend at this look, or why there is no bound at it."""
+def _alpha_spent(rule: EfficacyRule, past: Sequence[LookAsUsed], crossing: float) -> float:
+    """What is recorded as spent, or the crossing probability and what safety looks cost (key carry_on)."""
+    recorded = [0.0, *(look.alpha_spent for look in past)]
+    if rule.carry_on == "nominal":
+        return max(recorded)
+    costs = [
+        max(0.0, look.alpha_spent - before)
+        for before, look in zip(recorded, past, strict=False)
+        if look.kind == "safety"
+    ]
+    return crossing + math.fsum(costs)
+
+
+@dataclass(frozen=True)
+class _Side:
+    """One bound at a look, its z or why there is none; what is spent by here, and of that here."""
+
+    z: Estimate
+    spent: float
+    here: float = 0.0
+
+
+def _bound_at(rules: _Rules, standing: _Standing, look: LookAhead) -> tuple[Bound, _Standing]:
+    """The bounds at one look, and what stands after it."""
+    untested = _why_untested(standing, look)
+    efficacy = _efficacy_side(rules.efficacy, standing, look, untested)
+    futility = _futility_side(rules, standing, look, efficacy, untested)
+    harm = _harm_side(rules.harm, standing, look)
+    bound = _bound(rules.efficacy.direction, look, efficacy, futility, harm)
+    return bound, _stand(rules, standing, look, (efficacy, futility, harm))
+
+
+def _why_untested(standing: _Standing, look: LookAhead) -> Absent | None:
+    """Why this look is no test whatever is left to spend."""
     if look.kind == "safety":
         return SAFETY
     if standing.crossed_at is not None:
-        return Absent(
-            f"the boundary was crossed at look {standing.crossed_at}: over-running, with no second test"
-        )
+        return _over_running(standing.crossed_at)
     if look.information <= standing.information:
         return NO_FINAL_BOUNDARY if look.final else NO_NEW_INFORMATION
-    allowed = rule.alpha_one_side if look.final else rule.spending(look.fraction)
+    return None
+
+
+def _over_running(crossed_at: int) -> Absent:
+    return Absent(f"the boundary was crossed at look {crossed_at}: over-running, with no second test")
+
+
+def _efficacy_side(
+    rule: EfficacyRule, standing: _Standing, look: LookAhead, untested: Absent | None
+) -> _Side:
+    if look.kind == "safety":
+        return _safety_side(rule, standing)
+    if untested is not None:
+        return _Side(untested, standing.alpha_spent)
+    paths = standing.course.before(look.information)
+    if isinstance(rule.spending, FixedFamily) and not look.final:
+        return _fixed_side(rule.spending, standing, look, paths)
+    allowed = _allowed(rule, look)
     spend = allowed - standing.alpha_spent
     if spend >= SMALLEST_SPEND:
-        return spend
+        return _Side(upper_bound_for(paths, look.information, spend), allowed, spend)
     if allowed < SMALLEST_SPEND:
-        return SPEND_TOO_SMALL
-    return ALL_SPENT if look.final else NOTHING_TO_SPEND
+        return _Side(SPEND_TOO_SMALL, standing.alpha_spent)
+    return _Side(ALL_SPENT if look.final else NOTHING_TO_SPEND, standing.alpha_spent)
 
 
-def _absent_bound(look: LookAhead, alpha_spent: float, reason: Absent) -> Bound:
+def _allowed(rule: EfficacyRule, look: LookAhead) -> float:
+    """Cumulative alpha of one side that may be spent by this look."""
+    if look.final or isinstance(rule.spending, FixedFamily):
+        return rule.alpha_one_side
+    return rule.spending(look.spending_time)
+
+
+def _safety_side(rule: EfficacyRule, standing: _Standing) -> _Side:
+    """No efficacy bound; the stated alpha is spent, though never more than is left."""
+    cost = max(0.0, min(rule.safety_spend, rule.alpha_one_side - standing.alpha_spent))
+    return _Side(SAFETY_AT_A_PRICE if cost else SAFETY, standing.alpha_spent + cost, cost)
+
+
+def _fixed_side(family: FixedFamily, standing: _Standing, look: LookAhead, paths: Paths) -> _Side:
+    """The family's own bound, which spends its crossing probability, or the one that spends what is left."""
+    left = family.alpha - standing.alpha_spent
+    if left < SMALLEST_SPEND:
+        return _Side(ALL_SPENT, standing.alpha_spent)
+    z = family.interim_bound(look.fraction)
+    crossing = paths.above(look.information, z)
+    if crossing < SMALLEST_SPEND:
+        return _Side(SPEND_TOO_SMALL, standing.alpha_spent)
+    if crossing > left:
+        return _Side(upper_bound_for(paths, look.information, left), family.alpha, left)
+    return _Side(z, standing.alpha_spent + crossing, crossing)
+
+
+def _futility_side(
+    rules: _Rules, standing: _Standing, look: LookAhead, efficacy: _Side, untested: Absent | None
+) -> _Side | None:
+    """At the final look the efficacy bound itself; before it what the rule says, while that lies below."""
+    if rules.futility is None:
+        return None
+    spent = standing.type_two_spent
+    if untested is not None:
+        return _Side(SAFETY_WITHOUT_FUTILITY if look.kind == "safety" else untested, spent)
+    if look.final and isinstance(efficacy.z, Absent):
+        return _Side(efficacy.z, spent)
+    paths = standing.course_under_effect.before(look.information)
+    z = efficacy.z if look.final else _interim_futility(rules, standing, look, efficacy, paths)
+    here = 0.0 if isinstance(z, Absent) else paths.below(look.information, z)
+    return _Side(z, spent + here, here)
+
+
+def _interim_futility(
+    rules: _Rules, standing: _Standing, look: LookAhead, efficacy: _Side, paths: Paths
+) -> Estimate:
+    """The futility bound of the rule, or why there is none."""
+    upper = math.inf if isinstance(efficacy.z, Absent) else efficacy.z
+    match rules.futility:
+        case FutilitySpending() as rule:
+            spend = rule.spending(look.spending_time) - standing.type_two_spent
+            if spend < SMALLEST_SPEND:
+                return NO_TYPE_TWO_TO_SPEND
+            enough = spend < paths.below(look.information, math.inf)
+            z: Estimate = lower_bound_for(paths, look.information, spend) if enough else math.inf
+        case FutilityByConditionalPower() as rule:
+            z = _futility_by_conditional_power(rule, look, rules.criterion)
+        case FutilityByHazardRatio() as rule:
+            z = rule.bound(look.score_variance)
+    return z if isinstance(z, Absent) or z < upper else _would_cross(z, upper)
+
+
+def _futility_by_conditional_power(
+    rule: FutilityByConditionalPower, look: LookAhead, criterion: tuple[float, Estimate]
+) -> Estimate:
+    last_information, last_z = criterion
+    if isinstance(last_z, Absent):
+        return NO_CRITERION
+    return rule.bound(look.information, last_information, last_z)
+
+
+def _would_cross(futility_z: float, efficacy_z: float) -> Absent:
+    """Both bounds in words, because the one that is refused stands nowhere else."""
+    where = f"at {futility_z:.3f}" if math.isfinite(futility_z) else "above every z"
+    return Absent(
+        f"the futility bound would lie {where}, not below the efficacy bound at {efficacy_z:.3f}: "
+        "none is used here"
+    )
+
+
+def _harm_side(rule: HarmRule | None, standing: _Standing, look: LookAhead) -> _Side | None:
+    """The mirror of a one-sided bound at harm's own alpha, by the information of harm's endpoint."""
+    if rule is None:
+        return None
+    spent, information = standing.harm_alpha_spent, _harm_information(look)
+    if standing.crossed_at is not None:
+        return _Side(_over_running(standing.crossed_at), spent)
+    if information <= standing.harm_information:
+        return _Side(NO_NEW_INFORMATION, spent)
+    allowed = rule.spending.alpha if look.final else rule.spending(look.spending_time)
+    if allowed - spent < SMALLEST_SPEND:
+        return _Side(NO_HARM_ALPHA_TO_SPEND, spent)
+    paths = standing.harm_course.before(information)
+    return _Side(-upper_bound_for(paths, information, allowed - spent), allowed, allowed - spent)
+
+
+def _stand(
+    rules: _Rules, standing: _Standing, look: LookAhead, sides: tuple[_Side, _Side | None, _Side | None]
+) -> _Standing:
+    """What stands after this look. A final futility bound is the efficacy bound: no region lies between."""
+    efficacy, futility, harm = sides
+    lower = -math.inf if futility is None or look.final else _finite(futility.z)
+    tested = look.kind != "safety"
+    stays = rules.efficacy.region(efficacy.z, lower if rules.binding else -math.inf) if tested else Region()
+    under_effect = rules.efficacy.region(efficacy.z, lower) if futility and tested else Region()
+    return _Standing(
+        standing.course.then(look.information, stays),
+        standing.course_under_effect.then(look.information, under_effect),
+        standing.harm_course.then(_harm_information(look), Region(upper=-_finite(harm.z if harm else None))),
+        information=max(standing.information, look.information),
+        harm_information=max(standing.harm_information, _harm_information(look)),
+        alpha_spent=efficacy.spent,
+        type_two_spent=futility.spent if futility else standing.type_two_spent,
+        harm_alpha_spent=harm.spent if harm else standing.harm_alpha_spent,
+        crossed_at=standing.crossed_at,
+    )
+
+
+def _bound(
+    turn: Direction, look: LookAhead, efficacy: _Side, futility: _Side | None, harm: _Side | None
+) -> Bound:
+    harm_variance = look.score_variance if look.harm_score_variance is None else look.harm_score_variance
     return Bound(
         number=look.number,
         information_fraction=look.fraction,
         events=look.events,
         final=look.final,
-        alpha_spent=alpha_spent,
-        alpha_spent_here=0.0,
-        efficacy_z=reason,
-        efficacy_p_one_sided=reason,
-        efficacy_hazard_ratio=reason,
+        alpha_spent=efficacy.spent,
+        alpha_spent_here=efficacy.here,
+        efficacy_z=efficacy.z,
+        efficacy_p_one_sided=efficacy.z if isinstance(efficacy.z, Absent) else float(ndtr(-efficacy.z)),
+        efficacy_hazard_ratio=hazard_ratio_at(efficacy.z, look.score_variance, turn),
+        futility_z=futility.z if futility else None,
+        type_two_spent=futility.spent if futility else None,
+        futility_hazard_ratio=hazard_ratio_at(futility.z, look.score_variance, turn) if futility else None,
+        harm_z=harm.z if harm else None,
+        harm_alpha_spent=harm.spent if harm else None,
+        harm_hazard_ratio=hazard_ratio_at(harm.z, harm_variance, turn) if harm else None,
     )
-
-
-def _bound(rule: EfficacyRule, look: LookAhead, alpha_spent: float, spend: float, z: float) -> Bound:
-    return Bound(
-        number=look.number,
-        information_fraction=look.fraction,
-        events=look.events,
-        final=look.final,
-        alpha_spent=alpha_spent,
-        alpha_spent_here=spend,
-        efficacy_z=z,
-        efficacy_p_one_sided=float(ndtr(-z)),
-        efficacy_hazard_ratio=hazard_ratio_at(z, look.score_variance, rule.direction),
-    )
-
-
-def hazard_ratio_at(z: float, score_variance: Estimate, direction: Literal[1, -1]) -> Estimate:
-    """exp(-s z / sqrt(I)): the hazard ratio, experimental / control, whose score test would give this z."""
-    if isinstance(score_variance, Absent):
-        return score_variance
-    if score_variance <= 0.0:
-        return NO_SCORE_VARIANCE
-    return math.exp(-direction * z / math.sqrt(score_variance))

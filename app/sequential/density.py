@@ -11,7 +11,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import lru_cache
 
 import numpy as np
@@ -54,12 +54,14 @@ class Paths:
     """Paths not stopped so far, at `information`: each `score` node stands for the probability `mass`.
 
     Arrays of shape (n,). `drift` is the mean of the score per unit of information: E z = drift * sqrt(I).
+    All paths began at `origin`, an information and a score: (0, 0), or a look held.
     """
 
     information: float
     score: Floats
     mass: Floats
     drift: float = 0.0
+    origin: tuple[float, float] = (0.0, 0.0)
 
     def above(self, information: float, z: float) -> float:
         """P(not stopped so far, Z >= z at `information`)."""
@@ -68,6 +70,11 @@ class Paths:
     def below(self, information: float, z: float) -> float:
         """P(not stopped so far, Z <= z at `information`)."""
         return float((self.mass * ndtr(self._standard(information, z))).sum())
+
+    def mirrored(self) -> Paths:
+        """The same paths with up and down exchanged."""
+        began, at = self.origin
+        return Paths(self.information, -self.score[::-1], self.mass[::-1], -self.drift, (began, -at))
 
     def _standard(self, information: float, z: float) -> Floats:
         """How many standard deviations of the step lie between each path and z."""
@@ -86,6 +93,9 @@ class Course:
     information: float = 0.0
     region: Region | None = None
     refinement: int = 1
+    carried: dict[float, Paths] = field(
+        default_factory=dict, repr=False
+    )  # the bound and the look after ask alike
 
     def before(self, information: float) -> Paths:
         """The paths that reach a next look at `information`."""
@@ -93,7 +103,11 @@ class Course:
             raise ValueError(f"information must exceed {self.information!r}, got {information!r}")
         if self.region is None:
             return self.paths
-        return _carry(self.paths, self.information, self.region, information, self.refinement)
+        if information not in self.carried:
+            self.carried[information] = _carry(
+                self.paths, self.information, self.region, information, self.refinement
+            )
+        return self.carried[information]
 
     def then(self, information: float, region: Region) -> Course:
         """The course with one more look, at which the trial goes on inside `region`."""
@@ -104,8 +118,18 @@ class Course:
 
 def start(drift: float = 0.0, refinement: int = 1) -> Course:
     """Before the first look: score 0 at information 0. `refinement` multiplies the nodes of each panel."""
-    origin = Paths(0.0, read_only([0.0], np.float64), read_only([1.0], np.float64), drift)
-    return Course(origin, refinement=refinement)
+    return _course_from(0.0, 0.0, drift, refinement)
+
+
+def start_at(information: float, z: float, drift: float = 0.0, refinement: int = 1) -> Course:
+    """From a look held at `information` > 0 with this z: what follows is conditional on it."""
+    return _course_from(information, z * math.sqrt(information), drift, refinement)
+
+
+def _course_from(information: float, score: float, drift: float, refinement: int) -> Course:
+    begun = read_only([score], np.float64), read_only([1.0], np.float64)
+    paths = Paths(information, *begun, drift, origin=(information, score))
+    return Course(paths, information, refinement=refinement)
 
 
 @dataclass(frozen=True, eq=False)
@@ -122,7 +146,12 @@ class Crossings:
 
 
 def crossing_probabilities(
-    information: Sequence[float], regions: Sequence[Region], *, drift: float = 0.0, refinement: int = 1
+    information: Sequence[float],
+    regions: Sequence[Region],
+    *,
+    drift: float = 0.0,
+    refinement: int = 1,
+    after: tuple[float, float] | None = None,
 ) -> Crossings:
     """Probabilities of first leaving the regions, look by look, under any drift.
 
@@ -132,6 +161,7 @@ def crossing_probabilities(
     regions : K regions in z
     drift : float; the mean of z at information I is drift * sqrt(I)
     refinement : int >= 1; multiplies the quadrature nodes
+    after : (information, z) of a look held, below all of these; the probabilities are then conditional on it
 
     Raises
     ------
@@ -149,7 +179,7 @@ def crossing_probabilities(
     Armitage, McPherson & Rowe (1969), JRSS A 132, 235-244; Jennison & Turnbull (2000), chapter 19.
     """
     upper, lower = np.zeros(len(information)), np.zeros(len(information))
-    course = start(drift, refinement)
+    course = start(drift, refinement) if after is None else start_at(*after, drift, refinement)
     for look, (at, region) in enumerate(zip(information, regions, strict=True)):
         if region.whole:
             continue
@@ -191,6 +221,11 @@ def upper_bound_for(paths: Paths, information: float, spend: float) -> float:
     )
 
 
+def lower_bound_for(paths: Paths, information: float, spend: float) -> float:
+    """The z that paths not stopped so far stay below at `information` with probability `spend`."""
+    return -upper_bound_for(paths.mirrored(), information, spend)
+
+
 def _log_tail(paths: Paths, information: float, z: float) -> tuple[float, float]:
     """Logarithms of P(unstopped, Z >= z) and of its fall per unit of z."""
     standard = paths._standard(information, z)
@@ -211,20 +246,27 @@ def _log_sum(logs: Floats) -> float:
 def _carry(paths: Paths, information: float, region: Region, ahead: float, refinement: int) -> Paths:
     """Paths that survive `region` at `information`, on nodes fine enough for a step to `ahead`."""
     width = 1.0 / math.sqrt(1.0 / (information - paths.information) + 1.0 / (ahead - information))
-    low, high = _extent(region, paths.drift * math.sqrt(information))
+    low, high = _extent(region, *_law_unstopped(paths, information))
     node, weight = _nodes(low * math.sqrt(information), high * math.sqrt(information), width, refinement)
     mass = _density(paths, information, node) * weight
     kept = mass > 0.0
-    survivors = Paths(information, node[kept], mass[kept], paths.drift)
+    survivors = Paths(information, node[kept], mass[kept], paths.drift, paths.origin)
     _check_conserved(paths, survivors, region)
     return survivors
 
 
-def _extent(region: Region, mean: float) -> tuple[float, float]:
+def _law_unstopped(paths: Paths, information: float) -> tuple[float, float]:
+    """Mean and standard deviation of z at `information`, were there no bounds on the way."""
+    began, at = paths.origin
+    onwards = information - began
+    return (at + paths.drift * onwards) / math.sqrt(information), math.sqrt(onwards / information)
+
+
+def _extent(region: Region, mean: float, deviation: float) -> tuple[float, float]:
     """The stretch of z to integrate: up to the bounds, or as far as a double can tell."""
     centre = min(max(mean, region.lower), region.upper)
-    down = _REACH if math.isinf(region.lower) else _FARTHEST
-    up = _REACH if math.isinf(region.upper) else _FARTHEST
+    down = deviation * (_REACH if math.isinf(region.lower) else _FARTHEST)
+    up = deviation * (_REACH if math.isinf(region.upper) else _FARTHEST)
     return max(region.lower, centre - down), min(region.upper, centre + up)
 
 
@@ -268,7 +310,8 @@ def _density(paths: Paths, information: float, score: Floats) -> Floats:
 def _bands(paths: Paths, information: float, score: Floats) -> Iterator[tuple[slice, slice]]:
     """Blocks of target nodes, each with the source nodes from which a path can get there."""
     step = information - paths.information
-    reach = (_REACH + 1.0 + _FARTHEST * math.sqrt(step / information)) * math.sqrt(step)
+    onwards = information - paths.origin[0]
+    reach = (_REACH + 1.0 + _FARTHEST * math.sqrt(step / onwards)) * math.sqrt(step)
     shift = paths.drift * step
     for first in range(0, score.size, _BLOCK):
         block = score[first : first + _BLOCK]

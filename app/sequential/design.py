@@ -8,15 +8,24 @@ from dataclasses import dataclass
 from typing import Literal
 
 import numpy as np
-from scipy.optimize import brentq
-from scipy.special import ndtri
 
-from app.errors import AccuracyNotReached, DesignInvalid
-from app.model.boundary import Bound, PlannedBoundary
-from app.model.plan import Design, Efficacy
-from app.model.values import Absent
-from app.sequential.boundary import EfficacyRule, LookAhead, bounds_ahead, efficacy_rule
-from app.sequential.density import Region, crossing_probabilities
+from app.errors import DesignInvalid
+from app.model.boundary import Bound, Feasibility, LookChances, PlannedBoundary
+from app.model.plan import Design, Efficacy, Futility, Harm
+from app.sequential.density import Region, crossing_probabilities, start
+from app.sequential.effect import (
+    PlanRules,
+    crossing_power,
+    events_by,
+    fixed_noncentrality,
+    lower_stop,
+    noncentrality_for_power,
+    planned_looks,
+    rules_of,
+)
+from app.sequential.sample_size import freedman_events, schoenfeld_events
+
+__all__ = ["crossing_power", "events_by", "planned_boundary", "planned_looks"]
 
 
 def planned_boundary(
@@ -25,6 +34,9 @@ def planned_boundary(
     *,
     experimental_share: float,
     direction: Literal[1, -1],
+    futility: Futility | None = None,
+    harm: Harm | None = None,
+    parameter: str = "",
     fractions: Sequence[float] | None = None,
     final: bool = False,
 ) -> PlannedBoundary:
@@ -32,153 +44,137 @@ def planned_boundary(
 
     Parameters
     ----------
-    design, efficacy : the plan's tables of the same names
+    design, efficacy, futility, harm : the plan's tables of the same names
     experimental_share : float in (0, 1), planned share of the experimental arm
     direction : +1 when the event is bad, -1 when it is good
+    parameter : the endpoint of the test; harm on another one has no part in the chances
     fractions : information fractions, positive and increasing; the plan's looks by default
     final : whether the last of them is final although it lies below 1, and spends all that is left
 
     Returns
     -------
-    PlannedBoundary; its design numbers (noncentrality, power, inflation, expected fractions) are those of the
-    plan's own looks whatever fractions are asked for.
+    PlannedBoundary; its design numbers (noncentrality, power, inflation, expected fractions, chances) are
+    those of the plan's own looks whatever fractions are asked for.
 
     Raises
     ------
-    DesignInvalid : fractions that are not positive and increasing, or a power not above alpha.
+    DesignInvalid : fractions that are not positive and increasing, a power not above alpha, or a futility
+        boundary that meets efficacy before the power is reached.
 
     Notes
     -----
     *Convention*: `noncentrality` is the mean of z at full information under which z crosses the efficacy
-    bound (the favourable side of a two-sided test) with the plan's power. `inflation` = (noncentrality /
-    (z(1 - a) + z(power)))^2, a of one side. Expected fractions count a crossing on either side as a stop.
+    bound (the favourable side of a two-sided test) with the plan's power, futility obeyed. `inflation` =
+    (noncentrality / (z(1 - a) + z(power)))^2, a of one side. Expected fractions count every crossing as a
+    stop.
     *Accuracy*: noncentrality to 1e-9.
 
     References
     ----------
     Lan & DeMets (1983), Biometrika 70, 659-663; Jennison & Turnbull (2000), chapters 2, 3 and 7.
     """
-    rule = efficacy_rule(design, efficacy, direction)
-    own = _planned_bounds(rule, design, design.looks, experimental_share, final=False)
+    rules = rules_of(
+        design,
+        efficacy,
+        experimental_share=experimental_share,
+        direction=direction,
+        futility=futility,
+        harm=harm,
+        parameter=parameter,
+    )
+    own = rules.bounds((), planned_looks(design, design.looks, experimental_share, final=False))
     bounds = own
     if fractions is not None:
         _require_increasing(fractions)
-        bounds = _planned_bounds(rule, design, fractions, experimental_share, final)
-    cost = _Cost.of(rule, design, own)
+        bounds = _bounds_at(rules, design, fractions, experimental_share, final)
+    effect = noncentrality_for_power(rules.efficacy, design, experimental_share, futility)
+    cost = _Cost(rules, own, effect)
     return PlannedBoundary(
         sides=design.sides,
         bounds=bounds,
-        noncentrality=cost.noncentrality,
+        noncentrality=effect,
         power=design.power,
-        inflation=cost.inflation,
+        inflation=(effect / fixed_noncentrality(design)) ** 2,
         expected_fraction_null=cost.expected_fraction(0.0),
-        expected_fraction_half=cost.expected_fraction(cost.noncentrality / 2.0),
-        expected_fraction_design=cost.expected_fraction(cost.noncentrality),
+        expected_fraction_half=cost.expected_fraction(effect / 2.0),
+        expected_fraction_design=cost.expected_fraction(effect),
+        chances_null=cost.chances(0.0),
+        chances_half=cost.chances(effect / 2.0),
+        chances_design=cost.chances(effect),
+        feasibility=cost.feasibility(design, experimental_share),
     )
 
 
-def planned_looks(
-    design: Design, fractions: Sequence[float], experimental_share: float, final: bool, first_number: int = 1
-) -> tuple[LookAhead, ...]:
-    """Looks held exactly at these fractions; I for the hazard ratio is d p q, or t times the planned V."""
-    last = len(fractions) - 1
-    return tuple(
-        _planned_look(design, first_number + at, fraction, experimental_share, final and at == last)
-        for at, fraction in enumerate(fractions)
-    )
-
-
-def events_by(fraction: float, planned_events: int) -> int:
-    """Smallest whole number of events that reaches the fraction; 0.07 of 100 is 7, though 0.07 * 100 > 7."""
-    return math.ceil(round(fraction * planned_events, 9))
-
-
-def crossing_power(bounds: Sequence[Bound], rule: EfficacyRule, noncentrality: float) -> float:
-    """P(z first leaves the region through the efficacy bound) when z has this mean at full information."""
-    crossings = crossing_probabilities(*_fractions_and_regions(bounds, rule), drift=noncentrality)
-    return float(crossings.upper.sum())
-
-
-def _planned_bounds(
-    rule: EfficacyRule, design: Design, fractions: Sequence[float], experimental_share: float, final: bool
+def _bounds_at(
+    rules: PlanRules, design: Design, fractions: Sequence[float], experimental_share: float, final: bool
 ) -> tuple[Bound, ...]:
-    return bounds_ahead(rule, (), planned_looks(design, fractions, experimental_share, final))
-
-
-def _planned_look(
-    design: Design, number: int, fraction: float, experimental_share: float, final: bool
-) -> LookAhead:
-    events = events_by(fraction, design.planned_events)
-    if design.information == "score variance" and design.planned_score_variance is not None:
-        planned, score_variance = design.planned_score_variance, fraction * design.planned_score_variance
-    else:
-        planned = float(design.planned_events)
-        score_variance = events * experimental_share * (1.0 - experimental_share)
-    return LookAhead(
-        number=number,
-        kind="final" if final else "planned",
-        information=fraction * planned,
-        fraction=fraction,
-        events=events,
-        score_variance=score_variance,
-    )
+    """Bounds at chosen fractions, followed by the plan's later looks, so that the last is the trial's."""
+    beyond = () if final else tuple(fraction for fraction in design.looks if fraction > fractions[-1])
+    looks = planned_looks(design, (*fractions, *beyond), experimental_share, final)
+    return rules.bounds((), looks)[: len(fractions)]
 
 
 @dataclass(frozen=True, eq=False)
 class _Cost:
-    """What a plan's looks cost beside one look at the end."""
+    """What a plan's looks cost beside one look at the end, and how often each bound is crossed."""
 
-    rule: EfficacyRule
+    rules: PlanRules
     bounds: tuple[Bound, ...]
     noncentrality: float
-    fixed_noncentrality: float
-
-    @classmethod
-    def of(cls, rule: EfficacyRule, design: Design, bounds: tuple[Bound, ...]) -> _Cost:
-        if design.power <= design.alpha_one_side:
-            raise DesignInvalid(
-                "power not above alpha",
-                where="the plan, [design]",
-                found=f"power {design.power!r} with alpha {design.alpha!r}",
-                accepted="a power above alpha and below 1",
-                remedy="raise power",
-            )
-        fixed = float(ndtri(design.power) - ndtri(design.alpha_one_side))
-        return cls(rule, bounds, _noncentrality(rule, bounds, design.power, fixed), fixed)
-
-    @property
-    def inflation(self) -> float:
-        return (self.noncentrality / self.fixed_noncentrality) ** 2
 
     def expected_fraction(self, noncentrality: float) -> float:
         """Mean information fraction at the end: t_1 + the sum of P(going on past k) (t_k+1 - t_k)."""
-        fractions, regions = _fractions_and_regions(self.bounds, self.rule)
+        fractions = [bound.information_fraction for bound in self.bounds]
+        regions = [self._region(bound) for bound in self.bounds]
         going_on = crossing_probabilities(fractions, regions, drift=noncentrality).going_on
         return float(fractions[0] + (going_on[:-1] * np.diff(fractions)).sum())
 
+    def chances(self, noncentrality: float) -> tuple[LookChances, ...]:
+        """First crossings look by look; z beyond both harm and futility counts as harm."""
+        course, chances = start(noncentrality), []
+        for bound in self.bounds:
+            at, region = bound.information_fraction, self._region(bound)
+            paths = course.before(at)
+            lower, harm = paths.below(at, region.lower), paths.below(at, self._harm(bound))
+            two_sided = self.rules.efficacy.sides == 2
+            chances.append(
+                LookChances(
+                    number=bound.number,
+                    efficacy=paths.above(at, region.upper),
+                    futility=0.0 if two_sided else max(0.0, lower - harm),
+                    harm=harm,
+                    control=lower if two_sided else 0.0,
+                )
+            )
+            course = course.then(at, region)
+        return tuple(chances)
 
-def _noncentrality(rule: EfficacyRule, bounds: Sequence[Bound], power: float, fixed: float) -> float:
-    """Root of the power, bracketed from below by one look at the end, which no plan of this alpha beats."""
+    def feasibility(self, design: Design, experimental_share: float) -> Feasibility:
+        """The power that the planned hazard ratio and events have, and the events that the power needs."""
+        scale = self.rules.scale
+        needed = (self.noncentrality / math.log(design.hazard_ratio)) ** 2
+        fixed = {
+            "alpha_one_side": design.alpha_one_side,
+            "power": design.power,
+            "experimental_share": experimental_share,
+        }
+        planned = scale.noncentrality(design.hazard_ratio)
+        return Feasibility(
+            power_reached=crossing_power(self.bounds, self.rules.efficacy, planned),
+            events_needed=math.ceil(round(needed / (experimental_share * (1.0 - experimental_share)), 9)),
+            schoenfeld_events=schoenfeld_events(design.hazard_ratio, **fixed),
+            freedman_events=freedman_events(design.hazard_ratio, **fixed),
+        )
 
-    def excess(noncentrality: float) -> float:
-        return crossing_power(bounds, rule, noncentrality) - power
+    def _region(self, bound: Bound) -> Region:
+        """Where no bound stops the trial."""
+        lower = max(lower_stop(bound.futility_z, bound), self._harm(bound))
+        return self.rules.efficacy.region(bound.efficacy_z, lower)
 
-    low, high = fixed - 1e-6, fixed * 1.1 + 0.1
-    while excess(high) < 0.0:
-        low, high = high, high * 1.5
-        if high > 100.0 * (1.0 + fixed):
-            raise AccuracyNotReached("no effect reaches the plan's power", found=f"power {power!r}")
-    return float(brentq(excess, low, high, xtol=1e-12, rtol=1e-14))
-
-
-def _fractions_and_regions(
-    bounds: Sequence[Bound], rule: EfficacyRule
-) -> tuple[tuple[float, ...], tuple[Region, ...]]:
-    regions = (
-        Region() if isinstance(bound.efficacy_z, Absent) else rule.region(bound.efficacy_z)
-        for bound in bounds
-    )
-    return tuple(bound.information_fraction for bound in bounds), tuple(regions)
+    def _harm(self, bound: Bound) -> float:
+        """The harm bound, where it is judged on the endpoint of the test."""
+        on_this_endpoint = self.rules.harm is not None and not self.rules.harm.own_endpoint
+        return lower_stop(bound.harm_z, bound) if on_this_endpoint else -math.inf
 
 
 def _require_increasing(fractions: Sequence[float]) -> None:

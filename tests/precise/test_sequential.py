@@ -16,6 +16,7 @@ from app.sequential.density import Crossings, Region, crossing_probabilities
 from app.sequential.design import planned_boundary
 from app.sequential.spending import SPENDING_NAMES, spending_function
 from tests.precise.sequential_routes import backward_induction, multivariate_normal, nested_integrals
+from tests.sequential_plans import looks_at, rule_named
 
 STATED = 1e-10  # in probability
 REACHED = 1e-13  # what the program does on all of these plans
@@ -146,9 +147,8 @@ class Spend:
 
     def worst_difference(self) -> float:
         """Largest distance between alpha spent at a look and its crossing probability by another route."""
-        rule = EfficacyRule(spending_function(Efficacy(self.name), self.alpha), self.sides, 1)
-        looks = (LookAhead(at, "planned", t, t, at, 1.0) for at, t in enumerate(self.fractions, start=1))
-        found = bounds_ahead(rule, (), tuple(looks))
+        rule = rule_named(self.name, self.alpha, self.sides)
+        found = bounds_ahead(rule, (), looks_at(self.fractions))
         held = [bound for bound in found if isinstance(bound.efficacy_z, float)]
         information = [bound.information_fraction for bound in held]
         regions = [rule.region(bound.efficacy_z) for bound in held if isinstance(bound.efficacy_z, float)]

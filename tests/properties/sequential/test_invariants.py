@@ -12,24 +12,17 @@ from hypothesis import strategies as st
 from scipy.special import ndtr, ndtri
 
 from app.model.boundary import Bound, LookAsUsed
-from app.model.plan import Efficacy, Sides
-from app.sequential.boundary import EfficacyRule, LookAhead, bounds_ahead, next_bound
+from app.model.plan import Sides
+from app.sequential.boundary import LookAhead, bounds_ahead, next_bound
 from app.sequential.density import Region, crossing_probabilities
-from app.sequential.spending import SPENDING_NAMES, spending_function
+from app.sequential.spending import SPENDING_NAMES
 from tests.naive import two_look_boundary, two_look_crossing
+from tests.sequential_plans import looks_at, rule_named
 
 names = st.sampled_from(SPENDING_NAMES)
 alphas = st.floats(1e-4, 0.2)
 sides_of = st.sampled_from((1, 2))
 percents = st.lists(st.integers(5, 99), min_size=1, max_size=5, unique=True).map(sorted)
-
-
-def rule_of(name: str, alpha: float, sides: Sides) -> EfficacyRule:
-    return EfficacyRule(spending_function(Efficacy(name), alpha), sides, 1)
-
-
-def looks_at(fractions: list[float], scale: float = 1.0) -> tuple[LookAhead, ...]:
-    return tuple(LookAhead(at, "planned", t * scale, t, at, 1.0) for at, t in enumerate(fractions, start=1))
 
 
 def fractions_of(percents: list[int]) -> list[float]:
@@ -43,7 +36,7 @@ def z_of(bound: Bound) -> float:
 
 @given(names, alphas, sides_of)
 def test_one_look_is_the_fixed_test(name: str, alpha: float, sides: Sides) -> None:
-    (bound,) = bounds_ahead(rule_of(name, alpha, sides), (), looks_at([1.0]))
+    (bound,) = bounds_ahead(rule_named(name, alpha, sides), (), looks_at([1.0]))
     assert z_of(bound) == pytest.approx(-ndtri(alpha), abs=1e-12)
     assert bound.alpha_spent == alpha
 
@@ -52,7 +45,7 @@ def test_one_look_is_the_fixed_test(name: str, alpha: float, sides: Sides) -> No
 def test_spends_add_up_to_alpha_and_so_do_the_crossings(
     name: str, alpha: float, sides: Sides, percents: list[int]
 ) -> None:
-    rule, fractions = rule_of(name, alpha, sides), fractions_of(percents)
+    rule, fractions = rule_named(name, alpha, sides), fractions_of(percents)
     bounds = bounds_ahead(rule, (), looks_at(fractions))
     assert math.fsum(bound.alpha_spent_here for bound in bounds) == pytest.approx(alpha, rel=1e-13)
     crossings = crossing_probabilities(fractions, [rule.region(z_of(bound)) for bound in bounds])
@@ -63,7 +56,7 @@ def test_spends_add_up_to_alpha_and_so_do_the_crossings(
 def test_the_unit_of_information_does_not_matter(
     name: str, alpha: float, sides: Sides, percents: list[int], scale: float
 ) -> None:
-    rule, fractions = rule_of(name, alpha, sides), fractions_of(percents)
+    rule, fractions = rule_named(name, alpha, sides), fractions_of(percents)
     plain = [z_of(bound) for bound in bounds_ahead(rule, (), looks_at(fractions))]
     scaled = [z_of(bound) for bound in bounds_ahead(rule, (), looks_at(fractions, scale))]
     assert scaled == pytest.approx(plain, abs=1e-11)
@@ -73,7 +66,7 @@ def test_the_unit_of_information_does_not_matter(
 def test_at_the_first_bound_p_is_the_alpha_spent(
     name: str, alpha: float, sides: Sides, percents: list[int]
 ) -> None:
-    first = bounds_ahead(rule_of(name, alpha, sides), (), looks_at(fractions_of(percents)))[0]
+    first = bounds_ahead(rule_named(name, alpha, sides), (), looks_at(fractions_of(percents)))[0]
     assert first.efficacy_p_one_sided == pytest.approx(first.alpha_spent, rel=1e-12)
     assert first.efficacy_p_one_sided == float(ndtr(-z_of(first)))
 
@@ -82,7 +75,7 @@ def test_at_the_first_bound_p_is_the_alpha_spent(
 def test_a_look_that_spends_nothing_changes_nothing_after_it(
     name: str, alpha: float, sides: Sides, percents: list[int], safety_percent: int
 ) -> None:
-    rule, looks = rule_of(name, alpha, sides), looks_at(fractions_of(percents))
+    rule, looks = rule_named(name, alpha, sides), looks_at(fractions_of(percents))
     safety = LookAhead(0, "safety", safety_percent / 100, safety_percent / 100, 0, 1.0)
     later = [look for look in looks if look.information > safety.information]
     held = [*(look for look in looks if look.information <= safety.information), safety, *later]
@@ -94,7 +87,7 @@ def test_a_look_that_spends_nothing_changes_nothing_after_it(
 def test_looks_recorded_one_by_one_give_the_bounds_of_the_plan(
     name: str, alpha: float, sides: Sides, percents: list[int]
 ) -> None:
-    rule, looks = rule_of(name, alpha, sides), looks_at(fractions_of(percents))
+    rule, looks = rule_named(name, alpha, sides), looks_at(fractions_of(percents))
     past: list[LookAsUsed] = []
     for look in looks:
         bound = next_bound(rule, past, look)
@@ -111,8 +104,8 @@ def test_a_two_sided_bound_is_not_above_the_one_sided_bound_of_its_side(
 ) -> None:
     """Paths that left below cannot cross above, so less is left to cross and the bound comes down."""
     looks = looks_at(fractions_of(percents))
-    one = bounds_ahead(rule_of(name, alpha, 1), (), looks)
-    two = bounds_ahead(rule_of(name, alpha, 2), (), looks)
+    one = bounds_ahead(rule_named(name, alpha, 1), (), looks)
+    two = bounds_ahead(rule_named(name, alpha, 2), (), looks)
     assert all(z_of(b) <= z_of(a) + 1e-12 for a, b in zip(one, two, strict=True))
 
 
@@ -133,7 +126,7 @@ def test_the_mirror_image_has_mirrored_crossings(percents: list[int], data: st.D
 
 @given(names, alphas, sides_of, percents)
 def test_power_grows_with_the_effect(name: str, alpha: float, sides: Sides, percents: list[int]) -> None:
-    rule, fractions = rule_of(name, alpha, sides), fractions_of(percents)
+    rule, fractions = rule_named(name, alpha, sides), fractions_of(percents)
     regions = [rule.region(z_of(bound)) for bound in bounds_ahead(rule, (), looks_at(fractions))]
     power = [
         crossing_probabilities(fractions, regions, drift=drift).upper.sum() for drift in (0.0, 0.5, 1.5, 3.0)
@@ -154,7 +147,7 @@ def test_the_slow_two_look_crossing_has_the_closed_form_of_a_quadrant(percent: i
 def test_two_looks_agree_with_the_slow_boundary(
     name: str, sides: Sides, fraction: float, alpha: float
 ) -> None:
-    rule = rule_of(name, alpha, sides)
+    rule = rule_named(name, alpha, sides)
     bounds = bounds_ahead(rule, (), looks_at([fraction, 1.0]))
     slow = two_look_boundary(fraction, bounds[0].alpha_spent, alpha, sides)
     assert (z_of(bounds[0]), z_of(bounds[1])) == pytest.approx(slow, abs=2e-5)
@@ -164,7 +157,7 @@ def test_two_looks_agree_with_the_slow_boundary(
 def test_the_direction_turns_the_hazard_ratio_and_nothing_else(
     name: str, alpha: float, percents: list[int]
 ) -> None:
-    rule, looks = rule_of(name, alpha, 1), looks_at(fractions_of(percents))
+    rule, looks = rule_named(name, alpha, 1), looks_at(fractions_of(percents))
     bad, good = bounds_ahead(rule, (), looks), bounds_ahead(replace(rule, direction=-1), (), looks)
     for a, b in zip(bad, good, strict=True):
         assert isinstance(a.efficacy_hazard_ratio, float)

@@ -6,6 +6,7 @@ import pytest
 
 from app.model.plan import Efficacy
 from app.sequential.spending import SMALLEST_SPEND, SPENDING_NAMES, spending_function
+from tests.sequential_plans import efficacy_named
 
 
 @pytest.mark.parametrize("name", SPENDING_NAMES)
@@ -13,7 +14,7 @@ from app.sequential.spending import SMALLEST_SPEND, SPENDING_NAMES, spending_fun
 def test_nothing_is_spent_at_the_start_and_exactly_alpha_from_full_information_on(
     name: str, alpha: float
 ) -> None:
-    spending = spending_function(Efficacy(name), alpha)
+    spending = spending_function(efficacy_named(name, alpha), alpha)
     assert spending(0.0) == 0.0
     assert spending(1.0) == alpha
     assert spending(1.2) == alpha
@@ -21,7 +22,7 @@ def test_nothing_is_spent_at_the_start_and_exactly_alpha_from_full_information_o
 
 @pytest.mark.parametrize("name", SPENDING_NAMES)
 def test_spending_never_falls(name: str) -> None:
-    spending = spending_function(Efficacy(name), 0.025)
+    spending = spending_function(efficacy_named(name, 0.025), 0.025)
     spent = [spending(percent / 100) for percent in range(101)]
     assert spent == sorted(spent)
 
