@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache, lru_cache
 from itertools import starmap
 
 from scipy.special import ndtri
@@ -13,7 +13,7 @@ from app.model.plan import Efficacy, Sides
 from app.model.values import Absent, Estimate
 from app.sequential.boundary import EfficacyRule, LookAhead, bounds_ahead
 from app.sequential.density import Region, crossing_probabilities
-from app.sequential.spending import spending_function
+from app.sequential.spending import SpendingFunction, spending_function
 from app.validation.rows import Mark, PublishedRow
 
 LAN_DEMETS = "Lan & DeMets (1983), Biometrika 70; DeMets & Lan (1994), Statistics in Medicine 13"
@@ -24,6 +24,8 @@ NO_PUBLICATION = "none; recursive quadrature of another author, checked by multi
 
 OBRIEN_FLEMING = "O'Brien-Fleming-type"
 POCOCK = "Pocock-type"
+POWER = "power"
+HWANG_SHIH_DECANI = "Hwang-Shih-DeCani"
 
 REPRODUCED: Mark = "value from memory, reproduced by computation"
 COMPUTED: Mark = "computed independently"
@@ -46,12 +48,24 @@ class _Table:
     digits: str
     information: tuple[float, ...] = ()  # what correlations use, where alpha is spent by another clock
     label: str = ""
+    key: float | None = None  # the exponent or parameter of a family of functions
 
     @property
     def name(self) -> str:
         looks = self.label or f"looks at {', '.join(f'{fraction:.4g}' for fraction in self.fractions)}"
         level = f"{'two-sided' if self.sides == 2 else 'one-sided'} {self.alpha:g}"
-        return f"{self.spending} bounds, {level}, {looks}"
+        key = "" if self.key is None else f" ({self.key:g})"
+        return f"{self.spending}{key} bounds, {level}, {looks}"
+
+    @property
+    def function(self) -> SpendingFunction:
+        """At the level of one side."""
+        named = Efficacy(
+            self.spending,
+            exponent=self.key if self.spending == POWER else None,
+            parameter=self.key if self.spending == HWANG_SHIH_DECANI else None,
+        )
+        return spending_function(named, self.alpha / self.sides)
 
 
 @dataclass(frozen=True)
@@ -67,7 +81,7 @@ EXACT = _Known(0.5, "")
 
 def sequential_rows() -> tuple[PublishedRow, ...]:
     """Every check value of the group-sequential core."""
-    return (*_bound_rows(), *_spend_rows(), *_repeated_test_rows())
+    return (*_bound_rows(), *_other_convention_rows(), *_spend_rows(), *_repeated_test_rows())
 
 
 def _equal(looks: int) -> tuple[float, ...]:
@@ -103,6 +117,19 @@ TABLES = (
     _Table(NO_PUBLICATION, COMPUTED, POCOCK, 0.05, 2, _equal(3), "2.2794 2.2949 2.2959"),
     _Table(NO_PUBLICATION, COMPUTED, POCOCK, 0.05, 2, _equal(4), "2.3683 2.3675 2.3582 2.3500"),
     _Table(LAN_DEMETS, REPRODUCED, POCOCK, 0.05, 2, _equal(5), "2.4380 2.4268 2.4101 2.3966 2.3859"),
+    # power and Hwang-Shih-DeCani
+    _Table(LAN_DEMETS, REPRODUCED, POWER, 0.05, 2, _equal(5), "2.58 2.49 2.41 2.34 2.28", key=1.0),
+    *(
+        _Table(NO_PUBLICATION, COMPUTED, spending, 0.05, 2, _equal(5), digits, key=key)
+        for spending, key, digits in (
+            (POWER, 1.0, "2.5758 2.4920 2.4108 2.3391 2.2755"),
+            (POWER, 2.0, "3.0902 2.7141 2.4728 2.2799 2.1140"),
+            (POWER, 3.0, "3.5401 2.9743 2.6045 2.3064 2.0455"),
+            (HWANG_SHIH_DECANI, -4.0, "3.2527 2.9860 2.6917 2.3737 2.0253"),
+            (HWANG_SHIH_DECANI, -2.0, "2.8903 2.7085 2.5141 2.3150 2.1100"),
+            (HWANG_SHIH_DECANI, 1.0, "2.4487 2.4190 2.3984 2.3912 2.3948"),
+        )
+    ),
     # other levels
     _Table(NO_PUBLICATION, COMPUTED, OBRIEN_FLEMING, 0.01, 2, _equal(5), "6.168 4.287 3.444 2.947 2.615"),
     _Table(NO_PUBLICATION, COMPUTED, POCOCK, 0.01, 2, _equal(5), "2.973 2.990 2.992 2.992 2.991"),
@@ -125,6 +152,17 @@ TABLES = (
     ),
     _Table(NO_PUBLICATION, COMPUTED, OBRIEN_FLEMING, 0.025, 1, (0.5, 0.75, 1.0), "2.9626 2.3590 2.0141"),
     _Table(NO_PUBLICATION, COMPUTED, POCOCK, 0.025, 1, (0.5, 0.75, 1.0), "2.1570 2.3124 2.3269"),
+    _Table(
+        NO_PUBLICATION,
+        COMPUTED,
+        HWANG_SHIH_DECANI,
+        0.025,
+        1,
+        (0.5, 0.75, 1.0),
+        "2.7500 2.4318 2.0116",
+        key=-4.0,
+    ),
+    _Table(NO_PUBLICATION, COMPUTED, POWER, 0.025, 1, (0.5, 0.75, 1.0), "2.7344 2.3568 2.0285", key=3.0),
     _Table(NO_PUBLICATION, COMPUTED, OBRIEN_FLEMING, 0.025, 1, (0.35, 0.7, 1.0), "3.6128 2.4406 2.0002"),
     # the beta-blocker trial, by its deaths against two totals, and by its calendar
     _Table(
@@ -204,10 +242,9 @@ def _bound_row(table: _Table, look: int) -> PublishedRow:
 @lru_cache(maxsize=64)
 def _bounds(table: _Table) -> tuple[float, ...]:
     """Bounds of one line of print, nothing final below full information."""
-    spending = spending_function(Efficacy(table.spending), table.alpha / table.sides)
     information = table.information or table.fractions
     looks = starmap(_look, enumerate(zip(information, table.fractions, strict=True), start=1))
-    bounds = bounds_ahead(EfficacyRule(spending, table.sides, 1), (), tuple(looks))
+    bounds = bounds_ahead(EfficacyRule(table.function, table.sides, 1), (), tuple(looks))
     return tuple(_number(bound.efficacy_z) for bound in bounds)
 
 
@@ -220,6 +257,31 @@ def _number(estimate: Estimate) -> float:
     if isinstance(estimate, Absent):
         raise ValueError(f"a check value needs a bound at every look: {estimate.reason}")
     return estimate
+
+
+def _other_convention_rows() -> list[PublishedRow]:
+    """The formula at the two-sided level, then halved: not what a plan here means, and visibly different."""
+    return [
+        _plain_row(
+            f"O'Brien-Fleming-type formula at two-sided 0.05, then halved, 5 equal looks: look {look}",
+            expected,
+            _halved(look),
+        )
+        for look, expected in enumerate(["4.3826", "3.0997", "2.5534", "2.2538", "2.0635"], start=1)
+    ]
+
+
+def _halved(look: int) -> Callable[[], float]:
+    return lambda: _halved_bounds()[look - 1]
+
+
+@cache
+def _halved_bounds() -> tuple[float, ...]:
+    whole = spending_function(Efficacy(OBRIEN_FLEMING), 0.05)
+    halved = SpendingFunction("halved", 0.025, lambda fraction, _: whole(fraction) / 2.0)
+    looks = starmap(_look, enumerate(zip(_equal(5), _equal(5), strict=True), start=1))
+    bounds = bounds_ahead(EfficacyRule(halved, 2, 1), (), tuple(looks))
+    return tuple(_number(bound.efficacy_z) for bound in bounds)
 
 
 def _spend_rows() -> list[PublishedRow]:

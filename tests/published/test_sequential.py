@@ -1,4 +1,4 @@
-"""Spending, boundaries and repeated tests against the values of app/validation/sequential_rows.py."""
+"""Spending, families, design, outlook and inference against the values of app/validation."""
 
 from __future__ import annotations
 
@@ -6,10 +6,13 @@ import dataclasses
 
 import pytest
 
+from app.validation.design_rows import design_rows
+from app.validation.family_rows import family_rows
+from app.validation.outlook_rows import outlook_rows
 from app.validation.rows import PublishedRow
 from app.validation.sequential_rows import sequential_rows
 
-ROWS = sequential_rows()
+ROWS = (*sequential_rows(), *family_rows(), *design_rows(), *outlook_rows())
 
 
 def label(row: PublishedRow) -> str:
