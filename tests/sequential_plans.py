@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import pytest
+
 from app.model.plan import Efficacy, Sides
 from app.sequential.boundary import EfficacyRule, LookAhead
 from app.sequential.spending import SPENDING_NAMES, spending_function
@@ -32,3 +34,8 @@ def rule_named(name: str, alpha_one_side: float, sides: Sides = 1) -> EfficacyRu
 def looks_at(fractions: list[float] | tuple[float, ...], scale: float = 1.0) -> tuple[LookAhead, ...]:
     """Planned looks at these fractions, with information `scale` at fraction 1."""
     return tuple(LookAhead(at, "planned", t * scale, t, at, 1.0) for at, t in enumerate(fractions, start=1))
+
+
+def quick_then_slow(quick: int, slow: int) -> list[object]:
+    """Seeds, the later ones marked slow."""
+    return [*range(quick), *(pytest.param(seed, marks=pytest.mark.slow) for seed in range(quick, slow))]

@@ -206,8 +206,9 @@ def upper_bound_for(paths: Paths, information: float, spend: float) -> float:
     target = math.log(spend)
     z = paths.drift * math.sqrt(information) - float(ndtri(spend))
     if spend < float(paths.mass.sum()):
+        log_mass = np.log(paths.mass)
         for _ in range(_MOST_ITERATIONS):
-            log_tail, log_slope = _log_tail(paths, information, z)
+            log_tail, log_slope = _log_tail(paths, log_mass, information, z)
             step = (log_tail - target) * math.exp(log_tail - log_slope)
             z += step
             if abs(step) <= 1e-14 * max(1.0, abs(z)):
@@ -226,10 +227,9 @@ def lower_bound_for(paths: Paths, information: float, spend: float) -> float:
     return -upper_bound_for(paths.mirrored(), information, spend)
 
 
-def _log_tail(paths: Paths, information: float, z: float) -> tuple[float, float]:
+def _log_tail(paths: Paths, log_mass: Floats, information: float, z: float) -> tuple[float, float]:
     """Logarithms of P(unstopped, Z >= z) and of its fall per unit of z."""
     standard = paths._standard(information, z)
-    log_mass = np.log(paths.mass)
     scale = math.log(information / (information - paths.information) / (2.0 * math.pi)) / 2.0
     return (
         _log_sum(log_mass + log_ndtr(-standard)),
@@ -297,7 +297,9 @@ def _legendre(count: int) -> tuple[Floats, Floats]:
 def _density(paths: Paths, information: float, score: Floats) -> Floats:
     """Density at `score`, ascending, shape (n,), of paths not stopped before `information`."""
     variance = information - paths.information
-    density = np.empty_like(score)
+    density = np.zeros_like(score)
+    if not paths.score.size:
+        return density  # a look that let no double's worth of paths through
     for targets, sources in _bands(paths, information, score):
         distance = np.subtract.outer(score[targets] - paths.drift * variance, paths.score[sources])
         distance *= distance

@@ -59,7 +59,7 @@ def planned_boundary(
     Raises
     ------
     DesignInvalid : fractions that are not positive and increasing, a power not above alpha, or a futility
-        boundary that meets efficacy before the power is reached.
+        boundary that leaves efficacy too little room for the power.
 
     Notes
     -----

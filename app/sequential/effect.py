@@ -9,7 +9,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from functools import lru_cache
+from functools import cache, lru_cache
 
 from scipy.optimize import brentq
 from scipy.special import ndtri
@@ -103,7 +103,7 @@ def rules_of(
 
     Raises
     ------
-    DesignInvalid : a power not above alpha, or futility that meets efficacy before the power is reached.
+    DesignInvalid : a power not above alpha, or futility that leaves efficacy too little room for the power.
     """
     rule = efficacy_rule(design, efficacy, direction)
     scale = effect_scale(design, experimental_share, direction)
@@ -215,24 +215,37 @@ def noncentrality_for_power(
 
     Raises
     ------
-    DesignInvalid : a power not above alpha, or no effect that has the power before futility meets efficacy.
+    DesignInvalid : a power not above alpha, or futility that leaves efficacy too little room for the power.
     """
     _require_power_above_alpha(design)
     looks = planned_looks(design, design.looks, experimental_share, final=False)
     scale = effect_scale(design, experimental_share, rule.direction)
     by_efficacy = bounds_ahead(rule, (), looks)
 
+    @cache  # the ends of the bracket and the root are asked for twice
     def excess(effect: float) -> float:
-        bounds = by_efficacy
-        if futility is not None:
-            bounds = bounds_ahead(rule, (), looks, futility=futility_rule(futility, design, scale, effect))
-        return crossing_power(bounds, rule, effect) - design.power
+        if futility is None:
+            return crossing_power(by_efficacy, rule, effect) - design.power
+        by_futility = futility_rule(futility, design, scale, effect)
+        try:
+            bounds = bounds_ahead(rule, (), looks, futility=by_futility)
+        except AccuracyNotReached:
+            return 1.0 - design.power  # binding futility that high leaves too few paths for alpha
+        return _power_obeying_futility(bounds, rule, effect) - design.power
 
     low = fixed_noncentrality(design) - 1e-6
     effect = float(brentq(excess, low, _enough(excess, low, design.power), xtol=1e-12, rtol=1e-14))
     if abs(excess(effect)) > _POWER_REACHED:
         raise _never_reached(design.power)
     return effect
+
+
+def _power_obeying_futility(bounds: Sequence[Bound], rule: EfficacyRule, effect: float) -> float:
+    """What is not spent as type II error by the last look, which is known already where it is a test."""
+    last = bounds[-1]
+    if isinstance(last.efficacy_z, Absent) or last.type_two_spent is None:
+        return crossing_power(bounds, rule, effect)
+    return 1.0 - last.type_two_spent
 
 
 def _enough(excess: Callable[[float], float], low: float, power: float) -> float:
@@ -258,9 +271,9 @@ def _require_power_above_alpha(design: Design) -> None:
 
 def _never_reached(power: float) -> DesignInvalid:
     return DesignInvalid(
-        "the futility bound meets the efficacy bound before the power is reached",
+        "the futility boundary leaves efficacy too little room for the power",
         where="the plan, [futility]",
         found=f"no effect with power {power!r} at the plan's looks",
         accepted="a futility boundary that lies below efficacy at each look before the last",
-        remedy="let futility spend later, leave out a look, or lower the power",
+        remedy="let futility spend later, make it non-binding, or leave out a look",
     )

@@ -16,7 +16,7 @@ from app.sequential.density import Crossings, Region, crossing_probabilities
 from app.sequential.design import planned_boundary
 from app.sequential.spending import SPENDING_NAMES, spending_function
 from tests.precise.sequential_routes import backward_induction, multivariate_normal, nested_integrals
-from tests.sequential_plans import looks_at, rule_named
+from tests.sequential_plans import looks_at, quick_then_slow, rule_named
 
 STATED = 1e-10  # in probability
 REACHED = 1e-13  # what the program does on all of these plans
@@ -51,11 +51,6 @@ class Plan:
     def leaving_at_the_last_look(self) -> tuple[float, float]:
         crossings = self.crossings()
         return float(crossings.upper[-1]), float(crossings.lower[-1])
-
-
-def quick_then_slow(quick: int, slow: int) -> list[object]:
-    """Seeds, the later ones marked slow."""
-    return [*range(quick), *(pytest.param(seed, marks=pytest.mark.slow) for seed in range(quick, slow))]
 
 
 KINDS = pytest.mark.parametrize("kind", ["efficacy", "two-sided", "futility"])
@@ -217,6 +212,19 @@ def test_spending_agrees_with_its_formula_at_fifty_digits(alpha: float, fraction
     assert spending_function(Efficacy("O'Brien-Fleming-type"), alpha)(fraction) == pytest.approx(
         obrien_fleming, rel=1e-12
     )
+
+
+@pytest.mark.parametrize("key", [-30.0, -4.0, -0.3, 0.5, 1.0, 3.0, 30.0])
+@pytest.mark.parametrize("fraction", [0.004, 0.01, 0.2, 0.35, 0.5, 0.505, 0.99])
+def test_families_of_functions_agree_with_their_formula_at_fifty_digits(key: float, fraction: float) -> None:
+    with mpmath.workdps(50):
+        t, g, level = mpmath.mpf(fraction), mpmath.mpf(key), mpmath.mpf(0.025)
+        hwang = float(level * (1 - mpmath.exp(-g * t)) / (1 - mpmath.exp(-g)))
+        power = float(level * t ** abs(g))
+    by_hwang = spending_function(Efficacy("Hwang-Shih-DeCani", parameter=key), 0.025)
+    by_power = spending_function(Efficacy("power", exponent=abs(key)), 0.025)
+    assert by_hwang(fraction) == pytest.approx(hwang, rel=1e-14)
+    assert by_power(fraction) == pytest.approx(power, rel=1e-14)
 
 
 @pytest.mark.parametrize("sides", [1, 2])

@@ -54,3 +54,43 @@ def test_a_first_crossing_stands_whatever_follows(side: Crossed) -> None:
 
 def test_a_harm_crossing_before_leaves_the_efficacy_bound_in_force() -> None:
     assert verdict([replace(LOOK, crossed="harm")], 3.0, BOUND, 1) == Verdict("efficacy", 2)
+
+
+FULL = replace(BOUND, futility_z=0.9, harm_z=-2.1)
+
+
+@pytest.mark.parametrize(
+    ("z", "expected"),
+    [(2.5, "efficacy"), (1.5, "none"), (0.9, "futility"), (-2.0, "futility"), (-2.1, "harm"), (-4.0, "harm")],
+)
+def test_below_lie_futility_and_further_below_harm(z: float, expected: Crossed) -> None:
+    assert crossed(z, FULL, 1) == expected
+
+
+def test_harm_may_be_judged_by_the_z_of_another_endpoint() -> None:
+    assert crossed(1.5, FULL, 1, z_for_harm=-2.2) == "harm"
+    assert crossed(-3.0, FULL, 1, z_for_harm=0.0) == "futility"
+    assert crossed(2.5, FULL, 1, z_for_harm=-2.2) == "efficacy"
+
+
+def test_a_bound_that_does_not_exist_is_not_crossed() -> None:
+    none = Absent("no new information")
+    assert crossed(-5.0, replace(BOUND, futility_z=none, harm_z=none), 1) == "none"
+
+
+def test_a_final_look_crosses_efficacy_or_nothing() -> None:
+    final = replace(FULL, final=True, futility_z=2.4406)
+    assert crossed(2.4, final, 1) == "none"
+    assert crossed(-4.0, final, 1) == "none"
+    assert crossed(2.4406, final, 1) == "efficacy"
+
+
+def test_harm_is_crossed_where_there_is_no_efficacy_bound() -> None:
+    assert crossed(-2.5, replace(FULL, efficacy_z=Absent("a safety look"), futility_z=None), 1) == "harm"
+
+
+@pytest.mark.parametrize(("binding", "first"), [(False, None), (True, 2)])
+def test_a_futility_crossing_stands_only_where_it_is_binding(binding: bool, first: int | None) -> None:
+    assert verdict([LOOK], 0.5, FULL, 1, binding=binding) == Verdict("futility", first)
+    later = verdict([replace(LOOK, crossed="futility")], 3.0, FULL, 1, binding=binding)
+    assert later == (Verdict("none", 1) if binding else Verdict("efficacy", 2))

@@ -1,0 +1,1 @@
+"""Invented trials of patients, analysed by the program's own tests."""
