@@ -34,8 +34,6 @@ def result_of(sample: TwoArmSample, *, strata: bool = True, direction: int = 1) 
         return reason.what
 
 
-
-
 def score(result: LogrankResult) -> float:
     return result.expected - result.observed
 
