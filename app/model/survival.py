@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from app.model.values import Absent, Estimate, Floats, Ints
+from app.model.values import Absent, Counts, Estimate, Floats
 
 
 @dataclass(frozen=True, eq=False)
@@ -18,9 +18,9 @@ class SurvivalCurve:
     """
 
     time: Floats
-    at_risk: Ints
-    events: Ints
-    censored: Ints
+    at_risk: Counts
+    events: Counts
+    censored: Counts
     survival: Floats
     std_error: Floats
     ci_low: Floats
@@ -64,6 +64,18 @@ class LogrankResult:
     p_one_sided: float
     p_two_sided: float
     strata: tuple[LogrankStratum, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class LogrankSteps:
+    """Each event time's share, shape (m,), stratum by stratum: `observed` and `expected` events in the
+    experimental arm, `variance` of the score."""
+
+    stratum: Counts
+    time: Floats
+    observed: Counts
+    expected: Floats
+    variance: Floats
 
 
 @dataclass(frozen=True)

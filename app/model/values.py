@@ -11,6 +11,8 @@ from numpy.typing import ArrayLike, DTypeLike, NDArray
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 Bools = NDArray[np.bool_]
+Counts = NDArray[np.signedinteger[Any]]
+"""Integers that count subjects, in a type that is wide enough for them."""
 
 
 @dataclass(frozen=True)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Iterator
 from typing import Literal
 
 import numpy as np
@@ -10,8 +11,9 @@ from numpy.typing import ArrayLike
 from scipy.special import ndtr
 
 from app.errors import NotEstimable
-from app.model.survival import LogrankResult, LogrankStratum
-from app.survival.risk_table import RiskTable, checked_flags, risk_table
+from app.model.survival import LogrankResult, LogrankSteps, LogrankStratum
+from app.survival.checked import checked_flags
+from app.survival.risk_table import EventTable, RiskTable, event_table, risk_table
 
 CONTROL, EXPERIMENTAL = 0, 1
 
@@ -24,6 +26,14 @@ def two_arm_table(
     """The risk table of two arms, row 0 control and row 1 experimental; domains as in `logrank`."""
     arm = checked_flags(experimental, "experimental", np.size(time))
     return risk_table(time, event, arm, stratum)
+
+
+def two_arm_events(
+    time: ArrayLike, event: ArrayLike, experimental: ArrayLike, stratum: ArrayLike | None = None
+) -> EventTable:
+    """`two_arm_table(...).at_events()`, made without the times of censorings: all that the tests read."""
+    arm = checked_flags(experimental, "experimental", np.size(time))
+    return event_table(time, event, arm, stratum)
 
 
 def logrank(
@@ -78,20 +88,18 @@ def logrank(
     >>> result.z > 0
     True
     """
-    return logrank_of(two_arm_table(time, event, experimental, stratum), direction=direction)
+    return logrank_of(two_arm_events(time, event, experimental, stratum), direction=direction)
 
 
-def logrank_of(table: RiskTable, *, direction: Direction = 1) -> LogrankResult:
+def logrank_of(table: RiskTable | EventTable, *, direction: Direction = 1) -> LogrankResult:
     """The log-rank test from a two-arm table already made; see `logrank`."""
-    if direction not in (1, -1):
-        raise ValueError(f"direction is {direction!r}; accepted: 1 or -1")
-    strata = tuple(_stratum_score(part) for part in table.strata())
+    strata = tuple(_stratum_scores(table.at_events()))
     observed = math.fsum(part.observed for part in strata)
     expected = math.fsum(part.expected for part in strata)
     variance = math.fsum(part.variance for part in strata)
     if variance == 0.0:
         raise NotEstimable(reason_arms_not_told_apart(table))
-    z = direction * (expected - observed) / math.sqrt(variance) + 0.0  # + 0.0 so that no -0.0 is shown
+    z = signed_z(observed - expected, variance, direction)
     return LogrankResult(
         observed=observed,
         expected=expected,
@@ -104,29 +112,63 @@ def logrank_of(table: RiskTable, *, direction: Direction = 1) -> LogrankResult:
     )
 
 
-def reason_arms_not_told_apart(table: RiskTable) -> str:
+def signed_z(score: float, variance: float, direction: Direction) -> float:
+    """z of observed - expected events: positive favours the experimental arm."""
+    if direction not in (1, -1):
+        raise ValueError(f"direction is {direction!r}; accepted: 1 or -1")
+    return direction * -score / math.sqrt(variance) + 0.0  # + 0.0 so that no -0.0 is shown
+
+
+def reason_arms_not_told_apart(table: RiskTable | EventTable) -> str:
     """Why nothing in these data compares the arms, in words."""
-    if not table.subjects:
+    at_events = table.at_events()
+    if not at_events.subjects.any():
         return "no subjects"
-    if not table.at_risk.any(axis=1).all():
+    if not at_events.subjects.any(axis=1).all():
         return "all subjects are in one arm"
-    if not table.events.any():
+    if not at_events.time.size:
         return "no event was observed"
     return "no event fell while both arms were at risk and would leave someone at risk"
 
 
-def _stratum_score(table: RiskTable) -> LogrankStratum:
-    """Observed, expected and variance of one stratum, from its event times."""
-    at_events = table.with_events()
-    n, d = at_events.at_risk.sum(axis=0), at_events.events.sum(axis=0)
-    share, share_of_control = at_events.at_risk[EXPERIMENTAL] / n, at_events.at_risk[CONTROL] / n
+def logrank_steps(table: RiskTable | EventTable) -> LogrankSteps:
+    """What each event time adds to the log-rank test, experimental arm, stratum by stratum.
+
+    Sums over any of its columns are observed, expected and variance of those times; see `logrank`.
+
+    Examples
+    --------
+    >>> steps = logrank_steps(two_arm_table([1, 2, 3, 4], [True] * 4, [False, False, True, True]))
+    >>> steps.observed.tolist(), steps.expected.round(3).tolist(), steps.variance.round(3).tolist()
+    ([0.0, 0.0, 1.0, 1.0], [0.5, 0.667, 1.0, 1.0], [0.25, 0.222, 0.0, 0.0])
+    """
+    at_events = table.at_events()
+    n, d = at_events.at_risk_in_all, at_events.events_in_all
+    expected = at_events.at_risk[EXPERIMENTAL] / n
+    share_of_control = at_events.at_risk[CONTROL] / n  # 1 - share would lose digits where few are in control
+    expected *= d
     # Mantel (1966): hypergeometric; someone alone at risk has a share of 1 or 0, hence variance 0
-    variance = d * share * share_of_control * ((n - d) / np.maximum(n - 1, 1))
-    return LogrankStratum(
-        stratum=int(table.stratum[0]),
-        subjects=table.subjects,
-        events=int(d.sum()),
-        observed=float(at_events.events[EXPERIMENTAL].sum()),
-        expected=float(np.sum(d * share)),
-        variance=float(np.sum(variance)),
+    variance = np.multiply(expected, share_of_control, out=share_of_control)
+    tied = np.flatnonzero(d > 1)
+    variance[tied] *= (n[tied] - d[tied]) / (n[tied] - 1)
+    return LogrankSteps(
+        stratum=at_events.stratum,
+        time=at_events.time,
+        observed=at_events.events[EXPERIMENTAL],
+        expected=expected,
+        variance=variance,
     )
+
+
+def _stratum_scores(table: EventTable) -> Iterator[LogrankStratum]:
+    """Observed, expected and variance of each stratum, from its event times."""
+    steps = logrank_steps(table)
+    for index, span in enumerate(table.spans()):
+        yield LogrankStratum(
+            stratum=int(table.strata[index]),
+            subjects=int(table.subjects[:, index].sum()),
+            events=int(table.events[:, span].sum()),
+            observed=float(steps.observed[span].sum()),
+            expected=float(steps.expected[span].sum()),
+            variance=float(steps.variance[span].sum()),
+        )

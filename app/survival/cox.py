@@ -1,36 +1,29 @@
 """The hazard ratio of two arms by Cox's partial likelihood.
 
-With one two-valued covariate the likelihood needs nothing but odds. Let theta be the hazard ratio, and let an
-event fall while c control and e experimental subjects are at risk. The event is experimental with probability
-
-    e theta / (c + e theta) = 1 / (1 + 1 / (odds theta)),    odds = e / c,
-
-so the score is (experimental events) - (sum of these probabilities p), and the information is the sum of
-p (1 - p). For tied events Efron takes the k-th of d of them (k = 0, 1, ..., d - 1) against the risk set less
-k/d of those who have the event at this time, Breslow against the whole risk set.
-
-Where c or e is 0 the probability is 1 or 0 whatever theta is: such events are taken off the sum beforehand.
-What remains decides at once whether an estimate exists: the sum runs from 0 to the number of events as theta
-runs from 0 to infinity, so the score has a root if and only if the experimental events among them are neither
-none nor all.
+With one two-valued covariate each event time needs nothing but its counts: at a hazard ratio theta its number
+of experimental events has a mean and a variance (see `tied_events`); the score is the sum of observed less
+mean, the information the sum of the variances. The means run from a fewest to a most possible number as theta
+runs from 0 to infinity, so the score has a root if and only if the observed number lies strictly between.
 """
 
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 
-import numpy as np
 from numpy.typing import ArrayLike
 
 from app.errors import AccuracyNotReached, NotEstimable
 from app.model.survival import CoxResult
-from app.model.values import Floats
-from app.survival.comparison import CONTROL, EXPERIMENTAL, reason_arms_not_told_apart, two_arm_table
+from app.model.values import Counts, Floats
+from app.survival.checked import checked_choice
+from app.survival.comparison import EXPERIMENTAL, reason_arms_not_told_apart, two_arm_events
 from app.survival.intervals import two_sided_quantile
-from app.survival.risk_table import RiskTable
+from app.survival.risk_table import EventTable, RiskTable
+from app.survival.tied_events import MOMENTS, possible
 
-TIES = ("Efron", "Breslow")
+BLOCK = 65_536
 MOST_STEPS = 60
 LONGEST_STEP = 5.0
 STEP_TOLERANCE = 1e-10
@@ -54,7 +47,7 @@ def cox_two_arms(
     event : bool array, shape (n,); True = event at `time`, False = censored there
     experimental : bool array, shape (n,); False = control
     stratum : int array, shape (n,), codes from 0, optional; each stratum has a baseline hazard of its own
-    ties : "Efron" or "Breslow"
+    ties : "Efron", "Breslow" or "exact"
     level : confidence level of the interval, between 0 and 1
 
     Returns
@@ -81,22 +74,27 @@ def cox_two_arms(
 
     References
     ----------
-    Cox (1972), JRSS B 34, 187-220. Efron (1977), JASA 72, 557-565. Breslow (1974), Biometrics 30, 89-99.
+    Cox (1972), JRSS B 34, 187-220, which has the exact form too. Efron (1977), JASA 72, 557-565. Breslow
+    (1974), Biometrics 30, 89-99.
 
     Examples
     --------
     >>> round(cox_two_arms([1, 2, 3, 4], [True] * 4, [False, True, False, True]).hazard_ratio, 6)
     0.390388
     """
-    table = two_arm_table(time, event, experimental, stratum)
+    table = two_arm_events(time, event, experimental, stratum)
     return cox_two_arms_of(table, ties=ties, level=level)
 
 
-def cox_two_arms_of(table: RiskTable, *, ties: str = "Efron", level: float = 0.95) -> CoxResult:
+def cox_two_arms_of(table: RiskTable | EventTable, *, ties: str = "Efron", level: float = 0.95) -> CoxResult:
     """The hazard ratio from a two-arm table already made; see `cox_two_arms`."""
     z = two_sided_quantile(level)
-    likelihood = _partial_likelihood(table, ties)
-    log_ratio, information = _maximise(likelihood)
+    log_ratio, information = maximise(two_arm_likelihood(table, ties))
+    return _result(log_ratio, information, z, level, ties)
+
+
+def _result(log_ratio: float, information: float, z: float, level: float, ties: str) -> CoxResult:
+    """Estimate and Wald limits on the log scale."""
     std_error = 1.0 / math.sqrt(information)
     if abs(log_ratio) + z * std_error > LARGEST_LOG_RATIO:
         raise NotEstimable("no finite confidence interval: the data hardly bound the hazard ratio")
@@ -112,50 +110,49 @@ def cox_two_arms_of(table: RiskTable, *, ties: str = "Efron", level: float = 0.9
 
 
 @dataclass(frozen=True, eq=False)
-class _PartialLikelihood:
-    """`odds_of_control`: c / e at each event with both arms at risk; `observed` of these are experimental."""
+class TwoArmLikelihood:
+    """The partial likelihood of two arms, whose score is observed - expected experimental events.
 
-    odds_of_control: Floats
+    `moments` gives mean and variance of the experimental events at each time, see `tied_events`.
+    """
+
+    table: EventTable
     observed: int
+    moments: Callable[[Counts, Counts, float], tuple[Floats, Floats]]
+
+    def expected_and_variance(self, log_ratio: float) -> tuple[Floats, Floats]:
+        """At each event time, shape (m,)."""
+        return self.moments(self.table.at_risk, self.table.events, log_ratio)
 
     def score_and_information(self, log_ratio: float) -> tuple[float, float]:
-        probability = 1.0 / (1.0 + self.odds_of_control * math.exp(-log_ratio))
-        score = self.observed - float(np.sum(probability))
-        return score, float(np.sum(probability * (1.0 - probability)))
+        """Sums over all event times, block by block: a block's arrays stay in the processor's cache."""
+        table, expected, information = self.table, 0.0, 0.0
+        for start in range(0, table.time.size, BLOCK):
+            block = slice(start, start + BLOCK)
+            mean, variance = self.moments(table.at_risk[:, block], table.events[:, block], log_ratio)
+            expected += float(mean.sum())
+            information += float(variance.sum())
+        return self.observed - expected, information
 
 
-def _partial_likelihood(table: RiskTable, ties: str) -> _PartialLikelihood:
-    """The odds at every event that tells the arms apart; NotEstimable when they give no finite ratio."""
-    control, experimental = _at_risk_event_by_event(table.with_events(), ties)
-    both = (control > 0.0) & (experimental > 0.0)
-    certain = int(np.count_nonzero(~both & (experimental > 0.0)))
-    observed = int(table.events[EXPERIMENTAL].sum()) - certain
-    telling = int(np.count_nonzero(both))
-    if not telling:
-        raise NotEstimable(reason_arms_not_told_apart(table))
-    if observed in (0, telling):
-        arm, limit = ("control", "0") if observed == 0 else ("experimental", "infinity")
+def two_arm_likelihood(table: RiskTable | EventTable, ties: str) -> TwoArmLikelihood:
+    """The likelihood that has a maximum; NotEstimable when these data give no finite ratio."""
+    checked_choice(ties, "ties", tuple(MOMENTS))
+    events = table.at_events()
+    fewest, most = (int(count.sum()) for count in possible(events.at_risk, events.events, ties))
+    observed = int(events.events[EXPERIMENTAL].sum())
+    if fewest == most:
+        raise NotEstimable(reason_arms_not_told_apart(events))
+    if observed in (fewest, most):
+        arm, limit = ("control", "0") if observed == fewest else ("experimental", "infinity")
         raise NotEstimable(
             f"no finite estimate: every event with both arms at risk was in the {arm} arm, "
             f"so the likelihood rises as the hazard ratio goes to {limit}"
         )
-    return _PartialLikelihood(control[both] / experimental[both], observed)
+    return TwoArmLikelihood(events, observed, MOMENTS[ties])
 
 
-def _at_risk_event_by_event(table: RiskTable, ties: str) -> tuple[Floats, Floats]:
-    """Control and experimental subjects that each event is compared with, shape (number of events,)."""
-    if ties not in TIES:
-        raise ValueError(f"ties is {ties!r}; accepted: {', '.join(map(repr, TIES))}")
-    tied = table.events.sum(axis=0)
-    at_risk = np.repeat(table.at_risk, tied, axis=1).astype(np.float64)
-    if ties == "Efron":
-        first = np.repeat(np.cumsum(tied) - tied, tied)
-        fraction_gone = (np.arange(first.size) - first) / np.repeat(tied, tied)
-        at_risk -= fraction_gone * np.repeat(table.events, tied, axis=1)
-    return at_risk[CONTROL], at_risk[EXPERIMENTAL]
-
-
-def _maximise(likelihood: _PartialLikelihood) -> tuple[float, float]:
+def maximise(likelihood: TwoArmLikelihood) -> tuple[float, float]:
     """Root of the score, which falls throughout, and the information there."""
     log_ratio = 0.0
     score, information = likelihood.score_and_information(log_ratio)
@@ -172,7 +169,7 @@ def _maximise(likelihood: _PartialLikelihood) -> tuple[float, float]:
 
 
 def _advance(
-    likelihood: _PartialLikelihood, log_ratio: float, step: float, score: float
+    likelihood: TwoArmLikelihood, log_ratio: float, step: float, score: float
 ) -> tuple[float, float, float]:
     """Go the step, or the first half of it ... that brings the score nearer to 0."""
     for _ in range(MOST_STEPS):

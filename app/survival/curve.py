@@ -8,9 +8,10 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from app.model.survival import SurvivalCurve
-from app.model.values import Absent, Estimate, Floats, Ints
+from app.model.values import Absent, Counts, Estimate, Floats
+from app.survival.checked import checked_flags, checked_times
 from app.survival.intervals import survival_limits
-from app.survival.risk_table import checked_flags, checked_times, risk_table
+from app.survival.risk_table import risk_table
 
 FLAT_TOLERANCE = float(np.sqrt(np.finfo(np.float64).eps))  # a survival this near 0.5 is 0.5
 
@@ -68,8 +69,8 @@ def kaplan_meier(
     """
     table = risk_table(time, event)
     at_risk, events, censored = table.at_risk[0], table.events[0], table.censored[0]
-    survival = np.cumprod((at_risk - events) / at_risk)
-    error_of_log = _greenwood(at_risk, events)
+    survival = product_limit(at_risk, events)
+    error_of_log = greenwood(at_risk, events)
     low, high = survival_limits(survival, error_of_log, level=level, interval=interval)
     return SurvivalCurve(
         time=_frozen(table.time),
@@ -80,12 +81,31 @@ def kaplan_meier(
         std_error=_frozen(survival * error_of_log),
         ci_low=_frozen(low),
         ci_high=_frozen(high),
-        median=_first_below_half(table.time, survival, survival),
-        median_ci_low=_first_below_half(table.time, low, survival),
-        median_ci_high=_first_below_half(table.time, high, survival),
+        median=first_below(0.5, table.time, survival, survival),
+        median_ci_low=first_below(0.5, table.time, low, survival),
+        median_ci_high=first_below(0.5, table.time, high, survival),
         level=level,
         interval=interval,
     )
+
+
+def kaplan_meier_by_arm(
+    time: ArrayLike,
+    event: ArrayLike,
+    experimental: ArrayLike,
+    *,
+    level: float = 0.95,
+    interval: str = "log-log",
+) -> tuple[SurvivalCurve, SurvivalCurve]:
+    """The curves of the control and of the experimental arm; see `kaplan_meier`."""
+    times = checked_times(time)
+    events = checked_flags(event, "event", times.size)
+    arm = checked_flags(experimental, "experimental", times.size)
+    control, experiment = (
+        kaplan_meier(times[rows], events[rows], level=level, interval=interval)
+        for rows in (np.flatnonzero(~arm), np.flatnonzero(arm))
+    )
+    return control, experiment
 
 
 def follow_up_median(time: ArrayLike, event: ArrayLike) -> Estimate:
@@ -123,33 +143,38 @@ def follow_up_median(time: ArrayLike, event: ArrayLike) -> Estimate:
     times = checked_times(time)
     table = risk_table(times, ~checked_flags(event, "event", times.size))
     still_followed = np.cumprod((table.at_risk[0] - table.events[0]) / table.at_risk[0])
-    return _first_below_half(table.time, still_followed, still_followed)
+    return first_below(0.5, table.time, still_followed, still_followed)
 
 
-def _greenwood(at_risk: Ints, events: Ints) -> Floats:
-    """Standard error of log S, shape (m,); NaN once nobody is left."""
-    surviving = at_risk - events
-    terms = np.divide(
-        events, at_risk * surviving.astype(np.float64), out=np.full(events.size, np.nan), where=surviving > 0
-    )
-    # a last time with censorings only leaves nobody either, but adds no event and so no variance
-    terms[events == 0] = 0.0
-    error: Floats = np.sqrt(np.cumsum(terms))
-    return error
+def product_limit(at_risk: Counts, events: Counts) -> Floats:
+    """Survival just after each time, shape (m,)."""
+    survival = (at_risk - events) / at_risk
+    return np.cumprod(survival, out=survival)
 
 
-def _first_below_half(time: Floats, values: Floats, survival: Floats) -> Estimate:
-    """Where a curve, or a limit of it, first falls below 0.5; flat stretches as `kaplan_meier` says."""
+def greenwood(at_risk: Counts, events: Counts) -> Floats:
+    """Standard error of log S, shape (m,); NaN once nobody is left after an event."""
+    terms = at_risk.astype(np.float64)
+    terms *= at_risk - events
+    terms[-1:][terms[-1:] == 0.0] = np.nan  # only the last time can leave nobody
+    np.divide(events, terms, out=terms)
+    return np.sqrt(np.cumsum(terms, out=terms), out=terms)
+
+
+def first_below(target: float, time: Floats, values: Floats, survival: Floats) -> Estimate:
+    """Where a curve, or a limit of it, first falls below the target; flat stretches as in `kaplan_meier`."""
     if time.size == 0:
         return NO_SUBJECTS
-    at_or_below = np.flatnonzero(values < 0.5 + FLAT_TOLERANCE)
-    if at_or_below.size == 0:
+    reached = values < target + FLAT_TOLERANCE
+    first = int(np.argmax(reached))
+    if not reached[first]:
         never_existed = np.isnan(values).all() and survival[-1] == 0.0
         return NO_INTERVAL if never_existed else NOT_REACHED
-    first = at_or_below[0]
-    lower = at_or_below[values[at_or_below] < values[first]]
-    if abs(values[first] - 0.5) < FLAT_TOLERANCE and lower.size:
-        return float((time[first] + time[lower[0]]) / 2.0)
+    if abs(values[first] - target) < FLAT_TOLERANCE:
+        lower = values[first:] < values[first]
+        end = int(np.argmax(lower))
+        if lower[end]:
+            return float((time[first] + time[first + end]) / 2.0)
     return float(time[first])
 
 

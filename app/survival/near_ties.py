@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from app.model.values import Floats
-from app.survival.risk_table import checked_times
+from app.survival.checked import checked_times
 
 TOLERANCE = float(np.sqrt(np.finfo(np.float64).eps))
 

@@ -4,15 +4,65 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import cached_property
 from itertools import pairwise
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from app.model.values import Bools, Floats, Ints
+from app.model.values import Bools, Counts, Floats, Ints
+from app.survival.checked import checked_codes, checked_flags, checked_times
+from app.survival.time_order import InTimeOrder, Outcomes, Positions, in_time_order
 
 CELLS_PER_SUBJECT = 4  # days are counted rather than sorted while the grid of days stays this small
 FEWEST_CELLS = 4096
+
+
+@dataclass(frozen=True, eq=False)
+class EventTable:
+    """A column per time with an event, of each stratum, shape (m,): stratum by stratum, times increasing.
+
+    Counts have shape (groups, m), row g for group g; `at_risk` as in `RiskTable`. `strata` are the codes of
+    the strata that hold a subject, shape (s,), in order, and `subjects` their subjects, shape (groups, s).
+    """
+
+    time: Floats
+    stratum: Counts
+    at_risk: Counts
+    events: Counts
+    strata: Ints
+    subjects: Counts
+
+    def at_events(self) -> EventTable:
+        """Itself: see `RiskTable.at_events`."""
+        return self
+
+    def only(self, columns: slice | Ints | Bools) -> EventTable:
+        """The table of these columns alone; counts at risk and subjects stay as they are."""
+        return EventTable(
+            self.time[columns],
+            self.stratum[columns],
+            self.at_risk[:, columns],
+            self.events[:, columns],
+            self.strata,
+            self.subjects,
+        )
+
+    def spans(self) -> Iterator[slice]:
+        """The columns of each stratum, in the order of `strata`; none where no event fell."""
+        ends = np.searchsorted(self.stratum, self.strata, side="right")
+        return (slice(start, end) for start, end in pairwise([0, *ends.tolist()]))
+
+    @cached_property
+    def at_risk_in_all(self) -> Floats:
+        """At risk in all groups together, shape (m,)."""
+        return sum_of_rows(self.at_risk)
+
+    @cached_property
+    def events_in_all(self) -> Floats:
+        """Events in all groups together, shape (m,)."""
+        return sum_of_rows(self.events)
 
 
 @dataclass(frozen=True, eq=False)
@@ -24,10 +74,10 @@ class RiskTable:
     """
 
     time: Floats
-    stratum: Ints
-    at_risk: Ints
-    events: Ints
-    censored: Ints
+    stratum: Counts
+    at_risk: Counts
+    events: Counts
+    censored: Counts
 
     def only(self, columns: slice | Ints) -> RiskTable:
         """The table of these columns alone; counts at risk stay as they are."""
@@ -39,9 +89,18 @@ class RiskTable:
             self.censored[:, columns],
         )
 
-    def with_events(self) -> RiskTable:
+    def at_events(self) -> EventTable:
         """Only the times at which an event fell."""
-        return self.only(np.flatnonzero(self.events.any(axis=0)))
+        with_event = self.events.any(axis=0)
+        starts = first_of_runs(self.stratum)
+        return EventTable(
+            self.time[with_event],
+            self.stratum[with_event],
+            self.at_risk[:, with_event],
+            self.events[:, with_event],
+            strata=self.stratum[starts],
+            subjects=self.at_risk[:, starts],
+        )
 
     def strata(self) -> Iterator[RiskTable]:
         """One table for each stratum that holds a subject, in the order of their codes."""
@@ -90,106 +149,86 @@ def risk_table(
     >>> table.time.tolist(), table.at_risk.tolist(), table.events.tolist()
     ([1.0, 3.0], [[3, 2]], [[1, 1]])
     """
-    times = checked_times(time)
-    events = checked_flags(event, "event", times.size)
-    groups, n_groups = checked_codes(group, "group", times.size)
-    strata, n_strata = checked_codes(stratum, "stratum", times.size)
-    outcome = events.astype(np.int64) if groups is None else events + 2 * groups
-    days = whole_days(times, n_strata)
-    if days is None:
-        return _by_sorting(times, outcome, n_groups, strata)
-    return _by_counting(days, outcome, n_groups, strata, n_strata)
+    subjects = _subjects(time, event, group, stratum)
+    days = whole_days(subjects.time, subjects.n_strata)
+    return _by_sorting(subjects) if days is None else _by_counting(subjects, days)
 
 
-def checked_times(time: ArrayLike) -> Floats:
-    """`time` as a float array, shape (n,), or ValueError."""
-    times = np.asarray(time, dtype=np.float64)
-    if times.ndim != 1:
-        raise ValueError(f"time has shape {times.shape}; accepted: (n,)")
-    # written so that NaN, which fails every comparison, is refused too
-    if times.size and not (times.min() >= 0 and times.max() < np.inf):
-        wrong = times[~((times >= 0) & (times < np.inf))]
-        raise ValueError(f"time holds {wrong[0]!r}; accepted: finite numbers >= 0")
-    return times
+def event_table(
+    time: ArrayLike, event: ArrayLike, group: ArrayLike | None = None, stratum: ArrayLike | None = None
+) -> EventTable:
+    """`risk_table(...).at_events()` without making the columns that hold censorings only; domains as there.
+
+    Examples
+    --------
+    >>> table = event_table([3, 1, 2], [True, True, False])
+    >>> table.time.tolist(), table.at_risk.tolist(), table.subjects.tolist()
+    ([1.0, 3.0], [[3, 1]], [[3]])
+    """
+    subjects = _subjects(time, event, group, stratum)
+    days = whole_days(subjects.time, subjects.n_strata)
+    return _events_by_sorting(subjects) if days is None else _by_counting(subjects, days).at_events()
 
 
-def checked_flags(flags: ArrayLike, name: str, size: int) -> Bools:
-    """`flags` as a bool array, shape (size,), or ValueError; 0 and 1 are taken as False and True."""
-    values = np.asarray(flags)
-    if values.shape != (size,):
-        raise ValueError(f"{name} has shape {values.shape}; accepted: ({size},), as time")
-    if values.dtype == np.bool_:
-        return values
-    wrong = values[(values != 0) & (values != 1)]
-    if wrong.size:
-        raise ValueError(f"{name} holds {wrong[0]!r}; accepted: True or False")
-    return values.astype(np.bool_)
-
-
-def checked_codes(codes: ArrayLike | None, name: str, size: int) -> tuple[Ints | None, int]:
-    """Group or stratum codes as integers, shape (size,), with how many codes there are, or ValueError."""
-    if codes is None:
-        return None, 1
-    values = np.asarray(codes)
-    if values.shape != (size,):
-        raise ValueError(f"{name} has shape {values.shape}; accepted: ({size},), as time")
-    if values.dtype == np.bool_:
-        return values.astype(np.int64), 2
-    if size == 0:
-        return None, 1
-    if not np.issubdtype(values.dtype, np.integer) or values.min() < 0:
-        raise ValueError(f"{name} holds {values.min()!r}; accepted: integer codes from 0")
-    return values.astype(np.int64, copy=False), int(values.max()) + 1
+def sum_of_rows(counts: Counts) -> Floats:
+    """The counts of all groups together, shape (m,); row upon row, which is faster than down the columns."""
+    total: Floats = counts[0].astype(np.float64)
+    for row in counts[1:]:
+        total += row
+    return total
 
 
 def whole_days(times: Floats, n_strata: int) -> Ints | None:
     """The times as integers, when all are whole and counting them is cheaper than sorting; else None."""
     most = max(CELLS_PER_SUBJECT * times.size, FEWEST_CELLS)
-    if times.size == 0 or (times.max() + 1) * n_strata > most:
+    if times.size == 0 or times[0] % 1.0 or (times.max() + 1) * n_strata > most:
         return None
     days = times.astype(np.int64)
     return days if np.array_equal(days, times) else None
 
 
-def first_of_runs(*keys: NDArray[np.generic]) -> Ints:
-    """Where a new run of equal values begins, in arrays of one shape (n,) that lie in order."""
-    if keys[0].size == 0:
-        return np.empty(0, dtype=np.int64)
-    changed = np.zeros(keys[0].size, dtype=np.bool_)
-    changed[0] = True
-    for key in keys:
-        changed[1:] |= key[1:] != key[:-1]
-    return np.flatnonzero(changed)
+def first_of_runs(key: NDArray[np.generic]) -> Ints:
+    """Where a new run of equal values begins, in an array of shape (n,)."""
+    is_first = np.ones(key.size, dtype=np.bool_)
+    np.not_equal(key[1:], key[:-1], out=is_first[1:])
+    return np.flatnonzero(is_first)
 
 
-def _by_counting(days: Ints, outcome: Ints, n_groups: int, stratum: Ints | None, n_strata: int) -> RiskTable:
+@dataclass(frozen=True, eq=False)
+class _Subjects:
+    """Checked arguments: one entry per subject, shape (n,). `outcome` is event + 2 * group."""
+
+    time: Floats
+    outcome: Outcomes
+    n_groups: int
+    stratum: Counts | None
+    n_strata: int
+
+
+def _subjects(
+    time: ArrayLike, event: ArrayLike, group: ArrayLike | None, stratum: ArrayLike | None
+) -> _Subjects:
+    times = checked_times(time)
+    events = checked_flags(event, "event", times.size)
+    groups, n_groups = checked_codes(group, "group", times.size)
+    strata, n_strata = checked_codes(stratum, "stratum", times.size)
+    outcome = events.astype(np.min_scalar_type(2 * n_groups))
+    if groups is not None:
+        outcome |= groups.astype(outcome.dtype) << 1
+    return _Subjects(times, outcome, n_groups, strata, n_strata)
+
+
+def _by_counting(subjects: _Subjects, days: Ints) -> RiskTable:
     """One count of (outcome, stratum, day) cells; no sort."""
-    width = int(days.max()) + 1
-    column = days if stratum is None else stratum * width + days
-    leaving = _count(outcome, column, n_groups, n_strata * width)
+    days_wide, strata = int(days.max()) + 1, subjects.n_strata
+    width = strata * days_wide
+    cell = days if subjects.stratum is None else subjects.stratum * days_wide + days
+    cell += subjects.outcome * np.int64(width)
+    leaving = np.bincount(cell, minlength=2 * subjects.n_groups * width)
+    leaving = leaving.reshape(subjects.n_groups, 2, width)
     seen = np.flatnonzero(leaving.any(axis=(0, 1)))
-    stratum_of, day_of = np.divmod(seen, width)
+    stratum_of, day_of = np.divmod(seen, days_wide)
     return _table(day_of.astype(np.float64), stratum_of, leaving[:, :, seen])
-
-
-def _by_sorting(times: Floats, outcome: Ints, n_groups: int, stratum: Ints | None) -> RiskTable:
-    """One sort by time, and a stable one by stratum where there are strata."""
-    order = np.argsort(times)
-    if stratum is None:
-        stratum = np.zeros(times.size, dtype=np.int64)
-    else:
-        order = order[np.argsort(stratum[order], kind="stable")]
-    times, stratum = times[order], stratum[order]
-    starts = first_of_runs(times, stratum)
-    column = np.repeat(np.arange(starts.size), np.diff(starts, append=times.size))
-    leaving = _count(outcome[order], column, n_groups, starts.size)
-    return _table(times[starts], stratum[starts], leaving)
-
-
-def _count(outcome: Ints, column: Ints, n_groups: int, width: int) -> Ints:
-    """How many left at each column, shape (groups, 2, width): censored, then with an event."""
-    cells = 2 * n_groups * width
-    return np.bincount(outcome * width + column, minlength=cells).reshape(n_groups, 2, width)
 
 
 def _table(time: Floats, stratum: Ints, leaving: Ints) -> RiskTable:
@@ -200,3 +239,96 @@ def _table(time: Floats, stratum: Ints, leaving: Ints) -> RiskTable:
     left_at_end = np.repeat(left[:, ends], np.diff(starts, append=time.size), axis=1)
     at_risk = left_at_end - left + leaving.sum(axis=1)
     return RiskTable(time, stratum, at_risk, events=leaving[:, 1], censored=leaving[:, 0])
+
+
+def _by_sorting(subjects: _Subjects) -> RiskTable:
+    """One sort; then a column for each run of subjects who share time and stratum."""
+    ordered = in_time_order(subjects.time, subjects.outcome, subjects.stratum, subjects.n_strata)
+    counts = _Counts.of(ordered, subjects.n_groups)
+    starts, ends = ordered.runs()
+    events = counts.events(starts, ends)
+    return RiskTable(
+        time=ordered.time[starts],
+        stratum=counts.at_each(starts, ordered.strata),
+        at_risk=counts.at_risk(starts),
+        events=events,
+        censored=counts.leaving(starts, ends) - events,
+    )
+
+
+def _events_by_sorting(subjects: _Subjects) -> EventTable:
+    """The same, but only of runs that hold an event."""
+    ordered = in_time_order(subjects.time, subjects.outcome, subjects.stratum, subjects.n_strata)
+    starts, ends = ordered.runs_with_event()
+    counts = _Counts.of(ordered, subjects.n_groups)
+    return EventTable(
+        time=ordered.time[starts],
+        stratum=counts.at_each(starts, ordered.strata),
+        at_risk=counts.at_risk(starts),
+        events=counts.events(starts, ends),
+        strata=ordered.strata,
+        subjects=counts.leaving(np.append(0, ordered.ends)[:-1], ordered.ends),
+    )
+
+
+@dataclass(frozen=True, eq=False)
+class _Counts:
+    """Counts between positions of subjects in order.
+
+    `in_group` says how many of each group but the last, which has the rest, come before each position; each of
+    shape (n + 1,).
+    """
+
+    outcome: Outcomes
+    ends: Ints
+    in_group: tuple[Positions, ...]
+
+    @classmethod
+    def of(cls, ordered: InTimeOrder, n_groups: int) -> _Counts:
+        others = range(n_groups - 1)
+        return cls(
+            ordered.outcome, ordered.ends, tuple(_running(ordered.outcome >> 1 == group) for group in others)
+        )
+
+    def leaving(self, starts: Counts, ends: Counts) -> Counts:
+        """Who leave between the positions, shape (groups, m)."""
+        return _with_last_group(ends - starts, [count[ends] - count[starts] for count in self.in_group])
+
+    def events(self, starts: Counts, ends: Counts) -> Counts:
+        """Who leave with the event between the positions, shape (groups, m)."""
+        by_group = [self.outcome == 2 * group + 1 for group in range(len(self.in_group))]
+        flags = [self.outcome & 1 != 0, *by_group]
+        if starts.size == self.outcome.size or (ends - starts).max(initial=1) == 1:
+            total, *others = (flag[starts] for flag in flags)
+        else:
+            total, *others = (_running(flag)[ends] - _running(flag)[starts] for flag in flags)
+        return _with_last_group(total, others)
+
+    def at_risk(self, starts: Counts) -> Counts:
+        """Who leave at the positions or later in their stratum, shape (groups, m)."""
+        total = self.at_each(starts, self.ends) - starts
+        return _with_last_group(
+            total, [self.at_each(starts, count[self.ends]) - count[starts] for count in self.in_group]
+        )
+
+    def at_each(self, starts: Counts, of_stratum: NDArray[Any]) -> NDArray[Any]:
+        """The value of its stratum at each position, shape (m,)."""
+        if of_stratum.size == 1:
+            return np.broadcast_to(of_stratum, starts.shape)
+        return np.repeat(of_stratum, np.diff(np.searchsorted(starts, self.ends), prepend=0))
+
+
+def _running(flags: NDArray[Any]) -> Positions:
+    running = np.zeros(flags.size + 1, dtype=np.int32)
+    np.cumsum(flags, dtype=np.int32, out=running[1:])
+    return running
+
+
+def _with_last_group(total: NDArray[Any], others: list[NDArray[Any]]) -> Counts:
+    """A row for each group, of which the last has what the others leave of the total."""
+    rows = np.empty((len(others) + 1, total.size), dtype=np.int32)
+    rows[-1] = total
+    for row, count in zip(rows, others, strict=False):
+        row[:] = count
+        rows[-1] -= row
+    return rows

@@ -1,0 +1,114 @@
+"""Subjects in the order of their times, found by one sort.
+
+A time is a double >= 0, and the bit patterns of such doubles, read as integers, stand in the order of the
+doubles. The times of one trial differ in their lower bits only (55 of 64 for a range of 1 to 250), so that
+the stratum fits above them and the outcome below: sorting these 64-bit keys carries both along, with nothing
+left to gather. Where they do not fit, positions are sorted instead.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from app.model.values import Bools, Counts, Floats, Ints
+
+KEY_BITS = 64
+
+Outcomes = NDArray[np.unsignedinteger[Any]]
+"""event + 2 * group of each subject, in the smallest type that holds them."""
+
+Positions = NDArray[np.int32]
+"""Positions among the subjects, and counts up to them; no trial has 2^31 subjects."""
+
+
+@dataclass(frozen=True, eq=False)
+class InTimeOrder:
+    """One entry per subject, shape (n,): stratum by stratum, times increasing within each.
+
+    `strata` are the codes of the strata that hold a subject, shape (s,), and `ends` where each ends.
+    """
+
+    time: Floats
+    outcome: Outcomes
+    strata: Ints
+    ends: Ints
+
+    def runs(self) -> tuple[Positions, Positions]:
+        """Where each run of subjects who share a time and a stratum starts, and where it ends."""
+        starts_run = self._starts_run()
+        if starts_run.all():
+            starts = np.arange(self.time.size, dtype=np.int32)
+        else:
+            starts = np.flatnonzero(starts_run).astype(np.int32)
+        return starts, np.append(starts[1:], np.int32(self.time.size))
+
+    def runs_with_event(self) -> tuple[Positions, Positions]:
+        """The runs that hold an event."""
+        with_event = np.flatnonzero(self.outcome & 1 != 0).astype(np.int32)
+        if self._starts_run().all():  # nobody shares a time: each event is a run
+            return with_event, with_event + np.int32(1)
+        starts, ends = self.runs()
+        first_event = np.searchsorted(with_event, starts)
+        holding = np.flatnonzero(np.append(with_event, self.time.size)[first_event] < ends)
+        return starts[holding], ends[holding]
+
+    def _starts_run(self) -> Bools:
+        is_first = np.empty(self.time.size, dtype=np.bool_)
+        is_first[:1] = True
+        np.not_equal(self.time[1:], self.time[:-1], out=is_first[1:])
+        is_first[self.ends[:-1]] = True
+        return is_first
+
+
+def in_time_order(time: Floats, outcome: Outcomes, stratum: Counts | None, n_strata: int) -> InTimeOrder:
+    """Put subjects in order; all arrays of shape (n,), codes below `n_strata` or one stratum of all."""
+    if stratum is None:
+        strata, ends = np.zeros(min(1, time.size), dtype=np.int64), np.full(min(1, time.size), time.size)
+    else:
+        sizes = np.bincount(stratum, minlength=n_strata)
+        strata = np.flatnonzero(sizes)
+        ends = np.cumsum(sizes[strata])
+    by_keys = _by_packed_keys(time, outcome, stratum, n_strata)
+    in_order = _by_positions(time, outcome, stratum) if by_keys is None else by_keys
+    return InTimeOrder(*in_order, strata, ends)
+
+
+def _by_packed_keys(
+    time: Floats, outcome: Outcomes, stratum: Counts | None, n_strata: int
+) -> tuple[Floats, Outcomes] | None:
+    """Sort [stratum | time | outcome] as integers; None where they need more than 64 bits."""
+    if time.size == 0:
+        return None
+    time = np.abs(time)  # -0.0, which equals 0.0, has another bit pattern
+    patterns = time.view(np.uint64)
+    lowest = int(time.min().view(np.uint64))
+    time_bits = (int(time.max().view(np.uint64)) - lowest).bit_length()
+    outcome_bits = int(outcome.max()).bit_length()
+    stratum_bits = (n_strata - 1).bit_length()
+    if time_bits + outcome_bits + stratum_bits > KEY_BITS:
+        return None
+    keys = np.subtract(patterns, np.uint64(lowest), out=patterns)
+    if stratum is not None:
+        keys |= stratum.astype(np.uint64) << np.uint64(time_bits)
+    keys <<= np.uint64(outcome_bits)
+    keys |= outcome
+    keys.sort()
+    sorted_outcome = keys.astype(outcome.dtype)  # keeps the lower bits
+    sorted_outcome &= (1 << outcome_bits) - 1
+    keys >>= np.uint64(outcome_bits)
+    if stratum is not None:
+        keys &= np.uint64((1 << time_bits) - 1)
+    keys += np.uint64(lowest)
+    return keys.view(np.float64), sorted_outcome
+
+
+def _by_positions(time: Floats, outcome: Outcomes, stratum: Counts | None) -> tuple[Floats, Outcomes]:
+    """One sort by time, and a stable one by stratum where there are strata."""
+    order = np.argsort(time)
+    if stratum is not None:
+        order = order[np.argsort(stratum[order], kind="stable")]
+    return time[order], outcome[order]
