@@ -35,6 +35,9 @@ class SurvivalCurve:
 @dataclass(frozen=True)
 class LogrankStratum:
     """One stratum: `observed` and `expected` events in the experimental arm, `variance` of the score."""
+    """One stratum's share: `observed` and `expected` events in the experimental arm, `variance` of the
+    score.
+    """
 
     stratum: int
     subjects: int
@@ -99,3 +102,269 @@ class ArmComparison:
     logrank_unstratified: LogrankResult | Absent
     cox: CoxResult | Absent
     cox_unstratified: CoxResult | Absent
+class WeightedResult:
+    """A weighted log-rank test: score = sum of weight (O - E) of the experimental arm, its variance, z and p.
+
+    z = -direction score / sqrt(variance): positive favours experimental. `rho` and `gamma` are those of
+    Fleming-Harrington weights.
+    """
+
+    name: str
+    rho: float | None
+    gamma: float | None
+    score: float
+    variance: float
+    z: float
+    chi_square: float
+    p_one_sided: float
+    p_two_sided: float
+
+
+@dataclass(frozen=True, eq=False)
+class WeightedMaximum:
+    """The largest of several weighted tests; `z` is the one largest in absolute value, with its sign.
+
+    `p_two_sided` is of |z|; `p_one_sided` of the largest z in favour of experimental; `p_error` is the
+    standard error of their numerical integration.
+    """
+
+    tests: tuple[WeightedResult, ...]
+    correlation: Floats
+    z: float
+    p_two_sided: float
+    p_one_sided: float
+    p_error: float
+
+
+@dataclass(frozen=True)
+class Landmark:
+    """Survival of one arm at a time, with the curve's standard error and limits there, or why there is
+    none.
+    """
+
+    at: float
+    survival: Estimate
+    std_error: Estimate
+    ci_low: Estimate
+    ci_high: Estimate
+
+
+@dataclass(frozen=True)
+class LandmarkTest:
+    """No difference at the landmark, tested on one scale of survival; 1 degree of freedom."""
+
+    scale: str
+    chi_square: Estimate
+    p_two_sided: Estimate
+
+
+@dataclass(frozen=True)
+class LandmarkComparison:
+    """Survival at one time, experimental - control."""
+
+    at: float
+    control: Landmark
+    experimental: Landmark
+    difference: float
+    std_error: Estimate
+    ci_low: Estimate
+    ci_high: Estimate
+    level: float
+    tests: tuple[LandmarkTest, ...]
+
+
+@dataclass(frozen=True)
+class Quantile:
+    """The time by which `share` of the subjects has had the event."""
+
+    share: float
+    time: Estimate
+    ci_low: Estimate
+    ci_high: Estimate
+
+
+@dataclass(frozen=True, eq=False)
+class CountsAt:
+    """At risk just before each time, events and censorings before it, shape (k,); they add up to the
+    subjects.
+    """
+
+    time: Floats
+    at_risk: Counts
+    events: Counts
+    censored: Counts
+
+
+@dataclass(frozen=True, eq=False)
+class LogLogCurve:
+    """log(-log S) against log t at event times with 0 < S < 1 and t > 0, shape (m,)."""
+
+    time: Floats
+    log_time: Floats
+    log_minus_log: Floats
+
+
+@dataclass(frozen=True, eq=False)
+class CumulativeHazard:
+    """A Nelson-Aalen estimate: a row per distinct observed time, shape (m,). Limits are NaN while it is 0."""
+
+    time: Floats
+    at_risk: Counts
+    events: Counts
+    hazard: Floats
+    std_error: Floats
+    ci_low: Floats
+    ci_high: Floats
+    level: float
+    interval: str
+
+
+@dataclass(frozen=True)
+class Completeness:
+    """Person-time observed, person-time that full follow-up to the cutoff would have given, their ratio
+    0-1.
+    """
+
+    observed: float
+    potential: float
+    share: float
+
+
+@dataclass(frozen=True)
+class RestrictedMean:
+    """Mean time without the event up to `at`, and its standard error, in the unit of `at`."""
+
+    at: float
+    mean: float
+    std_error: float
+
+
+@dataclass(frozen=True)
+class RestrictedMeanRatio:
+    """A ratio experimental / control with its limits."""
+
+    ratio: float
+    ci_low: float
+    ci_high: float
+
+
+@dataclass(frozen=True)
+class RestrictedMeanComparison:
+    """Restricted means up to `at`: experimental - control, and the ratios of the means and of the times
+    lost.
+    """
+
+    at: float
+    control: RestrictedMean
+    experimental: RestrictedMean
+    difference: float
+    std_error: float
+    ci_low: float
+    ci_high: float
+    level: float
+    z: float
+    p_two_sided: float
+    ratio: RestrictedMeanRatio | Absent
+    ratio_of_time_lost: RestrictedMeanRatio | Absent
+
+
+@dataclass(frozen=True, eq=False)
+class GroupsResult:
+    """Several groups, shape (k,): weighted observed and expected events, covariance of O - E, shape (k,
+    k).
+    """
+
+    observed: Floats
+    expected: Floats
+    covariance: Floats
+    chi_square: float
+    degrees_of_freedom: int
+    p: float
+
+
+@dataclass(frozen=True, eq=False)
+class TrendResult:
+    """A trend over groups with `scores`, shape (k,): z > 0 when events come earlier at higher scores."""
+
+    scores: Floats
+    score: float
+    variance: float
+    z: float
+    chi_square: float
+    p_two_sided: float
+
+
+@dataclass(frozen=True)
+class RatioEstimate:
+    """A hazard ratio experimental / control by the method `name`; `std_error` is of the log."""
+
+    name: str
+    log_hazard_ratio: float
+    std_error: float
+    hazard_ratio: float
+    ci_low: float
+    ci_high: float
+    level: float
+
+
+@dataclass(frozen=True)
+class PermutationResult:
+    """p-values among `seen` allocations; the errors are Monte Carlo standard errors, 0 when all were
+    listed.
+    """
+
+    p_one_sided: float
+    p_two_sided: float
+    error_one_sided: float
+    error_two_sided: float
+    seen: int
+    listed_all: bool
+
+
+@dataclass(frozen=True)
+class ChiSquareTest:
+    """A chi-square with its degrees of freedom and the probability of a larger one."""
+
+    chi_square: float
+    degrees_of_freedom: int
+    p: float
+
+
+@dataclass(frozen=True, eq=False)
+class CoxEstimate:
+    """Log hazard ratios per unit of each covariate, shape (p,), with Wald limits and covariance, shape (p,
+    p).
+    """
+
+    coefficients: Floats
+    std_errors: Floats
+    covariance: Floats
+    ci_low: Floats
+    ci_high: Floats
+    level: float
+
+
+@dataclass(frozen=True, eq=False)
+class CoxModel:
+    """A proportional-hazards model; without a finite estimate the likelihood-ratio and score tests stand."""
+
+    estimate: CoxEstimate | Absent
+    log_likelihood_at_zero: float
+    log_likelihood: float
+    likelihood_ratio: ChiSquareTest
+    score: ChiSquareTest
+    wald: ChiSquareTest | Absent
+    ties: str
+    events: int
+
+
+@dataclass(frozen=True, eq=False)
+class BaselineHazard:
+    """Cumulative hazard at each event time of each stratum, shape (m,), with covariates at `at`, shape
+    (p,).
+    """
+
+    stratum: Counts
+    time: Floats
+    cumulative: Floats
+    at: Floats

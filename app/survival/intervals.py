@@ -6,7 +6,9 @@ quantile; it returns lower and upper limits of S.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
+from dataclasses import dataclass
 from types import MappingProxyType
 
 import numpy as np
@@ -61,6 +63,28 @@ KINDS: MappingProxyType[str, Callable[[Floats, Floats, float], Limits]] = Mappin
         "arcsine-square-root": arcsine_square_root,
     }
 )
+
+
+@dataclass(frozen=True)
+class Scale:
+    """A transform of survival strictly between 0 and 1, and its slope: the delta method's factor."""
+
+    value: Callable[[float], float]
+    slope: Callable[[float], float]
+
+
+SCALES: MappingProxyType[str, Scale] = MappingProxyType(
+    {
+        "plain": Scale(lambda s: s, lambda s: 1.0),
+        "log": Scale(math.log, lambda s: 1.0 / s),
+        "log-log": Scale(lambda s: math.log(-math.log(s)), lambda s: 1.0 / (s * math.log(s))),
+        "logit": Scale(lambda s: math.log(s / (1.0 - s)), lambda s: 1.0 / (s * (1.0 - s))),
+        "arcsine-square-root": Scale(
+            lambda s: math.asin(math.sqrt(s)), lambda s: 0.5 / math.sqrt(s * (1.0 - s))
+        ),
+    }
+)
+"""The scale of each kind of limits, for a single survival."""
 
 
 def survival_limits(survival: Floats, error: Floats, *, level: float, interval: str) -> Limits:

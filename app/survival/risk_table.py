@@ -275,8 +275,8 @@ def _events_by_sorting(subjects: _Subjects) -> EventTable:
 class _Counts:
     """Counts between positions of subjects in order.
 
-    `in_group` says how many of each group but the last, which has the rest, come before each position; each of
-    shape (n + 1,).
+    `in_group` says how many of each group but the last, which has the rest, come before each position; each
+    of shape (n + 1,).
     """
 
     outcome: Outcomes

@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 from app.model.values import Bools, Counts, Floats, Ints
 
 KEY_BITS = 64
+SMALL_DAYS = 2**15  # whole days below it are sorted as 16-bit integers, byte by byte
 
 Outcomes = NDArray[np.unsignedinteger[Any]]
 """event + 2 * group of each subject, in the smallest type that holds them."""
@@ -66,15 +67,29 @@ class InTimeOrder:
 
 def in_time_order(time: Floats, outcome: Outcomes, stratum: Counts | None, n_strata: int) -> InTimeOrder:
     """Put subjects in order; all arrays of shape (n,), codes below `n_strata` or one stratum of all."""
-    if stratum is None:
-        strata, ends = np.zeros(min(1, time.size), dtype=np.int64), np.full(min(1, time.size), time.size)
-    else:
-        sizes = np.bincount(stratum, minlength=n_strata)
-        strata = np.flatnonzero(sizes)
-        ends = np.cumsum(sizes[strata])
     by_keys = _by_packed_keys(time, outcome, stratum, n_strata)
-    in_order = _by_positions(time, outcome, stratum) if by_keys is None else by_keys
-    return InTimeOrder(*in_order, strata, ends)
+    if by_keys is None:
+        order = positions_in_order(time, stratum)
+        by_keys = time[order], outcome[order]
+    return InTimeOrder(*by_keys, *strata_and_ends(stratum, n_strata, time.size))
+
+
+def strata_and_ends(stratum: Counts | None, n_strata: int, size: int) -> tuple[Ints, Ints]:
+    """The codes of the strata that hold a subject, and where each ends once subjects are in order."""
+    if stratum is None:
+        return np.zeros(min(1, size), dtype=np.int64), np.full(min(1, size), size)
+    sizes = np.bincount(stratum, minlength=n_strata)
+    strata = np.flatnonzero(sizes)
+    return strata, np.cumsum(sizes[strata])
+
+
+def positions_in_order(time: Floats, stratum: Counts | None) -> Ints:
+    """The positions of the subjects by stratum, then time: one sort, and a stable one by stratum."""
+    if time.size and time[0] % 1.0 == 0.0 and time.max() < SMALL_DAYS and not np.any(time % 1.0):
+        order = np.argsort(time.astype(np.int16), kind="stable")
+    else:
+        order = np.argsort(time)
+    return order if stratum is None else order[np.argsort(stratum[order], kind="stable")]
 
 
 def _by_packed_keys(
@@ -104,11 +119,3 @@ def _by_packed_keys(
         keys &= np.uint64((1 << time_bits) - 1)
     keys += np.uint64(lowest)
     return keys.view(np.float64), sorted_outcome
-
-
-def _by_positions(time: Floats, outcome: Outcomes, stratum: Counts | None) -> tuple[Floats, Outcomes]:
-    """One sort by time, and a stable one by stratum where there are strata."""
-    order = np.argsort(time)
-    if stratum is not None:
-        order = order[np.argsort(stratum[order], kind="stable")]
-    return time[order], outcome[order]
