@@ -368,3 +368,100 @@ class BaselineHazard:
     time: Floats
     cumulative: Floats
     at: Floats
+
+
+@dataclass(frozen=True)
+class ProportionalityResult:
+    """A change of the hazard ratio of two arms along `transform` of time; a positive score: it grows."""
+
+    score: float
+    chi_square: float
+    p: float
+    transform: str
+    ties: str
+
+
+@dataclass(frozen=True)
+class ProportionalityTests:
+    """A change with time of each coefficient of a Cox model, and of all together."""
+
+    covariates: tuple[ChiSquareTest, ...]
+    together: ChiSquareTest
+    transform: str
+    ties: str
+
+
+@dataclass(frozen=True, eq=False)
+class SmoothCurve:
+    """A smooth over a scale of time, shape (k,), with the standard error of its height."""
+
+    on_scale: Floats
+    value: Floats
+    std_error: Floats
+
+
+@dataclass(frozen=True, eq=False)
+class ScaledResiduals:
+    """Scaled Schoenfeld residuals in the order of time: a row per event, (d,) and (d, p); a smooth for each
+    of p.
+    """
+
+    time: Floats
+    on_scale: Floats
+    residuals: Floats
+    coefficients: Floats
+    smooth: tuple[SmoothCurve | Absent, ...]
+    transform: str
+
+
+@dataclass(frozen=True)
+class PeriodRatio:
+    """The hazard ratio of the events in (start, end], or why there is none."""
+
+    start: float
+    end: float
+    events: int
+    ratio: CoxResult | Absent
+
+
+@dataclass(frozen=True)
+class InteractionResult:
+    """The hazard ratio in each subgroup (by its code), and tests that all are one."""
+
+    subgroups: tuple[int, ...]
+    ratios: tuple[CoxResult | Absent, ...]
+    likelihood_ratio: ChiSquareTest
+    wald: ChiSquareTest | Absent
+
+
+@dataclass(frozen=True, eq=False)
+class Incidence:
+    """Cumulative incidence of one cause among others: a row per time with an event of any cause, shape (m,).
+
+    `at_risk` counts those without any event just before; `events` those of this cause, `others` of the
+    others.
+    """
+
+    time: Floats
+    at_risk: Counts
+    events: Counts
+    others: Counts
+    incidence: Floats
+    std_error: Floats
+    ci_low: Floats
+    ci_high: Floats
+    level: float
+    interval: str
+
+
+@dataclass(frozen=True, eq=False)
+class GrayResult:
+    """Gray's test that the incidence of a cause is the same in all groups: scores, (k,), their covariance,
+    (k, k).
+    """
+
+    score: Floats
+    covariance: Floats
+    chi_square: float
+    degrees_of_freedom: int
+    p: float

@@ -203,8 +203,8 @@ def _exact(subjects: CoxSubjects, coefficients: Floats) -> Iterator[tuple[CoxBlo
 def _require_small(subjects: int, largest: int) -> None:
     if subjects > MOST_EXACT_SUBJECTS or subjects * (largest + 1) > MOST_EXACT_SUMS:
         raise NotEstimable(
-            f"exact ties take too long with {subjects:,} subjects and up to {largest:,} events at one time (at "
-            f"most {MOST_EXACT_SUBJECTS:,} subjects, and {MOST_EXACT_SUMS:,} sums); take Efron's approximation"
+            f"exact ties take too long with {subjects:,} subjects and up to {largest:,} events at one time "
+            f"(at most {MOST_EXACT_SUBJECTS:,} subjects and {MOST_EXACT_SUMS:,} sums); take Efron's treatment"
         )
 
 

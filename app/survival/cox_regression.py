@@ -7,12 +7,12 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import gammaincc
 
 from app.errors import AccuracyNotReached, NotEstimable
 from app.model.survival import BaselineHazard, ChiSquareTest, CoxEstimate, CoxModel
 from app.model.values import Absent, Floats, read_only
 from app.survival.checked import checked_choice
+from app.survival.chi_square import chi_square_test
 from app.survival.cox_data import CoxSubjects, cox_subjects
 from app.survival.cox_moments import RiskSums, cox_moments, linear_predictor
 from app.survival.intervals import two_sided_quantile
@@ -218,11 +218,6 @@ def _wald(end: Likelihood) -> ChiSquareTest:
 
 def _chi_square(value: float, likelihood: Likelihood) -> ChiSquareTest:
     return chi_square_test(value, likelihood.coefficients.size)
-
-
-def chi_square_test(value: float, degrees: int) -> ChiSquareTest:
-    """The upper tail of chi-square."""
-    return ChiSquareTest(value, degrees, float(gammaincc(degrees / 2.0, value / 2.0)))
 
 
 def baseline_hazard(

@@ -53,7 +53,7 @@ def completeness(time: ArrayLike, event: ArrayLike, potential: ArrayLike) -> Com
     short = np.flatnonzero(could < times)
     if short.size:
         raise ValueError(
-            f"potential holds {could[short[0]]!r} at a time of {times[short[0]]!r}; accepted: at least as much"
+            f"potential holds {could[short[0]]!r} at time {times[short[0]]!r}; accepted: at least as much"
         )
     observed = math.fsum(times)
     full = math.fsum(np.where(events, times, could))

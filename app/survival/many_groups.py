@@ -6,15 +6,14 @@ import math
 
 import numpy as np
 from numpy.typing import ArrayLike
-from scipy.special import gammaincc, ndtr
+from scipy.special import ndtr
 
 from app.errors import NotEstimable
 from app.model.survival import GroupsResult, TrendResult
 from app.model.values import Floats, read_only
+from app.survival.chi_square import RANK_TOLERANCE, chi_square_of
 from app.survival.risk_table import EventTable, event_table
 from app.survival.weights import LOG_RANK, Weight
-
-RANK_TOLERANCE = 1e-10  # an eigenvalue below this share of the largest is 0
 
 
 def groups_logrank(
@@ -64,20 +63,14 @@ def groups_logrank(
     (2, np.float64(6.0))
     """
     observed, expected, covariance = _scores(event_table(time, event, group, stratum), weight)
-    values, vectors = np.linalg.eigh(covariance)
-    kept = values > RANK_TOLERANCE * max(values[-1], 0.0)
-    if values.size == 0 or values[-1] <= 0.0:
-        raise NotEstimable("no event tells two groups apart")
-    along = vectors[:, kept].T @ (observed - expected)
-    chi_square = float(np.sum(along**2 / values[kept]))
-    degrees = int(kept.sum())
+    test = chi_square_of(observed - expected, covariance, "no event tells two groups apart")
     return GroupsResult(
         observed=read_only(observed, np.float64),
         expected=read_only(expected, np.float64),
         covariance=read_only(covariance, np.float64),
-        chi_square=chi_square,
-        degrees_of_freedom=degrees,
-        p=float(gammaincc(degrees / 2.0, chi_square / 2.0)),
+        chi_square=test.chi_square,
+        degrees_of_freedom=test.degrees_of_freedom,
+        p=test.p,
     )
 
 

@@ -1,0 +1,228 @@
+"""Is the hazard ratio the same at all times? The score test, and the residuals behind it."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from app.errors import NotEstimable
+from app.model.survival import ProportionalityResult, ProportionalityTests, ScaledResiduals, SmoothCurve
+from app.model.values import Absent, Floats, read_only
+from app.survival.chi_square import chi_square_test
+from app.survival.comparison import EXPERIMENTAL, two_arm_events
+from app.survival.cox import maximise, two_arm_likelihood
+from app.survival.cox_data import CoxSubjects, cox_subjects
+from app.survival.cox_moments import CoxMoments, cox_moments
+from app.survival.cox_regression import cox_regression
+from app.survival.natural_spline import natural_spline
+from app.survival.time_scales import event_times_on_scale
+
+SMOOTH_DEGREES = 4
+SMOOTH_POINTS = 40
+RANK_TOLERANCE = 1e-12
+
+ONE_TIME = "all events that tell the arms apart fell at one time, so nothing can change with time"
+
+
+def proportionality(
+    time: ArrayLike,
+    event: ArrayLike,
+    experimental: ArrayLike,
+    *,
+    stratum: ArrayLike | None = None,
+    ties: str = "Efron",
+    transform: str = "km",
+) -> ProportionalityResult:
+    """Test whether the hazard ratio of two arms changes with time.
+
+    Parameters
+    ----------
+    time, event, experimental, stratum, ties : as in `cox_two_arms`
+    transform : "identity", "log", "rank" or "km": the scale g of time on which a change would be a line
+
+    Returns
+    -------
+    ProportionalityResult
+        score [events x scale of g], chi-square on 1 degree of freedom, p, transform.
+
+    Raises
+    ------
+    ValueError : an argument breaks a domain - a bug in the caller.
+    NotEstimable : there is no finite hazard ratio, the events that tell the arms apart fall at one time, or
+    an
+        event at time 0 has no logarithm.
+
+    Notes
+    -----
+    *Convention*: the score test of theta = 0 in exp((beta + theta g(t)) x) with beta estimated: the score is
+    the sum over events of g (observed - expected), its information that of theta less what beta takes of it.
+    An older form, from the correlation of scaled residuals with g, puts one average information for all times
+    and gives other numbers. "km" is 1 - the Kaplan-Meier curve of all subjects just before t, "rank" the mean
+    rank among all times. A positive score says that the hazard ratio grows with time.
+    *Power*: low with few events. That no change is seen does not say that there is none.
+    *Accuracy*: closed given the hazard ratio, which is found as in `cox_two_arms`; relative error below 1e-8.
+    *Checked*: print (app/validation), R (tests/reference), a literal version (tests/naive.py), properties.
+
+    References
+    ----------
+    Grambsch & Therneau (1994), Biometrika 81, 515-526. Schoenfeld (1982), Biometrika 69, 239-241.
+    """
+    table = two_arm_events(time, event, experimental, stratum)
+    likelihood = two_arm_likelihood(table, ties)
+    log_ratio, information = maximise(likelihood)
+    expected, variance = likelihood.expected_and_variance(log_ratio)
+    g = event_times_on_scale(table.time, time, event, transform)
+    g = g - float(np.sum(g * variance)) / information  # centred, theta's information is what beta leaves
+    score = float(np.sum(g * (table.events[EXPERIMENTAL] - expected)))
+    left = float(np.sum(g * g * variance))
+    if left <= RANK_TOLERANCE * information * float(np.max(np.abs(g))) ** 2:
+        raise NotEstimable(ONE_TIME)
+    test = chi_square_test(score * score / left, 1)
+    return ProportionalityResult(score, test.chi_square, test.p, transform, ties)
+
+
+def proportionality_tests(
+    time: ArrayLike,
+    event: ArrayLike,
+    covariates: ArrayLike,
+    *,
+    stratum: ArrayLike | None = None,
+    ties: str = "Efron",
+    transform: str = "km",
+) -> ProportionalityTests:
+    """Test each covariate of a Cox model, and all together, for a coefficient that changes with time.
+
+    Parameters, errors and method as in `proportionality`; covariates as in `cox_regression`.
+    """
+    fitted = _Fitted.of(time, event, covariates, stratum, ties, transform)
+    p = fitted.coefficients.size
+    score, crossed, squared = np.zeros(p), np.zeros((p, p)), np.zeros((p, p))
+    information = np.zeros((p, p))
+    for columns, moments, totals in fitted.moments():
+        g = fitted.g[columns]
+        score += (g[:, None] * (totals - moments.mean)).sum(axis=0)
+        information += moments.variance.sum(axis=0)
+        crossed += (g[:, None, None] * moments.variance).sum(axis=0)
+        squared += (g[:, None, None] ** 2 * moments.variance).sum(axis=0)
+    left = squared - crossed @ np.linalg.solve(information, crossed)
+    scale = np.sqrt(np.diag(squared) + np.diag(information) * np.max(np.abs(fitted.g)) ** 2)
+    if np.linalg.eigvalsh(left / np.outer(scale, scale))[0] <= RANK_TOLERANCE:
+        raise NotEstimable("the events fell at too few times to tell how each coefficient changes")
+    return ProportionalityTests(
+        covariates=tuple(
+            chi_square_test(one * one / value, 1) for one, value in zip(score, np.diag(left), strict=True)
+        ),
+        together=chi_square_test(float(score @ np.linalg.solve(left, score)), p),
+        transform=transform,
+        ties=ties,
+    )
+
+
+def scaled_residuals(
+    time: ArrayLike,
+    event: ArrayLike,
+    covariates: ArrayLike,
+    *,
+    stratum: ArrayLike | None = None,
+    ties: str = "Efron",
+    transform: str = "km",
+) -> ScaledResiduals:
+    """Each event's estimate of the coefficients at its time, and a smooth curve through them.
+
+    Parameters
+    ----------
+    time, event, covariates, stratum, ties : as in `cox_regression`; for two arms the covariate is
+    `experimental` transform : as in `proportionality`
+
+    Returns
+    -------
+    ScaledResiduals
+        a row per event, shape (d,): time, time on its scale, residuals (d, p); a smooth curve per covariate,
+        or why there is none.
+
+    Raises
+    ------
+    ValueError, NotEstimable : as in `proportionality`.
+
+    Notes
+    -----
+    *Convention*: coefficient + d V r, with r the event's covariates less their mean among those at risk (with
+    ties, the mean over the tied events' denominators), V the covariance of the coefficients. The smooth is a
+    natural cubic spline with 4 coefficients over the scale of time; its standard error takes d V for the
+    variance of a residual.
+    *Checked*: R (tests/reference).
+
+    References
+    ----------
+    Schoenfeld (1982), Biometrika 69, 239-241. Grambsch & Therneau (1994), Biometrika 81, 515-526.
+    """
+    fitted = _Fitted.of(time, event, covariates, stratum, ties, transform)
+    subjects, p = fitted.subjects, fitted.coefficients.size
+    expected, information = np.empty((subjects.starts.size, p)), np.zeros((p, p))
+    for columns, moments, _ in fitted.moments():
+        expected[columns] = moments.mean / subjects.n_events[columns, None]
+        information += moments.variance.sum(axis=0)
+    covariance = np.linalg.inv(information)
+    column = np.repeat(np.arange(subjects.starts.size), subjects.n_events)
+    raw = subjects.covariates[subjects.event_rows] - expected[column]
+    residuals = fitted.coefficients + subjects.events * raw @ covariance
+    order = np.argsort(subjects.time[column], kind="stable")
+    on_scale = fitted.g[column][order]
+    return ScaledResiduals(
+        time=read_only(subjects.time[column][order], np.float64),
+        on_scale=read_only(on_scale, np.float64),
+        residuals=read_only(residuals[order], np.float64),
+        coefficients=read_only(fitted.coefficients, np.float64),
+        smooth=tuple(
+            _smooth(on_scale, residuals[order, k], subjects.events * covariance[k, k]) for k in range(p)
+        ),
+        transform=transform,
+    )
+
+
+class _Fitted:
+    """A Cox model at its estimate, with the event times on their scale."""
+
+    def __init__(self, subjects: CoxSubjects, coefficients: Floats, g: Floats, ties: str) -> None:
+        self.subjects, self.coefficients, self.g, self.ties = subjects, coefficients, g, ties
+
+    @classmethod
+    def of(
+        cls,
+        time: ArrayLike,
+        event: ArrayLike,
+        covariates: ArrayLike,
+        stratum: ArrayLike | None,
+        ties: str,
+        transform: str,
+    ) -> _Fitted:
+        estimate = cox_regression(time, event, covariates, stratum=stratum, ties=ties).estimate
+        if isinstance(estimate, Absent):
+            raise NotEstimable(estimate.reason)
+        subjects = cox_subjects(time, event, covariates, stratum)
+        g = event_times_on_scale(subjects.time, time, event, transform)
+        return cls(subjects, estimate.coefficients, g, ties)
+
+    def moments(self) -> Iterator[tuple[slice, CoxMoments, Floats]]:
+        """Block by block: its columns, their moments, and the covariate totals of their events."""
+        subjects = self.subjects
+        for block, moments in cox_moments(subjects, self.coefficients, self.ties):
+            first = subjects.first_events(block.columns)
+            end = first[-1] + subjects.n_events[block.columns.stop - 1]
+            of_events = subjects.covariates[subjects.event_rows[first[0] : end]]
+            yield block.columns, moments, np.add.reduceat(of_events, first - first[0], axis=0)
+
+
+def _smooth(on_scale: Floats, residuals: Floats, variance: float) -> SmoothCurve | Absent:
+    """The spline at equal steps of the scale, with the standard error of its height."""
+    if np.unique(on_scale).size < SMOOTH_DEGREES + 1:
+        return Absent(f"a smooth curve needs events at {SMOOTH_DEGREES + 1} times or more")
+    at = np.linspace(on_scale.min(), on_scale.max(), SMOOTH_POINTS)
+    value, error = natural_spline(on_scale, residuals, at, SMOOTH_DEGREES)
+    return SmoothCurve(
+        on_scale=read_only(at, np.float64),
+        value=read_only(value, np.float64),
+        std_error=read_only(error * np.sqrt(variance), np.float64),
+    )
