@@ -140,7 +140,7 @@ def logrank_steps(table: RiskTable | EventTable) -> LogrankSteps:
     --------
     >>> steps = logrank_steps(two_arm_table([1, 2, 3, 4], [True] * 4, [False, False, True, True]))
     >>> steps.observed.tolist(), steps.expected.round(3).tolist(), steps.variance.round(3).tolist()
-    ([0.0, 0.0, 1.0, 1.0], [0.5, 0.667, 1.0, 1.0], [0.25, 0.222, 0.0, 0.0])
+    ([0, 0, 1, 1], [0.5, 0.667, 1.0, 1.0], [0.25, 0.222, 0.0, 0.0])
     """
     at_events = table.at_events()
     n, d = at_events.at_risk_in_all, at_events.events_in_all
