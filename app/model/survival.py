@@ -35,6 +35,7 @@ class SurvivalCurve:
 @dataclass(frozen=True)
 class LogrankStratum:
     """One stratum: `observed` and `expected` events in the experimental arm, `variance` of the score."""
+
     """One stratum's share: `observed` and `expected` events in the experimental arm, `variance` of the
     score.
     """
@@ -102,6 +103,9 @@ class ArmComparison:
     logrank_unstratified: LogrankResult | Absent
     cox: CoxResult | Absent
     cox_unstratified: CoxResult | Absent
+
+
+@dataclass(frozen=True)
 class WeightedResult:
     """A weighted log-rank test: score = sum of weight (O - E) of the experimental arm, its variance, z and p.
 
