@@ -10,9 +10,10 @@ from app.validation.family_rows import family_rows
 from app.validation.outlook_rows import outlook_rows
 from app.validation.rows import PublishedRow, RowOutcome
 from app.validation.sequential_rows import sequential_rows
+from app.validation.shape_rows import shape_rows
 from app.validation.survival_rows import survival_rows
 
-SOURCES = (survival_rows, sequential_rows, family_rows, design_rows, outlook_rows)
+SOURCES = (survival_rows, shape_rows, sequential_rows, family_rows, design_rows, outlook_rows)
 
 __all__ = ["PublishedRow", "RowOutcome", "published_rows"]
 
