@@ -9,6 +9,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 from fractions import Fraction
+from itertools import combinations, pairwise
 from typing import NamedTuple
 
 
@@ -183,3 +184,139 @@ def two_look_boundary(
         alpha_one_side - spent_first,
     )
     return first, last
+
+
+def pooled_survival_before(time: Sequence[float], event: Sequence[bool], at: float) -> Fraction:
+    """The Kaplan-Meier curve of all subjects just before a time."""
+    earlier = [row for row in kaplan_meier(time, event) if row.time < at]
+    return earlier[-1].survival if earlier else Fraction(1)
+
+
+def weighted_logrank(
+    time: Sequence[float],
+    event: Sequence[bool],
+    experimental: Sequence[bool],
+    weight: Callable[[int, int, Fraction], float],
+    stratum: Sequence[int] | None = None,
+) -> tuple[float, float]:
+    """Score and variance with a weight of (at risk, events, curve just before) at each event time."""
+    subjects = list(zip(time, event, experimental, stratum or [0] * len(time), strict=True))
+    score, variance = 0.0, 0.0
+    for code in {s for *_, s in subjects}:
+        inside = [(t, e, x) for t, e, x, s in subjects if s == code]
+        for at in {t for t, e, _ in inside if e}:
+            n = sum(1 for t, _, _ in inside if t >= at)
+            n1 = sum(1 for t, _, x in inside if t >= at and x)
+            d = sum(1 for t, e, _ in inside if t == at and e)
+            d1 = sum(1 for t, e, x in inside if t == at and e and x)
+            before = pooled_survival_before([t for t, _, _ in inside], [e for _, e, _ in inside], at)
+            w = weight(n, d, before)
+            score += w * float(d1 - Fraction(d * n1, n))
+            if n > 1:
+                variance += w * w * float(Fraction(d * n1 * (n - n1) * (n - d), n * n * (n - 1)))
+    return score, variance
+
+
+def cumulative_hazard(time: Sequence[float], event: Sequence[bool]) -> list[tuple[Fraction, Fraction]]:
+    """Nelson-Aalen and Aalen's variance, one pair per distinct time."""
+    pairs, hazard, variance = [], Fraction(0), Fraction(0)
+    for row in kaplan_meier(time, event):
+        hazard += Fraction(row.events, row.at_risk)
+        variance += Fraction(row.events, row.at_risk**2)
+        pairs.append((hazard, variance))
+    return pairs
+
+
+def survival_at(rows: Sequence[CurveRow], at: float) -> Fraction:
+    reached = [row.survival for row in rows if row.time <= at]
+    return reached[-1] if reached else Fraction(1)
+
+
+def area(rows: Sequence[CurveRow], start: float, end: float) -> float:
+    """The area under the curve between two times, step by step."""
+    cuts = sorted({start, end, *(row.time for row in rows if start < row.time < end)})
+    return sum(float(survival_at(rows, low)) * (high - low) for low, high in pairwise(cuts))
+
+
+def restricted_mean(time: Sequence[float], event: Sequence[bool], at: float) -> tuple[float, float]:
+    """Mean up to a time and its variance (Irwin 1949)."""
+    rows = kaplan_meier(time, event)
+    variance = sum(
+        area(rows, row.time, at) ** 2 * row.events / (row.at_risk * (row.at_risk - row.events))
+        for row in rows
+        if row.events and row.time < at and row.at_risk > row.events
+    )
+    return area(rows, 0.0, at), variance
+
+
+def log_partial_likelihood(
+    time: Sequence[float],
+    event: Sequence[bool],
+    predictor: Sequence[float],
+    stratum: Sequence[int],
+    ties: str,
+) -> float:
+    """The log partial likelihood at covariates . coefficients = `predictor`, straight from the
+    definitions.
+    """
+    total = 0.0
+    for code in set(stratum):
+        inside = [i for i, s in enumerate(stratum) if s == code]
+        for at in {time[i] for i in inside if event[i]}:
+            dying = [i for i in inside if time[i] == at and event[i]]
+            at_risk = [i for i in inside if time[i] >= at]
+            total += sum(predictor[i] for i in dying)
+            total -= _log_denominator(at_risk, dying, predictor, ties)
+    return total
+
+
+def _log_denominator(at_risk: list[int], dying: list[int], predictor: Sequence[float], ties: str) -> float:
+    if ties == "exact":
+        subsets = combinations(at_risk, len(dying))
+        return math.log(sum(math.exp(sum(predictor[i] for i in subset)) for subset in subsets))
+    everybody, gone = (sum(math.exp(predictor[i]) for i in some) for some in (at_risk, dying))
+    share = [k / len(dying) if ties == "Efron" else 0.0 for k in range(len(dying))]
+    return sum(math.log(everybody - one * gone) for one in share)
+
+
+def proportionality(
+    time: Sequence[float],
+    event: Sequence[bool],
+    experimental: Sequence[bool],
+    log_ratio: float,
+    scale: Callable[[float], float],
+) -> float:
+    """Chi-square of the score test for a log ratio that changes along `scale` (Grambsch & Therneau 1994)."""
+    subjects = list(zip(time, event, experimental, strict=True))
+    score = 0.0
+    information = [[0.0, 0.0], [0.0, 0.0]]
+    for at in {t for t, e, _ in subjects if e}:
+        g = scale(at)
+        dying = [x for t, e, x in subjects if t == at and e]
+        for k in range(len(dying)):
+            weight = {x: sum(1 for t, _, y in subjects if t >= at and y == x) for x in (False, True)}
+            weight = {x: weight[x] - k / len(dying) * dying.count(x) for x in weight}
+            one = weight[True] * math.exp(log_ratio)
+            share = one / (weight[False] + one)
+            score -= g * share
+            for i, a in enumerate((1.0, g)):
+                for j, b in enumerate((1.0, g)):
+                    information[i][j] += a * b * share * (1 - share)
+        score += g * sum(dying)
+    left = information[1][1] - information[0][1] ** 2 / information[0][0]
+    return score * score / left
+
+
+def cumulative_incidence(
+    time: Sequence[float], cause: Sequence[int], of: int
+) -> list[tuple[float, Fraction]]:
+    """Aalen & Johansen (1978): the curve of no event at all before each time, times the hazard of the
+    cause.
+    """
+    found, incidence = [], Fraction(0)
+    for at in sorted({t for t, c in zip(time, cause, strict=True) if c}):
+        n = sum(1 for t in time if t >= at)
+        d = sum(1 for t, c in zip(time, cause, strict=True) if t == at and c == of)
+        incidence += pooled_survival_before(time, [c > 0 for c in cause], at) * Fraction(d, n)
+        found.append((at, incidence))
+    return found

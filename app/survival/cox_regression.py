@@ -89,7 +89,7 @@ def cox_regression(
     if not subjects.starts.size:
         raise NotEstimable("no event was observed" if subjects.size else "no subjects")
     start = Likelihood.at(subjects, np.zeros(subjects.n_covariates), ties)
-    _require_independent(start.information)
+    _require_independent(start)
     end, reason = _maximise(start)
     score = _chi_square(float(start.score @ np.linalg.solve(start.information, start.score)), start)
     return CoxModel(
@@ -127,15 +127,17 @@ class Likelihood:
         return cls(subjects, ties, coefficients, log_likelihood, score, information)
 
 
-def _require_independent(information: Floats) -> None:
+def _require_independent(start: Likelihood) -> None:
     """Refuse covariates whose coefficients the likelihood cannot tell apart."""
-    scale = np.sqrt(np.diag(information))
-    constant = np.flatnonzero(scale == 0.0)
+    variance = np.diag(start.information)
+    spread = start.subjects.events * start.subjects.covariates.var(axis=0)
+    constant = np.flatnonzero(variance <= RANK_TOLERANCE * spread)
     if constant.size:
         raise NotEstimable(
             f"covariate {constant[0]} is the same for all who are at risk together at any event"
         )
-    values = np.linalg.eigvalsh(information / np.outer(scale, scale))
+    scale = np.sqrt(variance)
+    values = np.linalg.eigvalsh(start.information / np.outer(scale, scale))
     if values[0] < RANK_TOLERANCE * len(values):
         raise NotEstimable("a covariate follows from the others among those at risk")
 

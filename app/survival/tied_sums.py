@@ -19,7 +19,7 @@ from app.model.values import Floats, Ints
 
 SMALLEST_EXPANDED = 16.0
 DIGAMMA = (1 / 24, -7 / 960, 31 / 8064, -127 / 30720, 511 / 67584)  # of z^-2, z^-4, ...
-LOG_GAMMA = (-1 / 24, 7 / 2880, -31 / 40320, 127 / 430080)  # of z^-1, z^-3, ...
+LOG_GAMMA = (-1 / 24, 7 / 2880, -31 / 40320, 127 / 215040, -511 / 608256)  # of z^-1, z^-3, ...
 TRIGAMMA = (-1 / 12, 7 / 240, -31 / 1344, 127 / 3840, -2555 / 33792)  # of z^-3, z^-5, ...
 
 
@@ -48,10 +48,11 @@ def tied_log_sum(x: Floats, d: Floats) -> Floats:
     total[written_out] = _log_written_out(x[written_out], d[written_out])
     x, d, high, low = (part[~written_out] for part in (x, d, high, low))
     expanded = high * np.log1p(0.5 / x) - low * np.log1p((0.5 - d) / x) - d
-    high_power, low_power = 1.0 / high, 1.0 / low
+    of_high, of_low = 1.0 / high, 1.0 / low
+    high_power, low_power = of_high, of_low
     for a in LOG_GAMMA:
         expanded += a * (high_power - low_power)
-        high_power, low_power = high_power / high**2, low_power / low**2
+        high_power, low_power = high_power * of_high**2, low_power * of_low**2
     total[~written_out] = expanded
     return total
 
@@ -71,7 +72,8 @@ def _counted(d: Floats) -> tuple[Ints, Ints]:
 
 def _written_out(x: Floats, d: Floats) -> tuple[Floats, Floats]:
     starts, k = _counted(d)
-    term = 1.0 / (1.0 - k / np.repeat(x, d.astype(np.int64)))
+    of_each = np.repeat(x, d.astype(np.int64))
+    term = of_each / (of_each - k)
     return _sums_from(starts, term), _sums_from(starts, term * term)
 
 

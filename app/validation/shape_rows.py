@@ -210,7 +210,7 @@ def _leukaemia_computed() -> list[Item]:
     arguments = (sample.time, sample.event, sample.is_in("6-MP"))
 
     def gehan(column: str) -> float:
-        return abs(getattr(weighted_logrank(*arguments, weight=GEHAN_BRESLOW), column))
+        return abs(float(getattr(weighted_logrank(*arguments, weight=GEHAN_BRESLOW), column)))
 
     return [
         *_weighted("leukaemia_remission", "6-MP", LEUKAEMIA_WEIGHTED),

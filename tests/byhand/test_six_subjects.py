@@ -19,7 +19,23 @@ import numpy as np
 import pytest
 
 from app.model.values import Absent
-from app.survival import cox_two_arms, follow_up_median, kaplan_meier, logrank, two_arm_table
+from app.survival import (
+    GEHAN_BRESLOW,
+    PETO_PETO,
+    cox_regression,
+    cox_two_arms,
+    cumulative_incidence,
+    fleming_harrington,
+    follow_up_median,
+    groups_logrank,
+    kaplan_meier,
+    logrank,
+    nelson_aalen,
+    restricted_mean,
+    trend_logrank,
+    two_arm_table,
+    weighted_logrank,
+)
 from tests import naive
 
 TIME = [2.0, 3.0, 5.0, 3.0, 3.0, 6.0]
@@ -156,3 +172,71 @@ def test_the_literal_versions_give_the_same_fractions() -> None:
     log_ratio, _ = naive.cox(TIME, EVENT, EXPERIMENTAL, ties="Breslow")
     assert math.exp(log_ratio) == pytest.approx((math.sqrt(57) - 3) / 12, rel=1e-12)
     assert naive.merge_near_ties([0.3, 0.1 + 0.2, 1.0]) == [0.3, 0.3, 1.0]
+
+
+def test_weighted_sums() -> None:
+    # just before 2, 3, 6 the pooled curve is 1, 5/6, 1/2; O - E is 0 - 1/2, 1 - 6/5, 1 - 1; V is 1/4, 9/25, 0
+    early = weighted_logrank(TIME, EVENT, EXPERIMENTAL, weight=fleming_harrington(1, 0))
+    assert [early.score, early.variance] == exactly(
+        -Fraction(1, 2) - Fraction(5, 6) * Fraction(1, 5), Fraction(1, 4) + Fraction(25, 36) * Fraction(9, 25)
+    )
+    at_risk = weighted_logrank(TIME, EVENT, EXPERIMENTAL, weight=GEHAN_BRESLOW)
+    assert [at_risk.score, at_risk.variance] == exactly(Fraction(-3 - 1), Fraction(9 + 9))
+    peto = weighted_logrank(TIME, EVENT, EXPERIMENTAL, weight=PETO_PETO)
+    first, second = 1 - Fraction(1, 7), (1 - Fraction(1, 7)) * (1 - Fraction(2, 6))
+    assert [peto.score, peto.variance] == exactly(
+        -first / 2 - second / 5, first**2 / 4 + second**2 * Fraction(9, 25)
+    )
+
+
+def test_cumulative_hazard_and_restricted_mean_of_the_control_arm() -> None:
+    hazard = nelson_aalen(*arm(False))
+    assert hazard.hazard.tolist() == exactly(Fraction(1, 3), Fraction(5, 6), Fraction(5, 6))
+    assert (hazard.std_error**2).tolist() == exactly(Fraction(1, 9), Fraction(13, 36), Fraction(13, 36))
+    # the curve is 1 to 2, 2/3 to 3, 1/3 to 5; after the events at 2 and 3 its areas to 4 are 1 and 1/3
+    mean = restricted_mean(kaplan_meier(*arm(False)), 4.0)
+    assert mean.mean == pytest.approx(3.0, **EXACT)
+    assert mean.std_error**2 == pytest.approx(float(Fraction(1, 6) + Fraction(1, 9) / 2), **EXACT)
+
+
+def test_cox_with_exact_ties_solves_its_score_equation() -> None:
+    # of the 10 pairs at risk at 3, 1 holds no experimental subject, 6 hold one and 3 hold two; the event
+    # at 6 is certain: 1 = t/(1+t) + (6t + 6t^2)/(1 + 6t + 3t^2), cleared of fractions 6 t^3 + 9 t^2 - 1 = 0
+    result = cox_two_arms(TIME, EVENT, EXPERIMENTAL, ties="exact")
+    theta = Fraction(result.hazard_ratio)
+    assert abs(float(6 * theta**3 + 9 * theta**2 - 1)) < 1e-14
+    model = cox_regression(TIME, EVENT, [float(x) for x in EXPERIMENTAL], ties="exact")
+    assert model.score.chi_square == pytest.approx(49 / 61, rel=1e-13)  # the log-rank test
+
+
+def test_incidence_of_one_cause_among_two() -> None:
+    # causes: 1 in control, 2 experimental; at risk 6, 5, 1 at times 2, 3, 6, events (1, 0), (1, 1), (0, 1)
+    cause = [1 + x if e else 0 for e, x in zip(EVENT, EXPERIMENTAL, strict=True)]
+    found = cumulative_incidence(TIME, cause)
+    assert found.incidence.tolist() == exactly(Fraction(1, 6), Fraction(1, 3), Fraction(1, 3))
+    other = cumulative_incidence(TIME, cause, of=2)
+    assert other.incidence.tolist() == exactly(Fraction(0), Fraction(1, 6), Fraction(2, 3))
+    # at 2: (5/6)(1/6)/6, the binomial variance
+    assert found.std_error[0] ** 2 == pytest.approx(5 / 216, **EXACT)
+
+
+def test_trend_and_groups_are_the_two_arm_test() -> None:
+    groups = groups_logrank(TIME, EVENT, [int(x) for x in EXPERIMENTAL])
+    assert groups.chi_square == pytest.approx(49 / 61, rel=1e-13)
+    assert groups.covariance.ravel().tolist() == exactly(*(Fraction(s * 61, 100) for s in (1, -1, -1, 1)))
+    assert trend_logrank(TIME, EVENT, [int(x) for x in EXPERIMENTAL]).z == pytest.approx(-7 / math.sqrt(61))
+
+
+def test_the_further_literal_versions_give_the_same_fractions() -> None:
+    score, variance = naive.weighted_logrank(TIME, EVENT, EXPERIMENTAL, lambda n, d, before: float(before))
+    assert [score, variance] == exactly(-Fraction(2, 3), Fraction(1, 2))
+    assert naive.cumulative_hazard(*arm(False))[1] == (Fraction(5, 6), Fraction(13, 36))
+    assert naive.restricted_mean(*arm(False), 4.0) == pytest.approx((3.0, 2 / 9), **EXACT)
+    cause = [1 + x if e else 0 for e, x in zip(EVENT, EXPERIMENTAL, strict=True)]
+    assert naive.cumulative_incidence(TIME, cause, 2)[-1] == (6.0, Fraction(2, 3))
+    # at coefficient 0: 6, then 5 and 4 (Efron: 5 and 5 - 1), then 1; exact: 10 pairs
+    zero = [0.0] * 6
+    efron = naive.log_partial_likelihood(TIME, EVENT, zero, [0] * 6, "Efron")
+    assert efron == pytest.approx(-math.log(6 * 5 * 4))
+    exact = naive.log_partial_likelihood(TIME, EVENT, zero, [0] * 6, "exact")
+    assert exact == pytest.approx(-math.log(6 * 10))

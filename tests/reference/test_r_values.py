@@ -1,7 +1,7 @@
 """Against R's survival and cmprsk on twelve open data sets: r_values.R wrote what they compute.
 
-Closed forms agree to 1e-10. What R iterates stops at a relative change of 1e-12 of the log-likelihood, that is
-about 1e-6 of a standard error from the root, so estimates agree to 1e-8 where that error allows.
+Closed forms agree to 1e-10. What R iterates stops at a relative change of 1e-12 of the log-likelihood, that
+is about 1e-6 of a standard error from the root, so estimates agree to 1e-8 where that error allows.
 """
 
 from __future__ import annotations
@@ -69,7 +69,20 @@ def values() -> dict[tuple[str, str], list[float]]:
     return found
 
 
-SETS = ("aml", "lung", "veteran", "ovarian", "pbc", "kidney", "colon", "gbsg", "rats", "stanford2", "retinopathy", "mgus2")
+SETS = (
+    "aml",
+    "lung",
+    "veteran",
+    "ovarian",
+    "pbc",
+    "kidney",
+    "colon",
+    "gbsg",
+    "rats",
+    "stanford2",
+    "retinopathy",
+    "mgus2",
+)
 every_set = pytest.mark.parametrize("name", SETS)
 
 
@@ -233,7 +246,9 @@ def test_scaled_residuals_and_their_smooth(name: str) -> None:
     assert ours.on_scale[:6].tolist() == pytest.approx(theirs[:6], **CLOSED)
     # events at one time stand in no order
     first = ours.on_scale[:6] < ours.on_scale[5] if ours.on_scale[5] == ours.on_scale[6] else slice(0, 6)
-    assert sorted(ours.residuals[:6, 0][first]) == pytest.approx(sorted(np.array(theirs[6:])[first]), rel=1e-7, abs=1e-7)
+    assert sorted(ours.residuals[:6, 0][first]) == pytest.approx(
+        sorted(np.array(theirs[6:])[first]), rel=1e-7, abs=1e-7
+    )
     assert [ours.residuals.sum()] == pytest.approx(values()[name, "residual_sum"], rel=1e-7, abs=1e-6)
     smooth = ours.smooth[0]
     assert not isinstance(smooth, Absent)
