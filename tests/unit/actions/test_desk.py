@@ -8,7 +8,7 @@ import pytest
 
 import app.actions.looks
 from app.actions.desk import Cache, Desk
-from app.actions.looks import closed_book, open_book
+from app.actions.looks import closed_book, open_book, pooled_look
 from app.model.look import PooledResult
 from app.settings import Settings
 from tests.unit.actions.invented_file import desk, held, settings
@@ -66,3 +66,9 @@ def test_a_file_that_may_only_be_read_is_shown_and_nothing_is_entered(tmp_path: 
         assert not reading.may_write
         assert closed_book(reading, 2, session="an evening").frame.look == 2
     assert file.read_bytes() == before
+
+
+def test_a_pooled_look_names_the_looks_before_it(tmp_path: Path) -> None:
+    with desk(held(tmp_path, 4)) as open_desk:
+        past = pooled_look(open_desk, 3).past
+    assert past == ((1, 30 / 80, 30), (2, 52 / 80, 52))

@@ -11,6 +11,7 @@ import pytest
 
 from app.actions.check import record_verification, verify, verify_desk
 from app.actions.freeze import freeze
+from app.actions.looks import closed_book
 from app.actions.report import report, write_report
 from app.errors import AppError, InputError
 from app.ledger.bodies import Verification
@@ -18,6 +19,7 @@ from app.ledger.entries import read_body
 from app.verification.check import CheckReport
 from tests.unit.actions.invented_file import BY, desk, held, settings
 from tests.unit.review.invented_trial import CUTOFFS
+from tests.unit.sheets.invented_looks import table_texts
 from tests.unit.verification.forging import flip_a_byte, forge_record, forge_report
 
 WHOLE = "is whole, and every stored byte is as received."
@@ -182,6 +184,21 @@ def test_a_word_changed_in_a_report_is_found_by_setting_it_again(file: Path) -> 
     """The record is as it was, and so is every digest; only the page says something else."""
     forge_report(file, 2, b"no boundary crossed", b"all went very well")
     assert "Look 2, closed report: set again from its snapshot, it has other bytes." in faults(file)
+
+
+def another_bound(record: dict[str, Any]) -> None:
+    look_of(record)["boundary"]["efficacy_z"] = 3.141
+
+
+def test_a_frozen_look_is_shown_with_its_bound_as_stored_and_never_recomputed(file: Path) -> None:
+    """Whatever a later version would compute: on its own page, and on those of the looks after it."""
+    forge_record(file, 1, another_bound)
+    with desk(file) as open_desk:
+        own, later = (closed_book(open_desk, look, session=None).sheet("boundary") for look in (1, 2))
+    assert own is not None
+    assert later is not None
+    assert table_texts(own, "Look 1")["Efficacy bound"] == ["3.141", "3.141"]
+    assert table_texts(later, "The looks")["1, held"][3] == "3.141"
 
 
 def information_that_cannot_be(record: dict[str, Any]) -> None:
