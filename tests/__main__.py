@@ -29,6 +29,7 @@ NEEDS = (
     "hypothesis",
     "mpmath",
     "httpx2",
+    "plotly",
     "playwright",
     "axe_playwright_python",
     "ruff",

@@ -29,7 +29,7 @@ else:
     import fcntl
 
 ROOT = Path(__file__).resolve().parents[2]
-RUNTIME = ("fastapi", "uvicorn", "jinja2", "numpy", "scipy", "pandas", "plotly", "python_multipart")
+RUNTIME = ("fastapi", "uvicorn", "jinja2", "numpy", "scipy", "pandas", "python_multipart")
 """The modules that show that app/requirements.lock, or something like it, is installed."""
 
 WAIT_SECONDS = 0.2

@@ -7,6 +7,7 @@ import re
 from typing import Any
 
 import pytest
+from plotly.graph_objects import Figure
 
 from app.render import figures
 from app.render.plotly_figures import plotly_figure
@@ -40,6 +41,22 @@ def test_a_chart_is_plain_json(name: str) -> None:
     text = json.dumps(CHARTS[name], allow_nan=False)
     assert json.loads(text) == CHARTS[name]
     assert text == json.dumps(plotly_figure(FIGURES[name]), allow_nan=False)
+
+
+@every_chart
+@pytest.mark.parametrize("page", ["wide", "narrow"])
+def test_plotly_knows_every_name_that_a_chart_uses(name: str, page: str) -> None:
+    """The library's own schema refuses a key or a value that the script in the page would pass over in silence."""
+    chart = CHARTS[name]
+    assert chart is not None
+    part = {key: value for key, value in chart[page].items() if key in ("data", "layout")}
+    known = Figure(part, skip_invalid=False)
+    assert len(known.data) == len(part["data"])
+
+
+def test_plotly_refuses_a_name_it_does_not_know() -> None:
+    with pytest.raises(ValueError, match="Invalid property"):
+        Figure({"data": [{"type": "scatter", "lines": {}}]}, skip_invalid=False)
 
 
 @every_chart
