@@ -46,7 +46,7 @@ def test_a_chart_is_plain_json(name: str) -> None:
 @every_chart
 @pytest.mark.parametrize("page", ["wide", "narrow"])
 def test_plotly_knows_every_name_that_a_chart_uses(name: str, page: str) -> None:
-    """The library's own schema refuses a key or a value that the script in the page would pass over in silence."""
+    """The library's own schema refuses a key or a value that the page's script passes over in silence."""
     chart = CHARTS[name]
     assert chart is not None
     part = {key: value for key, value in chart[page].items() if key in ("data", "layout")}
