@@ -42,11 +42,11 @@ def view_of(desk: Desk, number: int) -> ClosedView:
     return closed_view(desk.trial, desk.trial.state(), assembled_look(desk, number))
 
 
-def closed_book(desk: Desk, look: int, *, session: str | None) -> LookBook:
+def closed_book(desk: Desk, look: int, *, session: str | None, by: str = "") -> LookBook:
     """All sheets of a look as the closed side sees it now; the first opening in a session is recorded."""
     book = closed_book_of(desk, look, history_now(desk), desk.settings.clock().date())
     if session is not None:
-        _record_opening(desk, look, session)
+        _record_opening(desk, look, session, by)
     return book
 
 
@@ -58,14 +58,14 @@ def closed_book_of(desk: Desk, number: int, history: History, run_on: date) -> L
     return set_closed_book(view, around, assembled.snapshot, assembled.extract, history)
 
 
-def _record_opening(desk: Desk, look: int, session: str) -> None:
+def _record_opening(desk: Desk, look: int, session: str, by: str) -> None:
     """Once per look and session; a file that may only be read is read without it."""
     state = desk.trial.state()
     if not desk.may_write or state.opened(look, session):
         return
     with desk.trial.act() as act:
         if not act.state.opened(look, session):
-            act.append(ResultsOpened(look, session, "unmasked" if act.state.unmasked else "masked"))
+            act.append(ResultsOpened(look, session, "unmasked" if act.state.unmasked else "masked", by))
 
 
 def history_now(desk: Desk) -> History:

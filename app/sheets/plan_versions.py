@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Protocol
+
 from app.ledger.bodies import PlanAmended
 from app.ledger.history import PlanVersion, State
 from app.sheets.blocks import Cell, Column, Row, Table
@@ -40,7 +42,17 @@ def _version_row(state: State, version: PlanVersion) -> Row:
     return Row((count(version.version),), tuple(Cell(line(text)) for text in words))
 
 
-def known_before(amended: PlanAmended) -> str:
+class Knowing(Protocol):
+    """An amendment, recorded or about to be."""
+
+    @property
+    def results_opened(self) -> tuple[int, ...]: ...
+
+    @property
+    def unmasked(self) -> bool: ...
+
+
+def known_before(amended: Knowing) -> str:
     """ "results of looks 1 and 2 had been opened, arms masked": what an amendment was made in sight of."""
     if not amended.results_opened:
         return NOBODY

@@ -245,7 +245,15 @@ def _refusal_said(body: RefusalRecorded) -> str:
 
 def _acts(state: State, look: Look, number: int) -> tuple[ActLink, ...]:
     """What can be done from here, the irrevocable ones last."""
-    acts = [ActLink("Receive the next extract", "receive"), ActLink("Verify the trial file", "verify")]
+    acts = [ActLink("Receive the next extract", "receive")]
+    if state.frozen_looks:
+        acts.append(ActLink("Record a recommendation", "recommend"))
+    acts += [
+        ActLink("Amend the plan", "amend"),
+        ActLink("Correct an entry", "erratum"),
+        ActLink("Back up", "backup"),
+        ActLink("Verify the trial file", "verify"),
+    ]
     if look.frozen is not None:
         acts.insert(0, ActLink(f"Download the report of look {number}", f"looks/{number}/report"))
     else:

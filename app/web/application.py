@@ -18,9 +18,10 @@ from app.web.headers import StrictHeaders
 from app.web.keys import Keys
 from app.web.limits import BodyLimit
 from app.web.pages import Pages
-from app.web.routes import acts, entering, looks, receiving
+from app.web.routes import acts, amending, entering, looks, receiving, record, verification
 from app.web.sessions import Sessions
 from app.web.site import Site
+from app.web.verifying import Verifying
 
 NO_TELEMETRY: TelemetryConfig = {"tracing": False, "metrics": False, "logs": False, "auto_configure": False}
 
@@ -50,9 +51,9 @@ def create_app(settings: Settings, desk: Desk, keys: Keys, *, port: int) -> Appl
             Middleware(BodyLimit, limits=settings.limits, pages=pages),
         ],
     )
-    app.state.site = Site(settings, desk, keys, address, sessions, environment, pages)
+    app.state.site = Site(settings, desk, keys, address, sessions, environment, pages, Verifying(desk))
     answer_errors(app, pages)
-    for module in (entering, receiving, acts, looks):
+    for module in (entering, receiving, acts, record, amending, verification, looks):
         app.include_router(module.router)
     app.mount("/static", StaticFiles(directory=asset("static")), name="static")
     return app

@@ -6,6 +6,7 @@ import hashlib
 from dataclasses import dataclass
 from datetime import datetime, timedelta
 
+from app.actions.desk import UploadedFile
 from app.actions.receive import Incoming, Understanding
 from app.settings import Settings
 from app.web.keys import Side, random_word
@@ -22,6 +23,14 @@ class Upload:
     understood: Understanding
 
 
+@dataclass(frozen=True, eq=False)
+class PlanUpload:
+    """A plan that was read and not yet recorded as an amendment; it waits in memory."""
+
+    token: str
+    file: UploadedFile
+
+
 @dataclass(eq=False)
 class Session:
     """One browser that entered. `id` goes into the history and says nothing about the cookie."""
@@ -32,6 +41,8 @@ class Session:
     seen: datetime
     by: str = ""
     upload: Upload | None = None
+    refused: Upload | None = None
+    plan: PlanUpload | None = None
 
 
 class Sessions:
@@ -41,7 +52,7 @@ class Sessions:
         self._settings = settings
         self._by_digest: dict[bytes, Session] = {}
 
-    def begin(self, side: Side) -> str:
+    def begin(self, side: Side, *, by: str = "") -> str:
         """The cookie of a new session. Ended ones are forgotten here, with the uploads they held."""
         now = self._settings.clock()
         for digest, session in list(self._by_digest.items()):
@@ -49,7 +60,7 @@ class Sessions:
                 self._by_digest.pop(digest, None)
         cookie = random_word(self._settings.random_bytes)
         identity = random_word(self._settings.random_bytes, ID_BYTES)
-        self._by_digest[digest_of(cookie)] = Session(identity, side, began=now, seen=now)
+        self._by_digest[digest_of(cookie)] = Session(identity, side, began=now, seen=now, by=by)
         return cookie
 
     def find(self, cookie: str) -> Session | None:

@@ -14,6 +14,7 @@ from app.web.gate import Address
 from app.web.keys import Keys
 from app.web.pages import Pages
 from app.web.sessions import Session, Sessions
+from app.web.verifying import Verifying
 
 SEE_OTHER = 303
 """After an act the browser is sent on, so that reloading a page repeats nothing."""
@@ -30,6 +31,7 @@ class Site:
     sessions: Sessions
     environment: Environment
     pages: Pages
+    verifying: Verifying
 
 
 async def site_of(request: Request) -> Site:

@@ -17,6 +17,10 @@ FORMS = (
     "/closed/receive/confirm",
     "/closed/unmask",
     "/closed/looks/3/freeze",
+    "/closed/recommend",
+    "/closed/erratum",
+    "/closed/amend",
+    "/closed/backup",
     "/closed/verify",
 )
 NARROWEST = {"width": 320, "height": 640}

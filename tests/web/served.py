@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import shutil
+import time
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -48,6 +49,15 @@ class Served:
 
     def post(self, path: str, **fields: str) -> Any:
         return self.client.post(path, data=fields, headers=OWN, follow_redirects=False)
+
+    def verification(self, response: Any = None) -> Any:
+        """The page that a verification ends with, followed as a browser follows it."""
+        response = response or self.get("/closed/verify")
+        until = time.monotonic() + 120
+        while response.status_code == 303 or 'http-equiv="refresh"' in response.text:
+            assert time.monotonic() < until
+            response = self.get("/closed/verify/running")
+        return response
 
     def upload(self, content: bytes, name: str = FOURTH, **answers: str) -> Any:
         return self.client.post(

@@ -33,7 +33,7 @@ def test_the_closed_side_is_told_and_led_to_the_check(damaged: Served) -> None:
     refused = next(answer for answer in answers if answer.status_code == 409)
     assert "The trial file is not as it was written." in refused.text
     assert 'href="/closed/verify"' in refused.text
-    checked = html.unescape(damaged.get("/closed/verify").text)
+    checked = html.unescape(damaged.verification().text)
     assert re.search(r"No: \d of \d checks failed\.", checked)
     assert re.search(r"snapshot \d", checked)
 

@@ -272,7 +272,7 @@ def test_unmasking_needs_a_reason_and_names_the_arms(served: Served) -> None:
 
 def test_verifying_shows_each_line_of_the_check(served: Served) -> None:
     served.enter()
-    page = words(served.get("/closed/verify"))
+    page = words(served.verification())
     assert "Yes, as far as the file can show by itself." in page
     assert "Look 2, frozen record: every number agrees with the one computed again." in page
 

@@ -1,4 +1,4 @@
-"""What a person does on the closed side besides reading: freeze, take the report, unmask, verify."""
+"""What a person does on the closed side besides reading: freeze, take the report, unmask."""
 
 from __future__ import annotations
 
@@ -7,7 +7,6 @@ from typing import Any
 from fastapi import APIRouter
 from starlette.responses import RedirectResponse, Response
 
-from app.actions.check import verify_desk
 from app.actions.freeze import freeze
 from app.actions.looks import looks
 from app.actions.names import recorded_name, recorded_reason
@@ -72,14 +71,6 @@ def unmask_arms(site: TheSite, session: TheSession, form: SubmittedForm) -> Resp
         return show(site, session, "unmask", mends, by=session.by, reason=form.text("reason"))
     unmask(site.desk, reason=reason, by=by)
     return RedirectResponse("/", SEE_OTHER)
-
-
-@router.get("/closed/verify")
-def verify_trial_file(site: TheSite) -> Response:
-    """Without the frame of a look: it must also come up when no look can be opened any more."""
-    return site.pages.show(
-        "verify", base=CLOSED, report=verify_desk(site.desk), file_name=site.desk.path.name
-    )
 
 
 def show(site: Site, session: Session, form: str, mends: list[Mend], **context: Any) -> Response:

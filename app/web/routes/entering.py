@@ -7,8 +7,10 @@ from starlette.requests import Request
 from starlette.responses import RedirectResponse, Response
 
 from app.actions.looks import looks
+from app.actions.names import recorded_name
 from app.web.forms import SubmittedForm
 from app.web.gate import wrong_key
+from app.web.mending import read_field
 from app.web.problems import answer
 from app.web.site import SEE_OTHER, TheSession, TheSite
 
@@ -31,9 +33,14 @@ def enter(site: TheSite, request: Request, form: SubmittedForm) -> Response:
     side = site.keys.side_of(form.fields.get("key", ""))
     if side is None:
         return answer(site.pages, wrong_key(), request.url.path)
+    by = read_field(form.text("by"), "by", recorded_name, []) or ""  # asked again where it is needed
     response = RedirectResponse("/", SEE_OTHER)
     response.set_cookie(
-        site.address.cookie_name, site.sessions.begin(side), httponly=True, samesite="strict", path="/"
+        site.address.cookie_name,
+        site.sessions.begin(side, by=by),
+        httponly=True,
+        samesite="strict",
+        path="/",
     )
     return response
 

@@ -62,7 +62,7 @@ def open_sheet(site: TheSite, look: LookNumber, sheet: str) -> Response:
 def closed_look(site: Site, session: Session, look: int) -> LookBook:
     """The book of a look; that this session opened its results is recorded once."""
     require_look(site, look)
-    return closed_book(site.desk, look, session=session.id)
+    return closed_book(site.desk, look, session=session.id, by=session.by)
 
 
 def newest_frame(site: Site, session: Session) -> PageFrame | None:

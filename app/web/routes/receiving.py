@@ -53,6 +53,7 @@ def take_files(site: TheSite, session: TheSession, form: SubmittedForm) -> Respo
     except InputError as error:
         return show_form(site, session, answers, [Mend.of(error, field_of(error))])
     if understood.extract.blocking:
+        session.refused = Upload(random_word(site.settings.random_bytes), incoming, understood)
         mends = [Mend.of(finding, "files") for finding in understood.extract.blocking]
         return show_form(site, session, answers, mends, understood)
     token = random_word(site.settings.random_bytes)
@@ -83,6 +84,8 @@ def show_form(
         kinds=KINDS,
         tables=understood_tables(understood) if understood else None,
         doubts=understood.extract.doubts if understood else (),
+        refused_token=session.refused.token if understood and session.refused else "",
+        by=session.by,
     )
 
 
