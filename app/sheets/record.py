@@ -129,7 +129,7 @@ def _file_table(state: State) -> Table:
 
 def _amended_rows(state: State) -> list[tuple[str, str]]:
     versions = [version for version in state.plans if version.amended]
-    return [(f"Amended to version {each.version}", f"{moment(each.at)}, by {each.by}") for each in versions]
+    return [(f"Version {each.version}", f"{moment(each.at)}, by {each.by}") for each in versions]
 
 
 def _words_table(caption: str, rows: Sequence[tuple[str, str]]) -> Table:
