@@ -6,6 +6,7 @@ can be tested; its `text` is the one rendering of it, used by page, report and t
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 from typing import Literal
 
@@ -106,6 +107,11 @@ class CurveLine:
     censored_at: tuple[tuple[float, float], ...]
     rows: AtRiskRow
     label: str
+    last: float = math.inf  # the last observation: the curve is not defined after it, and not drawn
+
+    def ends_at(self, axis_end: float) -> float:
+        """Where the line ends on an axis that ends there."""
+        return min(self.last, axis_end)
 
 
 @dataclass(frozen=True)

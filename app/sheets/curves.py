@@ -185,6 +185,7 @@ def _curve_line(item: CurveShown, axis: TimeAxis) -> CurveLine:
         censored_at=_strokes(curve, axis),
         rows=rows_at_ticks(curve, item.subjects, axis),
         label=item.label.name if item.label else "All subjects",
+        last=float(axis.shown(curve.time[-1:])[0]) if curve.time.size else 0.0,
     )
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from dataclasses import replace
 from itertools import combinations
 from xml.etree import ElementTree
 
@@ -13,6 +14,7 @@ from app.render.svg import boundary, curves
 from app.render.svg.element import coordinate
 from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, LanePage, lane_plot
 from app.render.svg.lettering import broken, point_offset, text_width
+from app.sheets.blocks import CurvesFigure
 from tests.render import invented_book as invented
 from tests.render.drawn_figures import FIGURES, HOSTILE, SVG, Text, drawings, texts
 
@@ -243,3 +245,29 @@ def test_a_long_name_is_broken_and_at_last_cut() -> None:
     assert len(lines) == 2
     assert lines[-1].endswith("…")
     assert all(text_width(line, semibold=True) <= 82 for line in lines)
+
+
+def test_a_curve_is_not_drawn_beyond_its_last_observation() -> None:
+    """Kaplan & Meier (1958): after the last time, if it was censored, the estimate is not defined."""
+    figure = FIGURES["curves"]
+    assert isinstance(figure, CurvesFigure)
+    first, *others = figure.lines
+    half = figure.ticks[-1] / 2
+    early = tuple(at for at in range(len(first.time)) if first.time[at] <= half)
+    cut = replace(
+        first,
+        time=tuple(first.time[at] for at in early),
+        survival=tuple(first.survival[at] for at in early),
+        ci_low=tuple(first.ci_low[at] for at in early),
+        ci_high=tuple(first.ci_high[at] for at in early),
+        censored_at=(),
+        last=half,
+    )
+    drawn = str(curves.wide(replace(figure, lines=(cut, *others))))
+    ink = palette.arm_ink(first.arm).line
+    paths = re.findall(rf'<path d="([^"]+)"[^>]*stroke="{ink}"', drawn)
+    furthest = max(float(x) for path in paths for x in re.findall(r"H([\d.]+)", path))
+    assert furthest == pytest.approx((WIDE_START + WIDE_END) / 2, abs=0.5)
+
+
+WIDE_START, WIDE_END = 176, 648  # the plot of the wide drawing, on which 0 and the last tick lie

@@ -70,8 +70,9 @@ def _line(line: CurveLine, end: float) -> list[Json]:
         if t <= end
     ]
     times, survival, limits = (list(values) for values in zip(*steps, strict=True))
-    if times[-1] < end:
-        times, survival, limits = [*times, end], [*survival, survival[-1]], [*limits, limits[-1]]
+    last = line.ends_at(end)
+    if times[-1] < last:
+        times, survival, limits = [*times, last], [*survival, survival[-1]], [*limits, limits[-1]]
     return step_line(
         times, survival, arm_ink(line.arm), name=line.label, hover=WITH_LIMITS, customdata=limits
     )
@@ -86,7 +87,7 @@ def _bands(line: CurveLine, end: float) -> list[Json]:
     colour = translucent(arm_ink(line.arm).line, BAND_OPACITY)
     edge = {"type": "scatter", "mode": "lines", "line": {"width": 0, "shape": "hv"}, "hoverinfo": "skip"}
     bands: list[Json] = []
-    for run in runs_with_limits(line, end):
+    for run in runs_with_limits(line, line.ends_at(end)):
         times = [t for t, _, _ in run]
         bands.append({**edge, "x": times, "y": [high for _, _, high in run]})
         fill = {"fill": "tonexty", "fillcolor": colour}

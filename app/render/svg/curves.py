@@ -140,7 +140,7 @@ def page_span(x: Scale) -> float:
 def _line(line: CurveLine, x: Scale, y: Scale) -> tuple[Element, ...]:
     """A solid line; arm B hollow, a wide stroke with a paper core."""
     ink = arm_ink(line.arm)
-    path = step_path(_within(line.time, line.survival, x, y))
+    path = step_path(_within(line, x, y))
     if not ink.hollow:
         return (_stroke(path, ink.line, 1.75),)
     return (_stroke(path, ink.line, 3.25), _stroke(path, PAPER, 1.25))
@@ -150,19 +150,18 @@ def _stroke(path: str, colour: str, width: float) -> Element:
     return element("path", d=path, fill="none", stroke=colour, stroke_width=width)
 
 
-def _within(
-    time: Sequence[float], percent: Sequence[float], x: Scale, y: Scale
-) -> tuple[tuple[float, float], ...]:
-    """The step line in units of the drawing, cut where the axis ends and drawn on to there."""
-    inside = [(x(t), y(p)) for t, p in zip(time, percent, strict=True) if t <= x.high]
-    if inside[-1][0] < x.end:
-        inside.append((x.end, inside[-1][1]))
+def _within(line: CurveLine, x: Scale, y: Scale) -> tuple[tuple[float, float], ...]:
+    """The step line in units of the drawing, drawn on to the last observation or the end of the axis."""
+    inside = [(x(t), y(p)) for t, p in zip(line.time, line.survival, strict=True) if t <= x.high]
+    end = x(line.ends_at(x.high))
+    if inside[-1][0] < end:
+        inside.append((end, inside[-1][1]))
     return thinned(inside, FINEST)
 
 
 def _band(line: CurveLine, x: Scale, y: Scale) -> Element:
     """The pointwise interval, wherever there is one."""
-    paths = (_band_path(run, x, y) for run in runs_with_limits(line, x.high))
+    paths = (_band_path(run, x, y) for run in runs_with_limits(line, line.ends_at(x.high)))
     ink = arm_ink(line.arm)
     return element("path", d="".join(paths) or "M0 0", fill=ink.line, fill_opacity=BAND_OPACITY)
 
