@@ -11,9 +11,12 @@ from app.actions.desk import UploadedFile
 from app.errors import InputError
 from app.intake.extract import received_file
 from app.intake.plan import read_plan
-from app.model.boundary import LookAsUsed
+from app.model.boundary import LookAsUsed, PlannedBoundary
 from app.model.extract import LookKind
+from app.model.plan import Plan
 from app.review import as_used
+from app.review.feasibility import power_doubts
+from app.review.held import held_looks
 from app.review.received import Delivery, review_delivery
 from app.sequential.design import planned_boundary
 from app.settings import Settings
@@ -44,16 +47,18 @@ def evaluate(
     if not looks:
         raise InputError("No look to evaluate", accepted="the files of at least one look")
     read = read_plan(plan, name=plan_name, limits=settings.limits)
-    past: list[LookAsUsed] = []
+    held, compared = held_looks(read)
+    past: list[LookAsUsed] = [*held]
     views: list[ClosedView] = []
     earlier: Delivery | None = None
-    for number, given in enumerate(looks, start=1):
+    for number, given in enumerate(looks, start=len(held) + 1):
         delivery = given.delivery
         reviewed = review_delivery(read, delivery, earlier, past, number=number, limits=settings.limits)
         views.append(unmasked_view(reviewed.result, read, Letters("A")))
         past.append(as_used(reviewed.result))
         earlier = delivery
-    return looks_record("evaluation", views, run_at=_now(settings))
+    doubts = power_doubts(read, _planned(read).feasibility)
+    return looks_record("evaluation", views, run_at=_now(settings), held=compared, plan_findings=doubts)
 
 
 def boundary(
@@ -61,15 +66,23 @@ def boundary(
 ) -> dict[str, Any]:
     """The record of a plan's bounds at its own looks or at these fractions."""
     read = read_plan(plan, name=plan_name, limits=settings.limits)
-    planned = planned_boundary(
-        read.design,
-        read.efficacy,
-        experimental_share=read.arms.experimental_share,
-        direction=read.endpoint.direction,
+    planned = _planned(read, fractions, final)
+    doubts = power_doubts(read, planned.feasibility)
+    return boundary_record(planned, plan_digest=read.digest, run_at=_now(settings), findings=doubts)
+
+
+def _planned(plan: Plan, fractions: Sequence[float] | None = None, final: bool = False) -> PlannedBoundary:
+    return planned_boundary(
+        plan.design,
+        plan.efficacy,
+        experimental_share=plan.arms.experimental_share,
+        direction=plan.endpoint.direction,
+        futility=plan.futility,
+        harm=plan.harm,
+        parameter=plan.endpoint.parameter,
         fractions=fractions,
         final=final,
     )
-    return boundary_record(planned, plan_digest=read.digest, run_at=_now(settings))
 
 
 def validate() -> tuple[RowOutcome, ...]:

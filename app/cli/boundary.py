@@ -37,13 +37,19 @@ def run(options: Namespace, settings: Settings) -> int:
     record = boundary(
         settings, plan_name=options.plan.name, plan=plan, fractions=options.at, final=options.final
     )
+    for finding in record["findings"]:
+        print(said.finding(finding), file=sys.stderr)
     sys.stdout.write(record_bytes(record).decode("utf-8") if options.json else as_text(record))
     return 0
 
 
 def as_text(record: dict[str, Any]) -> str:
     """One row a look, then what the design needs and expects."""
-    return f"{aligned(HEADS, [bound_row(look) for look in record['looks']])}\n{design_text(record)}"
+    looks = record["looks"]
+    extra = [kind for kind in ("futility", "harm") if looks[0][f"{kind}_z"] is not None]
+    heads = (*HEADS, *(f"{kind.capitalize()} as z" for kind in extra))
+    rows = [(*bound_row(look), *(said.bound(look[f"{kind}_z"], 4) for kind in extra)) for look in looks]
+    return f"{aligned(heads, rows)}\n{design_text(record)}"
 
 
 def bound_row(look: dict[str, Any]) -> tuple[str, ...]:
@@ -60,7 +66,7 @@ def bound_row(look: dict[str, Any]) -> tuple[str, ...]:
 
 
 def design_text(record: dict[str, Any]) -> str:
-    expected = record["expected_information_fraction"]
+    expected, fixed = record["expected_information_fraction"], record["fixed_design_events"]
     side = "of each side; the test is two-sided" if record["sides"] == 2 else "one-sided"
     lines = (
         ("Alpha spent", f"cumulative, {side}"),
@@ -70,6 +76,10 @@ def design_text(record: dict[str, Any]) -> str:
         ("Expected fraction, no effect", said.number(expected["null"])),
         ("Expected fraction, half the effect", said.number(expected["half"])),
         ("Expected fraction, design effect", said.number(expected["design"])),
+        ("Power with the planned events", f"{said.percent(record['power_reached'])}%"),
+        ("Events needed for the power", str(record["events_needed"])),
+        ("Events for one look, Schoenfeld", said.number(fixed["schoenfeld"], 1)),
+        ("Events for one look, Freedman", said.number(fixed["freedman"], 1)),
     )
     return "".join(f"{term:<40}{value}\n" for term, value in lines)
 

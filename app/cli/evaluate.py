@@ -14,7 +14,7 @@ from app.cli import said
 from app.cli.columns import aligned
 from app.cli.files import read_file, uploaded
 from app.cli.parsing import Command, day_of, kind
-from app.errors import InputError, sentence
+from app.errors import InputError
 from app.model.extract import LookKind
 from app.record.text import record_bytes
 from app.settings import Settings
@@ -101,14 +101,9 @@ def run(options: Namespace, settings: Settings) -> int:
     looks = [LookGiven(tuple(map(uploaded, look.files)), look.cutoff, look.kind) for look in options.looks]
     record = evaluate(settings, plan_name=options.plan.name, plan=plan, looks=looks)
     for finding in record["findings"]:
-        print(finding_text(finding), file=sys.stderr)
+        print(said.finding(finding), file=sys.stderr)
     sys.stdout.write(record_bytes(record).decode("utf-8") if options.json else as_text(record))
     return 0
-
-
-def finding_text(finding: dict[str, Any]) -> str:
-    parts = (finding[name] for name in ("what", "where", "found", "accepted", "remedy"))
-    return f"{finding['severity']} {finding['id']}: {sentence(*parts)}"
 
 
 def as_text(record: dict[str, Any]) -> str:
@@ -153,7 +148,34 @@ def test_text(look: dict[str, Any], orientation: dict[str, str]) -> str:
         ("Hazard ratio", ratio, said.bound(bound["efficacy_hazard_ratio"])),
     ]
     heads = (f"{orientation['of']} against {orientation['against']}", "Observed", "Efficacy bound")
-    return f"{aligned(heads, rows)}\n{verdict_text(look)}"
+    return f"{aligned(heads, rows)}\n{verdict_text(look)}{lower_bounds_text(bound)}{outlook_text(look)}"
+
+
+def lower_bounds_text(bound: dict[str, Any]) -> str:
+    """Futility and harm, where the plan has them."""
+    parts = [
+        f"{kind.capitalize()} bound {said.bound(bound[f'{kind}_z'])}"
+        for kind in ("futility", "harm")
+        if bound[f"{kind}_z"] is not None
+    ]
+    return f"{'. '.join(parts)}.\n" if parts else ""
+
+
+def outlook_text(look: dict[str, Any]) -> str:
+    """Conditional power while looks are to come, and what ending here says where that was asked."""
+    outlook, ended = look["outlook"], look["stopping"]
+    lines = []
+    if outlook is not None and "not_estimable" not in outlook:
+        power = outlook["conditional_power"]
+        effects = ("design", "trend", "null")
+        shown = [f"{said.percent(power[effect]['path'])}% ({effect})" for effect in effects]
+        lines.append(f"Conditional power along the planned looks: {', '.join(shown)}.\n")
+    if ended is not None and "not_estimable" not in ended:
+        ratio = said.number(ended["median_unbiased_hazard_ratio"])
+        limits = f"{said.number(ended['ci_low'])} to {said.number(ended['ci_high'])}"
+        p = said.p_value(ended["p_one_sided"])[0]
+        lines.append(f"Ending here: one-sided p {p}, median-unbiased hazard ratio {ratio} ({limits}).\n")
+    return "".join(lines)
 
 
 def z_of(look: dict[str, Any]) -> str:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
+from app.errors import sentence
 from app.model.values import Absent, Estimate
 from app.sheets import words
 from app.sheets.blocks import Line, Span
@@ -45,3 +46,9 @@ def alpha(value: Any) -> str:
 def bound(value: Any, places: int = 3) -> str:
     """A bound, or a dash where the look has none; the reason is in the record."""
     return "-" if isinstance(value, dict) else number(value, places)
+
+
+def finding(found: dict[str, Any]) -> str:
+    """A finding of the record as one line."""
+    parts = (found[name] for name in ("what", "where", "found", "accepted", "remedy"))
+    return f"{found['severity']} {found['id']}: {sentence(*parts)}"

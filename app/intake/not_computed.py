@@ -24,27 +24,8 @@ class NotComputed:
 
 
 NOT_COMPUTED = (
-    NotComputed("futility", "futility bounds are not computed"),
-    NotComputed("harm", "a harm boundary is not computed"),
+    NotComputed("harm", "a harm boundary on another endpoint is not computed", key="parameter"),
     NotComputed("hypothesis", "further hypotheses are not computed"),
-    NotComputed("held", "looks held before the trial file existed are not computed"),
-    NotComputed("trial", "a planned end date is not used", key="planned_end_date"),
-    NotComputed(
-        "efficacy",
-        "bounds by this spending function or family are not computed",
-        key="spending",
-        computed=("O'Brien-Fleming-type", "Pocock-type"),
-    ),
-    NotComputed(
-        "design", "information by score variance is not computed", key="information", computed=("events",)
-    ),
-    NotComputed(
-        "design", "spending by the calendar is not computed", key="spending_clock", computed=("information",)
-    ),
-    NotComputed(
-        "design", "carrying on by crossing probability is not computed", key="carry_on", computed=("nominal",)
-    ),
-    NotComputed("design", "alpha for safety looks is not computed", key="safety_spend", computed=(0,)),
     NotComputed("enrolment", "a monthly rate of enrolment is not used", key="planned_per_month"),
     NotComputed("enrolment", "drop-out for forecasts is not used", key="dropout_per_year"),
     NotComputed("analysis", "this treatment of ties is not computed", key="ties", computed=("Efron",)),
@@ -55,8 +36,6 @@ NOT_COMPUTED = (
     NotComputed("analysis", "landmark survival is not computed", key="landmarks_at"),
     NotComputed("analysis", "weighted tests are not computed", key="weights"),
     NotComputed("analysis", "subgroups are not computed", key="subgroups"),
-    NotComputed("analysis", "a prior for predictive power is not used", key="prior_hazard_ratio"),
-    NotComputed("analysis", "a prior for predictive power is not used", key="prior_std_error"),
     NotComputed("columns", "an adjudication column is not read", key="adjudicated"),
     NotComputed("columns", "a cause column is not read", key="cause"),
     NotComputed("columns", "a site column is not read", key="site"),

@@ -16,6 +16,7 @@ from app.intake.not_computed import not_computed_parts
 from app.intake.places import Place, shown
 from app.intake.plan_keys import TABLES, Table
 from app.model.plan import Efficacy, Plan
+from app.sequential.effect import plan_rules
 from app.settings import Limits
 
 FORMAT = 1
@@ -51,7 +52,16 @@ def read_plan(content: bytes, *, name: str, limits: Limits) -> Plan:
     problems += not_computed_parts(document, tables, place)
     if problems:
         raise PlanRefused(problems)
-    return _plan(tables, digest=hashlib.sha256(content).hexdigest())
+    return _feasible(_plan(tables, digest=hashlib.sha256(content).hexdigest()))
+
+
+def _feasible(plan: Plan) -> Plan:
+    """The plan, once its futility boundary has been found to leave room for its power."""
+    try:
+        plan_rules(plan)
+    except DesignInvalid as problem:
+        raise PlanRefused([problem]) from problem
+    return plan
 
 
 def _parse(content: bytes, place: Place, limits: Limits) -> dict[str, Any]:
@@ -226,6 +236,7 @@ def _rule_problems(tables: Mapping[str, list[Values]], place: Place) -> Iterator
     alpha, sides = design.get("alpha"), design.get("sides")
     alpha_one_side = alpha / sides if alpha and sides else None
     yield from rules.trial_rules(one("trial"), place.table("trial"))
+    yield from rules.calendar_rule(one("trial"), design, place.table("trial"))
     yield from rules.arms_rules(one("arms"), place.table("arms"))
     yield from rules.columns_rules(one("columns"), place.table("columns"))
     yield from rules.design_rules(design, place.table("design"))
@@ -239,7 +250,9 @@ def _rule_problems(tables: Mapping[str, list[Values]], place: Place) -> Iterator
             yield from rules.one_sided_rule(sides, key, place.table(key))
     if tables.get("futility"):
         yield from rules.futility_rules(one("futility"), place.table("futility"))
-        yield from rules.family_rules(one("futility"), place.table("futility"), alpha_one_side=None)
+        yield from rules.family_rules(
+            one("futility"), place.table("futility"), alpha_one_side=None, power=design.get("power")
+        )
     yield from rules.analysis_rules(one("analysis"), place.table("analysis"))
     yield from _repeated_problems(tables, place)
 
@@ -250,7 +263,8 @@ def _repeated_problems(tables: Mapping[str, list[Values]], place: Place) -> Iter
     for number, item in enumerate(hypotheses, 1):
         inner = place.table("hypothesis", number=number, repeated=True).key("efficacy")
         yield from rules.family_rules(item.get("efficacy", {}), inner, alpha_one_side=item.get("alpha"))
-    yield from rules.held_rules(tables.get("held", []), place.table("held", repeated=True))
+    design = tables["design"][0] if tables.get("design") else {}
+    yield from rules.held_rules(tables.get("held", []), place.table("held", repeated=True), design)
 
 
 def _plan(tables: Mapping[str, list[Values]], *, digest: str) -> Plan:

@@ -4,12 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import asdict
+from itertools import pairwise
 from typing import Any
 
 from app.errors import DesignInvalid
 from app.intake.places import Place, shown
 from app.intake.plan_keys import FAMILIES
 from app.model.plan import Columns
+
+SAME_SPEND = 1e-9  # 1 - 0.9 is not quite 0.1 in a double
 
 Values = Mapping[str, Any]  # the keys of one table that hold an acceptable value
 Problems = Iterator[DesignInvalid]
@@ -111,8 +114,10 @@ def enrolment_rules(subjects: int | None, events: int | None, place: Place) -> P
         )
 
 
-def family_rules(values: Values, place: Place, *, alpha_one_side: float | None) -> Problems:
-    """A spending function or family has the one key it needs, and no other's."""
+def family_rules(
+    values: Values, place: Place, *, alpha_one_side: float | None, power: float | None = None
+) -> Problems:
+    """A spending function or family has the one key it needs, and no other's; futility spends 1 - `power`."""
     family = values.get("spending")
     needed = FAMILIES.get(family) if family else None
     if needed and needed not in values:
@@ -128,6 +133,14 @@ def family_rules(values: Values, place: Place, *, alpha_one_side: float | None) 
             where=str(place.key("points")),
             found=f"{shown(points[-1][1])} at 1",
             accepted=f"{shown(alpha_one_side)}, the level of one side, at information fraction 1",
+            remedy="correct the last point",
+        )
+    if points and power is not None and abs(points[-1][1] - (1.0 - power)) > SAME_SPEND:
+        yield DesignInvalid(
+            "The futility table does not end at the type II error",
+            where=str(place.key("points")),
+            found=f"{shown(points[-1][1])} at 1",
+            accepted=f"{1.0 - power:.10g}, which is 1 - power, at information fraction 1",
             remedy="correct the last point",
         )
 
@@ -146,6 +159,14 @@ def futility_rules(futility: Values, place: Place) -> Problems:
         yield _missing_companion("limit", f"rule {shown(futility['rule'])}", place)
     if "limit" in futility and "rule" not in futility:
         yield _idle_companion("limit", futility["limit"], "rule", place)
+    if "rule" in futility and futility.get("binding"):
+        yield DesignInvalid(
+            "A futility rule is not binding",
+            where=str(place.key("binding")),
+            found=f"binding = true with rule {shown(futility['rule'])}",
+            accepted="binding futility by spending only, as efficacy counts on its bounds",
+            remedy="remove binding, or give futility a spending function",
+        )
     if futility.get("rule") == "conditional power" and futility.get("limit", 0) >= 1:
         yield DesignInvalid(
             "A conditional power is below 1",
@@ -196,7 +217,46 @@ def hypothesis_rules(hypotheses: Sequence[Values], place: Place) -> Problems:
             )
 
 
-def held_rules(held: Sequence[Values], place: Place) -> Problems:
+def calendar_rule(trial: Values, design: Values, place: Place) -> Problems:
+    """Alpha spent by the calendar needs its two ends, and a planned end goes with nothing else."""
+    by_calendar = design.get("spending_clock") == "calendar"
+    for key in ("start_date", "planned_end_date"):
+        if by_calendar and key not in trial:
+            yield _missing_companion(key, "spending_clock 'calendar'", place)
+    if "planned_end_date" in trial and not by_calendar:
+        end = trial["planned_end_date"]
+        yield _idle_companion("planned_end_date", end, "spending_clock = 'calendar'", place)
+
+
+def held_rules(held: Sequence[Values], place: Place, design: Values) -> Problems:
+    yield from _held_order(held, place)
+    yield from _held_information(held, place, design)
+    for item in held:
+        if design.get("spending_clock") == "calendar" and "alpha_spent" not in item:
+            yield _missing_companion("alpha_spent", "spending_clock 'calendar'", place)
+
+
+def _held_information(held: Sequence[Values], place: Place, design: Values) -> Problems:
+    events = [item["events"] for item in held if "events" in item and "efficacy_z" in item]
+    if any(later <= earlier for earlier, later in pairwise(events)):
+        yield DesignInvalid(
+            "Events do not grow from one held look with a bound to the next",
+            where=str(place.key("events")),
+            found=shown(events),
+            accepted="event counts, each above the one before",
+            remedy="correct the counts, or leave out efficacy_z where a look had no bound",
+        )
+    if held and design.get("information") == "score variance":
+        yield DesignInvalid(
+            "Held looks carry no score variance",
+            where=str(place),
+            found="[[held]] with information = 'score variance'",
+            accepted="held looks with information = 'events'",
+            remedy="remove the held looks, or count information in events",
+        )
+
+
+def _held_order(held: Sequence[Values], place: Place) -> Problems:
     numbers = [item["number"] for item in held if "number" in item]
     if numbers != list(range(1, len(numbers) + 1)):
         yield DesignInvalid(

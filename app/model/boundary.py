@@ -79,6 +79,20 @@ class Bound:
 
 
 @dataclass(frozen=True)
+class HeldCompared:
+    """A look of the plan's [[held]] as it was used, beside what we compute for it."""
+
+    number: int
+    events: int
+    source: str
+    z: float | None
+    efficacy_z: float | None
+    alpha_spent: float
+    computed_efficacy_z: Estimate
+    computed_alpha_spent: float
+
+
+@dataclass(frozen=True)
 class Verdict:
     """Where the test stands: what was crossed at this look, and at the first look that crossed."""
 

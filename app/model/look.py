@@ -7,6 +7,7 @@ from datetime import date
 
 from app.model.boundary import Bound, LookAsUsed, Verdict
 from app.model.extract import Changes, Finding, LookKind, TimeUnit
+from app.model.outlook import Outlook, RepeatedInterval, Stopping
 from app.model.survival import ArmComparison, CoxResult, LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate, Ints
 
@@ -54,6 +55,15 @@ class CalendarCounts:
     events: Ints
 
 
+@dataclass(frozen=True)
+class Onwards:
+    """What one reading says of going on and of ending here, its experimental arm against its control."""
+
+    outlook: Outlook | Absent
+    repeated_interval: RepeatedInterval | Absent
+    stopping: Stopping | Absent
+
+
 @dataclass(frozen=True, eq=False)
 class LookResult:
     """One look under one plan: information, curves, tests, boundary. `past` are the looks as used."""
@@ -82,6 +92,8 @@ class LookResult:
     verdict: Verdict
     past: tuple[LookAsUsed, ...]
     planned: tuple[Bound, ...]  # bounds at the plan's looks still to come, were they held as planned
+    onwards: Onwards
+    mirrored_onwards: Onwards  # the same, control against experimental
     snapshot_digests: tuple[str, ...]
     plan_digest: str
 

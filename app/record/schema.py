@@ -50,15 +50,42 @@ CURVE = {
 BOUND = {
     "number": int, "information_fraction": NUMBER, "events": int, "final": bool, "sides": int,
     "alpha_spent": NUMBER, "alpha_spent_here": NUMBER, "efficacy_z": ESTIMATE,
-    "efficacy_p_one_sided": ESTIMATE, "efficacy_hazard_ratio": ESTIMATE, "futility_z": Maybe(ESTIMATE),
-    "type_two_spent": Maybe(NUMBER), "harm_z": Maybe(ESTIMATE), "harm_alpha_spent": Maybe(NUMBER),
+    "efficacy_p_one_sided": ESTIMATE, "efficacy_hazard_ratio": ESTIMATE, "efficacy_b_value": ESTIMATE,
+    "futility_z": Maybe(ESTIMATE), "type_two_spent": Maybe(NUMBER), "futility_hazard_ratio": Maybe(ESTIMATE),
+    "harm_z": Maybe(ESTIMATE), "harm_alpha_spent": Maybe(NUMBER), "harm_hazard_ratio": Maybe(ESTIMATE),
 }  # fmt: skip
+CONDITIONAL_POWER = {
+    "hazard_ratio": ESTIMATE, "final_look": ESTIMATE, "path": ESTIMATE,
+    "path_futility_obeyed": Maybe(ESTIMATE),
+}  # fmt: skip
+NEXT_LOOK = {
+    "number": int, "information_fraction": NUMBER, "events": int, "efficacy_z": ESTIMATE,
+    "efficacy_hazard_ratio": ESTIMATE, "futility_z": Maybe(ESTIMATE), "new_events_z": ESTIMATE,
+    "new_events_hazard_ratio": ESTIMATE, "chance": {"design": ESTIMATE, "trend": ESTIMATE, "null": ESTIMATE},
+}  # fmt: skip
+EFFECTS = ("design", "trend", "trend_low", "trend_high", "null")
+OUTLOOK = {
+    "conditional_power": dict.fromkeys(EFFECTS, CONDITIONAL_POWER), "criterion": ESTIMATE,
+    "predictive_power": {"flat": ESTIMATE, "prior": Maybe(ESTIMATE)}, "next_look": Maybe(NEXT_LOOK),
+}  # fmt: skip
+REPEATED_INTERVAL = {"ci_low": ESTIMATE, "ci_high": ESTIMATE, "level": NUMBER}
+STOPPING = {
+    "p_one_sided": ESTIMATE, "median_unbiased_hazard_ratio": ESTIMATE, "ci_low": ESTIMATE,
+    "ci_high": ESTIMATE, "level": NUMBER,
+}  # fmt: skip
+ONWARDS = {"outlook": Maybe(Estimable(OUTLOOK)), "stopping": Maybe(Estimable(STOPPING))}
+"""Masked these depend on the reading and stand there; ratios in them are experimental / control."""
 CROSSING = {"crossed": Maybe(str), "first_crossed": Maybe(int)}
-READING = {"experimental": str, "z": ESTIMATE, "p_one_sided": ESTIMATE, **CROSSING}
+READING = {"experimental": str, "z": ESTIMATE, "p_one_sided": ESTIMATE, **CROSSING, **ONWARDS}
 HISTORY = {
     "number": int, "kind": str, "information": NUMBER, "events": int, "fraction": NUMBER, "z": Maybe(NUMBER),
     "efficacy_z": ESTIMATE, "efficacy_hazard_ratio": ESTIMATE, "alpha_spent": NUMBER, "final": bool,
-    "crossed": Maybe(str),
+    "crossed": Maybe(str), "futility_z": Maybe(ESTIMATE), "harm_z": Maybe(ESTIMATE),
+}  # fmt: skip
+HELD = {
+    "number": int, "events": int, "source": str, "z": Maybe(NUMBER), "efficacy_z": Maybe(NUMBER),
+    "computed_efficacy_z": ESTIMATE, "difference": Maybe(ESTIMATE), "alpha_spent": NUMBER,
+    "computed_alpha_spent": NUMBER,
 }  # fmt: skip
 INFORMATION = {
     "subjects": int, "events": int, "fraction": NUMBER, "planned_events": int, "planned_subjects": Maybe(int),
@@ -74,8 +101,7 @@ CHANGES = {
     "new_subjects_with_event": int, "vanished_with_event": int,
 }  # fmt: skip
 NOT_ASKED = (
-    "proportionality", "restricted_mean", "weighted", "weighted_maximum", "landmarks", "outlook",
-    "repeated_interval", "stopping", "hypotheses",
+    "proportionality", "restricted_mean", "weighted", "weighted_maximum", "landmarks", "hypotheses",
 )  # fmt: skip
 """Parts of a look that a plan of this version cannot ask for: null, so that a reader finds every name."""
 LOOK = {
@@ -86,18 +112,25 @@ LOOK = {
     "logrank": Estimable(LOGRANK), "logrank_unstratified": Estimable(LOGRANK),
     "cox": Estimable(COX), "cox_unstratified": Estimable(COX),
     "curves": [CURVE], "boundary": {**BOUND, "information": NUMBER, **CROSSING}, "readings": Maybe([READING]),
-    "history": [HISTORY], "ahead": [BOUND], **dict.fromkeys(NOT_ASKED, Maybe(())),
+    "history": [HISTORY], "ahead": [BOUND], **ONWARDS,
+    "repeated_interval": Maybe(Estimable(REPEATED_INTERVAL)), **dict.fromkeys(NOT_ASKED, Maybe(())),
 }  # fmt: skip
 ENVELOPE = {
     "format": int, "kind": str, "program": {"name": str, "version": str}, "plan_digest": str,
     "snapshot_digests": [str], "orientation": Maybe({"of": str, "against": str}), "run_at": str,
     "findings": [FINDING],
 }  # fmt: skip
-LOOKS_RECORD = {**ENVELOPE, "looks": [LOOK]}
+LOOKS_RECORD = {**ENVELOPE, "held": Maybe([HELD]), "looks": [LOOK]}
+CHANCE = {
+    "number": int, "efficacy": NUMBER, "futility": NUMBER, "harm": NUMBER, "control": NUMBER,
+}  # fmt: skip
 BOUNDARY_RECORD = {
     **ENVELOPE, "sides": int, "looks": [BOUND], "noncentrality": ESTIMATE, "power": NUMBER,
     "inflation": ESTIMATE,
     "expected_information_fraction": {"null": ESTIMATE, "half": ESTIMATE, "design": ESTIMATE},
+    "crossing_probability": {"null": [CHANCE], "half": [CHANCE], "design": [CHANCE]},
+    "power_reached": NUMBER, "events_needed": int,
+    "fixed_design_events": {"schoenfeld": NUMBER, "freedman": NUMBER},
 }  # fmt: skip
 
 

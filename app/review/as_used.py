@@ -23,6 +23,10 @@ def as_used(look: LookResult) -> LookAsUsed:
         final=look.final,
         crossed=look.verdict.crossed,
         efficacy_hazard_ratio=look.bound.efficacy_hazard_ratio,
+        futility_z=look.bound.futility_z,
+        type_two_spent=look.bound.type_two_spent or 0.0,
+        harm_z=look.bound.harm_z,
+        harm_alpha_spent=look.bound.harm_alpha_spent or 0.0,
     )
 
 
@@ -41,7 +45,15 @@ def as_used_of_record(look: dict[str, Any]) -> LookAsUsed:
         final=look["final"],
         crossed=bound["crossed"],
         efficacy_hazard_ratio=_read(bound["efficacy_hazard_ratio"]),
+        futility_z=_read_if_asked(bound["futility_z"]),
+        type_two_spent=bound["type_two_spent"] or 0.0,
+        harm_z=_read_if_asked(bound["harm_z"]),
+        harm_alpha_spent=bound["harm_alpha_spent"] or 0.0,
     )
+
+
+def _read_if_asked(value: float | dict[str, str] | None) -> Estimate | None:
+    return None if value is None else _read(value)
 
 
 def _read(value: float | dict[str, str]) -> Estimate:
@@ -61,4 +73,10 @@ def bound_of_record(look: dict[str, Any]) -> Bound:
         efficacy_z=_read(bound["efficacy_z"]),
         efficacy_p_one_sided=_read(bound["efficacy_p_one_sided"]),
         efficacy_hazard_ratio=_read(bound["efficacy_hazard_ratio"]),
+        futility_z=_read_if_asked(bound["futility_z"]),
+        type_two_spent=bound["type_two_spent"],
+        futility_hazard_ratio=_read_if_asked(bound["futility_hazard_ratio"]),
+        harm_z=_read_if_asked(bound["harm_z"]),
+        harm_alpha_spent=bound["harm_alpha_spent"],
+        harm_hazard_ratio=_read_if_asked(bound["harm_hazard_ratio"]),
     )

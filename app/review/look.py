@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from datetime import date
 
+from app.errors import ValueRejected
 from app.model.boundary import Bound, LookAsUsed
 from app.model.extract import Changes, Finding, LookKind, Sample
 from app.model.look import Information, LookResult
@@ -14,8 +15,9 @@ from app.model.survival import LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate
 from app.review.comparison import compare_arms
 from app.review.counts import arm_counts, calendar_counts, strata_counts, times_of
-from app.sequential.boundary import LookAhead, bounds_ahead, efficacy_rule
-from app.sequential.design import planned_looks
+from app.review.onwards import onwards_of
+from app.sequential.boundary import LookAhead
+from app.sequential.effect import PlanRules, plan_rules, planned_looks
 from app.sequential.verdict import verdict
 from app.survival import kaplan_meier
 
@@ -42,7 +44,10 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
     compared, mirrored = compare_arms(plan, sample)
     test = compared.logrank
     information = _information(plan, sample, test)
-    now, *planned = _bounds(plan, information, declared, past)
+    rules, used = plan_rules(plan), _information_used(plan, information)
+    now, *planned = _bounds(plan, rules, information, declared, past)
+    z = test if isinstance(test, Absent) else test.z
+    mirrored_z = z if isinstance(z, Absent) else -z + 0.0
     curves = [_curve(plan, sample, arm) for arm in (False, True)]
     return LookResult(
         number=declared.number,
@@ -54,7 +59,7 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
         findings=declared.findings,
         changes=declared.changes,
         information=information,
-        information_used=_information_used(information),
+        information_used=used,
         calendar=calendar_counts(sample),
         logrank=test,
         logrank_unstratified=compared.logrank_unstratified,
@@ -64,9 +69,13 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
         control_curve=curves[0],
         experimental_curve=curves[1],
         bound=now,
-        verdict=verdict(past, None if isinstance(test, Absent) else test.z, now, plan.design.sides),
+        verdict=verdict(
+            past, None if isinstance(z, Absent) else z, now, plan.design.sides, binding=rules.binding
+        ),
         past=tuple(past),
         planned=tuple(planned),
+        onwards=onwards_of(plan, rules, z, used, information, past, (now, *planned)),
+        mirrored_onwards=onwards_of(plan, rules, mirrored_z, used, information, past, (now, *planned)),
         snapshot_digests=declared.snapshot_digests,
         plan_digest=plan.digest,
     )
@@ -91,7 +100,7 @@ def _information(plan: Plan, sample: Sample, test: LogrankResult | Absent) -> In
     return Information(
         subjects=int(time.size),
         events=events,
-        fraction=events / design.planned_events,
+        fraction=_fraction(plan, events, variance),
         planned_events=design.planned_events,
         score_variance=variance,
         variance_ratio=variance
@@ -103,26 +112,58 @@ def _information(plan: Plan, sample: Sample, test: LogrankResult | Absent) -> In
     )
 
 
-def _information_used(information: Information) -> float:
-    return float(information.events)
+def _fraction(plan: Plan, events: int, variance: Estimate) -> float:
+    """Information so far over the planned: events, or V where the plan says so (0 where there is no V)."""
+    planned_variance = plan.design.planned_score_variance
+    if plan.design.information == "events" or planned_variance is None:
+        return events / plan.design.planned_events
+    return 0.0 if isinstance(variance, Absent) else variance / planned_variance
+
+
+def _information_used(plan: Plan, information: Information) -> float:
+    """What correlations use of this look."""
+    if plan.design.information == "events":
+        return float(information.events)
+    variance = information.score_variance
+    return 0.0 if isinstance(variance, Absent) else variance
 
 
 def _bounds(
-    plan: Plan, information: Information, declared: LookDeclared, past: Sequence[LookAsUsed]
+    plan: Plan,
+    rules: PlanRules,
+    information: Information,
+    declared: LookDeclared,
+    past: Sequence[LookAsUsed],
 ) -> tuple[Bound, ...]:
     """The bound here, then the bounds at the plan's looks still to come, were they held as planned."""
-    rule = efficacy_rule(plan.design, plan.efficacy, plan.endpoint.direction)
     here = LookAhead(
         number=declared.number,
         kind=declared.kind,
-        information=_information_used(information),
+        information=_information_used(plan, information),
         fraction=information.fraction,
         events=information.events,
         score_variance=information.score_variance,
+        clock=calendar_fraction(plan, declared.cutoff, declared.number),
     )
     ahead = () if here.final or _was_final(past) else _looks_to_come(plan, here, past)
     untested = [replace(look, crossed="none") for look in past]
-    return bounds_ahead(rule, untested, (here, *ahead))
+    return rules.bounds(untested, (here, *ahead))
+
+
+def calendar_fraction(plan: Plan, cutoff: date | None, number: int) -> float | None:
+    """How much of the planned time has gone by the data cutoff; None where alpha is spent by information."""
+    start, end = plan.trial.start_date, plan.trial.planned_end_date
+    if plan.design.spending_clock == "information" or start is None or end is None:
+        return None
+    if cutoff is None:
+        raise ValueRejected(
+            "no data cutoff although alpha is spent by the calendar",
+            where=f"look {number}",
+            found="no date",
+            accepted="the day up to which events are counted",
+            remedy="give the cutoff of the look",
+        )
+    return max(0.0, (cutoff - start).days / (end - start).days)
 
 
 def _was_final(past: Sequence[LookAsUsed]) -> bool:
@@ -134,8 +175,15 @@ def _looks_to_come(plan: Plan, here: LookAhead, past: Sequence[LookAsUsed]) -> t
     fractions = fractions_to_come(
         plan.design.looks, [*(look.kind for look in past), here.kind], here.fraction
     )
-    return planned_looks(
+    looks = planned_looks(
         plan.design, fractions, plan.arms.experimental_share, final=False, first_number=here.number + 1
+    )
+    if here.clock is None:
+        return looks
+    pace = (1.0 - here.clock) / (1.0 - here.fraction)  # along the straight line to the planned end
+    return tuple(
+        replace(look, clock=1.0 - pace * (1.0 - look.fraction) if look.fraction < 1.0 else 1.0)
+        for look in looks
     )
 
 

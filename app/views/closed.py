@@ -12,8 +12,8 @@ from typing import Literal
 from scipy.special import ndtr
 
 from app.model.boundary import Bound, Crossed, LookAsUsed, Verdict
-from app.model.look import ArmCounts, LookResult
-from app.model.plan import Plan, Sides
+from app.model.look import ArmCounts, LookResult, Onwards
+from app.model.plan import Plan
 from app.model.survival import ArmComparison, CoxResult, LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate
 from app.sequential.verdict import crossed, first_crossed, verdict
@@ -55,6 +55,7 @@ class Reading:
     p_one_sided: Estimate
     verdict: Verdict
     history: tuple[LookAsUsed, ...]
+    onwards: Onwards
 
 
 @dataclass(frozen=True)
@@ -160,16 +161,18 @@ def _strata(look: LookResult, turned: bool) -> tuple[StratumView, ...]:
 
 
 def _true_reading(look: LookResult, plan: Plan) -> Reading:
-    return _reading(look, plan, plan.arms.experimental, look.logrank, look.past)
+    return _reading(look, plan, plan.arms.experimental, look.logrank, look.past, look.onwards)
 
 
 def _readings(look: LookResult, plan: Plan, compared: ArmComparison, turned: bool) -> tuple[Reading, Reading]:
     """If A is experimental, if B is; `compared` is A against B, and bounds are the same in both."""
-    mirrored = _turned_history(look.past, plan.design.sides)
+    mirrored = _turned_history(look.past, plan)
     histories = (mirrored, look.past) if turned else (look.past, mirrored)
+    onwards = (look.onwards, look.mirrored_onwards)
+    first, second = onwards[::-1] if turned else onwards
     return (
-        _reading(look, plan, "A", compared.logrank, histories[0]),
-        _reading(look, plan, "B", _turned(compared.logrank), histories[1]),
+        _reading(look, plan, "A", compared.logrank, histories[0], first),
+        _reading(look, plan, "B", _turned(compared.logrank), histories[1], second),
     )
 
 
@@ -186,20 +189,42 @@ def _reading(
     experimental: str,
     test: LogrankResult | Absent,
     history: tuple[LookAsUsed, ...],
+    onwards: Onwards,
 ) -> Reading:
-    if isinstance(test, Absent):
-        stands = verdict(history, None, look.bound, plan.design.sides)
-        return Reading(experimental, test, test, stands, history)
-    stands = verdict(history, test.z, look.bound, plan.design.sides)
-    return Reading(experimental, test.z, test.p_one_sided, stands, history)
+    z, p = (test, test) if isinstance(test, Absent) else (test.z, test.p_one_sided)
+    stands = verdict(
+        history,
+        None if isinstance(z, Absent) else z,
+        look.bound,
+        plan.design.sides,
+        binding=is_binding(plan),
+    )
+    return Reading(experimental, z, p, stands, history, _still_open(onwards, look, stands))
 
 
-def _turned_history(past: tuple[LookAsUsed, ...], sides: Sides) -> tuple[LookAsUsed, ...]:
+def is_binding(plan: Plan) -> bool:
+    """Whether a crossing of the futility bound ends the test."""
+    return plan.futility is not None and plan.futility.binding
+
+
+def _still_open(onwards: Onwards, look: LookResult, stands: Verdict) -> Onwards:
+    """After a crossing nothing is left to be crossed; over-running, nothing is inferred a second time."""
+    first = stands.first_crossed
+    if first is None:
+        return onwards
+    if first == look.number:
+        return replace(onwards, outlook=Absent(f"the boundary was crossed at look {first}: no later test"))
+    over = _over_running(first)
+    return Onwards(over, over, over)
+
+
+def _turned_history(past: tuple[LookAsUsed, ...], plan: Plan) -> tuple[LookAsUsed, ...]:
     """The looks held as they would read were the arms exchanged: z turned, crossings decided anew."""
     turned: list[LookAsUsed] = []
     for held in past:
         z = None if held.z is None else -held.z + 0.0
-        here: Crossed = "none" if first_crossed(turned) else crossed(z, held, sides)
+        over = first_crossed(turned, binding=is_binding(plan))
+        here: Crossed = "none" if over else crossed(z, held, plan.design.sides)
         turned.append(replace(held, z=z, crossed=here))
     return tuple(turned)
 
@@ -225,7 +250,14 @@ def _until(last: int, past: tuple[LookAsUsed, ...]) -> tuple[LookAsUsed, ...]:
 
 def _untested(held: LookAsUsed, last: int, past: tuple[LookAsUsed, ...]) -> LookAsUsed:
     none, spent = _over_running(last), _spent_by(last, past)
-    return replace(held, efficacy_z=none, efficacy_hazard_ratio=none, alpha_spent=spent)
+    return replace(
+        held,
+        efficacy_z=none,
+        efficacy_hazard_ratio=none,
+        alpha_spent=spent,
+        futility_z=None if held.futility_z is None else none,
+        harm_z=None if held.harm_z is None else none,
+    )
 
 
 def _spent_by(last: int, past: tuple[LookAsUsed, ...]) -> float:
@@ -244,4 +276,8 @@ def _no_bound(bound: Bound, alpha_spent: float, reason: Absent) -> Bound:
         efficacy_z=reason,
         efficacy_p_one_sided=reason,
         efficacy_hazard_ratio=reason,
+        futility_z=None if bound.futility_z is None else reason,
+        futility_hazard_ratio=None if bound.futility_z is None else reason,
+        harm_z=None if bound.harm_z is None else reason,
+        harm_hazard_ratio=None if bound.harm_z is None else reason,
     )

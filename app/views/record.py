@@ -3,36 +3,76 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import asdict
+from dataclasses import asdict, fields
 from datetime import date
 from typing import Any
 
 from app import __version__
-from app.model.boundary import Bound, LookAsUsed, PlannedBoundary, Verdict
+from app.model.boundary import Bound, HeldCompared, LookAsUsed, PlannedBoundary, Verdict
 from app.model.extract import Changes, Finding
 from app.model.look import CalendarCounts
+from app.model.outlook import (
+    ConditionalPower,
+    NextLook,
+    Outlook,
+    PredictivePower,
+    RepeatedInterval,
+    Stopping,
+)
 from app.model.survival import CoxResult, LogrankResult
-from app.model.values import Absent
+from app.model.values import Absent, Estimate
 from app.record.numbers import column, estimate, not_estimable
-from app.record.schema import FORMAT, NOT_ASKED
+from app.record.schema import CONDITIONAL_POWER, EFFECTS, FORMAT, NEXT_LOOK, NOT_ASKED
 from app.views.closed import ArmView, ClosedView, Reading
 
 Record = dict[str, Any]
 
 
-def looks_record(kind: str, views: Sequence[ClosedView], *, run_at: str) -> Record:
+def looks_record(
+    kind: str,
+    views: Sequence[ClosedView],
+    *,
+    run_at: str,
+    held: Sequence[HeldCompared] = (),
+    plan_findings: Sequence[Finding] = (),
+) -> Record:
     """The record of one or several looks under one plan; all views share plan and orientation."""
     first = views[0]
     digests = [digest for view in views for digest in view.look.snapshot_digests]
-    findings = [finding_record(finding) for view in views for finding in view.look.findings]
+    of_looks = (finding for view in views for finding in view.look.findings)
+    findings = [finding_record(finding) for finding in (*plan_findings, *of_looks)]
     orientation = {"of": first.of.value, "against": first.against.value}
     envelope = _envelope(kind, first.look.plan_digest, digests, orientation, run_at, findings)
-    return {**envelope, "looks": [look_record(view) for view in views]}
+    looks = [look_record(view) for view in views]
+    return {**envelope, "held": [_compared(look) for look in held] if held else None, "looks": looks}
 
 
-def boundary_record(planned: PlannedBoundary, *, plan_digest: str, run_at: str) -> Record:
+def _compared(held: HeldCompared) -> Record:
+    """A look of the plan's [[held]]: as used, what we compute for it, and the difference of the bounds."""
+    ours, theirs = held.computed_efficacy_z, held.efficacy_z
+    difference: Estimate | None = None
+    if theirs is not None:
+        difference = ours if isinstance(ours, Absent) else theirs - ours
     return {
-        **_envelope("boundary", plan_digest, [], None, run_at, []),
+        "number": held.number,
+        "events": held.events,
+        "source": held.source,
+        "z": held.z,
+        "efficacy_z": theirs,
+        "computed_efficacy_z": estimate(ours),
+        "difference": estimate(difference),
+        "alpha_spent": held.alpha_spent,
+        "computed_alpha_spent": held.computed_alpha_spent,
+    }
+
+
+def boundary_record(
+    planned: PlannedBoundary, *, plan_digest: str, run_at: str, findings: Sequence[Finding] = ()
+) -> Record:
+    doubts = [finding_record(finding) for finding in findings]
+    chances = (planned.chances_null, planned.chances_half, planned.chances_design)
+    return {
+        **_envelope("boundary", plan_digest, [], None, run_at, doubts),
         "sides": planned.sides,
         "looks": [bound_record(bound, planned.sides) for bound in planned.bounds],
         "noncentrality": estimate(planned.noncentrality),
@@ -42,6 +82,16 @@ def boundary_record(planned: PlannedBoundary, *, plan_digest: str, run_at: str) 
             "null": estimate(planned.expected_fraction_null),
             "half": estimate(planned.expected_fraction_half),
             "design": estimate(planned.expected_fraction_design),
+        },
+        "crossing_probability": {
+            effect: [asdict(chance) for chance in looks]
+            for effect, looks in zip(("null", "half", "design"), chances, strict=True)
+        },
+        "power_reached": planned.feasibility.power_reached,
+        "events_needed": planned.feasibility.events_needed,
+        "fixed_design_events": {
+            "schoenfeld": planned.feasibility.schoenfeld_events,
+            "freedman": planned.feasibility.freedman_events,
         },
     }
 
@@ -95,9 +145,11 @@ def look_record(view: ClosedView) -> Record:
             "information": look.information_used,
             **_crossing(only.verdict if only else None),
         },
-        "readings": [_reading(reading) for reading in view.readings] if view.masked else None,
+        "readings": [_reading(reading, look.final) for reading in view.readings] if view.masked else None,
         "history": [_held(held, view) for held in view.readings[0].history],
         "ahead": [bound_record(bound, sides) for bound in look.planned],
+        **(_onwards(only, look.final) if only else {"outlook": None, "stopping": None}),
+        "repeated_interval": _part(view.readings[0].onwards.repeated_interval),
         **dict.fromkeys(NOT_ASKED),
     }
 
@@ -229,11 +281,53 @@ def bound_record(bound: Bound, sides: int) -> Record:
         "efficacy_z": estimate(bound.efficacy_z),
         "efficacy_p_one_sided": estimate(bound.efficacy_p_one_sided),
         "efficacy_hazard_ratio": estimate(bound.efficacy_hazard_ratio),
-        "futility_z": None,
-        "type_two_spent": None,
-        "harm_z": None,
-        "harm_alpha_spent": None,
+        "efficacy_b_value": estimate(bound.efficacy_b_value),
+        "futility_z": estimate(bound.futility_z),
+        "type_two_spent": bound.type_two_spent,
+        "futility_hazard_ratio": estimate(bound.futility_hazard_ratio),
+        "harm_z": estimate(bound.harm_z),
+        "harm_alpha_spent": bound.harm_alpha_spent,
+        "harm_hazard_ratio": estimate(bound.harm_hazard_ratio),
     }
+
+
+def _onwards(reading: Reading, final: bool) -> Record:
+    """Going on; and, where a bound was crossed here or the look is final, ending here."""
+    onwards, ends_here = reading.onwards, final or reading.verdict.crossed != "none"
+    return {
+        "outlook": _outlook(onwards.outlook),
+        "stopping": _part(onwards.stopping) if ends_here else None,
+    }
+
+
+def _outlook(outlook: Outlook | Absent) -> Record:
+    if isinstance(outlook, Absent):
+        return not_estimable(outlook.reason)
+    return {
+        "conditional_power": {effect: _power(getattr(outlook, effect)) for effect in EFFECTS},
+        "criterion": estimate(outlook.criterion),
+        "predictive_power": _part(outlook.predictive_power),
+        "next_look": None if outlook.next_look is None else _next_look(outlook.next_look),
+    }
+
+
+def _power(power: ConditionalPower) -> Record:
+    return {name: estimate(getattr(power, name)) for name in CONDITIONAL_POWER}
+
+
+def _next_look(ahead: NextLook) -> Record:
+    counted = {"number": ahead.number, "events": ahead.events}
+    named = (name for name in NEXT_LOOK if name not in counted and name != "chance")
+    numbers = {name: estimate(getattr(ahead, name)) for name in named}
+    chance = {effect: estimate(getattr(ahead, f"chance_{effect}")) for effect in ("design", "trend", "null")}
+    return {**counted, **numbers, "chance": chance}
+
+
+def _part(part: PredictivePower | RepeatedInterval | Stopping | Absent) -> Record:
+    """A record whose fields carry the names of the record, or the reason why there is none."""
+    if isinstance(part, Absent):
+        return not_estimable(part.reason)
+    return {item.name: estimate(getattr(part, item.name)) for item in fields(part)}
 
 
 def _crossing(verdict: Verdict | None) -> Record:
@@ -243,12 +337,13 @@ def _crossing(verdict: Verdict | None) -> Record:
     return {"crossed": verdict.crossed, "first_crossed": verdict.first_crossed}
 
 
-def _reading(reading: Reading) -> Record:
+def _reading(reading: Reading, final: bool) -> Record:
     return {
         "experimental": reading.experimental,
         "z": estimate(reading.z),
         "p_one_sided": estimate(reading.p_one_sided),
         **_crossing(reading.verdict),
+        **_onwards(reading, final),
     }
 
 
@@ -265,4 +360,6 @@ def _held(held: LookAsUsed, view: ClosedView) -> Record:
         "alpha_spent": held.alpha_spent,
         "final": held.final,
         "crossed": None if view.masked else held.crossed,
+        "futility_z": estimate(held.futility_z),
+        "harm_z": estimate(held.harm_z),
     }

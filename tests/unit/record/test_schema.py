@@ -54,8 +54,20 @@ def test_each_difference_says_where_and_what(changed: dict[str, Any], said: str)
 
 
 def test_the_parts_that_no_plan_can_ask_for_yet_are_null() -> None:
-    assert list(differences(None, LOOK["outlook"])) == []
-    assert list(differences({"criterion": 1.96}, LOOK["outlook"])) != []
+    assert list(differences(None, LOOK["hypotheses"])) == []
+    assert list(differences({"name": "Death"}, LOOK["hypotheses"])) != []
+
+
+def test_the_outlook_has_three_conditional_powers_under_each_effect() -> None:
+    """The names of the design; the trend's limits, the ratios and the next look stand beside them."""
+    outlook = LOOK["outlook"].shape.shape
+    assert {"conditional_power", "criterion", "predictive_power"} <= outlook.keys()
+    assert {"design", "trend", "null"} <= outlook["conditional_power"].keys()
+    assert {"final_look", "path", "path_futility_obeyed"} <= outlook["conditional_power"]["design"].keys()
+    assert outlook["predictive_power"].keys() == {"flat", "prior"}
+    assert LOOK["repeated_interval"].shape.shape.keys() == {"ci_low", "ci_high", "level"}
+    stopping = "p_one_sided median_unbiased_hazard_ratio ci_low ci_high level"
+    assert set(stopping.split()) == LOOK["stopping"].shape.shape.keys()
 
 
 def test_the_names_of_a_look_are_those_of_the_design() -> None:
@@ -64,7 +76,7 @@ def test_the_names_of_a_look_are_those_of_the_design() -> None:
         boundary proportionality restricted_mean weighted weighted_maximum landmarks outlook
         repeated_interval stopping hypotheses"""
     assert set(names.split()) <= LOOK.keys()
-    envelope = "format kind program plan_digest snapshot_digests orientation run_at findings looks"
+    envelope = "format kind program plan_digest snapshot_digests orientation run_at findings held looks"
     assert set(envelope.split()) == LOOKS_RECORD.keys()
     information = "subjects events fraction score_variance variance_ratio arms strata"
     assert set(information.split()) <= LOOK["information"].keys()

@@ -1,0 +1,285 @@
+"""The group-sequential core through both commands: bounds, monitoring, outlook and stopping in the record.
+
+Values marked so were computed independently: recursive quadrature of another author.
+"""
+
+from __future__ import annotations
+
+import json
+import random
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from app.cli import main
+from app.record.schema import BOUNDARY_RECORD, LOOKS_RECORD, differences
+
+PLAN = """\
+format = 1
+[trial]
+name = "Q17"
+title = "An invented trial of tablet against placebo"
+start_date = 2024-01-01
+{trial}
+[arms]
+control = "PLACEBO"
+experimental = "TABLET"
+[endpoint]
+parameter = "DEATHHF"
+label = "Death or heart-failure admission"
+[design]
+alpha = 0.025
+sides = 1
+power = 0.9
+hazard_ratio = 0.75
+planned_events = 400
+looks = [0.35, 0.7, 1.0]
+{design}
+[efficacy]
+spending = {efficacy}
+{tables}
+"""
+OBRIEN_FLEMING_TYPE = '"O\'Brien-Fleming-type"'
+FUTILITY = '[futility]\nspending = "Hwang-Shih-DeCani"\nparameter = -3\n'
+HARM = '[harm]\nspending = "Pocock-type"\nalpha = 0.025\n'
+
+
+def plan(
+    folder: Path,
+    tables: str = "",
+    *,
+    efficacy: str = OBRIEN_FLEMING_TYPE,
+    design: str = "",
+    trial: str = "",
+    **keys: object,
+) -> Path:
+    """A plan; `keys` replace lines of [design]."""
+    text = PLAN.format(trial=trial, design=design, efficacy=efficacy, tables=tables)
+    for key, value in keys.items():
+        start = text.index(f"{key} = ")
+        text = f"{text[:start]}{key} = {value}{text[text.index(chr(10), start) :]}"
+    path = folder / "plan.toml"
+    path.write_text(text, encoding="utf-8")
+    return path
+
+
+def extract(folder: Path, events: int, on_tablet: float = 0.46) -> Path:
+    """800 subjects, of whom so many had the event, this share of them on tablet."""
+    chance = random.Random(events)
+    tablet, placebo = list(range(0, 800, 2)), list(range(1, 800, 2))
+    chance.shuffle(tablet)
+    chance.shuffle(placebo)
+    first = round(events * on_tablet)
+    with_event = {*tablet[:first], *placebo[: events - first]}
+    lines = ["USUBJID,TRTP,PARAMCD,AVAL,CNSR"]
+    for subject in range(800):
+        arm = "PLACEBO" if subject % 2 else "TABLET"
+        lines.append(
+            f"S{subject:03},{arm},DEATHHF,{chance.randint(30, 900)},{int(subject not in with_event)}"
+        )
+    path = folder / f"adtte-{events}-{on_tablet}.csv"
+    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
+    return path
+
+
+def record(capsys: pytest.CaptureFixture[str], *arguments: object) -> dict[str, Any]:
+    assert main([*map(str, arguments), "--json"]) == 0
+    printed: dict[str, Any] = json.loads(capsys.readouterr().out)
+    shape = BOUNDARY_RECORD if arguments[0] == "boundary" else LOOKS_RECORD
+    assert list(differences(printed, shape)) == []
+    return printed
+
+
+def evaluated(capsys: pytest.CaptureFixture[str], plan: Path, *looks: object) -> list[dict[str, Any]]:
+    found: list[dict[str, Any]] = record(capsys, "evaluate", plan, *looks)["looks"]
+    return found
+
+
+def bounds(looks: list[dict[str, Any]], name: str = "efficacy_z") -> list[Any]:
+    return [look.get("boundary", look)[name] for look in looks]
+
+
+def test_harm_and_futility_stand_beside_efficacy(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """REFERENCES: non-binding O'Brien-Fleming-type futility at three equal looks; computed independently."""
+    futility = '[futility]\nspending = "O\'Brien-Fleming-type"\n'
+    thirds = "[0.3333333333333333, 0.6666666666666666, 1.0]"
+    found = record(capsys, "boundary", plan(tmp_path, futility, looks=thirds))
+    assert bounds(found["looks"]) == pytest.approx([3.7103, 2.5114, 1.9930], abs=5e-5)
+    assert bounds(found["looks"], "futility_z") == pytest.approx([-0.6945, 1.0025, 1.9930], abs=5e-5)
+    assert found["noncentrality"] == pytest.approx(3.33639, abs=5e-6)
+    assert found["inflation"] == pytest.approx(1.0594, abs=5e-5)
+    obeyed = sum(look["efficacy"] for look in found["crossing_probability"]["null"])
+    assert obeyed == pytest.approx(0.02331, abs=5e-6)
+    quarters = record(capsys, "boundary", plan(tmp_path, HARM, looks="[0.25, 0.5, 0.75, 1.0]"))
+    assert bounds(quarters["looks"], "harm_z") == pytest.approx(
+        [-2.3683, -2.3675, -2.3582, -2.3500], abs=5e-5
+    )
+
+
+@pytest.mark.parametrize(
+    ("efficacy", "last"),
+    [('"Haybittle-Peto"\ninterim_z = 3.0', 1.975), ('"Wang-Tsiatis"\nshape = 0.25', 2.136)],
+)
+def test_fixed_families_end_at_their_published_bound(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], efficacy: str, last: float
+) -> None:
+    """Two-sided 0.05: Haybittle-Peto at three looks; Wang-Tsiatis at five (Jennison & Turnbull 2000)."""
+    looks = (
+        "[0.2, 0.4, 0.6, 0.8, 1.0]" if "Wang" in efficacy else "[0.3333333333333333, 0.6666666666666666, 1]"
+    )
+    path = plan(tmp_path, efficacy=efficacy, alpha=0.05, sides=2, looks=looks)
+    assert record(capsys, "boundary", path)["looks"][-1]["efficacy_z"] == pytest.approx(last, abs=5e-4)
+
+
+def test_futility_leaves_the_efficacy_bounds_of_looks_as_they_were(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    looks = [part for events in (140, 280, 400) for part in ("--look", extract(tmp_path, events))]
+    found = evaluated(capsys, plan(tmp_path, FUTILITY + HARM), *looks)
+    assert bounds(found) == pytest.approx([3.6128, 2.4406, 2.0002], abs=5e-5)  # computed independently
+    assert found[-1]["boundary"]["futility_z"] == found[-1]["boundary"]["efficacy_z"]
+    assert [look["boundary"]["harm_alpha_spent"] for look in found][-1] == 0.025
+
+
+def test_a_safety_look_between_changes_nothing_later(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    first, safety, *rest = [("--look", extract(tmp_path, events)) for events in (140, 200, 280, 400)]
+    path = plan(tmp_path)
+    plain = evaluated(capsys, path, *first, *(part for look in rest for part in look))
+    with_it = evaluated(
+        capsys, path, *first, *safety, "--kind", "safety", *(part for look in rest for part in look)
+    )
+    assert [bounds(plain)[at] for at in (0, 1, 2)] == [bounds(with_it)[at] for at in (0, 2, 3)]
+    assert "safety look" in with_it[1]["boundary"]["efficacy_z"]["not_estimable"]
+
+
+HELD = """\
+[[held]]
+number = 1
+events = 140
+z = 1.1
+efficacy_z = 3.6127887364322664
+alpha_spent = 0.00015146075051096218
+source = "Charter table 2"
+[[held]]
+number = 2
+events = 280
+z = 1.4
+efficacy_z = 2.4405756926559357
+alpha_spent = 0.007384489357694457
+source = "Charter table 2"
+"""
+
+
+def test_a_revised_total_keeps_the_bounds_used_and_the_information_recorded(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Held at 140 and 280 of 400 events; total raised to 520; look at 390 (computed independently)."""
+    path = plan(tmp_path, HELD, planned_events=520)
+    found = record(capsys, "evaluate", path, "--look", extract(tmp_path, 390))
+    (look,) = found["looks"]
+    assert look["number"] == 3
+    assert bounds(look["history"]) == pytest.approx([3.6128, 2.4406], abs=5e-5)
+    assert look["boundary"]["efficacy_z"] == pytest.approx(2.6006, abs=5e-5)
+    assert [held["source"] for held in found["held"]] == ["Charter table 2"] * 2
+    assert found["held"][0]["computed_efficacy_z"] == pytest.approx(4.1642, abs=5e-5)
+    assert found["held"][0]["difference"] == pytest.approx(3.6128 - 4.1642, abs=1e-4)
+
+
+def test_a_held_look_that_crossed_ends_the_test(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path = plan(tmp_path, HELD.replace("z = 1.4", "z = 2.5", 1))
+    (look,) = evaluated(capsys, path, "--look", extract(tmp_path, 400))
+    assert look["boundary"]["first_crossed"] == 2
+    assert "over-running" in look["boundary"]["efficacy_z"]["not_estimable"]
+    assert "over-running" in look["stopping"]["not_estimable"]
+
+
+def test_held_looks_do_not_start_a_trial_file(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    arguments = ["start", plan(tmp_path, HELD), tmp_path / "q17.trial", "--by", "A. Person"]
+    assert main([*map(str, arguments)]) == 2
+    assert "Held looks have no snapshot in a trial file" in capsys.readouterr().err
+    assert not (tmp_path / "q17.trial").exists()
+
+
+def test_alpha_by_the_calendar_goes_by_the_cutoff(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    trial, design = "planned_end_date = 2028-01-01", 'spending_clock = "calendar"'
+    path = plan(tmp_path, trial=trial, design=design)
+    (look,) = evaluated(capsys, path, "--look", extract(tmp_path, 140), "--cutoff", "2026-01-01")
+    share = 731 / 1461  # days gone over days planned
+    assert look["boundary"]["information_fraction"] == 0.35
+    assert main(["evaluate", str(path), "--look", str(extract(tmp_path, 140))]) == 2
+    assert "No data cutoff although alpha is spent by the calendar in look 1" in capsys.readouterr().err
+    by_events = evaluated(capsys, plan(tmp_path, planned_events=1461), "--look", extract(tmp_path, 731))
+    assert by_events[0]["boundary"]["information_fraction"] == share
+    assert look["boundary"]["alpha_spent"] == by_events[0]["boundary"]["alpha_spent"]
+
+
+def test_information_may_be_the_score_variance(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path = plan(tmp_path, design='information = "score variance"\nplanned_score_variance = 98.0')
+    (look,) = evaluated(capsys, path, "--look", extract(tmp_path, 140))
+    variance = look["logrank"]["variance"]
+    assert look["boundary"]["information"] == variance
+    assert look["boundary"]["information_fraction"] == pytest.approx(variance / 98.0, rel=1e-14)
+
+
+def test_going_on_is_told_while_looks_are_to_come_and_ending_when_it_ends(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    analysis = "[analysis]\nprior_hazard_ratio = 0.8\nprior_std_error = 0.2\n"
+    path = plan(tmp_path, FUTILITY + analysis)
+    looks = [part for events in (140, 280, 400) for part in ("--look", extract(tmp_path, events))]
+    first, second, last = evaluated(capsys, path, *looks)
+    power = first["outlook"]["conditional_power"]["design"]
+    assert power["final_look"] < power["path"]
+    assert power["path_futility_obeyed"] < power["path"]
+    assert first["outlook"]["criterion"] == first["ahead"][-1]["efficacy_z"]
+    assert 0.0 < first["outlook"]["predictive_power"]["prior"] < 1.0
+    assert second["outlook"]["next_look"]["events"] == 400
+    assert first["stopping"] is second["stopping"] is None
+    assert "no planned look" in last["outlook"]["not_estimable"]
+    assert last["stopping"]["ci_low"] < last["stopping"]["median_unbiased_hazard_ratio"]
+    assert last["repeated_interval"]["level"] == pytest.approx(0.95)
+
+
+@pytest.mark.parametrize(
+    ("on_tablet", "crossed", "first"), [(0.58, "futility", None), (0.66, "harm", None), (0.3, "efficacy", 1)]
+)
+def test_what_is_crossed_is_named_and_only_efficacy_ends_the_test(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], on_tablet: float, crossed: str, first: int | None
+) -> None:
+    path = plan(tmp_path, FUTILITY + HARM)
+    looks = ["--look", extract(tmp_path, 140, on_tablet), "--look", extract(tmp_path, 280, on_tablet)]
+    found = evaluated(capsys, path, *looks)
+    assert (found[0]["boundary"]["crossed"], found[0]["boundary"]["first_crossed"]) == (crossed, first)
+    assert (found[0]["stopping"] is not None) == (crossed != "none")
+    tested = "not_estimable" not in (found[1]["boundary"]["efficacy_z"] if first else {})
+    assert tested == (first is None)
+
+
+def test_a_power_that_the_events_do_not_have_is_a_doubt(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    found = record(capsys, "boundary", plan(tmp_path))
+    assert [doubt["id"] for doubt in found["findings"]] == ["power-reached"]
+    assert found["power_reached"] < 0.83
+    assert found["fixed_design_events"]["schoenfeld"] == pytest.approx(507.84, abs=5e-3)
+    enough = record(capsys, "boundary", plan(tmp_path, planned_events=found["events_needed"]))
+    assert enough["findings"] == []
+    assert enough["power_reached"] == pytest.approx(0.9, abs=1e-3)
+
+
+def test_the_text_shows_futility_harm_and_the_outlook(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = plan(tmp_path, FUTILITY + HARM)
+    assert main(["boundary", str(path)]) == 0
+    printed = capsys.readouterr()
+    assert "Futility as z" in printed.out
+    assert "Harm as z" in printed.out
+    assert "doubt power-reached: Hazard ratio, events and power disagree" in printed.err
+    assert main(["evaluate", str(path), "--look", str(extract(tmp_path, 140))]) == 0
+    assert "Conditional power along the planned looks: " in capsys.readouterr().out
+    assert main(["evaluate", str(path), "--look", str(extract(tmp_path, 400))]) == 0
+    assert "Ending here: one-sided p " in capsys.readouterr().out
