@@ -48,28 +48,32 @@ def report(desk: Desk, look: int) -> ReportFiles:
     frozen = freeze.body
     html = desk.trial.content(frozen.report_digest)
     environment = json.dumps(frozen.environment, indent=1, sort_keys=True) + "\n"
-    name = re.sub(r"[^A-Za-z0-9]+", "-", state.name).strip("-") or "trial"
     return ReportFiles(
         html=html,
         record=record_text_in_report(html),
         history=history_lines(entry for entry in desk.trial.entries() if entry.id <= freeze.head.id),
         environment=environment.encode("utf-8"),
-        stem=f"{name}-look-{look}-closed-{frozen.disclosure}",
+        stem=f"{file_stem(state.name)}-look-{look}-closed-{frozen.disclosure}",
     )
+
+
+def file_stem(name: str) -> str:
+    """The trial's name as a file name may have it on any machine."""
+    return re.sub(r"[^A-Za-z0-9]+", "-", name).strip("-") or "trial"
 
 
 def write_report(desk: Desk, look: int, folder: Path) -> tuple[Path, ...]:
     """Write the files of a frozen look into a folder, each whole or not at all, and record that."""
     wanted = {folder / name: content for name, content in report(desk, look).by_name.items()}
     for path, content in wanted.items():
-        _write_whole(path, content)
+        write_whole(path, content)
     if desk.may_write:
         with desk.trial.act() as act:
             act.append(ReportWritten(look, act.state.frozen_look(look).body.report_digest))
     return tuple(wanted)
 
 
-def _write_whole(path: Path, content: bytes) -> None:
+def write_whole(path: Path, content: bytes) -> None:
     """Write beside, then rename, so that no half-written report ever stands under its name."""
     unfinished = path.with_name(f".{path.name}.unfinished")
     try:

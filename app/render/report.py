@@ -34,8 +34,11 @@ class ReportFacts:
     program: str
 
 
-def render_report(environment: Environment, book: LookBook, *, frozen: ReportFacts) -> bytes:
-    """Same book and facts in, same bytes out: nothing is taken from a clock, a network or a machine."""
+def render_report(environment: Environment, book: LookBook, *, frozen: ReportFacts | None) -> bytes:
+    """Same book and facts in, same bytes out: nothing is taken from a clock, a network or a machine.
+
+    Without facts it is an open report: no freeze, head, digest or record stands in it.
+    """
     style = _style(environment, book.frame, frozen)
     page = environment.get_template("report/look.html").render(
         book=book,
@@ -113,7 +116,7 @@ class LabelCell:
     ink: Markup
 
 
-def _style(environment: Environment, frame: PageFrame, frozen: ReportFacts) -> str:
+def _style(environment: Environment, frame: PageFrame, frozen: ReportFacts | None) -> str:
     return environment.get_template("report/look.css").render(
         faces=_faces(environment.globals["fonts"]),
         label_cells=(_label_cell(frame.side), _label_cell(frame.disclosure)),
@@ -136,20 +139,15 @@ def _label_cell(word: str) -> LabelCell:
     return LabelCell(css_text(word.upper()), Markup(f"background: {ground}; color: {ink};"))
 
 
-def _head_lines(frame: PageFrame, frozen: ReportFacts) -> tuple[str, str]:
-    return (
-        f"{frame.trial_name}\u2003{frame.trial_title}",
-        f"Look {frame.look}, frozen {frozen.frozen_at}. {'. '.join(frame.colophon)}",
-    )
+def _head_lines(frame: PageFrame, frozen: ReportFacts | None) -> tuple[str, str]:
+    when = f"Look {frame.look}, frozen {frozen.frozen_at}. " if frozen else ""
+    return f"{frame.trial_name}\u2003{frame.trial_title}", f"{when}{'. '.join(frame.colophon)}"
 
 
-def _foot_lines(frame: PageFrame, frozen: ReportFacts) -> tuple[str, str, str]:
+def _foot_lines(frame: PageFrame, frozen: ReportFacts | None) -> tuple[str, ...]:
     dates = (f"{mark.name} {mark.text}{_days(mark.days_since_previous)}" for mark in frame.dates)
-    return (
-        f"{LEAD} {CAUTION}",
-        "\u2003".join(dates),
-        f"Chain head before this freeze {shortened_digest(frozen.head_before)}",
-    )
+    head = (f"Chain head before this freeze {shortened_digest(frozen.head_before)}",) if frozen else ()
+    return f"{LEAD} {CAUTION}", "\u2003".join(dates), *head
 
 
 def _days(days: int | None) -> str:

@@ -7,6 +7,7 @@ from starlette.exceptions import HTTPException
 from starlette.responses import HTMLResponse, JSONResponse, Response
 
 from app.actions.looks import closed_book, looks, open_book, record_of
+from app.actions.open_report import open_report
 from app.record.text import record_bytes
 from app.render.csv_tables import sheet_tables
 from app.render.page import render_sheet
@@ -52,6 +53,13 @@ def open_figure(site: TheSite, look: LookNumber, sheet: str) -> Response:
 @router.get("/open/looks/{look}/{sheet}/tables.zip")
 def open_tables(site: TheSite, look: LookNumber, sheet: str) -> Response:
     return tables(open_look(site, look), sheet)
+
+
+@router.get("/open/looks/{look}/report")
+def download_open_report(site: TheSite, look: LookNumber) -> Response:
+    require_look(site, look)
+    report = open_report(site.desk, look)
+    return attachment(report.html, f"{report.stem}.html", "text/html; charset=utf-8")
 
 
 @router.get("/open/looks/{look}/{sheet}")

@@ -1,0 +1,205 @@
+"""No rule applied to the masked pages and their JSON guesses which arm is experimental better than a coin.
+
+Fifty trials, each strongly one-sided, for the experimental arm in about half of them and for control in the
+others; the letters are drawn for each. A rule sees every masked page, figure and record of a look and names
+the letter that it takes for the experimental arm. The rules tried are RULES.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import random
+import re
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL
+from tests.web.dealt import dealt, pooled_patients, serving
+from tests.web.served import Served
+
+N_TRIALS = 50
+FEWEST, MOST = 11, 39
+"""Beyond these a fair coin falls in one of 40,000 times on either side (binomial, 50 throws)."""
+
+SHEETS = ("glance", "data", "information", "curves", "boundary", "record")
+
+
+@dataclass(frozen=True)
+class Seen:
+    """What somebody who may see the masked pages sees of one look."""
+
+    pages: dict[str, str]
+    record: dict[str, Any]
+
+    @property
+    def look(self) -> dict[str, Any]:
+        return self.record["looks"][0]
+
+    @property
+    def all_pages(self) -> str:
+        return "".join(self.pages.values())
+
+    def arm(self, letter: str, part: str) -> dict[str, Any]:
+        of = self.look[part] if part == "curves" else self.look["information"]["arms"]
+        return next(arm for arm in of if arm["arm"] == letter)
+
+
+def lower(value: Callable[[Seen, str], Any]) -> Callable[[Seen], str]:
+    """The letter with the lower value; A when they are equal."""
+    return lambda seen: "B" if value(seen, "B") < value(seen, "A") else "A"
+
+
+def is_a(holds: Callable[[Seen], bool]) -> Callable[[Seen], str]:
+    return lambda seen: "A" if holds(seen) else "B"
+
+
+def last_digit(value: object) -> int:
+    return int((re.findall(r"\d", repr(value)) or ["0"])[-1])
+
+
+def odd(text: str) -> bool:
+    return hashlib.sha256(text.encode()).digest()[0] % 2 == 1
+
+
+RULES: dict[str, Callable[[Seen], str]] = {
+    "always A": lambda seen: "A",
+    "the arm with fewer events": lower(lambda seen, arm: seen.arm(arm, "information")["events"]),
+    "the arm with fewer subjects": lower(lambda seen, arm: seen.arm(arm, "information")["subjects"]),
+    "the arm with less person-time": lower(lambda seen, arm: seen.arm(arm, "information")["person_time"]),
+    "the arm whose curve ends lower": lower(lambda seen, arm: seen.arm(arm, "curves")["survival"][-1]),
+    "the arm with fewer distinct times": lower(lambda seen, arm: len(seen.arm(arm, "curves")["time"])),
+    "the arm with the longer decimal expansion": lower(
+        lambda seen, arm: -len(repr(seen.arm(arm, "curves")["survival"]))
+    ),
+    "the arm with the lower last digit": lower(
+        lambda seen, arm: last_digit(seen.arm(arm, "curves")["survival"][-1])
+    ),
+    "the arm that the record orients by": lambda seen: seen.record["orientation"]["of"],
+    "the arm that the statistic favours": is_a(lambda seen: seen.look["logrank"]["z"] > 0),
+    "the arm with the lower hazard": is_a(lambda seen: seen.look["cox"]["hazard_ratio"] < 1),
+    "the last digit of z": is_a(lambda seen: last_digit(seen.look["logrank"]["z"]) % 2 == 1),
+    "the last digit of the hazard ratio": is_a(
+        lambda seen: last_digit(seen.look["cox"]["hazard_ratio"]) % 2 == 1
+    ),
+    "the last digits of observed and expected": is_a(
+        lambda seen: (
+            last_digit(seen.look["logrank"]["observed"]) < last_digit(seen.look["logrank"]["expected"])
+        )
+    ),
+    "whether the two readings mirror each other to the last bit": is_a(
+        lambda seen: seen.look["readings"][0]["z"] == -seen.look["readings"][1]["z"]
+    ),
+    "the reading that crosses": is_a(lambda seen: seen.look["readings"][0]["crossed"] != "none"),
+    "the reading with the smaller p": is_a(
+        lambda seen: seen.look["readings"][0]["p_one_sided"] < seen.look["readings"][1]["p_one_sided"]
+    ),
+    "the letter named first on the page of curves": is_a(
+        lambda seen: seen.pages["curves"].find("arm\u00a0A") < seen.pages["curves"].find("arm\u00a0B")
+    ),
+    "the letter named more often": is_a(
+        lambda seen: (
+            len(re.findall(r"[Aa]rm\W*A\b", seen.all_pages))
+            > len(re.findall(r"[Aa]rm\W*B\b", seen.all_pages))
+        )
+    ),
+    "the letter that is drawn last": is_a(
+        lambda seen: seen.pages["curves"].rfind("arm-a") > seen.pages["curves"].rfind("arm-b")
+    ),
+    "the length of the pages": is_a(lambda seen: len(seen.all_pages) % 2 == 1),
+    "the length of the record": is_a(lambda seen: len(json.dumps(seen.record)) % 2 == 1),
+    "a digest of the pages": is_a(lambda seen: odd(seen.all_pages)),
+    "a digest of the record": is_a(lambda seen: odd(json.dumps(seen.look))),
+}
+
+
+def seen_by(served: Served, look: int) -> Seen:
+    served.enter()
+    addresses = {sheet: f"/closed/looks/{look}/{sheet}" for sheet in SHEETS}
+    addresses |= {
+        f"{sheet} figure": f"/closed/looks/{look}/{sheet}/figure.json" for sheet in ("curves", "boundary")
+    }
+    pages = {name: served.get(address).text for name, address in addresses.items()}
+    record = json.loads(served.get(f"/closed/looks/{look}/record.json").text)
+    return Seen(pages, record)
+
+
+@pytest.fixture(scope="module")
+def trials(tmp_path_factory: pytest.TempPathFactory) -> list[tuple[Seen, str]]:
+    """What is seen of each trial, and the letter that its experimental arm truly has."""
+    folder, chance = tmp_path_factory.mktemp("masked"), random.Random(5)
+    found = []
+    for number in range(N_TRIALS):
+        people = dealt(pooled_patients(100), chance.choice((0.2, 5.0)), seed=chance.randrange(10**6))
+        with serving(folder / str(number), people, looks=1, seed=chance.randrange(10**6)) as served:
+            found.append((seen_by(served, 1), served.desk.trial.letter_key().letters.experimental))
+    return found
+
+
+@pytest.mark.slow
+def test_the_trials_are_strongly_one_sided_and_their_letters_fall_both_ways(
+    trials: list[tuple[Seen, str]],
+) -> None:
+    assert all(abs(seen.look["logrank"]["z"]) > 1.5 for seen, _ in trials)
+    assert FEWEST <= sum(letter == "A" for _, letter in trials) <= MOST
+    for seen, _ in trials:
+        assert CONTROL not in seen.all_pages
+        assert EXPERIMENTAL not in seen.all_pages
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("rule", RULES)
+def test_no_rule_guesses_the_key_better_than_a_coin(trials: list[tuple[Seen, str]], rule: str) -> None:
+    hits = sum(RULES[rule](seen) == letter for seen, letter in trials)
+    print(f"{rule}: {hits} of {len(trials)}")
+    assert FEWEST <= hits <= MOST
+
+
+@pytest.mark.slow
+def test_a_record_that_gave_the_key_away_would_be_noticed(trials: list[tuple[Seen, str]]) -> None:
+    """A planted leak: the record is oriented of the experimental arm, whatever its letter."""
+    rule = RULES["the arm that the record orients by"]
+    leaking = [
+        (replace(seen, record={**seen.record, "orientation": {"of": letter}}), letter)
+        for seen, letter in trials
+    ]
+    assert sum(rule(seen) == letter for seen, letter in leaking) > MOST
+
+
+def test_exchanged_arms_under_exchanged_letters_give_the_same_bytes(tmp_path: Path) -> None:
+    """Then the pages depend on nothing but which patients are A: no rule whatever can do better than a coin."""
+    people = dealt(pooled_patients(), 0.3, seed=3)
+    found = {}
+    for seed in range(17, 40):
+        exchanged = seed > 17
+        with serving(
+            tmp_path / str(seed), people.with_arms_exchanged() if exchanged else people, looks=2, seed=seed
+        ) as served:
+            letters = served.desk.trial.letter_key().letters
+            if letters.experimental not in found:
+                found[letters.experimental] = {look: seen_by(served, look) for look in (1, 2)}
+        if len(found) == 2:
+            break
+    assert set(found) == {"A", "B"}
+    for look in (1, 2):
+        one, other = found["A"][look], found["B"][look]
+        assert one.look == other.look
+        for name in one.pages:
+            assert without_digests(one.pages[name]) == without_digests(other.pages[name]), name
+
+
+def without_digests(page: str) -> str:
+    """Heads and digests differ with the file; they are random to whoever does not hold it."""
+    return re.sub(r"[0-9a-f]{4} [0-9a-f]{4} … [0-9a-f]{4}", "digest", page)
+
+
+def test_with_unequal_allocation_the_page_says_that_counts_identify_the_letters(tmp_path: Path) -> None:
+    two_to_one = (("allocation = [1, 1]", "allocation = [1, 2]"),)
+    with serving(tmp_path, pooled_patients(), looks=1, changes=two_to_one) as served:
+        served.enter()
+        page = served.get("/closed/looks/1/information").text
+    assert "The plan allocates 1:2 (control : experimental): the numbers of subjects identify the" in page
