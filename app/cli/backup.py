@@ -30,4 +30,4 @@ def run(options: Namespace, settings: Settings) -> int:
     return 0
 
 
-COMMAND = Command(arguments, run, example="backup Q17.trial backups/ --by 'Jane Roe'")
+COMMAND = Command(arguments, run, example="backup Q17.trial Q17-backup.trial --by 'Jane Roe'")

@@ -9,7 +9,7 @@ from types import ModuleType
 
 import pytest
 
-from tests.architecture.sources import exists, matches, modules, own_texts, text, top_level
+from tests.architecture.sources import exists, functions, matches, modules, own_texts, text, top_level
 
 CITATION = r"DEVELOPERS\.md, Methods: ([^).;\"'`\n]+)"
 PATH = r"(?<![\w/.-])(?!app/_assets)(?:app|tests|templates|static|demo_data)/[\w*./-]*\w"
@@ -60,3 +60,11 @@ def test_examples_in_docstrings_are_true() -> None:
 
 def imported(name: str) -> ModuleType:
     return importlib.import_module(name.removesuffix(".py").removesuffix("/__init__").replace("/", "."))
+
+
+def test_each_attack_in_the_table_is_a_test_and_each_test_of_an_attack_is_in_the_table() -> None:
+    table = text("DEVELOPERS.md").partition("\n### Attacks")[2].partition("\n### ")[0]
+    shown = set(re.findall(r"`(test_\w+)`", table))
+    tests = {function.name for function in functions("tests/actions/test_attacks.py")}
+    control = {"test_a_file_that_nobody_attacked_passes_with_its_witnessed_head"}
+    assert shown == {name for name in tests if name.startswith("test_")} - control

@@ -171,7 +171,7 @@ def test_a_record_that_gave_the_key_away_would_be_noticed(trials: list[tuple[See
 
 
 def test_exchanged_arms_under_exchanged_letters_give_the_same_bytes(tmp_path: Path) -> None:
-    """Then the pages depend on nothing but which patients are A: no rule whatever can do better than a coin."""
+    """The pages depend on nothing but which patients are A: no rule whatever can do better than a coin."""
     people = dealt(pooled_patients(), 0.3, seed=3)
     found = {}
     for seed in range(17, 40):
