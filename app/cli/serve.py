@@ -5,7 +5,7 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
-from app.actions.desk import Desk
+from app.cli.at_desk import at_desk
 from app.cli.parsing import Command
 from app.cli.serving import serve_until_stopped, serving_arguments
 from app.settings import Settings
@@ -17,7 +17,7 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(options: Namespace, settings: Settings) -> int:
-    with Desk.open(settings, options.trial) as desk:
+    with at_desk(settings, options.trial) as desk:
         return serve_until_stopped(desk, port=options.port, browser=not options.no_browser)
 
 

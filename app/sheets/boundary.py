@@ -471,11 +471,18 @@ def _state_word(lane: Lane, view: ClosedView) -> str:
     return f"{view.look.kind}, shown" if not lane.final or view.look.kind == "final" else "final, shown"
 
 
+def _on_another_scale(view: ClosedView) -> bool:
+    """Whether a past look's fraction, as used, is of another total than the plan has now."""
+    planned = view.look.information.planned_events
+    return any(abs(held.events / planned - held.fraction) > 1e-9 for held in view.look.past)
+
+
 def _note(view: ClosedView) -> Line:
     lanes = "Each look has two lanes: the left reads as if A, the right as if B were experimental. "
     start = lanes if boundary_figure(view).layout == "two lanes" else ""
     past = [str(held.number) for held in view.look.past if not isinstance(held.efficacy_z, Absent)]
-    as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: bounds as used." if past else ""
+    used = "bounds and fractions" if _on_another_scale(view) else "bounds"
+    as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: {used} as used." if past else ""
     return line(
         f"{start}Grey: beyond the efficacy bound. "
         f"Bounds exist at looks only; the dotted line guides the eye.{as_used}",

@@ -33,6 +33,11 @@ class Site:
     pages: Pages
     verifying: Verifying
 
+    @property
+    def damage(self) -> str:
+        """What was found wrong with the trial file, for the closed side; nothing for a sound one."""
+        return "; ".join(map(str, self.desk.trial.damage[: self.settings.limits.findings_shown]))
+
 
 async def site_of(request: Request) -> Site:
     site: Site = request.app.state.site

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import sqlite3
 from datetime import UTC, datetime
 from pathlib import Path
 
@@ -178,6 +179,17 @@ def test_a_clock_that_went_back_is_told_after_the_act(
     assert capsys.readouterr().err.startswith(
         "doubt: The clock went back: entry 3 carries 2025-01-01T00:00:00Z"
     )
+
+
+def test_a_damaged_file_says_so_and_takes_no_act(trial: str, capsys: pytest.CaptureFixture[str]) -> None:
+    shell = sqlite3.connect(trial)
+    shell.execute("DROP TRIGGER entry_update")
+    shell.close()
+    assert main(["freeze", trial, "--by", "Jane Roe"]) == 4
+    told, refused = capsys.readouterr().err.splitlines()
+    assert told.endswith("the rule or table 'entry_update' of the file: missing")
+    assert refused.startswith("A damaged trial file is not written to in ")
+    assert main(["verify", trial]) == 3
 
 
 def test_nobody_acts_without_a_name(trial: str, capsys: pytest.CaptureFixture[str]) -> None:

@@ -15,7 +15,10 @@ from app.settings import Settings
 from tests.ledger import acts
 
 SCHEMAS = Path(__file__).parent / "schemas"
-HEAD_OF_SCHEMA_1 = "f3100f3ae37e4f0912deed5c7cdccd080ae3689748cf4192e2e1e32cc8721a64"
+HEADS = {
+    1: "f3100f3ae37e4f0912deed5c7cdccd080ae3689748cf4192e2e1e32cc8721a64",
+    2: "472743e993df660647d6c8b45fa7fc36dae12f6742221530d7981afd40b00a26",
+}
 
 
 class Interrupted(Exception):
@@ -32,6 +35,7 @@ def released(version: int, path: Path) -> None:
 def test_a_file_of_every_schema_is_kept() -> None:
     kept = sorted(path.name for path in SCHEMAS.glob("schema_*.sql"))
     assert kept == [f"schema_{number}.sql" for number in range(1, len(schema.MIGRATIONS) + 1)]
+    assert list(HEADS) == list(range(1, len(schema.MIGRATIONS) + 1))
 
 
 @pytest.mark.parametrize("version", range(1, len(schema.MIGRATIONS) + 1))
@@ -69,10 +73,13 @@ def test_entries_written_under_an_older_schema_stay_as_they_are(path: Path, sett
         assert trial.entries() == before
 
 
-def test_the_head_of_the_first_released_history_is_what_it_was(path: Path, settings: Settings) -> None:
-    released(1, path)
+@pytest.mark.parametrize("version", HEADS)
+def test_the_head_of_each_released_history_is_what_it_was(
+    path: Path, settings: Settings, version: int
+) -> None:
+    released(version, path)
     with Trial.open(path, settings, read_only=True) as trial:
-        assert trial.head() == HEAD_OF_SCHEMA_1
+        assert trial.head() == HEADS[version]
 
 
 @pytest.mark.parametrize("n_done", range(len(schema.MIGRATIONS)))

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import html
 import re
+import sqlite3
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -47,3 +48,24 @@ def test_the_open_side_is_told_no_digest_path_or_row(damaged: Served) -> None:
     for answer in refused:
         assert "This page cannot be shown at present." in answer.text
         assert not re.search(r"[0-9a-f]{16}|\.trial|digest|snapshot", answer.text)
+
+
+def test_damage_that_lets_pages_open_is_told_on_each_of_the_closed_side(
+    demo_trial: Path, tmp_path: Path
+) -> None:
+    weakened = tmp_path / "weakened.trial"
+    weakened.write_bytes(demo_trial.read_bytes())
+    shell = sqlite3.connect(weakened)
+    shell.execute("DROP TRIGGER entry_update")
+    shell.close()
+    served = serve_copy(weakened, tmp_path)
+    told = "only read: the rule or table 'entry_update' of the file: missing."
+    with served.client, served.desk:
+        served.enter()
+        for path in ("/closed/looks/3/curves", "/closed/looks/1/record", "/closed/unmask"):
+            response = served.get(path)
+            assert (response.status_code, told in html.unescape(response.text)) == (200, True)
+        refused = served.post("/closed/unmask", by="Jane Roe", reason="Asked for.")
+        assert (refused.status_code, "not written to" in refused.text) == (409, True)
+        served.enter("open")
+        assert "only read" not in served.get("/open/looks/3/data").text

@@ -77,4 +77,6 @@ def show(site: Site, session: Session, form: str, mends: list[Mend], **context: 
     """A form of the closed side, as it is first shown or with what is to mend."""
     status = 422 if mends else 200
     frame = newest_frame(site, session)
-    return site.pages.show(form, status=status, frame=frame, base=CLOSED, mends=mends, **context)
+    return site.pages.show(
+        form, status=status, frame=frame, base=CLOSED, mends=mends, damage=site.damage, **context
+    )

@@ -91,7 +91,10 @@ def require_look(site: Site, look: int) -> None:
 
 def page(site: Site, book: LookBook, sheet: str, base: str) -> Response:
     require_sheet(book, sheet)
-    return HTMLResponse(render_sheet(site.environment, book, sheet, base=base, template="forms/sheet.html"))
+    damage = site.damage if base == CLOSED else ""
+    return HTMLResponse(
+        render_sheet(site.environment, book, sheet, base=base, template="forms/sheet.html", damage=damage)
+    )
 
 
 def figure(book: LookBook, sheet: str) -> Response:
