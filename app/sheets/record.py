@@ -255,7 +255,10 @@ def _acts(state: State, look: Look, number: int) -> tuple[ActLink, ...]:
         ActLink("Verify the trial file", "verify"),
     ]
     if look.frozen is not None:
-        acts.insert(0, ActLink(f"Download the report of look {number}", f"looks/{number}/report"))
+        acts[:0] = [
+            ActLink(f"Download the report of look {number}", f"looks/{number}/report"),
+            ActLink("Download it with its verifier", f"looks/{number}/report.zip"),
+        ]
     else:
         acts.append(ActLink(f"Freeze look {number}", f"looks/{number}/freeze"))
     if not state.unmasked:

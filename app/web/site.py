@@ -38,6 +38,10 @@ class Site:
         """What was found wrong with the trial file, for the closed side; nothing for a sound one."""
         return "; ".join(map(str, self.desk.trial.damage[: self.settings.limits.findings_shown]))
 
+    def take_clock_doubts(self) -> tuple[str, ...]:
+        """What the last acts raise about this machine's clock, once."""
+        return tuple(map(str, self.desk.trial.take_clock_doubts()))
+
 
 async def site_of(request: Request) -> Site:
     site: Site = request.app.state.site

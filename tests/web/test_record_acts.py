@@ -3,8 +3,13 @@
 from __future__ import annotations
 
 import html
+import io
 import re
+import subprocess
+import sys
 import time
+import zipfile
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -24,7 +29,7 @@ from app.ledger.bodies import (
 from app.ledger.entries import read_body
 from app.record.canonical import digest
 from tests.actions import given
-from tests.web.served import KEYS, OWN, Served, fourth_extract
+from tests.web.served import KEYS, OWN, TODAY, Served, fourth_extract
 
 BY = "Jane Roe"
 REFUSED = "Nothing was recorded."
@@ -316,3 +321,40 @@ def test_one_verification_runs_at_a_time(served: Served, monkeypatch: pytest.Mon
         response = served.get("/closed/verify")
     assert len(begun) == 1
     words(served.verification(response))
+
+
+# --- the folder of a report, and the clock ------------------------------------------------------------
+
+
+def test_the_folder_of_a_report_is_taken_away_whole_and_checks_itself(served: Served, tmp_path: Path) -> None:
+    served.enter()
+    assert 'href="/closed/looks/2/report.zip"' in served.get("/closed/looks/2/record").text
+    response = served.get("/closed/looks/2/report.zip")
+    assert "Q17-look-2-closed-masked.zip" in response.headers["content-disposition"]
+    with zipfile.ZipFile(io.BytesIO(response.content)) as archive:
+        archive.extractall(tmp_path / "folder")
+    verifier = [sys.executable, "-I", "-S", str(tmp_path / "folder" / "verify_report.py")]
+    done = subprocess.run(verifier, capture_output=True, text=True, check=True)
+    assert "Its last entry is the freeze of this report, by the report's SHA-256." in done.stdout
+    assert served.get("/closed/looks/3/report.zip").status_code == 409
+
+
+def test_a_clock_that_went_back_is_told_on_the_next_page_once(served: Served) -> None:
+    served.enter()
+    earlier = replace(served.desk.settings, clock=lambda: TODAY.replace(year=2025, month=1))
+    served.desk.trial._settings = earlier
+    served.post("/closed/unmask", by=BY, reason="Asked for.")
+    served.enter("open")
+    assert "The clock went back" not in served.get("/open/looks/3/data").text
+    served.enter()  # opens the newest look, which tells it
+    assert "The clock went back" not in served.get("/closed/looks/2/data").text
+    assert "Doubt: the entry before has" in record_sheet(served)
+
+
+def test_the_page_after_the_act_tells_the_clock_s_doubt(served: Served) -> None:
+    served.enter()
+    served.desk.trial._settings = replace(
+        served.desk.settings, clock=lambda: TODAY.replace(year=2025, month=1)
+    )
+    served.post("/closed/unmask", by=BY, reason="Asked for.")
+    assert "Doubt The clock went back: entry" in words(served.get("/closed/looks/3/glance"))

@@ -13,7 +13,7 @@ from app.actions.names import recorded_name, recorded_reason
 from app.actions.report import report
 from app.actions.unmask import unmask
 from app.errors import LookAlreadyFrozen
-from app.web.files import attachment
+from app.web.files import archive, attachment
 from app.web.forms import SubmittedForm
 from app.web.mending import Mend, read_field
 from app.web.routes.looks import CLOSED, closed_look, newest_frame, require_look
@@ -54,6 +54,14 @@ def download_report(site: TheSite, session: TheSession, look: LookNumber) -> Res
     closed_look(site, session, look)
     files = report(site.desk, look)
     return attachment(files.html, f"{files.stem}.html", "text/html; charset=utf-8")
+
+
+@router.get("/closed/looks/{look}/report.zip")
+def download_folder(site: TheSite, session: TheSession, look: LookNumber) -> Response:
+    """The report with its record, the history up to its freeze, and the program that checks them."""
+    closed_look(site, session, look)
+    files = report(site.desk, look)
+    return attachment(archive(tuple(files.by_name.items())), f"{files.stem}.zip", "application/zip")
 
 
 @router.get("/closed/unmask")

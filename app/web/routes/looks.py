@@ -91,9 +91,9 @@ def require_look(site: Site, look: int) -> None:
 
 def page(site: Site, book: LookBook, sheet: str, base: str) -> Response:
     require_sheet(book, sheet)
-    damage = site.damage if base == CLOSED else ""
+    told = {"damage": site.damage, "clock_doubts": site.take_clock_doubts()} if base == CLOSED else {}
     return HTMLResponse(
-        render_sheet(site.environment, book, sheet, base=base, template="forms/sheet.html", damage=damage)
+        render_sheet(site.environment, book, sheet, base=base, template="forms/sheet.html", **told)
     )
 
 

@@ -89,7 +89,14 @@ def test_what_can_be_done_depends_on_what_was_done() -> None:
     always = ["amend", "erratum", "backup", "verify"]
     assert acts(sheet(1, 0, 1)) == ["receive", *always, "looks/1/freeze", "unmask"]
     assert acts(sheet(2, 1, 2)) == ["receive", "recommend", *always, "looks/2/freeze", "unmask"]
-    assert acts(sheet(2, 1, 1)) == ["looks/1/report", "receive", "recommend", *always, "unmask"]
+    assert acts(sheet(2, 1, 1)) == [
+        "looks/1/report",
+        "looks/1/report.zip",
+        "receive",
+        "recommend",
+        *always,
+        "unmask",
+    ]
     assert "unmask" not in acts(sheet(2, 1, 2, unmasked=True))
 
 
