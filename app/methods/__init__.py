@@ -81,6 +81,85 @@ METHODS: dict[str, Method] = {
         "correlations √(*I*₁/*I*₂) use the information recorded at each look. Earlier bounds stand as used.",
         "Armitage, McPherson and Rowe (1969), JRSS A 132, 235–244.",
     ),
+    "power": Method(
+        "Spending",
+        "Power: with *a* the one-sided level, *f*(*t*) = *a* *t* to the plan’s exponent.",
+        "Kim and DeMets (1987), Biometrika 74, 149–154.",
+    ),
+    "hwang-shih-decani": Method(
+        "Spending",
+        "Hwang-Shih-DeCani: with *a* the one-sided level and *g* the plan’s parameter, *f*(*t*) = "
+        "*a*(1 − exp(−*g* *t*))/(1 − exp(−*g*)).",
+        "Hwang, Shih and DeCani (1990), Statistics in Medicine 9, 1439–1445.",
+    ),
+    "table": Method(
+        "Spending",
+        "Straight lines between the points of the plan, from nothing at the start.",
+        "Lan and DeMets (1983), Biometrika 70, 659–663.",
+    ),
+    "o'brien-fleming": Method(
+        "Boundary family",
+        "O’Brien-Fleming: interim bounds *c*/√*t*, *c* from the plan’s looks; the last is solved for what "
+        "is left.",
+        "O’Brien and Fleming (1979), Biometrics 35, 549–556.",
+    ),
+    "pocock": Method(
+        "Boundary family",
+        "Pocock: one interim bound *c*, from the plan’s looks; the last is solved for what is left.",
+        "Pocock (1977), Biometrika 64, 191–199.",
+    ),
+    "wang-tsiatis": Method(
+        "Boundary family",
+        "Wang-Tsiatis: interim bounds *c* times *t* to the plan’s shape less ½; the last is solved for "
+        "what is left.",
+        "Wang and Tsiatis (1987), Biometrics 43, 193–199.",
+    ),
+    "haybittle-peto": Method(
+        "Boundary family",
+        "Haybittle-Peto: the plan’s bound at every interim look; the last is solved for what is left.",
+        "Haybittle (1971), British Journal of Radiology 44, 793–797.",
+    ),
+    "futility": Method(
+        "Futility",
+        "Spends the type II error under the effect that has the plan’s power, or goes by the plan’s rule; "
+        "at the final look it is the efficacy bound. Efficacy ignores it unless it is binding.",
+        "Pampallona, Tsiatis and Kim (2001), Drug Information Journal 35, 1113–1121.",
+    ),
+    "harm": Method(
+        "Harm",
+        "The mirror of a one-sided test at harm’s own alpha; efficacy ignores it.",
+        "DeMets and Ware (1982), Biometrika 69, 661–663.",
+    ),
+    "repeated-interval": Method(
+        "Repeated interval",
+        "exp(−*s*(*z* ± bound)/√*V*): it holds at every look, whatever is decided.",
+        "Jennison and Turnbull (1989), JRSS B 51, 305–361.",
+    ),
+    "conditional-power": Method(
+        "Conditional power",
+        "The chance of crossing efficacy later given *z* now: at the final look only, Φ((*z*√*t* + θ(1 − "
+        "*t*) − *c*)/√(1 − *t*)); along all planned looks by recursive integration. θ is the mean of *z* "
+        "at full information.",
+        "Lan, Simon and Halperin (1982), Communications in Statistics C 1, 207–219.",
+    ),
+    "predictive-power": Method(
+        "Predictive power",
+        "Conditional power at the final look averaged over the effects that the result so far and a prior "
+        "allow.",
+        "Spiegelhalter, Freedman and Blackburn (1986), Controlled Clinical Trials 7, 8–17.",
+    ),
+    "next-look": Method(
+        "New events alone",
+        "The hazard ratio that the events up to the next look must show by themselves for its bound to be "
+        "met.",
+        "Lan and Wittes (1988), Biometrics 44, 579–585.",
+    ),
+    "after-a-stop": Method(
+        "As if stopped here",
+        "Stagewise ordering: an earlier efficacy stop says more, and at one look the larger *z*. "
+        "Non-binding futility and harm are left out, so the median is not exactly unbiased.",
+        "Tsiatis, Rosner and Mehta (1984), Biometrics 40, 797–803.",
+    ),
     "bound-hazard-ratio": Method(
         "As a hazard ratio",
         "exp(−*s* *z*/√*I*) with *I* = *V* at a look held and *d* *p* *q* at a planned one.",

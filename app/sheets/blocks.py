@@ -145,6 +145,7 @@ class Lane:
     lower: Span | None
     crossed: bool = False
     futility: Span | None = None  # hatched below; mirrored on the right lane of "two lanes"
+    harm: Span | None = None  # grey below; not drawn on "two lanes"
 
 
 @dataclass(frozen=True)

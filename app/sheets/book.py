@@ -10,6 +10,7 @@ from app.sheets.extract import data_sheet, open_data_sheet
 from app.sheets.frame import Surroundings, closed_frame, open_frame
 from app.sheets.glance import glance_sheet, open_glance_sheet
 from app.sheets.information import information_sheet, open_information_sheet
+from app.sheets.outlook import outlook_sheet
 from app.sheets.record import History, record_sheet, state_sentence
 from app.views.closed import ClosedView
 from app.views.open import OpenView
@@ -25,6 +26,7 @@ def closed_book(
         information_sheet(view, around.planned_for(number)),
         curves_sheet(view),
         boundary_sheet(view),
+        outlook_sheet(view),
         record_sheet(history, number),
     )
     return LookBook(closed_frame(view, around, _named(sheets)), sheets)

@@ -62,7 +62,13 @@ def boundary_sheet(view: ClosedView) -> Sheet:
         folded=_strata_table(view),
         notes=(_note(view),),
         methods=methods(
-            "logrank", spending_key(view.plan.efficacy.spending), "boundary", "bound-hazard-ratio", "cox"
+            "logrank",
+            spending_key(view.plan.efficacy.spending),
+            "boundary",
+            *(key for key in ("futility", "harm") if getattr(view.plan, key) is not None),
+            "bound-hazard-ratio",
+            "repeated-interval",
+            "cox",
         ),
         figure_table=_looks_table(view),
     )
@@ -92,6 +98,8 @@ def _unmasked_sentence(view: ClosedView, reading: Reading) -> Line:
     if is_over_running(view, reading):
         at = f" at look{NO_BREAK}{reading.verdict.first_crossed}. This look is over-running: "
         return line("The boundary was ", CROSSED, at, z, ", no second test.")
+    if isinstance(bound, Absent) and reading.verdict.crossed == "harm":
+        return line("The harm boundary was ", CROSSED, _below_against(view, reading))
     if isinstance(bound, Absent):
         return line("No efficacy boundary applies: ", z, f". {_reason(bound)}.")
     places = z_places(reading.z, bound)
@@ -101,11 +109,26 @@ def _unmasked_sentence(view: ClosedView, reading: Reading) -> Line:
     if reading.verdict.crossed == "control":
         start = line("The boundary in favour of ", label_of(view, view.against).in_sentence, " was ", CROSSED)
         return line(start, ": ", z, " against ", _mirror(bound, places), ".")
+    if reading.verdict.crossed in ("futility", "harm"):
+        return line(f"The {reading.verdict.crossed} boundary was ", CROSSED, _below_against(view, reading))
     if view.plan.design.sides == 2:
         both = Span(f"±{decimal(bound, places)}", value=bound)
         return line("No boundary was crossed: ", z, " against ", both, ".")
     return line(
         "The efficacy boundary was not crossed: ", z, " against ", z_number(bound, places=places), "."
+    )
+
+
+def _below_against(view: ClosedView, reading: Reading) -> Line:
+    """ ": z 0.420 against 0.958." and, for futility that does not bind, that it does not."""
+    crossed = reading.verdict.crossed
+    bound = view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
+    binds = crossed == "futility" and view.plan.futility is not None and view.plan.futility.binding
+    advice = "." if binds or crossed == "harm" else "; it does not bind."
+    if bound is None or isinstance(bound, Absent):
+        return line(".")
+    return line(
+        ": ", _z_of(reading, bound), " against ", z_number(bound, places=z_places(reading.z, bound)), advice
     )
 
 
@@ -115,6 +138,8 @@ def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
     if is_over_running(view, reading):
         at = f" at look{NO_BREAK}{reading.verdict.first_crossed}; no second test."
         return line(start, ", the boundary was ", CROSSED, at)
+    if reading.verdict.crossed in ("futility", "harm"):
+        return line(start, *_masked_below(view, reading))
     if isinstance(bound, Absent):
         return line(start, ", no efficacy boundary applies.")
     places = z_places(reading.z, bound)
@@ -124,6 +149,14 @@ def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
         other = "B" if reading.experimental == "A" else "A"
         return line(start, ", bound ", _mirror(bound, places), f" in favour of {other} ", CROSSED, ".")
     return line(start, ", no boundary crossed.")
+
+
+def _masked_below(view: ClosedView, reading: Reading) -> Line:
+    """ ", futility bound 0.958 crossed." """
+    crossed = reading.verdict.crossed
+    bound = view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
+    shown = z_number(bound, places=z_places(reading.z, bound)) if bound is not None else Span("")
+    return line(f", {crossed} bound ", shown, NO_BREAK, CROSSED, ".")
 
 
 def _reason(bound: Absent) -> str:
@@ -180,7 +213,9 @@ def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
         z=_z_shown(held.z, held.efficacy_z),
         upper=upper,
         lower=lower,
-        crossed=held.number in firsts,
+        crossed=held.number in firsts or held.crossed in ("futility", "harm"),
+        futility=_lower_shown(held.futility_z, held.final),
+        harm=_lower_shown(held.harm_z, final=False),
     )
 
 
@@ -189,12 +224,24 @@ def _lane_now(view: ClosedView) -> Lane:
     upper, lower = _bounds_shown(view, z, look.bound.efficacy_z, look.number)
     crossed = any(each.verdict.crossed != "none" for each in view.readings)
     fraction, shown = look.bound.information_fraction, _z_shown(z, look.bound.efficacy_z)
-    return Lane(look.number, fraction, "now", look.final, shown, upper, lower, crossed)
+    below = _below_shown(look.bound)
+    return Lane(look.number, fraction, "now", look.final, shown, upper, lower, crossed, *below)
 
 
 def _planned_lane(view: ClosedView, bound: Bound) -> Lane:
     upper, lower = _bounds_shown(view, None, bound.efficacy_z, bound.number)
-    return Lane(bound.number, bound.information_fraction, "planned", bound.final, None, upper, lower)
+    fraction, below = bound.information_fraction, _below_shown(bound)
+    return Lane(bound.number, fraction, "planned", bound.final, None, upper, lower, False, *below)
+
+
+def _below_shown(bound: Bound) -> tuple[Span | None, Span | None]:
+    """The futility and the harm bound of a lane."""
+    return _lower_shown(bound.futility_z, bound.final), _lower_shown(bound.harm_z, final=False)
+
+
+def _lower_shown(z: Estimate | None, final: bool) -> Span | None:
+    """A bound below; at a final look what is not efficacy has no zone of its own."""
+    return None if z is None or isinstance(z, Absent) or final else z_number(z)
 
 
 def _z_now(view: ClosedView) -> float | None:
@@ -242,12 +289,21 @@ class _Column:
     bound: Estimate
     ratio: Estimate
     spent: float
+    futility: Estimate | None = None
+    harm: Estimate | None = None
 
 
 def _columns(view: ClosedView) -> tuple[_Column, ...]:
     held = (
         _Column(
-            each.fraction, each.events, each.z, each.efficacy_z, each.efficacy_hazard_ratio, each.alpha_spent
+            each.fraction,
+            each.events,
+            each.z,
+            each.efficacy_z,
+            each.efficacy_hazard_ratio,
+            each.alpha_spent,
+            each.futility_z,
+            each.harm_z,
         )
         for each in view.readings[0].history
     )
@@ -263,6 +319,8 @@ def _of_bound(bound: Bound, z: float | None) -> _Column:
         bound.efficacy_z,
         bound.efficacy_hazard_ratio,
         bound.alpha_spent,
+        bound.futility_z,
+        bound.harm_z,
     )
 
 
@@ -279,6 +337,7 @@ def _lane_rows(view: ClosedView) -> tuple[LaneRow, ...]:
         LaneRow(line(Z), line(Z), tuple(_z_shown(each.z, each.bound) for each in columns), rule_above=True),
         LaneRow(line(f"Efficacy bound{plus_minus}"), line("Efficacy"), bounds),
         LaneRow(line("as a hazard ratio"), line("as HR"), ratios, indent=True),
+        *_rows_below(view, columns),
         LaneRow(
             line(f"Alpha spent, {_side_words(view)}"),
             line("Alpha"),
@@ -286,6 +345,24 @@ def _lane_rows(view: ClosedView) -> tuple[LaneRow, ...]:
         ),
     )
     return rows if not view.masked else tuple(row for row in rows if row.short_head != line("as HR"))
+
+
+def _rows_below(view: ClosedView, columns: tuple[_Column, ...]) -> tuple[LaneRow, ...]:
+    """Futility and harm, where the plan has them; masked they are read in each reading's own direction."""
+    each = ", each reading" if view.masked else ""
+    kinds = (
+        ("Futility", view.plan.futility, [column.futility for column in columns]),
+        ("Harm", view.plan.harm, [column.harm for column in columns]),
+    )
+    return tuple(
+        LaneRow(
+            line(f"{name} bound{each}"),
+            line(name),
+            tuple(DASH if z is None else _or_dash(z, 3) for z in bounds),
+        )
+        for name, table, bounds in kinds
+        if table is not None
+    )
 
 
 def _or_dash(value: Estimate, places: int) -> Span:
@@ -337,8 +414,23 @@ def _interval_table(view: ClosedView) -> Table:
     return Table(
         caption=line(f"Hazard ratio, {level_text(cox_level(view))} interval"),
         columns=(Column(()),),
-        rows=(Row(line(NOT_ADJUSTED), (Cell(shown),)),),
+        rows=(
+            Row(line(NOT_ADJUSTED), (Cell(shown),)),
+            Row(line(f"Repeated, {level_text(_repeated_level(view))}"), (Cell(_repeated(view)),)),
+        ),
     )
+
+
+def _repeated_level(view: ClosedView) -> float:
+    return 1.0 - 2.0 * view.plan.design.alpha_one_side
+
+
+def _repeated(view: ClosedView) -> Line:
+    """The interval that holds at every look, of the arm that the orientation is of."""
+    repeated = view.readings[0].onwards.repeated_interval
+    if isinstance(repeated, Absent):
+        return line(DASH)
+    return interval(repeated.ci_low, repeated.ci_high, 3)
 
 
 def _masked_tables(view: ClosedView) -> tuple[Table, ...]:
@@ -484,12 +576,22 @@ def _note(view: ClosedView) -> Line:
     used = "bounds and fractions" if _on_another_scale(view) else "bounds"
     as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: {used} as used." if past else ""
     return line(
-        f"{start}Grey: beyond the efficacy bound. "
+        f"{start}Grey: beyond the {_grey_words(view)} bound.{_hatched_words(view)} "
         f"Bounds exist at looks only; the dotted line guides the eye.{as_used}",
         *_ahead_words(view),
         _no_bound_words(view),
         FINAL_WORDS if view.look.final and view.look.information.fraction < 1 else "",
     )
+
+
+def _grey_words(view: ClosedView) -> str:
+    return "efficacy bound, below: beyond the harm" if view.plan.harm and not view.masked else "efficacy"
+
+
+def _hatched_words(view: ClosedView) -> str:
+    if view.plan.futility is None:
+        return ""
+    return f" Hatched: futility, {'binding' if view.plan.futility.binding else 'not binding'}."
 
 
 def _no_bound_words(view: ClosedView) -> str:

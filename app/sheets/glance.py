@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 
 from app.model.values import Absent
 from app.sheets.arms import label_of
@@ -35,9 +36,10 @@ from app.sheets.information import (
 )
 from app.sheets.methods import methods, spending_key
 from app.sheets.words import NO_BREAK, count, interval, level_text, line, number, of_total
-from app.views.closed import ArmView, ClosedView
+from app.views.closed import ArmView, ClosedView, Reading
 from app.views.open import OpenView
 
+BELOW = ("futility", "harm")
 NO_BOUND_HERE = "no efficacy boundary applies at this look."
 
 
@@ -97,6 +99,9 @@ def _answer(view: ClosedView) -> Line:
 
 def _crossing_words_masked(view: ClosedView) -> Line:
     crossed = [reading for reading in view.readings if reading.verdict.first_crossed is not None]
+    below = [reading for reading in view.readings if reading.verdict.crossed in BELOW]
+    if not crossed and below:
+        return _below_words(below)
     if not crossed and isinstance(view.look.bound.efficacy_z, Absent):
         return line(NO_BOUND_HERE)
     if not crossed:
@@ -110,16 +115,28 @@ def _crossing_words_masked(view: ClosedView) -> Line:
     )
 
 
+def _below_words(readings: Sequence[Reading]) -> Line:
+    """ "the futility boundary was crossed if B is experimental." """
+    said = [
+        line(f"the {each.verdict.crossed} boundary was ", CROSSED, f" if {each.experimental} is experimental")
+        for each in readings
+    ]
+    return line(said[0], *(line(" and ", more) for more in said[1:]), ".")
+
+
 def _crossing_words(view: ClosedView) -> Line:
     verdict = view.readings[0].verdict
+    if verdict.crossed in BELOW and verdict.first_crossed is None:
+        return line(f"the {verdict.crossed} boundary was ", CROSSED, ".")
     if verdict.first_crossed is None and isinstance(view.look.bound.efficacy_z, Absent):
         return line(NO_BOUND_HERE)
     if verdict.first_crossed is None:
         return line("no boundary was crossed.")
     if verdict.first_crossed < view.look.number:
         return line("the boundary had been ", CROSSED, f" at look{NO_BREAK}{verdict.first_crossed}.")
-    which = "efficacy boundary" if verdict.crossed == "efficacy" else "boundary in favour of control"
-    return line(f"the {which} was ", CROSSED, ".")
+    if verdict.crossed == "control":
+        return line("the boundary in favour of control was ", CROSSED, ".")
+    return line(f"the {verdict.crossed} boundary was ", CROSSED, ".")
 
 
 def _information_line(view: ClosedView, around: Surroundings) -> Line:
@@ -203,6 +220,7 @@ def _z_strip(view: ClosedView) -> ZStrip:
         upper=lane.upper,
         lower=lane.lower,
         crossed=lane.crossed,
+        futility=lane.futility,
     )
 
 

@@ -144,6 +144,7 @@ def _bounds(plot: LanePlot) -> list[Json]:
             [(lane, lane.lower, lower_bound(lane)) for lane in plot.figure.lanes],
         ),
         ("futility bound", [(lane, lane.futility, number(lane.futility)) for lane in plot.figure.lanes]),
+        ("harm bound", [(lane, lane.harm, number(lane.harm)) for lane in plot.figure.lanes]),
     )
     return [
         _bound_trace(plot, name, points) for name, points in of_kind if any(z is not None for *_, z in points)

@@ -84,7 +84,8 @@ def lane_readings(plot: LanePlot, lane: Lane) -> tuple[Reading, ...]:
         number(lane.futility),
     )
     if not plot.is_masked:
-        return (Reading(box, above=upper, below=lower, hatch_below=futility),)
+        grey_below = number(lane.harm) if lower is None else lower
+        return (Reading(box, above=upper, below=grey_below, hatch_below=futility),)
     middle = plot.middle(lane)
     left = Box(box.left, box.top, middle, box.bottom)
     right = Box(middle, box.top, box.right, box.bottom)

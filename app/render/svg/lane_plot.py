@@ -92,7 +92,8 @@ def z_range(figure: BoundaryFigure) -> tuple[float, float]:
 
 def lane_values(lane: Lane) -> list[float]:
     """Every z and bound of a lane that has a place on the axis."""
-    values = (number(lane.z), number(lane.upper), lower_bound(lane), number(lane.futility))
+    lower = (lower_bound(lane), number(lane.futility), number(lane.harm))
+    values = (number(lane.z), number(lane.upper), *lower)
     return [value for value in values if value is not None]
 
 

@@ -85,11 +85,14 @@ def _labels(plot: LanePlot, lane: Lane) -> list[Label]:
 def _labels_now(plot: LanePlot, lane: Lane) -> list[Label]:
     """The bounds with a name each and z between them; two-sided, neither bound is efficacy's."""
     word = "bound" if plot.is_two_sided else "efficacy"
-    futility = [] if plot.is_masked else _bound_label(plot, "futility", lane.futility, number(lane.futility))
+    below = () if plot.is_masked else (("futility", lane.futility), ("harm", lane.harm))
+    labels_below = [
+        label for name, bound in below for label in _bound_label(plot, name, bound, number(bound))
+    ]
     return [
         *_bound_label(plot, word, lane.upper, number(lane.upper)),
         *_z_label(plot, lane),
-        *futility,
+        *labels_below,
         *_bound_label(plot, word, lane.lower, lower_bound(lane)),
     ]
 
