@@ -10,6 +10,7 @@ from itertools import pairwise
 from typing import Any
 
 LONGEST_TEXT = 200
+MOST_WEIGHTS = 12  # as many as the joint probability of their largest is computed for
 LARGEST_WHOLE = 10**9
 
 
@@ -93,7 +94,7 @@ def _is_time_list(value: Any) -> bool:
 
 def _is_weight_list(value: Any) -> bool:
     listed = isinstance(value, list) and len(value) > 0 and all(map(is_pair, value))
-    return listed and all(rho >= 0 and gamma >= 0 for rho, gamma in value)
+    return listed and len(value) <= MOST_WEIGHTS and all(rho >= 0 and gamma >= 0 for rho, gamma in value)
 
 
 def _is_allocation(value: Any) -> bool:
@@ -128,7 +129,9 @@ POINTS = Domain(
     _float_pairs,
 )
 TIMES = Domain("a list of times above 0, each larger than the one before", _is_time_list, _floats)
-WEIGHTS = Domain("a list of pairs [rho, gamma], both at least 0", _is_weight_list, _float_pairs)
+WEIGHTS = Domain(
+    f"a list of up to {MOST_WEIGHTS} pairs [rho, gamma], both at least 0", _is_weight_list, _float_pairs
+)
 SHARE = number("a number above 0 and below 1", lambda value: 0 < value < 1)
 LEVEL = number("a number above 0 and below 0.5", lambda value: 0 < value < 0.5)
 POSITIVE = number("a number above 0", lambda value: value > 0)

@@ -28,13 +28,6 @@ NOT_COMPUTED = (
     NotComputed("hypothesis", "further hypotheses are not computed"),
     NotComputed("enrolment", "a monthly rate of enrolment is not used", key="planned_per_month"),
     NotComputed("enrolment", "drop-out for forecasts is not used", key="dropout_per_year"),
-    NotComputed("analysis", "this treatment of ties is not computed", key="ties", computed=("Efron",)),
-    NotComputed(
-        "analysis", "this curve interval is not computed", key="curve_interval", computed=("log-log",)
-    ),
-    NotComputed("analysis", "a restricted mean is not computed", key="restricted_mean_at"),
-    NotComputed("analysis", "landmark survival is not computed", key="landmarks_at"),
-    NotComputed("analysis", "weighted tests are not computed", key="weights"),
     NotComputed("analysis", "subgroups are not computed", key="subgroups"),
     NotComputed("columns", "an adjudication column is not read", key="adjudicated"),
     NotComputed("columns", "a cause column is not read", key="cause"),

@@ -27,7 +27,8 @@ METHODS: dict[str, Method] = {
     ),
     "greenwood": Method(
         "Interval",
-        "Greenwood’s variance; pointwise limits on the log(−log *S*) scale.",
+        "Greenwood’s variance; pointwise limits on the scale named under the figure, log(−log *S*) unless "
+        "the plan names another.",
         "Greenwood (1926); Kalbfleisch and Prentice (1980).",
     ),
     "median": Method(
@@ -50,9 +51,48 @@ METHODS: dict[str, Method] = {
     ),
     "cox": Method(
         "Hazard ratio",
-        "Cox’s partial likelihood, stratified as the test is, ties by Efron’s method; "
+        "Cox’s partial likelihood, stratified as the test is, ties by Efron’s method unless the plan "
+        "names another; "
         "the interval is Wald’s on the log scale and is not adjusted for looks.",
         "Cox (1972), JRSS B 34, 187–220; Efron (1977), JASA 72, 557–565.",
+    ),
+    "landmark": Method(
+        "Landmarks",
+        "The curves at times fixed in the plan; the interval of their difference adds Greenwood’s variances.",
+        "Klein, Logan, Harhoff and Andersen (2007), Statistics in Medicine 26, 4505–4519.",
+    ),
+    "log-log": Method(
+        "Figure",
+        "log(−log *S*) of each Kaplan-Meier curve against time on a log scale, at the times with an event: "
+        "parallel when hazards are proportional. Early steps rest on few events.",
+        "Kay (1977), Applied Statistics 26, 227–237.",
+    ),
+    "proportionality": Method(
+        "Proportional hazards",
+        "Score test for a log hazard ratio that changes along 1 − *S*(*t*−), *S* the Kaplan-Meier curve "
+        "of both "
+        "arms together, in the Cox model of the plan.",
+        "Grambsch and Therneau (1994), Biometrika 81, 515–526.",
+    ),
+    "restricted-mean": Method(
+        "Restricted mean",
+        "Area under the Kaplan-Meier curve up to the time fixed in the plan; variance by the areas "
+        "beyond each "
+        "event. Not stratified.",
+        "Irwin (1949), Journal of Hygiene 47, 188–189; Royston and Parmar (2011), Statistics in Medicine 30, "
+        "2409–2421.",
+    ),
+    "weighted": Method(
+        "Weighted tests",
+        "Log-rank with weights *S*(*t*−)^*rho* (1 − *S*(*t*−))^*gamma*, *S* of both arms together, "
+        "stratified as "
+        "the test is; (0, 0) is the log-rank test, (0, 1) counts late differences more.",
+        "Harrington and Fleming (1982), Biometrika 69, 553–566.",
+    ),
+    "weighted-maximum": Method(
+        "Largest of them",
+        "The *z* largest in absolute value; *p* from the joint normal distribution of all.",
+        "Lee (1996), Biometrics 52, 721–725; critique: Freidlin and Korn (2019), JCO 37, 3455–3459.",
     ),
     "information": Method(
         "Information",

@@ -8,7 +8,7 @@ from datetime import date
 from app.model.boundary import Bound, LookAsUsed, Verdict
 from app.model.extract import Changes, Finding, LookKind, TimeUnit
 from app.model.outlook import Outlook, RepeatedInterval, Stopping
-from app.model.survival import ArmComparison, CoxResult, LogrankResult, SurvivalCurve
+from app.model.survival import ArmComparison, CoxResult, LogrankResult, Shape, SurvivalCurve
 from app.model.values import Absent, Estimate, Ints
 
 
@@ -86,6 +86,8 @@ class LookResult:
     cox: CoxResult | Absent
     cox_unstratified: CoxResult | Absent
     mirrored: ArmComparison  # the same, control against experimental
+    shape: Shape
+    mirrored_shape: Shape  # control against experimental
     control_curve: SurvivalCurve
     experimental_curve: SurvivalCurve
     bound: Bound

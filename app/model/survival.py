@@ -164,12 +164,12 @@ class LandmarkTest:
 
 @dataclass(frozen=True)
 class LandmarkComparison:
-    """Survival at one time, experimental - control."""
+    """Survival at one time, experimental - control; what cannot be compared is the reason why."""
 
     at: float
     control: Landmark
     experimental: Landmark
-    difference: float
+    difference: Estimate
     std_error: Estimate
     ci_low: Estimate
     ci_high: Estimate
@@ -469,3 +469,18 @@ class GrayResult:
     chi_square: float
     degrees_of_freedom: int
     p: float
+
+
+@dataclass(frozen=True, eq=False)
+class Shape:
+    """How one arm differs from the other beyond one ratio; None is what the plan does not ask for.
+
+    Descriptive: nothing of it is adjusted for looks.
+    """
+
+    proportionality: ProportionalityResult | Absent
+    residuals: ScaledResiduals | Absent
+    restricted_mean: RestrictedMeanComparison | Absent | None
+    weighted: tuple[WeightedResult | Absent, ...] | None
+    weighted_maximum: WeightedMaximum | Absent | None
+    landmarks: tuple[LandmarkComparison, ...] | None

@@ -100,8 +100,19 @@ CHANGES = {
     "reversed_events": int, "moved_events": int, "changed_arm": int, "changed_stratum": int,
     "new_subjects_with_event": int, "vanished_with_event": int,
 }  # fmt: skip
+PROPORTIONALITY = {"chi_square": NUMBER, "p": NUMBER, "transform": str}
+RESTRICTED_MEAN = {
+    "at": NUMBER, "arms": [{"arm": str, "mean": NUMBER, "std_error": NUMBER}], "difference": NUMBER,
+    "std_error": NUMBER, "ci_low": NUMBER, "ci_high": NUMBER, "level": NUMBER, "p_two_sided": NUMBER,
+}  # fmt: skip
+WEIGHTED = {"rho": NUMBER, "gamma": NUMBER, "z": ESTIMATE, "p_two_sided": ESTIMATE}
+WEIGHTED_MAXIMUM = {"z": NUMBER, "p_two_sided": NUMBER}
+LANDMARK = {
+    "at": NUMBER, "arms": [{"arm": str, "survival": ESTIMATE, "ci_low": ESTIMATE, "ci_high": ESTIMATE}],
+    "difference": ESTIMATE, "ci_low": ESTIMATE, "ci_high": ESTIMATE,
+}  # fmt: skip
 NOT_ASKED = (
-    "proportionality", "restricted_mean", "weighted", "weighted_maximum", "landmarks", "hypotheses",
+    "hypotheses",
 )  # fmt: skip
 """Parts of a look that a plan of this version cannot ask for: null, so that a reader finds every name."""
 LOOK = {
@@ -113,7 +124,10 @@ LOOK = {
     "cox": Estimable(COX), "cox_unstratified": Estimable(COX),
     "curves": [CURVE], "boundary": {**BOUND, "information": NUMBER, **CROSSING}, "readings": Maybe([READING]),
     "history": [HISTORY], "ahead": [BOUND], **ONWARDS,
-    "repeated_interval": Maybe(Estimable(REPEATED_INTERVAL)), **dict.fromkeys(NOT_ASKED, Maybe(())),
+    "repeated_interval": Maybe(Estimable(REPEATED_INTERVAL)), "proportionality": Estimable(PROPORTIONALITY),
+    "restricted_mean": Maybe(Estimable(RESTRICTED_MEAN)), "weighted": Maybe([WEIGHTED]),
+    "weighted_maximum": Maybe(Estimable(WEIGHTED_MAXIMUM)), "landmarks": Maybe([LANDMARK]),
+    **dict.fromkeys(NOT_ASKED, Maybe(())),
 }  # fmt: skip
 ENVELOPE = {
     "format": int, "kind": str, "program": {"name": str, "version": str}, "plan_digest": str,

@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from app.render.svg import boundary, calendar, counts, curves
+from app.render.svg import boundary, calendar, counts, curves, log_log
 from app.render.svg.drawing import Drawing
-from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, Figure
+from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, Figure, LogLogFigure
 
 
 def wide(figure: Figure) -> Drawing:
@@ -14,6 +14,8 @@ def wide(figure: Figure) -> Drawing:
         return boundary.wide(figure)
     if isinstance(figure, CalendarFigure):
         return calendar.wide(figure)
+    if isinstance(figure, LogLogFigure):
+        return log_log.wide(figure)
     return counts.wide(figure)
 
 
@@ -24,4 +26,6 @@ def narrow(figure: Figure) -> Drawing:
         return boundary.narrow(figure)
     if isinstance(figure, CalendarFigure):
         return calendar.narrow(figure)
+    if isinstance(figure, LogLogFigure):
+        return log_log.narrow(figure)
     return counts.narrow(figure)

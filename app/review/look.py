@@ -16,6 +16,7 @@ from app.model.values import Absent, Estimate
 from app.review.comparison import compare_arms
 from app.review.counts import arm_counts, calendar_counts, strata_counts, times_of
 from app.review.onwards import onwards_of
+from app.review.shape import shape_of
 from app.sequential.boundary import LookAhead
 from app.sequential.effect import PlanRules, plan_rules, planned_looks
 from app.sequential.verdict import verdict
@@ -48,7 +49,7 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
     now, *planned = _bounds(plan, rules, information, declared, past)
     z = test if isinstance(test, Absent) else test.z
     mirrored_z = z if isinstance(z, Absent) else -z + 0.0
-    curves = [_curve(plan, sample, arm) for arm in (False, True)]
+    curves = _curve(plan, sample, False), _curve(plan, sample, True)
     return LookResult(
         number=declared.number,
         kind=declared.kind,
@@ -66,6 +67,8 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
         cox=compared.cox,
         cox_unstratified=compared.cox_unstratified,
         mirrored=mirrored,
+        shape=shape_of(plan, sample, curves),
+        mirrored_shape=shape_of(plan, sample, curves, mirrored=True),
         control_curve=curves[0],
         experimental_curve=curves[1],
         bound=now,

@@ -198,6 +198,29 @@ class CalendarFigure:
 
 
 @dataclass(frozen=True)
+class LogLogLine:
+    """One arm's log(-log S) at its event times: a step line in the figure's units."""
+
+    arm: ArmLabel
+    log_time: tuple[float, ...]
+    log_minus_log: tuple[float, ...]
+
+
+@dataclass(frozen=True)
+class LogLogFigure:
+    """log(-log S) against log time: parallel under proportional hazards. Ticks are (place, words)."""
+
+    title: str
+    description: str
+    x_title: str
+    y_title: str
+    x_ticks: tuple[tuple[float, str], ...]
+    y_ticks: tuple[tuple[float, str], ...]
+    lines: tuple[LogLogLine, ...]
+    kind: Literal["log-log"] = "log-log"
+
+
+@dataclass(frozen=True)
 class CountsFigure:
     """A row of counts, each with the words under it."""
 
@@ -253,7 +276,7 @@ class ZStrip:
     kind: Literal["z strip"] = "z strip"
 
 
-Figure = CurvesFigure | BoundaryFigure | CalendarFigure | CountsFigure
+Figure = CurvesFigure | BoundaryFigure | CalendarFigure | LogLogFigure | CountsFigure
 Strip = CountsFigure | InformationStrip | IntervalStrip | ZStrip
 
 

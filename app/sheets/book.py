@@ -12,6 +12,7 @@ from app.sheets.glance import glance_sheet, open_glance_sheet
 from app.sheets.information import information_sheet, open_information_sheet
 from app.sheets.outlook import outlook_sheet
 from app.sheets.record import History, record_sheet, state_sentence
+from app.sheets.shape import shape_sheet
 from app.views.closed import ClosedView
 from app.views.open import OpenView
 
@@ -26,6 +27,7 @@ def closed_book(
         information_sheet(view, around.planned_for(number)),
         curves_sheet(view),
         boundary_sheet(view),
+        shape_sheet(view),
         outlook_sheet(view),
         record_sheet(history, number),
     )

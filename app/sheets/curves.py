@@ -69,9 +69,16 @@ def curves_sheet(view: ClosedView) -> Sheet:
         question=QUESTION,
         answer=(event_free_sentence(view),),
         figure=curves_figure(shown, axis),
-        tables=(_estimates(shown, axis), hazard_ratio_table(view)),
+        tables=(_estimates(shown, axis), hazard_ratio_table(view), *_landmark_table(view, axis)),
         notes=(_note(shown, axis),),
-        methods=methods("kaplan-meier", "greenwood", "median", "follow-up", "cox"),
+        methods=methods(
+            "kaplan-meier",
+            "greenwood",
+            "median",
+            "follow-up",
+            "cox",
+            *(["landmark"] if view.shape.landmarks else []),
+        ),
         figure_table=_figure_table(shown, axis),
     )
 
@@ -274,6 +281,26 @@ def hazard_ratio_table(view: ClosedView) -> Table:
         columns=(Column(()),),
         rows=(Row(line(f"{level_text(cox_level(view))} interval, {NOT_ADJUSTED}"), (_ratio(view.cox),)),),
     )
+
+
+def _landmark_table(view: ClosedView, axis: TimeAxis) -> tuple[Table, ...]:
+    """The arms' difference at the times fixed in the plan; none where it fixes none."""
+    if not view.shape.landmarks:
+        return ()
+    rows = (
+        Row(
+            line(f"At {time_words(axis, compared.at / axis.scale)}"),
+            (
+                Cell(
+                    line(percent(compared.difference)),
+                    interval(compared.ci_low, compared.ci_high, 1, scale=100),
+                ),
+            ),
+        )
+        for compared in view.shape.landmarks
+    )
+    caption = line(f"Difference in event{NO_BREAK_HYPHEN}free %, {against(view)}, {NOT_ADJUSTED}")
+    return (Table(caption, (Column(()),), tuple(rows)),)
 
 
 def cox_level(view: ClosedView) -> float:

@@ -6,7 +6,6 @@ import math
 
 from scipy.special import ndtr
 
-from app.errors import NotEstimable
 from app.model.survival import Landmark, LandmarkComparison, LandmarkTest, SurvivalCurve
 from app.model.values import Absent, Estimate
 from app.survival.intervals import SCALES, two_sided_quantile
@@ -27,12 +26,12 @@ def compare_landmarks(
     Returns
     -------
     LandmarkComparison
-        both arms, difference [1] with standard error and limits, and a test on each scale.
+        both arms, difference [1] with standard error and limits, and a test on each scale; what does not
+        exist, as where a curve is not known at this time, is the reason why.
 
     Raises
     ------
     ValueError : an argument breaks a domain - a bug in the caller.
-    NotEstimable : one of the curves is not known at this time.
 
     Notes
     -----
@@ -55,11 +54,11 @@ def compare_landmarks(
     >>> compare_landmarks(one, other, 3).difference
     0.125
     """
+    z = two_sided_quantile(level)
     arms = landmark(control, at), landmark(experimental, at)
-    shares = [_known(arm) for arm in arms]
-    difference = shares[1] - shares[0]
     error = _error(arms)
-    low, high = _limits(difference, error, level)
+    difference = _difference(arms)
+    low, high = _limits(difference, error, z)
     return LandmarkComparison(
         at=at,
         control=arms[0],
@@ -73,40 +72,46 @@ def compare_landmarks(
     )
 
 
-def _limits(difference: float, error: Estimate, level: float) -> tuple[Estimate, Estimate]:
-    if isinstance(error, Absent):
-        return error, error
-    half = two_sided_quantile(level) * error
-    return max(-1.0, difference - half), min(1.0, difference + half)
+Arms = tuple[Landmark, Landmark]
 
 
-def _known(arm: Landmark) -> float:
-    if isinstance(arm.survival, Absent):
-        raise NotEstimable(arm.survival.reason)
-    return arm.survival
+def _difference(arms: Arms) -> Estimate:
+    control, experimental = (arm.survival for arm in arms)
+    if isinstance(control, Absent):
+        return control
+    return experimental if isinstance(experimental, Absent) else experimental - control
 
 
-def _error(arms: tuple[Landmark, Landmark]) -> Estimate:
+def _limits(difference: Estimate, error: Estimate, z: float) -> tuple[Estimate, Estimate]:
+    if isinstance(difference, Absent) or isinstance(error, Absent):
+        missing = difference if isinstance(difference, Absent) else error
+        return missing, missing
+    return max(-1.0, difference - z * error), min(1.0, difference + z * error)
+
+
+def _error(arms: Arms) -> Estimate:
     """Greenwood's variances added; none where an arm has none, or where both are at 1."""
-    squares = 0.0
+    errors = []
     for arm in arms:
         if isinstance(arm.std_error, Absent):
             return arm.std_error
-        squares += arm.std_error**2
-    return math.sqrt(squares) if squares else Absent("not estimable: no event fell before this time")
+        errors.append(arm.std_error)
+    return math.hypot(*errors) or Absent("not estimable: no event fell before this time")
 
 
-def _test(scale: str, arms: tuple[Landmark, Landmark], error: Estimate) -> LandmarkTest:
+def _test(scale: str, arms: Arms, error: Estimate) -> LandmarkTest:
     """The difference of the transformed shares against its standard error by the delta method."""
     if isinstance(error, Absent):
         return LandmarkTest(scale, error, error)
-    shares = [_known(arm) for arm in arms]
-    if scale != "plain" and 1.0 in shares:
+    pairs = [
+        (arm.survival, arm.std_error)
+        for arm in arms
+        if not isinstance(arm.survival, Absent) and not isinstance(arm.std_error, Absent)
+    ]
+    if scale != "plain" and any(share == 1.0 for share, _ in pairs):
         at_one = Absent("not estimable on this scale: no event fell before this time in one arm")
         return LandmarkTest(scale, at_one, at_one)
-    slopes = [SCALES[scale].slope(share) for share in shares]
-    errors = [0.0 if isinstance(arm.std_error, Absent) else arm.std_error for arm in arms]
-    variance = math.fsum((slope * one) ** 2 for slope, one in zip(slopes, errors, strict=True))
-    distance = SCALES[scale].value(shares[1]) - SCALES[scale].value(shares[0])
-    chi_square = distance**2 / variance
+    variance = math.fsum((SCALES[scale].slope(share) * one) ** 2 for share, one in pairs)
+    control, experimental = (SCALES[scale].value(share) for share, _ in pairs)
+    chi_square = (experimental - control) ** 2 / variance
     return LandmarkTest(scale, chi_square, float(2.0 * ndtr(-math.sqrt(chi_square))))

@@ -272,7 +272,7 @@ def _leukaemia_landmark() -> list[Item]:
         return next(_number(test.chi_square) for test in landmark().tests if test.scale == "log-log")
 
     return [
-        ("survival at 10 weeks, difference", "0.37199", lambda: landmark().difference),
+        ("survival at 10 weeks, difference", "0.37199", lambda: _number(landmark().difference)),
         (
             "survival at 10 weeks, difference, standard error",
             "0.14322",

@@ -7,17 +7,18 @@ and every one-directional quantity stands in two readings: "if A is experimental
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Literal
+from typing import Literal, TypeVar
 
 from scipy.special import ndtr
 
 from app.model.boundary import Bound, Crossed, LookAsUsed, Verdict
 from app.model.look import ArmCounts, LookResult, Onwards
 from app.model.plan import Plan
-from app.model.survival import ArmComparison, CoxResult, LogrankResult, SurvivalCurve
+from app.model.survival import ArmComparison, CoxResult, LogrankResult, Shape, SurvivalCurve
 from app.model.values import Absent, Estimate
 from app.sequential.verdict import crossed, first_crossed, verdict
 
+T = TypeVar("T")
 Letter = Literal["A", "B"]
 Role = Literal["control", "experimental"]
 
@@ -82,6 +83,7 @@ class ClosedView:
     cox: CoxResult | Absent
     cox_unstratified: CoxResult | Absent
     readings: tuple[Reading, ...]
+    shape: Shape
 
     @property
     def of(self) -> ArmView:
@@ -112,6 +114,7 @@ def _view(look: LookResult, plan: Plan, letters: Letters, *, masked: bool, of: R
     against: Role = "control" if of == "experimental" else "experimental"
     turned = of == "control"
     compared = look.mirrored if turned else _experimental_against_control(look)
+    shape = look.mirrored_shape if turned else look.shape
     return ClosedView(
         plan=plan,
         look=look,
@@ -123,6 +126,7 @@ def _view(look: LookResult, plan: Plan, letters: Letters, *, masked: bool, of: R
         cox=_lettered(compared.cox) if masked else compared.cox,
         cox_unstratified=_lettered(compared.cox_unstratified) if masked else compared.cox_unstratified,
         readings=_readings(look, plan, compared, turned) if masked else (_true_reading(look, plan),),
+        shape=_lettered_shape(shape) if masked else shape,
     )
 
 
@@ -130,11 +134,19 @@ def _experimental_against_control(look: LookResult) -> ArmComparison:
     return ArmComparison(look.logrank, look.logrank_unstratified, look.cox, look.cox_unstratified)
 
 
-def _lettered(cox: CoxResult | Absent) -> CoxResult | Absent:
+def _lettered_shape(shape: Shape) -> Shape:
+    return replace(
+        shape,
+        proportionality=_lettered(shape.proportionality),
+        residuals=_lettered(shape.residuals),
+    )
+
+
+def _lettered(found: T | Absent) -> T | Absent:
     """A reason that names the arms by their part names them by letter: the one compared is A."""
-    if not isinstance(cox, Absent):
-        return cox
-    return Absent(cox.reason.replace("the experimental arm", "arm A").replace("the control arm", "arm B"))
+    if not isinstance(found, Absent):
+        return found
+    return Absent(found.reason.replace("the experimental arm", "arm A").replace("the control arm", "arm B"))
 
 
 def _arm(look: LookResult, plan: Plan, letters: Letters, role: Role, masked: bool) -> ArmView:

@@ -24,6 +24,7 @@ from app.model.values import Absent, Estimate
 from app.record.numbers import column, estimate, not_estimable
 from app.record.schema import CONDITIONAL_POWER, EFFECTS, FORMAT, NEXT_LOOK, NOT_ASKED
 from app.views.closed import ArmView, ClosedView, Reading
+from app.views.shape_record import shape_record
 
 Record = dict[str, Any]
 
@@ -150,6 +151,7 @@ def look_record(view: ClosedView) -> Record:
         "ahead": [bound_record(bound, sides) for bound in look.planned],
         **(_onwards(only, look.final) if only else {"outlook": None, "stopping": None}),
         "repeated_interval": _part(view.readings[0].onwards.repeated_interval),
+        **shape_record(view),
         **dict.fromkeys(NOT_ASKED),
     }
 

@@ -84,6 +84,8 @@ FIGURES = {
     "curves with long names": with_long_names(),
     "curves with hostile names": with_hostile_names(),
     "calendar": invented.calendar_figure(),
+    "log-log": invented.log_log_figure(),
+    "log-log masked": invented.log_log_figure("masked"),
     "counts": invented.counts_figure(),
 }
 STRIPS = {

@@ -32,6 +32,8 @@ from app.sheets.blocks import (
     Lane,
     LaneRow,
     Line,
+    LogLogFigure,
+    LogLogLine,
     LookBook,
     MethodLine,
     PageFrame,
@@ -201,6 +203,28 @@ def curves_figure(state: State = "not crossed") -> CurvesFigure:
 def pooled_curves_figure() -> CurvesFigure:
     line = curve_line(None, _curve(7, 0.027, 900), "All subjects", 900)
     return replace(curves_figure(), title="Event-free survival, all subjects", lines=(line,))
+
+
+def log_log_figure(state: State = "not crossed") -> LogLogFigure:
+    labels = (ARM_B, ARM_A) if state == "masked" else (TABLET, PLACEBO)
+    lines = []
+    for label, rate in zip(labels, (0.0235, 0.0305), strict=True):
+        months = [0.05 * 1.09**step for step in range(74)]
+        heights = [math.log(rate * month) + 0.1 * math.sin(3 * month) for month in months]
+        rising = tuple(max(heights[: index + 1]) for index in range(len(heights)))
+        lines.append(LogLogLine(label, tuple(math.log(month) for month in months), rising))
+    return LogLogFigure(
+        title=f"log(\u2212log) of event-free survival, {labels[0].name} and {labels[1].name}",
+        description="Two step lines over months on a log scale; parallel lines mean proportional hazards.",
+        x_title="Months, log scale",
+        y_title="With the event, %, on the log(\u2212log) scale",
+        x_ticks=tuple((math.log(month), f"{month:g}") for month in (0.1, 0.5, 1.0, 3.0, 6.0, 12.0, 24.0)),
+        y_ticks=tuple(
+            (math.log(-math.log1p(-share)), f"{100 * share:g}")
+            for share in (0.001, 0.01, 0.05, 0.2, 0.5, 0.8)
+        ),
+        lines=tuple(lines),
+    )
 
 
 def calendar_figure() -> CalendarFigure:

@@ -12,7 +12,7 @@ from plotly.graph_objects import Figure
 from app.render import figures
 from app.render.plotly_figures import plotly_figure
 from app.render.plotly_figures.setting import in_line
-from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure
+from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, LogLogFigure
 from tests.render import invented_book as invented
 from tests.render.drawn_figures import FIGURES
 
@@ -20,6 +20,7 @@ HEIGHTS: dict[type, dict[str, float]] = {
     CurvesFigure: {"wide": 250, "narrow": 200},
     BoundaryFigure: {"wide": 236, "narrow": 220},
     CalendarFigure: {"wide": 250, "narrow": 200},
+    LogLogFigure: {"wide": 320, "narrow": 220},
 }
 CHARTS = {name: plotly_figure(figure) for name, figure in FIGURES.items()}
 every_chart = pytest.mark.parametrize("name", [name for name, chart in CHARTS.items() if chart is not None])

@@ -71,7 +71,7 @@ def test_the_first_address_leads_to_the_newest_look_of_one_s_own_side(served: Se
         "/closed/looks/0/glance",
         "/closed/looks/x/glance",
         "/closed/looks/99999999999999999999/glance",
-        "/closed/looks/3/shape",
+        "/closed/looks/3/weather",
         "/closed/looks/3/boundary/",
         "/open/looks/3/boundary",
         "/open/looks/3/record",

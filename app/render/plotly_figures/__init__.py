@@ -2,9 +2,9 @@
 
 from __future__ import annotations
 
-from app.render.plotly_figures import boundary, calendar, curves
+from app.render.plotly_figures import boundary, calendar, curves, log_log
 from app.render.plotly_figures.setting import Json
-from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, Figure
+from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, Figure, LogLogFigure
 
 
 def plotly_figure(figure: Figure) -> Json | None:
@@ -15,4 +15,6 @@ def plotly_figure(figure: Figure) -> Json | None:
         return {"wide": boundary.wide(figure), "narrow": boundary.narrow(figure)}
     if isinstance(figure, CalendarFigure):
         return {"wide": calendar.wide(figure), "narrow": calendar.narrow(figure)}
+    if isinstance(figure, LogLogFigure):
+        return {"wide": log_log.wide(figure), "narrow": log_log.narrow(figure)}
     return None

@@ -75,6 +75,7 @@ def test_swapping_the_arms_turns_differences_and_inverts_ratios(sample: TwoArmSa
     if not isinstance(means.ratio, Absent):
         assert not isinstance(turned.ratio, Absent)
         assert turned.ratio.ratio == pytest.approx(1 / means.ratio.ratio, rel=1e-12)
+    assert not isinstance(landmarks.difference, Absent)
     assert mirrored.difference == -landmarks.difference
     assert [test.chi_square for test in mirrored.tests] == [test.chi_square for test in landmarks.tests]
 

@@ -170,9 +170,9 @@ def test_the_tables_name_every_field_of_the_plan_classes():
         ),
         (
             "analysis",
-            'ties = "Breslow"',
-            "This treatment of ties is not computed by this version in q17.toml, table [analysis], key ties. "
-            "Found 'Breslow'. Accepted: 'Efron'. Change the plan, or use a version that does so.",
+            'subgroups = ["SEX"]',
+            "Subgroups are not computed by this version in q17.toml, table [analysis], key subgroups. Found "
+            "['SEX']. Accepted: the table without this key. Change the plan, or use a version that does so.",
         ),
         (
             "columns",

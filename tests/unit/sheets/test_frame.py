@@ -96,6 +96,7 @@ def test_every_page_names_look_kind_state_and_plan_version() -> None:
         "information",
         "curves",
         "boundary",
+        "shape",
         "outlook",
         "record",
     ]

@@ -129,7 +129,10 @@ def test_landmarks_compare_on_each_scale_that_exists() -> None:
     gone = compare_landmarks(kaplan_meier([1], [1]), experimental, 3)
     assert gone.difference == 0.75
     assert all(isinstance(test.p_two_sided, Absent) for test in gone.tests)
-    assert "nobody is followed to time 9" in reason_of(compare_landmarks, control, experimental, 9)
+    beyond = compare_landmarks(control, experimental, 9)
+    assert isinstance(beyond.difference, Absent)
+    assert beyond.difference.reason.startswith("not estimable: nobody is followed to time 9")
+    assert beyond.difference == beyond.ci_low == beyond.tests[0].chi_square
 
 
 def test_limits_of_a_difference_stay_between_minus_1_and_1() -> None:

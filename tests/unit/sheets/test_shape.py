@@ -1,0 +1,168 @@
+"""The Shape sheet and its record: what the plan asks for, from either side, and words for missing numbers."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import replace
+from typing import Any
+
+import pytest
+
+from app.model.values import Absent
+from app.record.schema import LOOKS_RECORD, differences
+from app.render.plotly_figures import plotly_figure
+from app.sheets.blocks import LogLogFigure, Sheet, Span
+from app.sheets.curves import curves_sheet
+from app.sheets.shape import DESCRIPTIVE, shape_sheet
+from app.views.closed import ClosedView
+from app.views.record import look_record, looks_record
+from tests.unit.review.invented_trial import CUTOFFS, plan
+from tests.unit.sheets.invented_looks import (
+    A_IS_CONTROL,
+    A_IS_EXPERIMENTAL,
+    Held,
+    answers,
+    held,
+    parts,
+    table_texts,
+    text,
+)
+
+ASKED = (
+    "[design]",
+    "[analysis]\nrestricted_mean_at = 300\nlandmarks_at = [180, 360, 4000]\n"
+    "weights = [[0, 0], [0, 1], [1, 1]]\n[design]",
+)
+
+
+@pytest.fixture(scope="module")
+def look() -> Held:
+    return held(plan(ASKED), cutoffs=CUTOFFS[-1:])[-1]
+
+
+def numbers(value: Any) -> Iterator[float]:
+    if isinstance(value, dict | list):
+        for item in value.values() if isinstance(value, dict) else value:
+            yield from numbers(item)
+    elif isinstance(value, int | float) and not isinstance(value, bool):
+        yield float(value)
+
+
+def test_the_record_carries_every_name_of_the_design(look: Held) -> None:
+    record = look_record(look.view())
+    assert record["proportionality"].keys() == {"chi_square", "p", "transform"}
+    assert record["restricted_mean"]["at"] == 300
+    assert [(test["rho"], test["gamma"]) for test in record["weighted"]] == [(0, 0), (0, 1), (1, 1)]
+    assert record["weighted"][0]["z"] == pytest.approx(record["logrank"]["z"], rel=1e-9)
+    assert abs(record["weighted_maximum"]["z"]) == max(abs(test["z"]) for test in record["weighted"])
+    assert [landmark["at"] for landmark in record["landmarks"]] == [180, 360, 4000]
+    assert "nobody is followed to time 4000" in record["landmarks"][2]["difference"]["not_estimable"]
+    whole = looks_record("look", [look.view()], run_at="2026-01-01T00:00:00Z")
+    assert list(differences(whole, LOOKS_RECORD)) == []
+
+
+def test_what_the_plan_does_not_ask_for_is_null_and_has_no_table() -> None:
+    plain = held(cutoffs=CUTOFFS[-1:])[-1]
+    record = look_record(plain.view())
+    for name in ("restricted_mean", "weighted", "weighted_maximum", "landmarks"):
+        assert record[name] is None
+    assert isinstance(record["proportionality"]["p"], float)
+    assert [text(table.caption) for table in shape_sheet(plain.view()).tables] == [
+        f"Proportional hazards, {DESCRIPTIVE}"
+    ]
+
+
+def test_each_table_is_said_to_be_descriptive_and_each_number_is_in_the_record(look: Held) -> None:
+    view = look.view()
+    sheet, known = shape_sheet(view), set(numbers(look_record(view)))
+    assert len(sheet.tables) == 3
+    assert all(text(table.caption).endswith(DESCRIPTIVE) for table in sheet.tables)
+    shown = [span.value for span in parts(sheet, Span) if span.value is not None]
+    assert shown
+    assert [value for value in shown if value not in known] == []
+
+
+def test_the_sentence_states_the_low_power(look: Held) -> None:
+    (said,) = answers(shape_sheet(look.view()))
+    events = look.result.information.events
+    assert said.startswith(
+        ("No change of the hazard ratio with time is seen: p ", "The hazard ratio seems to")
+    )
+    assert f"from {events} events." in said
+
+
+def with_p(view: ClosedView, p: float) -> Sheet:
+    test = view.shape.proportionality
+    assert not isinstance(test, Absent)
+    return shape_sheet(replace(view, shape=replace(view.shape, proportionality=replace(test, p=p))))
+
+
+def test_a_small_p_is_said_as_a_change_and_a_large_one_with_its_power(look: Held) -> None:
+    assert answers(with_p(look.view(), 0.012))[0].startswith(
+        "The hazard ratio seems to change with time: p 0.012"
+    )
+    assert answers(with_p(look.view(), 0.4))[0].endswith("events. Such a test has little power.")
+
+
+def test_what_cannot_be_estimated_is_a_word(look: Held) -> None:
+    none = Absent("no event was observed")
+    view = look.view()
+    shape = replace(
+        view.shape,
+        proportionality=none,
+        restricted_mean=none,
+        weighted=(none, none, none),
+        weighted_maximum=none,
+    )
+    sheet = shape_sheet(replace(view, shape=shape))
+    assert answers(sheet) == ["Whether the hazard ratio changes with time cannot be tested here."]
+    words = [cell for table in sheet.tables for row in table.rows for cell in row.cells]
+    assert {text(cell.line) for cell in words} == {"not estimable"}
+
+
+def test_masked_it_is_of_a_against_b_whichever_arm_that_is(look: Held) -> None:
+    one, other = look_record(look.view(A_IS_EXPERIMENTAL)), look_record(look.view(A_IS_CONTROL))
+    assert other["restricted_mean"]["difference"] == pytest.approx(-one["restricted_mean"]["difference"])
+    assert other["weighted_maximum"]["z"] == pytest.approx(-one["weighted_maximum"]["z"])
+    assert other["proportionality"]["chi_square"] == pytest.approx(
+        one["proportionality"]["chi_square"], rel=1e-9
+    )
+    for record in (one, other):
+        assert [arm["arm"] for arm in record["restricted_mean"]["arms"]] == ["A", "B"]
+        means = [arm["mean"] for arm in record["restricted_mean"]["arms"]]
+        assert record["restricted_mean"]["difference"] == pytest.approx(means[0] - means[1])
+        shares = [arm["survival"] for arm in record["landmarks"][0]["arms"]]
+        assert record["landmarks"][0]["difference"] == pytest.approx(shares[0] - shares[1])
+
+
+def test_the_curves_sheet_shows_the_differences_at_the_landmarks(look: Held) -> None:
+    sheet = curves_sheet(look.view())
+    rows = table_texts(sheet, "Difference in event-free")
+    assert list(rows) == ["At 5.9 months", "At 11.8 months", "At 131 months"] or len(rows) == 3
+    assert list(rows.values())[2] == ["not estimable"]
+    assert "Landmarks" in [method.term for method in sheet.methods]
+
+
+def test_the_figure_draws_each_curve_where_it_has_a_place(look: Held) -> None:
+    figure = shape_sheet(look.view()).figure
+    assert isinstance(figure, LogLogFigure)
+    for line, arm in zip(figure.lines, look.view().arms, strict=True):
+        curve = arm.curve
+        drawn = (curve.events > 0) & (curve.survival < 1) & (curve.survival > 0)
+        assert len(line.log_time) == int(drawn.sum())
+        first = float(curve.survival[drawn][0])
+        assert line.log_minus_log[0] == pytest.approx(math.log(-math.log(first)))
+    lows, highs = figure.y_ticks[0][0], figure.y_ticks[-1][0]
+    assert lows <= min(min(line.log_minus_log) for line in figure.lines)
+    assert highs >= max(max(line.log_minus_log) for line in figure.lines)
+    zoomed = plotly_figure(figure)
+    assert zoomed is not None
+    assert {"wide", "narrow"} == zoomed.keys()
+
+
+def test_an_arm_without_an_event_leaves_no_figure(look: Held) -> None:
+    view = look.view()
+    curve = view.of.curve
+    bare = replace(view.of, curve=replace(curve, events=curve.events * 0))
+    assert shape_sheet(replace(view, arms=(bare, view.against))).figure is None
