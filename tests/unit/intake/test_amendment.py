@@ -29,7 +29,7 @@ def test_each_changed_key_is_told_as_it_was_and_as_it_is() -> None:
 def test_a_plan_written_otherwise_with_the_same_meaning_changes_nothing() -> None:
     assert plan_changes(plan(), plan(PLAN + b"\n# a remark\n")) == ()
     assert plan_changes(plan(), plan(plan_with((b"alpha = 0.025", b"alpha = 2.5e-2")))) == ()
-    assert plan_changes(plan(), plan(PLAN + b"\n[analysis]\nconfidence = 0.95\n")) == ()  # the default
+    assert plan_changes(plan(), plan(PLAN + b"confidence = 0.95\n")) == ()  # the default
 
 
 def test_a_key_that_was_left_out_was_not_set() -> None:
