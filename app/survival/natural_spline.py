@@ -16,13 +16,18 @@ def natural_spline(x: Floats, y: Floats, at: Floats, degrees: int) -> tuple[Floa
 
     Hastie & Tibshirani (1990), Generalized Additive Models, chapter 2.
     """
-    low, high = float(x.min()), float(x.max())
-    inner = np.quantile(x, np.arange(1, degrees - 1) / (degrees - 1))
-    knots = (np.concatenate([[low], inner, [high]]) - low) / (high - low)
+    found = knots_of(x, degrees)
+    low, high = found[0], found[-1]
+    knots = (found - low) / (high - low)
     design, wanted = (_basis((values - low) / (high - low), knots) for values in (x, at))
     orthogonal, triangular = np.linalg.qr(design)
     read = np.linalg.solve(triangular.T, wanted.T).T
     return read @ (orthogonal.T @ y), np.sqrt(np.sum(read**2, axis=1))
+
+
+def knots_of(x: Floats, degrees: int) -> Floats:
+    """The ends of x and the inner knots between them, in order; all differ where the spline can be fitted."""
+    return np.asarray(np.quantile(x, np.arange(degrees) / (degrees - 1)), dtype=np.float64)
 
 
 def _basis(x: Floats, knots: Floats) -> Floats:

@@ -16,7 +16,7 @@ from app.survival.cox import maximise, two_arm_likelihood
 from app.survival.cox_data import CoxSubjects, cox_subjects
 from app.survival.cox_moments import CoxMoments, cox_moments
 from app.survival.cox_regression import cox_regression
-from app.survival.natural_spline import natural_spline
+from app.survival.natural_spline import knots_of, natural_spline
 from app.survival.time_scales import event_times_on_scale
 
 SMOOTH_DEGREES = 4
@@ -217,8 +217,9 @@ class _Fitted:
 
 def _smooth(on_scale: Floats, residuals: Floats, variance: float) -> SmoothCurve | Absent:
     """The spline at equal steps of the scale, with the standard error of its height."""
-    if np.unique(on_scale).size < SMOOTH_DEGREES + 1:
-        return Absent(f"a smooth curve needs events at {SMOOTH_DEGREES + 1} times or more")
+    times = np.unique(on_scale).size
+    if times < SMOOTH_DEGREES + 1 or np.unique(knots_of(on_scale, SMOOTH_DEGREES)).size < SMOOTH_DEGREES:
+        return Absent(f"a smooth curve needs events spread over {SMOOTH_DEGREES + 1} times or more")
     at = np.linspace(on_scale.min(), on_scale.max(), SMOOTH_POINTS)
     value, error = natural_spline(on_scale, residuals, at, SMOOTH_DEGREES)
     return SmoothCurve(

@@ -20,6 +20,7 @@ SHEETS = (
     ("2 Information", "How much do we know?", "information fraction 0.714"),
     ("3 Curves", "What happened to the patients?", "event‑free"),
     ("4 Boundary", "Where does the test stand?", "If A is experimental:"),
+    ("5 Shape", "Does one hazard ratio tell the story?", "No change of the hazard ratio with time is seen"),
     ("6 Outlook", "What if we go on?", "under the plan’s effect"),
     ("9 Record", "What was shown, what was advised?", "Look 3 is open; looks 1 and 2 are frozen."),
 )

@@ -302,7 +302,13 @@ def test_nothing_changes_with_time_where_events_fall_at_one_time() -> None:
 def test_few_event_times_have_residuals_but_no_smooth() -> None:
     found = scaled_residuals([1, 2, 3, 4, 5, 6], [1, 1, 1, 0, 0, 0], [0, 1, 0, 1, 0, 1])
     assert found.residuals.shape == (3, 1)
-    assert found.smooth == (Absent("a smooth curve needs events at 5 times or more"),)
+    assert found.smooth == (Absent("a smooth curve needs events spread over 5 times or more"),)
+
+
+def test_events_heaped_at_one_time_have_residuals_but_no_smooth() -> None:
+    time = [1, 2, 3, 4, 5, 5, 5, 5, 5, 5, 6, 7]
+    found = scaled_residuals(time, [1] * 10 + [0, 0], [0, 1] * 6)
+    assert found.smooth == (Absent("a smooth curve needs events spread over 5 times or more"),)
 
 
 def test_a_period_without_estimate_says_so_and_others_stand() -> None:
