@@ -32,6 +32,7 @@ from app.sheets.frame import Surroundings
 from app.sheets.information import (
     follow_up_sentence,
     information_sentence,
+    is_by_variance,
     open_information_sheet,
 )
 from app.sheets.methods import methods, spending_key
@@ -142,7 +143,13 @@ def _crossing_words(view: ClosedView) -> Line:
 def _information_line(view: ClosedView, around: Surroundings) -> Line:
     information = view.look.information
     planned = around.planned_for(view.look.number)
-    said = information_sentence(information.events, information.planned_events, information.fraction, planned)
+    said = information_sentence(
+        information.events,
+        information.planned_events,
+        information.fraction,
+        planned,
+        by_variance=is_by_variance(view),
+    )
     return line(said, " ", follow_up_sentence(view))
 
 

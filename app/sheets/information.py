@@ -32,7 +32,11 @@ def information_sheet(view: ClosedView, planned: float | None) -> Sheet:
         question=QUESTION,
         answer=(
             information_sentence(
-                information.events, information.planned_events, information.fraction, planned
+                information.events,
+                information.planned_events,
+                information.fraction,
+                planned,
+                by_variance=is_by_variance(view),
             ),
         ),
         figure=calendar_figure(look.calendar, information.planned_events, look.cutoff_day),
@@ -60,12 +64,19 @@ def open_information_sheet(view: OpenView, planned: float | None) -> Sheet:
     )
 
 
-def information_sentence(events: int, total: int, fraction: float, planned: float | None) -> Line:
+def information_sentence(
+    events: int, total: int, fraction: float, planned: float | None, *, by_variance: bool = False
+) -> Line:
     """ "384 of 538 planned events: information fraction 0.714, planned 0.75." """
     against = line(", planned ", plan_fraction(planned)) if planned is not None else ()
-    return line(
-        of_total(events, total), " planned events: information fraction ", number(fraction, 3), against, "."
-    )
+    unit = " by score variance" if by_variance else ""
+    said = line(" planned events: information fraction ", number(fraction, 3), unit)
+    return line(of_total(events, total), said, against, ".")
+
+
+def is_by_variance(view: ClosedView) -> bool:
+    """Whether the plan counts information in score variance; the open side always counts events."""
+    return view.plan.design.information == "score variance"
 
 
 def plan_fraction(value: float) -> Span:

@@ -8,7 +8,13 @@ import pytest
 
 from app.model.values import Absent
 from app.sheets.blocks import CalendarFigure, Sheet
-from app.sheets.information import information_sheet, person_time, person_time_name, plan_fraction
+from app.sheets.information import (
+    information_sentence,
+    information_sheet,
+    person_time,
+    person_time_name,
+    plan_fraction,
+)
 from app.views.closed import ClosedView
 from tests.unit.review.invented_trial import CUTOFFS, patients, plan
 from tests.unit.sheets.invented_looks import A_IS_CONTROL, answers, held, table_texts, text
@@ -110,3 +116,10 @@ def test_masked_follow_up_and_counts_are_by_letter() -> None:
     sheet = shown(held(cutoffs=CUTOFFS[:2])[1].view(A_IS_CONTROL))
     (table,) = [each for each in sheet.tables if text(each.caption) == "By arm"]
     assert [text(column.head) for column in table.columns] == ["Arm A", "Arm B"]
+
+
+def test_information_counted_in_score_variance_is_said_so() -> None:
+    said = information_sentence(384, 538, 0.7, 0.75, by_variance=True)
+    assert text(said) == (
+        "384 of 538 planned events: information fraction 0.700 by score variance, planned 0.75."
+    )
