@@ -69,7 +69,8 @@ def curves_sheet(view: ClosedView) -> Sheet:
         question=QUESTION,
         answer=(event_free_sentence(view),),
         figure=curves_figure(shown, axis),
-        tables=(_estimates(shown, axis), hazard_ratio_table(view), *_landmark_table(view, axis)),
+        tables=(_estimates(shown, axis), hazard_ratio_table(view)),
+        folded=_landmark_table(view, axis),
         notes=(_note(shown, axis),),
         methods=methods(
             "kaplan-meier",
@@ -300,7 +301,8 @@ def _landmark_table(view: ClosedView, axis: TimeAxis) -> tuple[Table, ...]:
         for compared in view.shape.landmarks
     )
     caption = line(f"Difference in event{NO_BREAK_HYPHEN}free %, {against(view)}, {NOT_ADJUSTED}")
-    return (Table(caption, (Column(()),), tuple(rows)),)
+    columns = (Column(line("difference")),)
+    return (Table(caption, columns, tuple(rows), line("Landmark")),)
 
 
 def cox_level(view: ClosedView) -> float:

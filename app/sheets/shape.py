@@ -55,11 +55,8 @@ def shape_sheet(view: ClosedView) -> Sheet:
         question=QUESTION,
         answer=(_answer(view),),
         figure=log_log_figure(view),
-        tables=tuple(
-            table
-            for table in (_proportionality_table(view), _mean_table(view), _weighted_table(view))
-            if table
-        ),
+        tables=tuple(table for table in (_proportionality_table(view), _mean_table(view)) if table),
+        folded=tuple(table for table in (_weighted_table(view),) if table),
         notes=(_note(view),),
         methods=methods("log-log", "proportionality", *(key for key, wanted in asked.items() if wanted)),
         figure_table=_figure_table(view),
@@ -156,7 +153,7 @@ def _weighted_table(view: ClosedView) -> Table | None:
         caption=line(f"Weighted tests, {DESCRIPTIVE}"),
         columns=(Column(line(Z)), Column(line("two-sided ", P))),
         rows=tuple(rows),
-        corner=line("Weight (rho, gamma)"),
+        corner=line("Weight, rho and gamma"),
     )
 
 

@@ -167,8 +167,8 @@ def moment(at: str) -> str:
 
 
 def moment_text(moment: datetime) -> str:
-    """ "8 Jan 2027, 14:05 UTC", unbroken within the date."""
-    return f"{day_text(moment.date())}, {moment:%H:%M}{NO_BREAK}UTC"
+    """ "8 Jan 2027, 14:05 UTC", unbroken."""
+    return f"{day_text(moment.date())},{NO_BREAK}{moment:%H:%M}{NO_BREAK}UTC"
 
 
 def listed(words: Sequence[str]) -> str:

@@ -68,7 +68,8 @@ def test_what_the_plan_does_not_ask_for_is_null_and_has_no_table() -> None:
     for name in ("restricted_mean", "weighted", "weighted_maximum", "landmarks"):
         assert record[name] is None
     assert isinstance(record["proportionality"]["p"], float)
-    assert [text(table.caption) for table in shape_sheet(plain.view()).tables] == [
+    sheet = shape_sheet(plain.view())
+    assert [text(table.caption) for table in (*sheet.tables, *sheet.folded)] == [
         f"Proportional hazards, {DESCRIPTIVE}"
     ]
 
@@ -76,8 +77,9 @@ def test_what_the_plan_does_not_ask_for_is_null_and_has_no_table() -> None:
 def test_each_table_is_said_to_be_descriptive_and_each_number_is_in_the_record(look: Held) -> None:
     view = look.view()
     sheet, known = shape_sheet(view), set(numbers(look_record(view)))
-    assert len(sheet.tables) == 3
-    assert all(text(table.caption).endswith(DESCRIPTIVE) for table in sheet.tables)
+    tables = (*sheet.tables, *sheet.folded)
+    assert len(tables) == 3
+    assert all(text(table.caption).endswith(DESCRIPTIVE) for table in tables)
     shown = [span.value for span in parts(sheet, Span) if span.value is not None]
     assert shown
     assert [value for value in shown if value not in known] == []
@@ -117,7 +119,7 @@ def test_what_cannot_be_estimated_is_a_word(look: Held) -> None:
     )
     sheet = shape_sheet(replace(view, shape=shape))
     assert answers(sheet) == ["Whether the hazard ratio changes with time cannot be tested here."]
-    words = [cell for table in sheet.tables for row in table.rows for cell in row.cells]
+    words = [cell for table in (*sheet.tables, *sheet.folded) for row in table.rows for cell in row.cells]
     assert {text(cell.line) for cell in words} == {"not estimable"}
 
 

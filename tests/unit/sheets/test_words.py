@@ -179,7 +179,7 @@ def test_thousands_are_spaced_from_five_digits_on_and_never_broken() -> None:
 
 def test_a_number_is_not_broken_from_what_it_belongs_to() -> None:
     assert counted(5, "event")[1].text == f"{NO_BREAK}events"
-    assert moment("2027-01-26T09:30:00Z") == f"26{NO_BREAK}Jan{NO_BREAK}2027, 09:30{NO_BREAK}UTC"
+    assert moment("2027-01-26T09:30:00Z") == f"26{NO_BREAK}Jan{NO_BREAK}2027,{NO_BREAK}09:30{NO_BREAK}UTC"
 
 
 def test_a_date_is_read_as_a_person_says_it() -> None:
