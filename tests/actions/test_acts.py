@@ -176,7 +176,7 @@ def test_a_clock_that_went_back_is_a_doubt_on_the_record_sheet(path: Path, setti
         erratum(desk, entry=1, correction="Nothing", by=given.BY)
     with Desk.open(settings, path) as desk:
         assert (
-            history_said(desk)[-1][2] == "Doubt: the entry before has 30\u00a0Oct\u00a02025, 08:45\u00a0UTC"
+            history_said(desk)[-1][2] == "Doubt: the entry before has 30\u00a0Oct\u00a02025,\u00a008:45\u00a0UTC"
         )
 
 
