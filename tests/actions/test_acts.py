@@ -175,9 +175,8 @@ def test_a_clock_that_went_back_is_a_doubt_on_the_record_sheet(path: Path, setti
     with Desk.open(earlier, path) as desk:
         erratum(desk, entry=1, correction="Nothing", by=given.BY)
     with Desk.open(settings, path) as desk:
-        assert (
-            history_said(desk)[-1][2] == "Doubt: the entry before has 30\u00a0Oct\u00a02025,\u00a008:45\u00a0UTC"
-        )
+        moment = "30\u00a0Oct\u00a02025,\u00a008:45\u00a0UTC"
+        assert history_said(desk)[-1][2] == f"Doubt: the entry before has {moment}"
 
 
 def test_nothing_of_the_later_acts_reaches_the_open_side(desk: Desk) -> None:
