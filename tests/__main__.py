@@ -1,7 +1,8 @@
 """`python3 tests [--quick] [--bench] [pytest arguments]`: linters, types, layers, then the tests.
 
---quick leaves the slow tests out. --bench runs the benchmarks, and them alone, so that nothing disturbs their
-clocks. --expect-python 3.12 fails unless that is the Python which runs the tests.
+--quick leaves the slow tests and those beside other libraries out, as do arguments for pytest. --bench runs
+the benchmarks, and them alone, so that nothing disturbs their clocks. --expect-python 3.12 fails unless that
+is the Python which runs the tests.
 """
 
 import os
@@ -20,7 +21,8 @@ require_supported_python()
 import argparse
 import subprocess
 
-from app.bootstrap.environment import ROOT, RUNTIME, Program, enter
+from app.bootstrap.environment import ROOT, RUNTIME, Program, enter, private_environment, python_of
+from app.errors import SetupError
 
 NEEDS = (
     *RUNTIME,
@@ -37,6 +39,9 @@ NEEDS = (
     "importlinter",
     "hatchling",
 )
+
+LIBRARIES = Program(folder=HERE, needs=("lifelines", "statsmodels", "sksurv"), lock_name="peers.lock")
+"""General survival libraries: they need other versions of what the program needs, so they live apart."""
 
 LINT_IMPORTS = "from importlinter.cli import lint_imports_command; lint_imports_command()"
 
@@ -64,10 +69,22 @@ def require_python(series: str | None) -> None:
         sys.exit(SETUP_ERROR)
 
 
-def run(title: str, command: list[str]) -> bool:
+def run(title: str, command: list[str], python: str = sys.executable) -> bool:
     """Run one step under its title; whether it passed."""
     print(f"\n== {title}", flush=True)
-    return subprocess.run([sys.executable, *command], cwd=ROOT, check=False).returncode == 0
+    return subprocess.run([python, *command], cwd=ROOT, check=False).returncode == 0
+
+
+def run_beside_libraries(options: argparse.Namespace) -> bool:
+    """The survival estimators beside general libraries, in the environment of these; left out by --quick."""
+    folder, option = ("bench", ["--bench", "-s"]) if options.bench else ("reference", [])
+    try:
+        python = python_of(private_environment(LIBRARIES))
+    except SetupError as error:
+        print(error)
+        return False
+    command = ["-m", "pytest", "-W", "ignore", "-p", "no:cacheprovider", *option, f"tests/{folder}/libraries"]
+    return run("pytest, beside lifelines, statsmodels and scikit-survival", command, str(python))
 
 
 def pytest_command(options: argparse.Namespace, rest: list[str]) -> list[str]:
@@ -84,6 +101,8 @@ def main() -> int:
     print(f"Python {sys.version}")
     checks = {} if options.bench else CHECKS
     failed = [title for title, command in checks.items() if not run(title, command)]
+    if not options.quick and not rest and not run_beside_libraries(options):
+        failed.append("pytest beside the libraries")
     if failed:
         print(f"\nFailed, so that this run fails whatever the tests say: {'; '.join(failed)}")
     passed = run("pytest", pytest_command(options, rest))

@@ -41,11 +41,12 @@ class Program:
 
     folder: str
     needs: tuple[str, ...]
+    lock_name: str = "requirements.lock"
 
     @property
     def lock(self) -> Path:
         """Every package with its version and hashes."""
-        return Path(self.folder) / "requirements.lock"
+        return Path(self.folder) / self.lock_name
 
 
 def enter(program: Program, arguments: Sequence[str]) -> None:

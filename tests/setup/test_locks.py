@@ -13,7 +13,11 @@ from packaging.requirements import Requirement
 
 from app.bootstrap.environment import ROOT, RUNTIME
 
-LOCKS = {"app": ROOT / "app" / "requirements.lock", "tests": ROOT / "tests" / "requirements.lock"}
+LOCKS = {
+    "app": ROOT / "app" / "requirements.lock",
+    "tests": ROOT / "tests" / "requirements.lock",
+    "peers": ROOT / "tests" / "peers.lock",
+}
 PIN = re.compile(r"^(?P<name>[a-z0-9][a-z0-9._-]*)==(?P<version>[\w.]+)(?: ; (?P<marker>[^\\]+))? \\$")
 HASH = re.compile(r"^    --hash=sha256:[0-9a-f]{64}(?: \\)?$")
 
@@ -59,6 +63,11 @@ def test_the_versions_lie_within_the_bounds_that_the_project_states() -> None:
     wanted = {requirement.name: requirement.specifier for requirement in map(Requirement, stated)}
     outside = [name for name, bounds in wanted.items() if pins(LOCKS["tests"])[name][0] not in bounds]
     assert outside == []
+
+
+@pytest.mark.parametrize("name", ["numpy", "scipy"])
+def test_the_libraries_are_met_with_the_numbers_that_the_program_computes(name: str) -> None:
+    assert pins(LOCKS["peers"])[name] == pins(LOCKS["app"])[name]
 
 
 @pytest.mark.parametrize("name", ["numpy", "scipy"])
