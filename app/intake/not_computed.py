@@ -15,12 +15,11 @@ from app.intake.places import Place, shown
 
 @dataclass(frozen=True)
 class NotComputed:
-    """A table, or a key of a table with the values that are computed all the same."""
+    """A table, or a key of a table."""
 
     table: str
     what: str
     key: str | None = None
-    computed: tuple[Any, ...] = ()
 
 
 NOT_COMPUTED = (
@@ -49,9 +48,7 @@ def not_computed_parts(
         if part.key is None and written is not None:
             yield _refused_table(part, place.table(part.table, repeated=isinstance(written, list)))
         elif part.key is not None and any(part.key in values for values in accepted.get(part.table, ())):
-            value = document[part.table][part.key]
-            if value not in part.computed:
-                yield _refused_key(part, part.key, value, place.table(part.table))
+            yield _refused_key(part, part.key, document[part.table][part.key], place.table(part.table))
 
 
 def _refused_table(part: NotComputed, place: Place) -> DesignInvalid:
@@ -67,6 +64,6 @@ def _refused_key(part: NotComputed, key: str, value: Any, place: Place) -> Desig
         f"{part.what} by this version",
         where=str(place.key(key)),
         found=shown(value),
-        accepted=", ".join(map(shown, part.computed)) or "the table without this key",
+        accepted="the table without this key",
         remedy="change the plan, or use a version that does so",
     )

@@ -429,13 +429,6 @@ def test_each_key_of_later_work_is_accepted_as_written_and_then_refused_by_name(
     assert any(f"table [{part.table}], key {part.key}." in sentence for sentence in found)
 
 
-@pytest.mark.parametrize("part", [part for part in NOT_COMPUTED if part.computed], ids=lambda part: part.key)
-def test_the_values_that_are_computed_pass(part):
-    for value in part.computed:
-        written = f'"{value}"' if isinstance(value, str) else value
-        read(with_line(part.table, f"{part.key} = {written}"))
-
-
 def test_futility_and_harm_go_with_one_side_only():
     text = with_line("design", "sides = 2") + OPTIONAL_TABLES
     whats = [sentence.split(" in q17")[0] for sentence in problems(text)]
