@@ -23,7 +23,8 @@ from app.settings import Settings
 from app.validation import published_rows
 from app.validation.rows import RowOutcome
 from app.views.closed import ClosedView, Letters, unmasked_view
-from app.views.record import boundary_record, looks_record
+from app.views.record import boundary_record, evaluation_record
+from app.views.what_if import what_if
 
 
 @dataclass(frozen=True)
@@ -41,9 +42,17 @@ class LookGiven:
 
 
 def evaluate(
-    settings: Settings, *, plan_name: str, plan: bytes, looks: Sequence[LookGiven]
+    settings: Settings,
+    *,
+    plan_name: str,
+    plan: bytes,
+    looks: Sequence[LookGiven],
+    hazard_ratio: float | None = None,
 ) -> dict[str, Any]:
-    """The record of these looks, held one after the other under the plan, each bound on those before."""
+    """The record of these looks, held one after the other under the plan, each bound on those before.
+
+    `hazard_ratio` is a chosen one, under which conditional power is given besides.
+    """
     if not looks:
         raise InputError("No look to evaluate", accepted="the files of at least one look")
     read = read_plan(plan, name=plan_name, limits=settings.limits)
@@ -58,7 +67,8 @@ def evaluate(
         past.append(as_used(reviewed.result))
         earlier = delivery
     doubts = power_doubts(read, _planned(read).feasibility)
-    return looks_record("evaluation", views, run_at=_now(settings), held=compared, plan_findings=doubts)
+    asked = [None if hazard_ratio is None else what_if(view, hazard_ratio) for view in views]
+    return evaluation_record(views, asked, run_at=_now(settings), held=compared, plan_findings=doubts)
 
 
 def boundary(

@@ -1,4 +1,4 @@
-"""`evaluate PLAN --look FILE[,FILE] [--cutoff DATE] [--kind KIND] ... [--json]`"""
+"""`evaluate PLAN --look FILE[,FILE] [--cutoff DATE] [--kind KIND] ... [--hazard-ratio RATIO] [--json]`"""
 
 from __future__ import annotations
 
@@ -13,7 +13,7 @@ from app.actions.calculate import LookGiven, evaluate
 from app.cli import said
 from app.cli.columns import aligned
 from app.cli.files import read_file, uploaded
-from app.cli.parsing import Command, day_of, kind
+from app.cli.parsing import Command, day_of, hazard_ratio, kind
 from app.errors import InputError
 from app.model.extract import LookKind
 from app.record.text import record_bytes
@@ -58,6 +58,23 @@ class OfLastLook(Action):
         namespace.looks = (*before, replace(last, **{self.dest: values}))
 
 
+class Once(Action):
+    """An option of the whole command, given once."""
+
+    def __call__(
+        self, parser: Any, namespace: Namespace, values: Any, option_string: str | None = None
+    ) -> None:
+        if getattr(namespace, self.dest) is not None:
+            raise InputError(
+                "an option is given twice",
+                where="'evaluate'",
+                found=f"{option_string} for a second time",
+                accepted="one for all looks",
+                remedy="Run the command once for each",
+            )
+        setattr(namespace, self.dest, values)
+
+
 def no_look_before(option: str) -> InputError:
     return InputError(
         "an option stands before the look it belongs to",
@@ -93,13 +110,27 @@ def arguments(parser: ArgumentParser) -> None:
         metavar="KIND",
         help="planned, unplanned, safety or final: the kind of the --look before it",
     )
+    parser.add_argument(
+        "--hazard-ratio",
+        action=Once,
+        type=hazard_ratio,
+        metavar="RATIO",
+        help="what if this were the truth: conditional power at each look also under this hazard ratio, "
+        "experimental / control",
+    )
     parser.add_argument("--json", action="store_true", help="print the record at full precision")
 
 
 def run(options: Namespace, settings: Settings) -> int:
     plan = read_file(options.plan)
     looks = [LookGiven(tuple(map(uploaded, look.files)), look.cutoff, look.kind) for look in options.looks]
-    record = evaluate(settings, plan_name=options.plan.name, plan=plan, looks=looks)
+    record = evaluate(
+        settings,
+        plan_name=options.plan.name,
+        plan=plan,
+        looks=looks,
+        hazard_ratio=options.hazard_ratio,
+    )
     for finding in record["findings"]:
         print(said.finding(finding), file=sys.stderr)
     sys.stdout.write(record_bytes(record).decode("utf-8") if options.json else as_text(record))
@@ -169,6 +200,9 @@ def outlook_text(look: dict[str, Any]) -> str:
         power = outlook["conditional_power"]
         effects = ("design", "trend", "null")
         shown = [f"{said.percent(power[effect]['path'])}% ({effect})" for effect in effects]
+        if power["chosen"] is not None:
+            ratio, path = said.number(power["chosen"]["hazard_ratio"]), said.percent(power["chosen"]["path"])
+            shown.append(f"{path}% (what if the hazard ratio were {ratio})")
         lines.append(f"Conditional power along the planned looks: {', '.join(shown)}.\n")
     if ended is not None and "not_estimable" not in ended:
         ratio = said.number(ended["median_unbiased_hazard_ratio"])
@@ -210,5 +244,5 @@ def verdict_text(look: dict[str, Any]) -> str:
 COMMAND = Command(
     arguments,
     run,
-    example="evaluate plan.toml --look adtte-1.csv --cutoff 2026-01-09 --look adtte-2.csv --kind final",
+    example="evaluate plan.toml --look adtte-1.csv --cutoff 2026-01-09 --look adtte-2.csv --hazard-ratio 0.8",
 )

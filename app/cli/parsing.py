@@ -13,7 +13,7 @@ from pathlib import Path
 from typing import Any, NoReturn
 
 from app.errors import InputError, ValueRejected
-from app.intake.answers import read_day, read_kind
+from app.intake.answers import read_day, read_hazard_ratio, read_kind
 from app.model.extract import LookKind
 from app.settings import Settings
 
@@ -104,6 +104,10 @@ def day_of(option: str) -> Callable[[str], date]:
 
 def kind(text: str) -> LookKind:
     return read_kind(text, where="--kind")
+
+
+def hazard_ratio(text: str) -> float:
+    return read_hazard_ratio(text, where="--hazard-ratio")
 
 
 def fractions(text: str) -> tuple[float, ...]:

@@ -1,4 +1,4 @@
-"""What a person answers beside an extract - dates and the kind of look - read once for pages and commands."""
+"""What a person answers - dates, the kind of look, a hazard ratio - read once for pages and commands."""
 
 from __future__ import annotations
 
@@ -10,6 +10,7 @@ from typing import get_args
 from app.errors import ValueRejected
 from app.model.extract import LookKind
 
+LOWEST_RATIO, HIGHEST_RATIO = 0.05, 20.0
 LOOK_KINDS: tuple[LookKind, ...] = get_args(LookKind)
 
 
@@ -45,4 +46,19 @@ def read_kind(text: str, *, where: str) -> LookKind:
         found=repr(text[:40]) if text else "",
         accepted=", ".join(LOOK_KINDS),
         remedy=f"Write {nearest[0]!r} if that is meant" if nearest else "Name one of them",
+    )
+
+
+def read_hazard_ratio(text: str, *, where: str) -> float:
+    """A hazard ratio, experimental / control, written with a decimal point or a decimal comma."""
+    written = text.strip()
+    ratio = float(written.replace(",", ".")) if re.fullmatch(r"[0-9]{0,3}[.,]?[0-9]{1,9}", written) else None
+    if ratio is not None and LOWEST_RATIO <= ratio <= HIGHEST_RATIO:
+        return ratio
+    raise ValueRejected(
+        "a hazard ratio lies out of bounds" if ratio is not None else "this is no hazard ratio",
+        where=where,
+        found=repr(text[:40]),
+        accepted=f"a number from {LOWEST_RATIO:g} to {HIGHEST_RATIO:g}, experimental / control, such as 0.8",
+        remedy="Write one number, with a decimal point or comma",
     )

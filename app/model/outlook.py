@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from app.model.values import Estimate
+from app.model.values import Absent, Estimate
 
 
 @dataclass(frozen=True)
@@ -55,10 +55,10 @@ class NextLook:
 
 @dataclass(frozen=True)
 class Outlook:
-    """Conditional power under the plan's effect, the trend and its limits, no effect, and a chosen one.
+    """Conditional power under the plan's effect, the trend and its limits, and no effect; what comes next.
 
-    `criterion` is this trial's own last bound. `trend_low` is the less favourable limit. `chosen` is None
-    where no ratio was asked about. `next_look` is None where no planned look is to come.
+    `criterion` is this trial's own last bound. `trend_low` is the less favourable limit. `next_look` is None
+    where no planned look is to come.
     """
 
     design: ConditionalPower
@@ -66,10 +66,22 @@ class Outlook:
     trend_low: ConditionalPower
     trend_high: ConditionalPower
     null: ConditionalPower
-    chosen: ConditionalPower | None
     criterion: Estimate
     predictive_power: PredictivePower
     next_look: NextLook | None
+
+
+@dataclass(frozen=True)
+class WhatIf:
+    """Conditional power were a hazard ratio true that a reader chose: one for each reading of a view.
+
+    It is no part of a look, of a view or of a sheet, and no record or entry has a place for it: a result that
+    somebody asked about is never kept as if the trial had given it. `hazard_ratio` is experimental / control
+    in each reading.
+    """
+
+    hazard_ratio: float
+    readings: tuple[ConditionalPower | Absent, ...]
 
 
 @dataclass(frozen=True)

@@ -64,7 +64,7 @@ NEXT_LOOK = {
     "new_events_hazard_ratio": ESTIMATE, "chance": {"design": ESTIMATE, "trend": ESTIMATE, "null": ESTIMATE},
 }  # fmt: skip
 EFFECTS = ("design", "trend", "trend_low", "trend_high", "null")
-OUTLOOK = {
+OUTLOOK: dict[str, Any] = {
     "conditional_power": dict.fromkeys(EFFECTS, CONDITIONAL_POWER), "criterion": ESTIMATE,
     "predictive_power": {"flat": ESTIMATE, "prior": Maybe(ESTIMATE)}, "next_look": Maybe(NEXT_LOOK),
 }  # fmt: skip
@@ -135,6 +135,11 @@ ENVELOPE = {
     "findings": [FINDING],
 }  # fmt: skip
 LOOKS_RECORD = {**ENVELOPE, "held": Maybe([HELD]), "looks": [LOOK]}
+"""What a trial file keeps and a report carries. It has no name for what somebody only asked about."""
+POWERS_ASKED = {**OUTLOOK["conditional_power"], "chosen": Maybe(Estimable(CONDITIONAL_POWER))}
+LOOK_ASKED = {**LOOK, "outlook": Maybe(Estimable({**OUTLOOK, "conditional_power": POWERS_ASKED}))}
+EVALUATION_RECORD = {**LOOKS_RECORD, "looks": [LOOK_ASKED]}
+"""What `evaluate` prints and nobody keeps: conditional power also under a `chosen` hazard ratio."""
 CHANCE = {
     "number": int, "efficacy": NUMBER, "futility": NUMBER, "harm": NUMBER, "control": NUMBER,
 }  # fmt: skip

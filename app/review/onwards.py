@@ -6,11 +6,11 @@ from collections.abc import Sequence
 
 from app.model.boundary import Bound, LookAsUsed
 from app.model.look import Information, Onwards
-from app.model.outlook import Outlook, Stopping
+from app.model.outlook import ConditionalPower, Outlook, Stopping
 from app.model.plan import Plan
 from app.model.values import Absent, Estimate
-from app.sequential.effect import PlanRules
-from app.sequential.outlook import Held, Prior, outlook, repeated_interval
+from app.sequential.effect import PlanRules, plan_rules
+from app.sequential.outlook import Held, Prior, conditional_power, outlook, repeated_interval
 from app.sequential.stopping import stopping
 
 NO_INFORMATION = Absent("there is no information yet")
@@ -39,6 +39,18 @@ def onwards_of(
         repeated_interval(z, bounds[0], rules.efficacy, variance),
         _stopping(rules, z, information_used, variance, past),
     )
+
+
+def power_under(
+    hazard_ratio: float, plan: Plan, z: Estimate, information: Information, ahead: Sequence[Bound]
+) -> ConditionalPower | Absent:
+    """From the z of one reading, were this ratio of its experimental arm to its control the truth."""
+    if isinstance(z, Absent):
+        return z
+    if information.fraction <= 0.0:
+        return NO_INFORMATION
+    rules, held = plan_rules(plan), Held(information.fraction, z, information.score_variance)
+    return conditional_power(held, ahead, rules.efficacy, rules.scale, hazard_ratio)
 
 
 def _outlook(plan: Plan, rules: PlanRules, held: Held, ahead: Sequence[Bound]) -> Outlook | Absent:

@@ -47,10 +47,9 @@ def outlook(
     *,
     planned_hazard_ratio: float,
     level: float,
-    chosen_hazard_ratio: float | None = None,
     prior: Prior | None = None,
 ) -> Outlook | Absent:
-    """Conditional power under the plan's effect, the trend, none and a chosen ratio, and what comes next.
+    """Conditional power under the plan's effect, the trend and none, and what comes next.
 
     Parameters
     ----------
@@ -59,7 +58,6 @@ def outlook(
     rule, scale : the efficacy rule of the plan, and its scale of effects
     planned_hazard_ratio : the plan's, experimental / control
     level : confidence of the trend's interval
-    chosen_hazard_ratio : a ratio asked about, optional
     prior : for predictive power, optional
 
     Returns
@@ -101,11 +99,35 @@ def outlook(
         trend_low=at_trend(-margin),
         trend_high=at_trend(margin),
         null=planned(1.0),
-        chosen=None if chosen_hazard_ratio is None else planned(chosen_hazard_ratio),
         criterion=ahead[-1].efficacy_z,
         predictive_power=_predictive_power(held, ahead[-1], scale, prior),
         next_look=going_on.next_look(scale, design.noncentrality, trend.noncentrality),
     )
+
+
+def conditional_power(
+    held: Held, ahead: Sequence[Bound], rule: EfficacyRule, scale: EffectScale, hazard_ratio: float
+) -> ConditionalPower | Absent:
+    """The three conditional powers under one hazard ratio, experimental / control, as in `outlook`.
+
+    Parameters
+    ----------
+    held, ahead, rule, scale : as for `outlook`
+    hazard_ratio : above 0
+
+    Returns
+    -------
+    ConditionalPower, or Absent where no planned look is to come.
+
+    Notes
+    -----
+    *Convention*: the effect is -s log(HR) sqrt(I) with I of the plan at full information, as for the plan's
+    own ratio, so that this ratio gives the very numbers of `Outlook.design`.
+    *Accuracy*, *Checked*: as `outlook`.
+    """
+    if not ahead:
+        return NO_LOOK_TO_COME
+    return GoingOn(held, tuple(ahead), rule).power(scale.noncentrality(hazard_ratio), hazard_ratio)
 
 
 @dataclass(frozen=True)

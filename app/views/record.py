@@ -18,6 +18,7 @@ from app.model.outlook import (
     PredictivePower,
     RepeatedInterval,
     Stopping,
+    WhatIf,
 )
 from app.model.survival import CoxResult, LogrankResult
 from app.model.values import Absent, Estimate
@@ -46,6 +47,30 @@ def looks_record(
     envelope = _envelope(kind, first.look.plan_digest, digests, orientation, run_at, findings)
     looks = [look_record(view) for view in views]
     return {**envelope, "held": [_compared(look) for look in held] if held else None, "looks": looks}
+
+
+def evaluation_record(
+    views: Sequence[ClosedView],
+    what_ifs: Sequence[WhatIf | None],
+    *,
+    run_at: str,
+    held: Sequence[HeldCompared] = (),
+    plan_findings: Sequence[Finding] = (),
+) -> Record:
+    """The record that `evaluate` prints: that of the looks, and for each what was asked of it besides.
+
+    The views are unmasked, with one reading each.
+    """
+    record = looks_record("evaluation", views, run_at=run_at, held=held, plan_findings=plan_findings)
+    for look, asked in zip(record["looks"], what_ifs, strict=True):
+        if "conditional_power" in look["outlook"]:
+            look["outlook"]["conditional_power"]["chosen"] = None if asked is None else _chosen(asked)
+    return record
+
+
+def _chosen(asked: WhatIf) -> Record:
+    (power,) = asked.readings
+    return not_estimable(power.reason) if isinstance(power, Absent) else _power(power)
 
 
 def _compared(held: HeldCompared) -> Record:

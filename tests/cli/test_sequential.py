@@ -6,14 +6,16 @@ Values marked so were computed independently: recursive quadrature of another au
 from __future__ import annotations
 
 import json
+import math
 import random
 from pathlib import Path
+from statistics import NormalDist
 from typing import Any
 
 import pytest
 
 from app.cli import main
-from app.record.schema import BOUNDARY_RECORD, LOOKS_RECORD, differences
+from app.record.schema import BOUNDARY_RECORD, EVALUATION_RECORD, differences
 
 PLAN = """\
 format = 1
@@ -86,7 +88,7 @@ def extract(folder: Path, events: int, on_tablet: float = 0.46) -> Path:
 def record(capsys: pytest.CaptureFixture[str], *arguments: object) -> dict[str, Any]:
     assert main([*map(str, arguments), "--json"]) == 0
     printed: dict[str, Any] = json.loads(capsys.readouterr().out)
-    shape = BOUNDARY_RECORD if arguments[0] == "boundary" else LOOKS_RECORD
+    shape = BOUNDARY_RECORD if arguments[0] == "boundary" else EVALUATION_RECORD
     assert list(differences(printed, shape)) == []
     return printed
 
@@ -283,3 +285,68 @@ def test_the_text_shows_futility_harm_and_the_outlook(
     assert "Conditional power along the planned looks: " in capsys.readouterr().out
     assert main(["evaluate", str(path), "--look", str(extract(tmp_path, 400))]) == 0
     assert "Ending here: one-sided p " in capsys.readouterr().out
+
+
+# --- what if ----------------------------------------------------------------------------------------------
+
+
+def test_a_chosen_hazard_ratio_has_its_conditional_power_at_each_look(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """The plan's own ratio gives the very numbers of the design; the final look is the closed formula."""
+    of, looks = plan(tmp_path, FUTILITY), ("--look", extract(tmp_path, 140), "--look", extract(tmp_path, 280))
+    for look in evaluated(capsys, of, *looks, "--hazard-ratio", "0.75"):
+        power = look["outlook"]["conditional_power"]
+        assert power["chosen"] == power["design"]
+    for look in evaluated(capsys, of, *looks, "--hazard-ratio", "0,8"):
+        t, z = look["information"]["fraction"], look["logrank"]["z"]
+        drift = -math.log(0.8) * math.sqrt(400 * 0.25)
+        score = z * math.sqrt(t) + drift * (1 - t) - look["outlook"]["criterion"]
+        chosen = look["outlook"]["conditional_power"]["chosen"]
+        assert chosen["final_look"] == pytest.approx(NormalDist().cdf(score / math.sqrt(1 - t)), abs=1e-12)
+        assert chosen.keys() == {"hazard_ratio", "final_look", "path", "path_futility_obeyed"}
+        assert chosen["path_futility_obeyed"] <= chosen["path"]
+
+
+def test_without_a_chosen_ratio_its_place_is_null(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    (look,) = evaluated(capsys, plan(tmp_path), "--look", extract(tmp_path, 140))
+    assert look["outlook"]["conditional_power"]["chosen"] is None
+
+
+def test_at_a_final_look_a_chosen_ratio_asks_in_vain(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    (look,) = evaluated(
+        capsys, plan(tmp_path), "--look", extract(tmp_path, 400), "--kind", "final", "--hazard-ratio", "0.8"
+    )
+    assert look["outlook"] == {"not_estimable": "no planned look is to come"}
+
+
+def test_the_chosen_ratio_is_said_as_a_question(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    look = str(extract(tmp_path, 140))
+    assert main(["evaluate", str(plan(tmp_path)), "--look", look, "--hazard-ratio", "0.8"]) == 0
+    assert "% (null), " in (printed := capsys.readouterr().out)
+    assert "% (what if the hazard ratio were 0.800).\n" in printed
+
+
+@pytest.mark.parametrize(
+    ("options", "said"),
+    [
+        (
+            ("0",),
+            "A hazard ratio lies out of bounds in --hazard-ratio. Found '0'. Accepted: a number from 0.05",
+        ),
+        (("half",), "This is no hazard ratio in --hazard-ratio. Found 'half'. Accepted: a number from 0.05"),
+        (
+            ("0.8", "--hazard-ratio", "0.9"),
+            "An option is given twice in 'evaluate'. Found --hazard-ratio for a second time. Accepted: one "
+            "for all looks. Run the command once for each.",
+        ),
+    ],
+)
+def test_what_is_no_ratio_or_two_is_refused_in_a_sentence(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], options: tuple[str, ...], said: str
+) -> None:
+    look = str(extract(tmp_path, 140))
+    assert main(["evaluate", str(plan(tmp_path)), "--look", look, "--hazard-ratio", *options]) == 2
+    assert said in capsys.readouterr().err

@@ -14,7 +14,7 @@ from app.actions.calculate import LookGiven, boundary, evaluate
 from app.actions.desk import UploadedFile
 from app.actions.looks import record_of
 from app.errors import AppError
-from app.record.schema import BOUNDARY_RECORD, LOOKS_RECORD, differences
+from app.record.schema import BOUNDARY_RECORD, EVALUATION_RECORD, differences
 from app.review.received import SnapshotBlocked
 from app.verification.assembly import frozen_record
 from tests.unit.actions.invented_file import desk, held, settings
@@ -69,7 +69,7 @@ def evaluated(*changes: tuple[bytes, bytes]) -> dict[str, Any]:
         plan = plan.replace(old, new)
     look = LookGiven((UploadedFile("adtte.csv", extract()),), None, None)
     record = evaluate(settings(CUTOFFS[0]), plan_name="plan.toml", plan=plan, looks=[look])
-    assert list(differences(record, LOOKS_RECORD)) == []
+    assert list(differences(record, EVALUATION_RECORD)) == []
     return record
 
 
@@ -222,6 +222,8 @@ def test_looks_evaluated_one_after_the_other_are_those_of_the_trial_file(tmp_pat
     )
     with desk(held(tmp_path, 4, changes=changes)) as open_desk:
         through_file = [record_of(open_desk, look)["looks"][0] for look in (1, 2, 3, 4)]
+    powers = [look["outlook"].get("conditional_power") for look in record["looks"]]
+    assert [power.pop("chosen") for power in powers if power] == [None, None]  # nobody asked
     assert record["looks"] == through_file
     assert [look["boundary"]["first_crossed"] for look in through_file] == [None, None, 3, 3]
 

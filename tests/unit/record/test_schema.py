@@ -6,7 +6,16 @@ from typing import Any
 
 import pytest
 
-from app.record.schema import ESTIMATE, LOOK, LOOKS_RECORD, NUMBER, Estimable, Maybe, differences
+from app.record.schema import (
+    ESTIMATE,
+    EVALUATION_RECORD,
+    LOOK,
+    LOOKS_RECORD,
+    NUMBER,
+    Estimable,
+    Maybe,
+    differences,
+)
 
 SHAPE = {"z": NUMBER, "median": ESTIMATE, "note": Maybe(str), "test": Estimable({"p": NUMBER}), "rows": [int]}
 SOUND = {"z": 2.1, "median": 8, "note": None, "test": {"p": 0.02}, "rows": [1, 2]}
@@ -68,6 +77,21 @@ def test_the_outlook_has_three_conditional_powers_under_each_effect() -> None:
     assert LOOK["repeated_interval"].shape.shape.keys() == {"ci_low", "ci_high", "level"}
     stopping = "p_one_sided median_unbiased_hazard_ratio ci_low ci_high level"
     assert set(stopping.split()) == LOOK["stopping"].shape.shape.keys()
+
+
+def test_only_what_evaluate_prints_has_a_place_for_a_chosen_ratio() -> None:
+    """A trial file's record has no name for it; null says that `evaluate` was not asked."""
+    kept = LOOK["outlook"].shape.shape["conditional_power"]
+    printed = EVALUATION_RECORD["looks"][0]["outlook"].shape.shape["conditional_power"]
+    assert printed.keys() - kept.keys() == {"chosen"}
+    power = {"hazard_ratio": 0.8, "final_look": 0.5, "path": 0.5, "path_futility_obeyed": None}
+    powers = dict.fromkeys(kept, power)
+    assert list(differences(powers, kept, "powers")) == []
+    for chosen in (None, power):
+        asked = {**powers, "chosen": chosen}
+        assert list(differences(asked, printed)) == []
+        assert list(differences(asked, kept, "powers")) == ["powers.chosen: not a name of the record"]
+    assert list(differences(powers, printed, "powers")) == ["powers.chosen: missing"]
 
 
 def test_the_names_of_a_look_are_those_of_the_design() -> None:

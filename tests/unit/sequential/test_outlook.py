@@ -4,16 +4,26 @@ from __future__ import annotations
 
 import math
 from dataclasses import replace
+from statistics import NormalDist
 
 import pytest
 
 from app.model.boundary import Bound
-from app.model.outlook import Outlook
+from app.model.outlook import ConditionalPower, Outlook
 from app.model.plan import Design, Efficacy, Futility
 from app.model.values import Absent
 from app.sequential.boundary import bounds_ahead
 from app.sequential.effect import EffectScale, planned_looks, rules_of
-from app.sequential.outlook import Held, Prior, conditional_power_at, outlook, repeated_interval
+from app.sequential.outlook import (
+    Held,
+    Prior,
+    conditional_power,
+    conditional_power_at,
+    outlook,
+    repeated_interval,
+)
+from app.validation.outlook_rows import CONDITIONAL_POWER, FIXED
+from app.validation.outlook_rows import DESIGN as DESIGN_EFFECT
 from tests.sequential_plans import rule_named
 
 DESIGN = Design(0.025, 1, 0.9, 0.75, 400, (0.5, 0.75, 1.0))
@@ -42,15 +52,19 @@ def asked(held: Held = HELD, ahead: tuple[Bound, ...] = PLANNED[1:], **more: obj
     return found
 
 
+def chosen(hazard_ratio: float) -> ConditionalPower:
+    found = conditional_power(HELD, PLANNED[1:], RULES.efficacy, RULES.scale, hazard_ratio)
+    assert isinstance(found, ConditionalPower)
+    return found
+
+
 def test_effects_are_named_by_their_hazard_ratio_and_mean_of_z() -> None:
-    found = asked(chosen_hazard_ratio=0.9)
+    found = asked()
     assert found.design.hazard_ratio == 0.75
     assert found.design.noncentrality == pytest.approx(-math.log(0.75) * 10.0, rel=1e-14)
     assert found.null.noncentrality == 0.0
     assert found.trend.noncentrality == pytest.approx(1.5 / math.sqrt(0.5), rel=1e-14)
     assert found.trend.hazard_ratio == pytest.approx(math.exp(-1.5 / 7.0), rel=1e-14)
-    assert found.chosen is not None
-    assert found.chosen.noncentrality == pytest.approx(-math.log(0.9) * 10.0, rel=1e-14)
 
 
 def test_the_trend_comes_with_the_limits_of_its_interval() -> None:
@@ -60,8 +74,44 @@ def test_the_trend_comes_with_the_limits_of_its_interval() -> None:
     assert found.trend_low.path < found.trend.path < found.trend_high.path  # type: ignore[operator]
 
 
-def test_no_ratio_chosen_means_no_answer_for_one() -> None:
-    assert asked().chosen is None
+def test_the_plan_s_own_ratio_chosen_gives_the_very_numbers_of_the_design() -> None:
+    assert chosen(0.75) == asked().design
+    assert chosen(1.0) == asked().null
+    assert chosen(0.9) != asked().design
+
+
+def test_a_chosen_ratio_has_its_effect_by_the_plan_s_information() -> None:
+    power = chosen(0.9)
+    assert power.hazard_ratio == 0.9
+    assert power.noncentrality == pytest.approx(-math.log(0.9) * 10.0, rel=1e-14)  # d p q = 100
+
+
+@pytest.mark.parametrize("hazard_ratio", [0.05, 0.5, 0.8, 1.0, 1.3, 20.0])
+def test_the_final_look_under_a_chosen_ratio_is_the_closed_formula(hazard_ratio: float) -> None:
+    """Lan, Simon & Halperin (1982) in B-values, with the normal distribution of the standard library."""
+    t, criterion = 0.5, PLANNED[-1].efficacy_z
+    assert isinstance(criterion, float)
+    b_value = 1.5 * math.sqrt(t)
+    drift = -math.log(hazard_ratio) * math.sqrt(400 * 0.25)
+    expected = NormalDist().cdf((b_value + drift * (1 - t) - criterion) / math.sqrt(1 - t))
+    assert chosen(hazard_ratio).final_look == pytest.approx(expected, abs=1e-14)
+
+
+@pytest.mark.parametrize("line", CONDITIONAL_POWER.strip().splitlines())
+def test_a_chosen_ratio_gives_the_check_values_of_its_effect(line: str) -> None:
+    """The rows of app/validation/outlook_rows.py: computed independently, by recursive quadrature."""
+    z, t, null, _, design, _ = map(float, line.split())
+    scale, last = RULES.scale, replace(PLANNED[-1], efficacy_z=FIXED)
+    for ratio, expected in ((1.0, null), (scale.hazard_ratio(DESIGN_EFFECT), design)):
+        power = conditional_power(Held(t, z, 49.0), (last,), RULES.efficacy, scale, ratio)
+        assert isinstance(power, ConditionalPower)
+        assert power.final_look == pytest.approx(expected, abs=5e-5)
+        assert power.path == pytest.approx(expected, abs=5e-5)
+
+
+def test_no_look_to_come_leaves_nothing_to_ask_about() -> None:
+    found = conditional_power(HELD, (), RULES.efficacy, RULES.scale, 0.8)
+    assert found == Absent("no planned look is to come")
 
 
 def test_the_criterion_is_this_trials_own_last_bound() -> None:
