@@ -2,9 +2,16 @@
 
 from __future__ import annotations
 
-from app.render.svg import boundary, calendar, counts, curves, log_log
+from app.render.svg import boundary, calendar, chances, counts, curves, log_log
 from app.render.svg.drawing import Drawing
-from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, Figure, LogLogFigure
+from app.sheets.blocks import (
+    BoundaryFigure,
+    CalendarFigure,
+    ChancesFigure,
+    CurvesFigure,
+    Figure,
+    LogLogFigure,
+)
 
 
 def wide(figure: Figure) -> Drawing:
@@ -16,6 +23,8 @@ def wide(figure: Figure) -> Drawing:
         return calendar.wide(figure)
     if isinstance(figure, LogLogFigure):
         return log_log.wide(figure)
+    if isinstance(figure, ChancesFigure):
+        return chances.wide(figure)
     return counts.wide(figure)
 
 
@@ -28,4 +37,6 @@ def narrow(figure: Figure) -> Drawing:
         return calendar.narrow(figure)
     if isinstance(figure, LogLogFigure):
         return log_log.narrow(figure)
+    if isinstance(figure, ChancesFigure):
+        return chances.narrow(figure)
     return counts.narrow(figure)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -13,7 +14,7 @@ from app.render import figures
 from app.render.spine import spine_marks
 from app.render.svg import strips
 from app.render.table_setting import column_padding, is_short
-from app.sheets.blocks import CountsFigure, Figure, LookBook, PageFrame, Strip
+from app.sheets.blocks import ChancesFigure, CountsFigure, Figure, LookBook, PageFrame, Row, Strip, Table
 from app.sheets.caution import CAUTION, LEAD
 
 STATIC = "/static"
@@ -46,6 +47,7 @@ def page_environment(templates: Path) -> Environment:
         spine_marks=spine_marks,
         column_padding=column_padding,
         has_chart=has_chart,
+        with_row=with_row,
         is_short=is_short,
         sheet_links=sheet_links,
         look_links=look_links,
@@ -72,7 +74,12 @@ def strip_narrow(strip: Strip) -> Markup:
 
 def has_chart(figure: Figure | None) -> bool:
     """Whether there is anything to zoom into."""
-    return figure is not None and not isinstance(figure, CountsFigure)
+    return figure is not None and not isinstance(figure, CountsFigure | ChancesFigure)
+
+
+def with_row(table: Table, row: Row | None) -> Table:
+    """The table with one more row, for a page that was asked for it."""
+    return table if row is None else replace(table, rows=(*table.rows, row))
 
 
 def look_address(base: str, look: int, key: str) -> str:

@@ -62,9 +62,12 @@ class Column:
 
 @dataclass(frozen=True)
 class Row:
+    """`apart` sets a row off from those above it by a hairline."""
+
     head: Line
     cells: tuple[Cell, ...]
     indent: bool = False
+    apart: bool = False
 
 
 @dataclass(frozen=True)
@@ -231,6 +234,32 @@ class CountsFigure:
 
 
 @dataclass(frozen=True)
+class Chance:
+    """A probability in percent under one effect: `low` and `high` where that effect has limits of its own.
+
+    `reading` is "if A" or "if B" while masked, else empty.
+    """
+
+    effect: str
+    reading: str
+    percent: Span
+    low: Span | None = None
+    high: Span | None = None
+
+
+@dataclass(frozen=True)
+class ChancesFigure:
+    """Probabilities as strips over one scale of 0 to 100 percent; those of one effect stand together."""
+
+    title: str
+    description: str
+    unit: str
+    short_unit: str
+    chances: tuple[Chance, ...]
+    kind: Literal["chances"] = "chances"
+
+
+@dataclass(frozen=True)
 class InformationStrip:
     """The spine lying down, 0 to 1: looks held (fraction, events; the last is now), planned ones below."""
 
@@ -276,7 +305,7 @@ class ZStrip:
     kind: Literal["z strip"] = "z strip"
 
 
-Figure = CurvesFigure | BoundaryFigure | CalendarFigure | LogLogFigure | CountsFigure
+Figure = CurvesFigure | BoundaryFigure | CalendarFigure | LogLogFigure | CountsFigure | ChancesFigure
 Strip = CountsFigure | InformationStrip | IntervalStrip | ZStrip
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from app.model.outlook import ConditionalPower, NextLook, Outlook, Stopping
 from app.model.values import Absent, Estimate
-from app.sheets.blocks import Cell, Column, CountsFigure, Line, Row, Sheet, Span, Table
+from app.sheets.blocks import Cell, Chance, ChancesFigure, Column, Line, Row, Sheet, Span, Table
 from app.sheets.curves import cox_level
 from app.sheets.methods import methods
 from app.sheets.words import (
@@ -24,13 +24,14 @@ from app.views.closed import ClosedView, Reading
 QUESTION = "What if we go on?"
 DASH = Span("–", "quiet")
 EFFECTS = (
-    ("design", "the plan’s hazard ratio"),
-    ("trend", "the trend so far"),
-    ("trend_low", "its less favourable limit"),
-    ("trend_high", "its more favourable limit"),
-    ("null", "no effect"),
+    ("design", "The plan’s ratio", False),
+    ("trend", "The trend so far", False),
+    ("trend_low", "less favourable", True),
+    ("trend_high", "more favourable", True),
+    ("null", "No effect", False),
 )
-SHOWN_LARGE = ("design", "trend", "null")
+"""Effects, their words, and whether they are a limit of the one before."""
+ALONG = "Conditional power along the planned looks"
 
 
 def outlook_sheet(view: ClosedView) -> Sheet:
@@ -88,34 +89,47 @@ def _capital(reason: str, view: ClosedView) -> str:
 # --- the figure -----------------------------------------------------------------------------------------
 
 
-def _figure(view: ClosedView) -> CountsFigure | None:
+def _figure(view: ClosedView) -> ChancesFigure | None:
+    """A strip for each effect and reading; the limits of the trend are the ends of a line through it."""
     outlooks = _outlooks(view)
     if not outlooks:
         return None
-    counts = [
-        (percent(getattr(outlook, effect).path), _under(view, reading, said))
+    chances = (
+        _chance(effect, said, f"if {reading.experimental}" if view.masked else "", outlook)
+        for effect, said, is_limit in EFFECTS
+        if not is_limit
         for reading, outlook in outlooks
-        for effect, said in EFFECTS
-        if effect in SHOWN_LARGE
-    ]
-    return CountsFigure(
-        title="Conditional power along the planned looks",
-        description="The probability, in percent, of crossing the efficacy bound at a look to come.",
-        counts=tuple(counts),
+    )
+    return ChancesFigure(
+        title=ALONG,
+        description="The probability, in percent, of crossing the efficacy bound at a look to come. Through "
+        "the trend so far runs a line from its less to its more favourable limit.",
+        unit="percent, along the looks",
+        short_unit="percent",
+        chances=tuple(chances),
     )
 
 
-def _under(view: ClosedView, reading: Reading, effect: str) -> str:
-    of = f"if {reading.experimental}: " if view.masked else ""
-    return f"{of}percent, under {effect}"
+def _chance(effect: str, said: str, reading: str, outlook: Outlook) -> Chance:
+    shown = percent(getattr(outlook, effect).path)
+    if effect != "trend":
+        return Chance(said, reading, shown)
+    return Chance(said, reading, shown, percent(outlook.trend_low.path), percent(outlook.trend_high.path))
 
 
 def _figure_table(view: ClosedView) -> Table | None:
     figure = _figure(view)
     if figure is None:
         return None
-    rows = tuple(Row(line(said), (Cell((shown,)),)) for shown, said in figure.counts)
-    return Table(line(figure.title), (Column(line("percent")),), rows, line("Chance"))
+    heads = ("percent", "at its less favourable limit", "at its more favourable limit")
+    rows = tuple(_chance_row(chance) for chance in figure.chances)
+    return Table(line(figure.title), tuple(Column(line(head)) for head in heads), rows, line("Chance"))
+
+
+def _chance_row(chance: Chance) -> Row:
+    head = ", ".join(filter(None, (chance.effect, chance.reading)))
+    spans = (chance.percent, chance.low, chance.high)
+    return Row(line(head), tuple(Cell(() if span is None else (span,)) for span in spans))
 
 
 # --- the tables -----------------------------------------------------------------------------------------
@@ -137,19 +151,19 @@ def _power_table(view: ClosedView) -> tuple[Table, ...]:
                 for name in names
             ),
             rows=tuple(
-                _power_row(effect, said, [outlook for _, outlook in outlooks]) for effect, said in EFFECTS
+                Row(line(said), _effect_cells(effect, [outlook for _, outlook in outlooks]), indent)
+                for effect, said, indent in EFFECTS
             ),
             corner=line("Were the truth"),
         ),
     )
 
 
-def _power_row(effect: str, said: str, outlooks: list[Outlook]) -> Row:
-    cells = (cell for outlook in outlooks for cell in _power_cells(getattr(outlook, effect)))
-    return Row(line(said[:1].upper() + said[1:]), tuple(cells))
+def _effect_cells(effect: str, outlooks: list[Outlook]) -> tuple[Cell, ...]:
+    return tuple(cell for outlook in outlooks for cell in power_cells(getattr(outlook, effect)))
 
 
-def _power_cells(power: ConditionalPower) -> tuple[Cell, ...]:
+def power_cells(power: ConditionalPower) -> tuple[Cell, ...]:
     chances: list[Estimate] = [power.final_look, power.path]
     if power.path_futility_obeyed is not None:
         chances.append(power.path_futility_obeyed)

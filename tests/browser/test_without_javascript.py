@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator
 
 import pytest
@@ -60,6 +61,28 @@ def test_forms_fit_the_narrowest_screen(chromium: Browser, server: Running) -> N
             expect(page.get_by_role("heading", level=1)).to_be_visible()
             width = page.evaluate("document.documentElement.scrollWidth")
             assert width <= NARROWEST["width"], path
+
+
+def test_a_ratio_of_one_s_own_is_asked_about_from_the_keyboard(chromium: Browser, server: Running) -> None:
+    """The address carries the ratio and nothing else; the sheet with its row still fits a laptop screen."""
+    own = origin(server.links["closed"])
+    with watched(chromium, own, java_script_enabled=False) as seen:
+        page = enter(seen, server.links["closed"])
+        page.goto(f"{own}/closed/looks/3/outlook")
+        field = page.get_by_label("What if the hazard ratio were")
+        field.focus()
+        page.keyboard.type("0,8")
+        page.keyboard.press("Enter")
+        page.wait_for_url(f"{own}/closed/looks/3/outlook?hazard_ratio=0%2C8")
+        row = page.get_by_role("row", name=re.compile(r"What if, not\sfrozen"))
+        expect(row.get_by_role("cell").first).to_have_text("0.800")
+        expect(field).to_have_value("0,8")
+        page.set_viewport_size({"width": 1366, "height": 768})
+        assert page.evaluate("document.documentElement.scrollHeight") <= 768
+        field.fill("much less")
+        page.get_by_role("button", name="Show the chances").press("Enter")
+        expect(page.get_by_role("alert")).to_contain_text("Found 'much less'.")
+        expect(field).to_have_value("much less")
 
 
 def test_the_open_link_shows_pooled_pages_and_no_other(chromium: Browser, server: Running) -> None:

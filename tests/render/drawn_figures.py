@@ -8,7 +8,7 @@ from xml.etree import ElementTree
 from app.render import figures
 from app.render.svg import strips
 from app.render.svg.lettering import text_width
-from app.sheets.blocks import ArmLabel, BoundaryFigure, CurvesFigure, Lane, Span
+from app.sheets.blocks import ArmLabel, BoundaryFigure, ChancesFigure, CurvesFigure, Lane, Span
 from tests.render import invented_book as invented
 
 SVG = "{http://www.w3.org/2000/svg}"
@@ -68,6 +68,12 @@ def with_long_names() -> CurvesFigure:
     return replace(figure, lines=lines)
 
 
+def without_a_chance() -> ChancesFigure:
+    figure = invented.chances_figure("masked")
+    first, *others = figure.chances
+    return replace(figure, chances=(replace(first, percent=Span("not estimable")), *others))
+
+
 FIGURES = {
     "boundary": invented.boundary_figure("not crossed"),
     "boundary crossed": invented.boundary_figure("crossed"),
@@ -87,6 +93,9 @@ FIGURES = {
     "log-log": invented.log_log_figure(),
     "log-log masked": invented.log_log_figure("masked"),
     "counts": invented.counts_figure(),
+    "chances": invented.chances_figure("not crossed"),
+    "chances masked": invented.chances_figure("masked"),
+    "chances without a number": without_a_chance(),
 }
 STRIPS = {
     "counts strip": invented.counts_figure(),

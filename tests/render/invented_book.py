@@ -20,6 +20,8 @@ from app.sheets.blocks import (
     BoundaryFigure,
     CalendarFigure,
     Cell,
+    Chance,
+    ChancesFigure,
     Column,
     CountsFigure,
     CurveLine,
@@ -262,6 +264,33 @@ def counts_figure() -> CountsFigure:
         title="What changed since look 2",
         description="112 new events, 3 reversed, 2 moved, no vanished subjects, no changed arm.",
         counts=tuple((Span(number, value=float(number)), said) for number, said in words),
+    )
+
+
+def chances_figure(state: State) -> ChancesFigure:
+    """Strips of what going on may bring; masked, both readings of each effect."""
+
+    def percent(value: float) -> Span:
+        return Span(f"{100 * value:.1f}", value=value)
+
+    readings = ("if A", "if B") if state == "masked" else ("",)
+    effects = (
+        ("The plan’s ratio", (0.934, 0.0)),
+        ("The trend so far", (0.867, 0.0)),
+        ("No effect", (0.39, 1.0)),
+    )
+    return ChancesFigure(
+        title="Conditional power along the planned looks",
+        description="93.4 percent under the plan’s ratio, 86.7 under the trend so far, 39.0 under no effect.",
+        unit="percent, along the looks",
+        short_unit="percent",
+        chances=tuple(
+            Chance(said, reading, percent(value))
+            if "trend" not in said
+            else Chance(said, reading, percent(value), percent(value / 2), percent(min(1.0, value + 0.124)))
+            for said, values in effects
+            for reading, value in zip(readings, values, strict=False)
+        ),
     )
 
 

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 from fastapi import APIRouter
 from starlette.exceptions import HTTPException
 from starlette.responses import HTMLResponse, JSONResponse, Response
 
 from app.actions.looks import closed_book, looks, open_book, record_of
 from app.actions.open_report import open_report
+from app.actions.what_if import ask_what_if
 from app.record.text import record_bytes
 from app.render.csv_tables import sheet_tables
 from app.render.page import render_sheet
@@ -38,6 +41,14 @@ def closed_figure(site: TheSite, session: TheSession, look: LookNumber, sheet: s
 @router.get("/closed/looks/{look}/{sheet}/tables.zip")
 def closed_tables(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
     return tables(closed_look(site, session, look), sheet)
+
+
+@router.get("/closed/looks/{look}/outlook")
+def closed_outlook(site: TheSite, session: TheSession, look: LookNumber, hazard_ratio: str = "") -> Response:
+    """The Outlook sheet, and what would be under a hazard ratio that the reader chose."""
+    book = closed_look(site, session, look)
+    asked = ask_what_if(site.desk, look, hazard_ratio.strip())
+    return page(site, book, "outlook", CLOSED, status=422 if asked.refusal else 200, what_if=asked)
 
 
 @router.get("/closed/looks/{look}/{sheet}")
@@ -89,12 +100,11 @@ def require_look(site: Site, look: int) -> None:
         raise HTTPException(404)
 
 
-def page(site: Site, book: LookBook, sheet: str, base: str) -> Response:
+def page(site: Site, book: LookBook, sheet: str, base: str, *, status: int = 200, **more: Any) -> Response:
     require_sheet(book, sheet)
     told = {"damage": site.damage, "clock_doubts": site.take_clock_doubts()} if base == CLOSED else {}
-    return HTMLResponse(
-        render_sheet(site.environment, book, sheet, base=base, template="forms/sheet.html", **told)
-    )
+    html = render_sheet(site.environment, book, sheet, base=base, template="forms/sheet.html", **told, **more)
+    return HTMLResponse(html, status_code=status)
 
 
 def figure(book: LookBook, sheet: str) -> Response:

@@ -6,7 +6,7 @@ import pytest
 
 from app.model.plan import Plan
 from app.review import LookDeclared, as_used, review_look
-from app.sheets.blocks import BoundaryFigure, Lane, Sheet
+from app.sheets.blocks import BoundaryFigure, Chance, ChancesFigure, Lane, Sheet
 from app.sheets.boundary import boundary_sheet
 from app.sheets.outlook import outlook_sheet
 from app.views.closed import masked_view, unmasked_view
@@ -16,6 +16,7 @@ from tests.unit.sheets.invented_looks import (
     A_IS_EXPERIMENTAL,
     answers,
     life,
+    table_texts,
     text,
     with_z,
 )
@@ -73,10 +74,10 @@ def test_masked_the_answer_has_a_line_for_each_reading() -> None:
 def test_each_effect_has_its_row_and_each_conditional_power_its_column() -> None:
     (table,) = outlook_of(0.0).wide_tables
     assert [text(row.head) for row in table.rows] == [
-        "The plan’s hazard ratio",
+        "The plan’s ratio",
         "The trend so far",
-        "Its less favourable limit",
-        "Its more favourable limit",
+        "less favourable",
+        "more favourable",
         "No effect",
     ]
     assert [text(column.head) for column in table.columns] == [
@@ -86,6 +87,41 @@ def test_each_effect_has_its_row_and_each_conditional_power_its_column() -> None
     ]
     obeyed = seen(0.0, under(), outlook_sheet).wide_tables[0]
     assert text(obeyed.columns[-1].head) == "futility obeyed"
+
+
+def chances(sheet: Sheet) -> tuple[Chance, ...]:
+    assert isinstance(sheet.figure, ChancesFigure)
+    return sheet.figure.chances
+
+
+def test_the_figure_has_a_strip_for_each_effect_with_the_trend_s_limits_about_it() -> None:
+    design, trend, null = chances(outlook_of(0.0))
+    assert [each.effect for each in (design, trend, null)] == [
+        "The plan’s ratio",
+        "The trend so far",
+        "No effect",
+    ]
+    assert trend.low is not None
+    assert trend.high is not None
+    assert trend.low.value < trend.percent.value < trend.high.value  # type: ignore[operator]
+    assert design.low is None
+    assert null.high is None
+
+
+def test_masked_both_readings_of_an_effect_stand_together() -> None:
+    shown = chances(outlook_of(0.5, masked=True))
+    assert [each.reading for each in shown] == ["if A", "if B"] * 3
+    assert [each.effect for each in shown[:2]] == ["The plan’s ratio"] * 2
+
+
+def test_the_figure_as_a_table_says_the_same_numbers() -> None:
+    sheet = outlook_of(0.5, masked=True)
+    rows = table_texts(sheet, "Conditional power along")
+    assert list(rows)[:2] == ["The plan’s ratio, if A", "The plan’s ratio, if B"]
+    first = next(each for each in chances(sheet) if each.low is not None)
+    assert first.low is not None
+    assert first.high is not None
+    assert rows["The trend so far, if A"] == [first.percent.text, first.low.text, first.high.text]
 
 
 def test_the_next_look_says_what_the_new_events_alone_must_show() -> None:
