@@ -6,7 +6,6 @@ from dataclasses import dataclass
 
 from app.actions.desk import Desk
 from app.actions.names import recorded_name, recorded_reason
-from app.actions.start import refuse_held_looks
 from app.errors import LedgerError
 from app.intake.amendment import PlanChange, plan_changes, refuse_fixed
 from app.intake.plan import read_plan
@@ -61,7 +60,6 @@ def amend(
 def _amendment(desk: Desk, state: State, plan_name: str, plan: bytes) -> Amendment:
     limits = desk.settings.limits
     amended = read_plan(plan, name=plan_name, limits=limits)
-    refuse_held_looks(amended, plan_name)
     changes = plan_changes(plan_under(desk.trial, state.plan_digest, limits), amended)
     refuse_fixed(changes, plan_name)
     if not changes:

@@ -62,13 +62,15 @@ def evaluate(
     earlier: Delivery | None = None
     for number, given in enumerate(looks, start=len(held) + 1):
         delivery = given.delivery
-        reviewed = review_delivery(read, delivery, earlier, past, number=number, limits=settings.limits)
+        reviewed = review_delivery(
+            read, delivery, earlier, past, number=number, limits=settings.limits, held=compared
+        )
         views.append(unmasked_view(reviewed.result, read, Letters("A")))
         past.append(as_used(reviewed.result))
         earlier = delivery
     doubts = power_doubts(read, _planned(read).feasibility)
     asked = [None if hazard_ratio is None else what_if(view, hazard_ratio) for view in views]
-    return evaluation_record(views, asked, run_at=_now(settings), held=compared, plan_findings=doubts)
+    return evaluation_record(views, asked, run_at=_now(settings), plan_findings=doubts)
 
 
 def boundary(

@@ -10,6 +10,7 @@ from app.actions.desk import Desk
 from app.ledger.bodies import ResultsOpened
 from app.ledger.entries import Entry, read_body
 from app.ledger.history import Look, State
+from app.model.extract import LookKind
 from app.model.look import PooledResult
 from app.model.plan import Plan
 from app.review.look import planned_fraction
@@ -91,9 +92,9 @@ def surroundings(
     """The looks on file around this one. Pooled numbers only, read without the arm column."""
     held = state.look(number).plan
     plan = plan_under(desk.trial, held.plan_digest, desk.settings.limits)
-    on_file = tuple(_on_file(desk, plan, state, look, freezing) for look in state.looks)
+    on_file = (_on_file(desk, plan, state, look, freezing) for look in state.looks)
     return Surroundings(
-        looks=on_file,
+        looks=(*_held_before(plan), *on_file),
         planned=plan.design.looks,
         planned_events=plan.design.planned_events,
         plan_version=held.version,
@@ -101,9 +102,25 @@ def surroundings(
     )
 
 
+def _held_before(plan: Plan) -> tuple[LookOnFile, ...]:
+    """The plan's held looks: their events, which are pooled, and nothing of what was compared there."""
+    return tuple(
+        LookOnFile(
+            number=held.number,
+            kind="planned",
+            fraction=held.events / plan.design.planned_events,
+            events=held.events,
+            state="held before",
+            planned=planned_fraction(plan.design.looks, ["planned"] * held.number),
+        )
+        for held in plan.held
+    )
+
+
 def _on_file(desk: Desk, plan: Plan, state: State, look: Look, freezing: Freezing | None) -> LookOnFile:
     events = pooled_counts(desk, look.number)[2]
-    kinds = [earlier.snapshot.kind for earlier in state.looks[: look.number]]
+    received = [earlier.snapshot.kind for earlier in state.looks if earlier.number <= look.number]
+    before: list[LookKind] = ["planned" for _ in plan.held]
     frozen = look.frozen is not None or (freezing is not None and look is state.open_look)
     return LookOnFile(
         number=look.number,
@@ -112,7 +129,7 @@ def _on_file(desk: Desk, plan: Plan, state: State, look: Look, freezing: Freezin
         events=events,
         plan_version=look.plan.version,
         state="frozen" if frozen else "open",
-        planned=planned_fraction(plan.design.looks, kinds),
+        planned=planned_fraction(plan.design.looks, [*before, *received]),
     )
 
 
@@ -141,7 +158,9 @@ def _counts(pooled: PooledResult) -> tuple[int, float, int]:
 def _pool(desk: Desk, number: int, plan_digest: str) -> PooledResult:
     limits = desk.settings.limits
     plan = plan_under(desk.trial, plan_digest, limits)
-    past = [pooled_counts(desk, before) for before in range(1, number)]
+    held = [(look.number, look.events / plan.design.planned_events, look.events) for look in plan.held]
+    received = [pooled_counts(desk, before) for before in range(desk.trial.state().first_number, number)]
+    past = [*held, *received]
     return pool_delivery(plan, delivery_of(desk.trial.snapshot(number)), past, number=number, limits=limits)
 
 

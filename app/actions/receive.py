@@ -72,7 +72,7 @@ def understand(desk: Desk, incoming: Incoming) -> Understanding:
 def _changes(desk: Desk, plan: Plan, state: State, extract: Extract) -> Changes | None:
     if extract.sample is None or not state.looks:
         return None
-    earlier = delivery_of(desk.trial.snapshot(len(state.looks)))
+    earlier = delivery_of(desk.trial.snapshot(state.looks[-1].number))
     return changes_between(plan, earlier, extract.sample, desk.settings.limits)
 
 

@@ -9,25 +9,34 @@ from app.errors import DesignInvalid
 from app.intake.plan import read_plan
 from app.ledger.trial import Trial
 from app.model.plan import Plan
+from app.review.held import held_looks
 from app.settings import Settings
 
 
-def refuse_held_looks(plan: Plan, plan_name: str) -> None:
-    """A trial file numbers its looks from 1, and each has its snapshot."""
-    if plan.held:
+def refuse_telling_held_look(plan: Plan, plan_name: str) -> None:
+    """Masked, a crossing before this file would say which of A and B is experimental."""
+    past, _ = held_looks(plan)
+    first = next((look.number for look in past if look.crossed != "none"), None)
+    if plan.arms.masked and first is not None:
         raise DesignInvalid(
-            "held looks have no snapshot in a trial file",
+            "a held look that crossed its bound would give the arm letters away",
             where=f"{plan_name}, [[held]]",
-            found=f"{len(plan.held)} of them",
-            accepted="[[held]] with the command evaluate only",
-            remedy="take the tables out and receive the extracts of those looks, or use evaluate",
+            found=f"look {first} beyond its efficacy_z, and arms that start masked",
+            accepted="masked = false in [arms], or held looks of which none crossed",
+            remedy="write masked = false, or correct the held look",
         )
 
 
 def start(settings: Settings, *, plan_name: str, plan: bytes, path: Path, by: str) -> None:
     """Read and check the plan, draw the arm letters, and write both into a new file."""
     read = read_plan(plan, name=plan_name, limits=settings.limits)
-    refuse_held_looks(read, plan_name)
+    refuse_telling_held_look(read, plan_name)
     Trial.create(
-        path, settings, name=read.trial.name, plan=plan, by=recorded_name(by), masked=read.arms.masked
+        path,
+        settings,
+        name=read.trial.name,
+        plan=plan,
+        by=recorded_name(by),
+        masked=read.arms.masked,
+        looks_held_before=len(read.held),
     ).close()

@@ -25,7 +25,6 @@ FIXED: Mapping[str, str] = {
     "endpoint.event_is": ANOTHER_TRIAL,
     "design.sides": "leave it as it was: alpha was spent on the sides of the plan in force",
     "design.information": "leave it as it was: looks were held by the information of the plan in force",
-    "held": "leave them as they were: they came before this file and are used as used",
 }
 """Keys on which looks already held rest, with what a person can do instead."""
 
@@ -60,14 +59,24 @@ def refuse_fixed(changes: Sequence[PlanChange], name: str) -> None:
             remedy=remedy,
         )
         for change in changes
-        if (remedy := _remedy_for(change.key))
+        if (remedy := FIXED.get(change.key, ""))
     ]
+    problems += _held_problems(changes, name)
     if problems:
         raise PlanRefused(problems)
 
 
-def _remedy_for(key: str) -> str:
-    return FIXED.get(key) or FIXED.get(key.partition("[")[0], "")
+def _held_problems(changes: Sequence[PlanChange], name: str) -> Iterator[DesignInvalid]:
+    """One sentence for all held looks, without a value: masked pages show none of their z."""
+    keys = [change.key for change in changes if change.key.startswith("held[")]
+    if keys:
+        yield DesignInvalid(
+            "Held looks cannot be amended, added or left out",
+            where=f"{name}, [[held]]",
+            found=f"another {', '.join(keys)} than was locked",
+            accepted="the held looks as they were locked: they came before this file and are used as used",
+            remedy="write them as they were; while nothing was received, a new trial file can take others",
+        )
 
 
 def _keys_of_plan(plan: Plan) -> Iterator[tuple[str, str]]:

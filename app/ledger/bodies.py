@@ -63,7 +63,10 @@ class Body:
 
 @dataclass(frozen=True)
 class PlanLocked(Body):
-    """The first entry. `trial` is drawn at random and tells this trial file from every other."""
+    """The first entry. `trial` is drawn at random and tells this trial file from every other.
+
+    `looks_held_before` are the plan's [[held]] looks: the first snapshot is that of the look after them.
+    """
 
     entry_kind: ClassVar[Kind] = "plan locked"
     name: str
@@ -71,6 +74,7 @@ class PlanLocked(Body):
     plan_digest: str
     letters_commitment: str
     by: str
+    looks_held_before: int = 0
 
     def contents(self) -> Iterator[Named]:
         yield Named("the locked plan", self.plan_digest)
@@ -137,7 +141,10 @@ class DoubtAnswered:
 
 @dataclass(frozen=True)
 class SnapshotReceived(Body):
-    """An extract as received. `kind` of look is declared here, before any result of it is opened."""
+    """An extract as received. `kind` of look is declared here, before any result of it is opened.
+
+    `number` is that of the look it opens, which counts looks held before this file too.
+    """
 
     entry_kind: ClassVar[Kind] = "snapshot received"
     number: int

@@ -93,13 +93,17 @@ class ClockWentBack:
 
 @dataclass(frozen=True)
 class State:
-    """All that the history says at its head. `letters` is None while the arms are masked."""
+    """All that the history says at its head. `letters` is None while the arms are masked.
+
+    Looks are numbered through the whole trial; those held before this file come first, then come `looks`.
+    """
 
     head: Head = BEFORE_THE_FIRST
     name: str = ""
     trial: str = ""
     locked_at: str = ""
     locked_by: str = ""
+    looks_held_before: int = 0
     plans: tuple[PlanVersion, ...] = ()
     letters_commitment: str = ""
     letters: Letters | None = None
@@ -137,13 +141,25 @@ class State:
         return tuple(look for look in self.looks if look.frozen)
 
     @property
+    def first_number(self) -> int:
+        """The number of the first look that has its snapshot in this file."""
+        return self.looks_held_before + 1
+
+    @property
     def next_number(self) -> int:
         """The number of the next snapshot to be received."""
-        return len(self.looks) + 1
+        return self.first_number + len(self.looks)
 
     def look(self, number: int) -> Look:
-        if 1 <= number <= len(self.looks):
-            return self.looks[number - 1]
+        if self.first_number <= number < self.next_number:
+            return self.looks[number - self.first_number]
+        if 1 <= number < self.first_number:
+            raise LedgerError(
+                f"Look {number} was held before this trial file",
+                found="no snapshot of it, and so no sheets, freeze or report",
+                accepted=f"look {self.first_number} or a later one",
+                remedy="read what is known of it in the plan, under [[held]]",
+            )
         raise LedgerError(
             f"There is no look {number} in this trial file",
             found=f"{len(self.looks)} looks",
@@ -195,12 +211,15 @@ def advance(body: Body, state: State, entry: Entry) -> State:
 
 @advance.register
 def _plan_locked(body: PlanLocked, state: State, entry: Entry) -> State:
+    if body.looks_held_before < 0:
+        raise LedgerError("Fewer than no looks held before", found=str(body.looks_held_before))
     return replace(
         state,
         name=body.name,
         trial=body.trial,
         locked_at=entry.at,
         locked_by=body.by,
+        looks_held_before=body.looks_held_before,
         plans=(PlanVersion(1, body.plan_digest, entry.id, entry.at, body.by),),
         letters_commitment=body.letters_commitment,
     )

@@ -94,11 +94,20 @@ class Trial:
 
     @classmethod
     def create(
-        cls, path: Path, settings: Settings, *, name: str, plan: bytes, by: str, masked: bool = True
+        cls,
+        path: Path,
+        settings: Settings,
+        *,
+        name: str,
+        plan: bytes,
+        by: str,
+        masked: bool = True,
+        looks_held_before: int = 0,
     ) -> Trial:
         """Lock a plan into a new trial file, which appears under its name whole or not at all.
 
         The arm letters are drawn here; a plan that starts unmasked reveals them in the same act.
+        `looks_held_before` are the plan's looks of before this file, which have no snapshot in it.
         """
         with created_whole(path) as unfinished:
             database = Database(path, read_only=False, wait_seconds=WAIT_SECONDS, unfinished=unfinished)
@@ -106,7 +115,12 @@ class Trial:
                 database.keep_rollback_journal()
                 schema.migrate(database, trial._now())
                 with trial.act() as act:
-                    _lock(act, settings.random_bytes, name=name, plan=plan, by=by, masked=masked)
+                    key = draw_letters(settings.random_bytes)
+                    identity = settings.random_bytes(16).hex()
+                    plan_kept, key_sealed = act.store(plan), act.seal(key.sealed)
+                    act.append(PlanLocked(name, identity, plan_kept, key_sealed, by, looks_held_before))
+                    if not masked:
+                        act.append(ArmsUnmasked.of(key, STARTS_UNMASKED, by))
         return cls.open(path, settings)
 
     @classmethod
@@ -265,16 +279,6 @@ class Trial:
 
     def _now(self) -> str:
         return self._settings.clock().astimezone(UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
-
-
-def _lock(
-    act: Act, random_bytes: Callable[[int], bytes], *, name: str, plan: bytes, by: str, masked: bool
-) -> None:
-    """The first entry, and the unmasking where the plan starts unmasked."""
-    key = draw_letters(random_bytes)
-    act.append(PlanLocked(name, random_bytes(16).hex(), act.store(plan), act.seal(key.sealed), by))
-    if not masked:
-        act.append(ArmsUnmasked.of(key, STARTS_UNMASKED, by))
 
 
 def _may_be_written(path: Path) -> bool:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from datetime import date
 
-from app.model.boundary import Bound, LookAsUsed, Verdict
+from app.model.boundary import Bound, HeldCompared, LookAsUsed, Verdict
 from app.model.extract import Changes, Finding, LookKind, TimeUnit
 from app.model.outlook import Outlook, RepeatedInterval, Stopping
 from app.model.survival import ArmComparison, CoxResult, LogrankResult, Shape, SurvivalCurve
@@ -66,7 +66,10 @@ class Onwards:
 
 @dataclass(frozen=True, eq=False)
 class LookResult:
-    """One look under one plan: information, curves, tests, boundary. `past` are the looks as used."""
+    """One look under one plan: information, curves, tests, boundary. `past` are the looks as used.
+
+    The first of `past` are the plan's [[held]] looks, which `held` compares with what we compute for them.
+    """
 
     number: int
     kind: LookKind
@@ -98,6 +101,12 @@ class LookResult:
     mirrored_onwards: Onwards  # the same, control against experimental
     snapshot_digests: tuple[str, ...]
     plan_digest: str
+    held: tuple[HeldCompared, ...] = ()
+
+    @property
+    def held_before(self) -> frozenset[int]:
+        """Numbers of the looks held before, which have their z from the plan and not from a snapshot."""
+        return frozenset(each.number for each in self.held)
 
     @property
     def cutoff_day(self) -> int | None:

@@ -85,7 +85,7 @@ HISTORY = {
 HELD = {
     "number": int, "events": int, "source": str, "z": Maybe(NUMBER), "efficacy_z": Maybe(NUMBER),
     "computed_efficacy_z": ESTIMATE, "difference": Maybe(ESTIMATE), "alpha_spent": NUMBER,
-    "computed_alpha_spent": NUMBER,
+    "computed_alpha_spent": NUMBER, "alpha_difference": NUMBER,
 }  # fmt: skip
 INFORMATION = {
     "subjects": int, "events": int, "fraction": NUMBER, "planned_events": int, "planned_subjects": Maybe(int),

@@ -92,10 +92,10 @@ def sheet_links(frame: PageFrame, base: str) -> dict[str, str]:
 
 
 def look_links(frame: PageFrame, base: str, sheet_key: str | None) -> dict[int, str]:
-    """The same sheet of every look held, by the look's number."""
+    """The same sheet of every look that has sheets, by the look's number."""
     key = sheet_key or frame.sheets[0][0]
-    held = (look for look in frame.spine.looks if look.state != "planned")
-    return {look.number: look_address(base, look.number, key) for look in held}
+    here = (look for look in frame.spine.looks if look.state in ("frozen", "open"))
+    return {look.number: look_address(base, look.number, key) for look in here}
 
 
 Neighbour = tuple[str, int | None, str] | None

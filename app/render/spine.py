@@ -11,6 +11,7 @@ from app.sheets.blocks import Spine, SpineLook
 
 ROOMY = 36 / 560  # two lines of words, on the shortest rail that is common
 CLOSE = 20 / 560  # one line
+HELD_BEFORE = "held before this file"
 
 
 @dataclass(frozen=True)
@@ -37,6 +38,7 @@ class SpineMark:
                 (self.place, True),
                 ("held", self.is_held),
                 ("ahead", not self.is_held),
+                ("before", self.look.state == "held before"),
                 ("shown", self.look.shown),
                 ("safety", self.look.kind == "safety"),
                 ("crossing", self.look.crossed in ("efficacy", "control")),
@@ -115,11 +117,15 @@ def _numbers(look: SpineLook) -> str:
 
 
 def _further(look: SpineLook) -> str:
-    """The rest of "Look 3, information fraction 0.714, 384 events, planned 0.75, open"."""
+    """The rest of "Look 3, information fraction 0.714, 384 events, planned 0.75, open".
+
+    A look held before is told in full, with the source of its numbers on the closed side.
+    """
     planned = "" if look.planned is None else f", planned {fraction_text(look.planned)}"
     kind = "" if look.kind == "planned" else f", {look.kind}"
     crossed = "" if look.crossed == "none" else f", {look.crossed} crossed"
-    return f"{planned}{kind}, {look.state}{crossed}"
+    state = f"{HELD_BEFORE}, {look.source}" if look.source else HELD_BEFORE
+    return f"{planned}{kind}, {state if look.state == 'held before' else look.state}{crossed}"
 
 
 def place_of(part: float) -> str:

@@ -9,7 +9,7 @@ from app.model.plan import HeldLook, Plan
 from app.model.values import Absent
 from app.sequential.effect import PlanRules, plan_rules
 from app.sequential.rules import LookAhead, hazard_ratio_at
-from app.sequential.verdict import crossed
+from app.sequential.verdict import crossed, first_crossed
 
 NO_BOUND_RECORDED = Absent("no efficacy bound is recorded for this held look")
 
@@ -77,4 +77,5 @@ def _as_used(plan: Plan, held: HeldLook, ours: Bound, past: list[LookAsUsed]) ->
         final=ours.final,
         efficacy_hazard_ratio=hazard_ratio_at(bound, _planned_variance(plan, held), plan.endpoint.direction),
     )
-    return replace(used, crossed=crossed(held.z, used, plan.design.sides))
+    over = first_crossed(past) is not None
+    return replace(used, crossed="none" if over else crossed(held.z, used, plan.design.sides))

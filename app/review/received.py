@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import date
 
 from app.errors import InputError
 from app.intake.extract import read_extract
 from app.intake.samples import changes, read_pooled
-from app.model.boundary import LookAsUsed
+from app.model.boundary import HeldCompared, LookAsUsed
 from app.model.extract import Changes, Extract, LookKind, ReceivedFile, Sample
 from app.model.look import LookResult, PooledResult
 from app.model.plan import Plan
@@ -75,8 +75,12 @@ def review_delivery(
     *,
     number: int,
     limits: Limits,
+    held: Sequence[HeldCompared] = (),
 ) -> Reviewed:
-    """Read and compute one look; `earlier` is the delivery before it and `past` the looks as used."""
+    """Read and compute one look; `earlier` is the delivery before it and `past` the looks as used.
+
+    `held` are those of `past` that have no delivery, beside what we compute for them.
+    """
     extract = understand_delivery(plan, delivery, limits)
     sample = usable_sample(extract)
     declared = LookDeclared(
@@ -88,7 +92,8 @@ def review_delivery(
         changes=None if earlier is None else changes_between(plan, earlier, sample, limits),
         snapshot_digests=delivery.digests,
     )
-    return Reviewed(extract, review_look(plan, sample, declared, past))
+    result = review_look(plan, sample, declared, past)
+    return Reviewed(extract, replace(result, held=tuple(held)))
 
 
 def pool_delivery(

@@ -362,16 +362,20 @@ class Sheet:
 
 @dataclass(frozen=True)
 class SpineLook:
-    """One look on the spine; `planned` is the plan's fraction bound to it."""
+    """One look on the spine; `planned` is the plan's fraction bound to it.
+
+    A look held before this file has no sheets here; `source` is where the plan says its numbers are from.
+    """
 
     number: int
     fraction: float
     events: int
     kind: LookKind
-    state: Literal["frozen", "open", "planned"]
+    state: Literal["held before", "frozen", "open", "planned"]
     shown: bool = False
     planned: float | None = None
     crossed: Crossed = "none"
+    source: str = ""
 
 
 @dataclass(frozen=True)

@@ -21,6 +21,7 @@ from app.sheets.blocks import (
     Table,
 )
 from app.sheets.curves import NOT_ADJUSTED, against, cox_level
+from app.sheets.held import HELD_BEFORE, held_tables, held_words
 from app.sheets.methods import methods, spending_key
 from app.sheets.words import (
     MINUS,
@@ -59,7 +60,7 @@ def boundary_sheet(view: ClosedView) -> Sheet:
         answer=boundary_answer(view),
         figure=boundary_figure(view),
         tables=_standing_tables(view),
-        folded=_strata_table(view),
+        folded=(*held_tables(view, _side_words(view)), *_strata_table(view)),
         notes=(_note(view),),
         methods=methods(
             "logrank",
@@ -559,7 +560,7 @@ def _state_word(lane: Lane, view: ClosedView) -> str:
     if lane.state == "planned":
         return "planned, final" if lane.final else "planned"
     if lane.state == "past":
-        return "held"
+        return HELD_BEFORE if lane.look in view.look.held_before else "held"
     return f"{view.look.kind}, shown" if not lane.final or view.look.kind == "final" else "final, shown"
 
 
@@ -580,6 +581,7 @@ def _note(view: ClosedView) -> Line:
         f"Bounds exist at looks only; the dotted line guides the eye.{as_used}",
         *_ahead_words(view),
         _no_bound_words(view),
+        held_words(view),
         FINAL_WORDS if view.look.final and view.look.information.fraction < 1 else "",
     )
 

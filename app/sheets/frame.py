@@ -15,12 +15,12 @@ from app.sheets.words import day_text, listed
 from app.views.closed import ClosedView
 from app.views.open import OpenView
 
-LookState = Literal["frozen", "open"]
+LookState = Literal["held before", "frozen", "open"]
 
 
 @dataclass(frozen=True)
 class LookOnFile:
-    """One received look as both sides may know it; `planned` is the plan's fraction it used up.
+    """One look as both sides may know it, received or held before; `planned` is the fraction it used up.
 
     `fraction` is of the events planned by the version of the look shown: the spine has one scale.
     """
@@ -36,7 +36,7 @@ class LookOnFile:
 
 @dataclass(frozen=True)
 class Surroundings:
-    """What the frame needs besides the look itself. `looks` are all received, in order."""
+    """What the frame needs besides the look itself. `looks` are those held before, then all received."""
 
     looks: tuple[LookOnFile, ...]
     planned: tuple[float, ...]
@@ -66,7 +66,7 @@ def closed_frame(
         trial_name=view.plan.trial.name,
         trial_title=view.plan.trial.title,
         dates=three_dates(look.cutoff, look.extracted, around.run_on),
-        spine=spine(around, look.number, crossed),
+        spine=spine(around, look.number, crossed, {held.number: held.source for held in look.held}),
         look=look.number,
         colophon=_colophon(around, look.number, look.kind),
         sheets=sheets,
@@ -94,14 +94,16 @@ def open_frame(
         trial_name=view.trial_name,
         trial_title=view.trial_title,
         dates=three_dates(look.cutoff, look.extracted, around.run_on),
-        spine=spine(around, look.number, {}),
+        spine=spine(around, look.number, {}, {}),  # sources are words that nobody has read for arms
         look=look.number,
         colophon=_colophon(around, look.number, look.kind),
         sheets=sheets,
     )
 
 
-def spine(around: Surroundings, shown: int, crossed: Mapping[int, Crossed]) -> Spine:
+def spine(
+    around: Surroundings, shown: int, crossed: Mapping[int, Crossed], sources: Mapping[int, str]
+) -> Spine:
     held = [
         SpineLook(
             number=look.number,
@@ -112,6 +114,7 @@ def spine(around: Surroundings, shown: int, crossed: Mapping[int, Crossed]) -> S
             shown=look.number == shown,
             planned=look.planned,
             crossed=crossed.get(look.number, "none"),
+            source=sources.get(look.number, ""),
         )
         for look in around.looks
     ]
@@ -162,7 +165,7 @@ def versions_text(around: Surroundings) -> str:
     """ "Plan version 2 (looks 1 and 2: version 1)": under which version the looks were held."""
     others: dict[int, list[str]] = {}
     for look in around.looks:
-        if look.plan_version != around.plan_version:
+        if look.state != "held before" and look.plan_version != around.plan_version:
             others.setdefault(look.plan_version, []).append(str(look.number))
     held = [
         f"look{'s' if len(looks) > 1 else ''} {listed(looks)}: version {version}"

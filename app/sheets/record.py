@@ -207,7 +207,9 @@ def said(body: Body) -> str:
     """One entry in words."""
     match body:
         case PlanLocked():
-            return f"Plan locked for trial {body.name}"
+            held = body.looks_held_before
+            before = f", with {held} look{'s' if held > 1 else ''} held before this file" if held else ""
+            return f"Plan locked for trial {body.name}{before}"
         case SnapshotReceived():
             number = len(body.acknowledgements)
             doubts = f", {number} doubt{'s' if number > 1 else ''} answered" if number else ""

@@ -134,6 +134,12 @@ def alpha(value: float) -> Span:
     return Span(decimal(value, places), value=value)
 
 
+def alpha_difference(value: float) -> Span:
+    """One alpha less another, with its sign."""
+    size = alpha(abs(value))
+    return Span(f"{MINUS if value < 0 else ''}{size.text}", value=value)
+
+
 def level_text(level: float) -> str:
     """ "95%", "97.5%": a confidence level as the plan writes it."""
     return f"{100 * level:.10g}%"

@@ -9,13 +9,14 @@ from app.errors import LedgerChanged
 from app.intake.plan import read_plan
 from app.ledger.history import State
 from app.ledger.trial import Trial
-from app.model.boundary import LookAsUsed
+from app.model.boundary import HeldCompared, LookAsUsed
 from app.model.extract import Extract, Snapshot
 from app.model.look import LookResult
 from app.model.plan import Plan
 from app.record.canonical import parse_strict
 from app.record.schema import LOOKS_RECORD, differences
 from app.review.as_used import as_used_of_record, bound_of_record
+from app.review.held import held_looks
 from app.review.received import Delivery, review_delivery
 from app.settings import Limits
 from app.views.closed import ClosedView, Letters, masked_view, unmasked_view
@@ -54,8 +55,23 @@ def frozen_record(trial: Trial, number: int) -> dict[str, Any]:
 
 
 def looks_as_used(trial: Trial, before: int) -> tuple[LookAsUsed, ...]:
-    """The looks before this one as their frozen records have them: never recomputed."""
-    return tuple(as_used_of_record(frozen_record(trial, number)["looks"][0]) for number in range(1, before))
+    """The looks in this file before this one as their frozen records have them: never recomputed."""
+    numbers = range(trial.state().first_number, before)
+    return tuple(as_used_of_record(frozen_record(trial, number)["looks"][0]) for number in numbers)
+
+
+def held_before(trial: Trial, limits: Limits) -> tuple[tuple[LookAsUsed, ...], tuple[HeldCompared, ...]]:
+    """The looks of before this file as the plan was locked with them: no amendment touches them."""
+    state = trial.state()
+    plan = plan_under(trial, state.plans[0].plan_digest, limits)
+    if len(plan.held) != state.looks_held_before:
+        raise LedgerChanged(
+            "A lock that says other held looks than its plan",
+            where="entry 1",
+            found=f"{state.looks_held_before} looks held before",
+            accepted=f"{len(plan.held)}, as the plan has them",
+        )
+    return held_looks(plan)
 
 
 def compute(trial: Trial, number: int, limits: Limits) -> Assembled:
@@ -63,10 +79,14 @@ def compute(trial: Trial, number: int, limits: Limits) -> Assembled:
     look = trial.state().look(number)
     plan = plan_under(trial, look.plan_digest, limits)
     snapshot = trial.snapshot(number)
-    earlier = delivery_of(trial.snapshot(number - 1)) if number > 1 else None
-    past = looks_as_used(trial, number)
+    is_first = number == trial.state().first_number
+    earlier = None if is_first else delivery_of(trial.snapshot(number - 1))
+    before, held = held_before(trial, limits)
+    past = (*before, *looks_as_used(trial, number))
     try:
-        reviewed = review_delivery(plan, delivery_of(snapshot), earlier, past, number=number, limits=limits)
+        reviewed = review_delivery(
+            plan, delivery_of(snapshot), earlier, past, number=number, limits=limits, held=held
+        )
     except (ValueError, ArithmeticError) as fault:
         # elsewhere a bug; here it is the frozen records of the looks before that say what cannot be
         raise LedgerChanged(

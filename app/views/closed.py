@@ -107,7 +107,17 @@ def full_view(look: LookResult, plan: Plan) -> ClosedView:
 def masked_view(look: LookResult, plan: Plan, letters: Letters) -> ClosedView:
     """Arms by letter, A against B, with both readings. Nothing in it depends on which letter is which."""
     of: Role = "control" if letters.control == "A" else "experimental"
-    return _without_second_tests(_view(look, plan, letters, masked=True, of=of))
+    return _without_second_tests(_view(_without_held_z(look), plan, letters, masked=True, of=of))
+
+
+def _without_held_z(look: LookResult) -> LookResult:
+    """The look without the z of looks held before: it is of experimental against control, by name.
+
+    Beside a z of A against B its sign would say which letter is experimental.
+    """
+    before = look.held_before
+    past = (replace(each, z=None) if each.number in before else each for each in look.past)
+    return replace(look, past=tuple(past), held=tuple(replace(each, z=None) for each in look.held))
 
 
 def _view(look: LookResult, plan: Plan, letters: Letters, *, masked: bool, of: Role) -> ClosedView:
@@ -178,7 +188,7 @@ def _true_reading(look: LookResult, plan: Plan) -> Reading:
 
 def _readings(look: LookResult, plan: Plan, compared: ArmComparison, turned: bool) -> tuple[Reading, Reading]:
     """If A is experimental, if B is; `compared` is A against B, and bounds are the same in both."""
-    mirrored = _turned_history(look.past, plan)
+    mirrored = _turned_history(look, plan)
     histories = (mirrored, look.past) if turned else (look.past, mirrored)
     onwards = (look.onwards, look.mirrored_onwards)
     first, second = onwards[::-1] if turned else onwards
@@ -230,10 +240,17 @@ def _still_open(onwards: Onwards, look: LookResult, stands: Verdict) -> Onwards:
     return Onwards(over, over, over)
 
 
-def _turned_history(past: tuple[LookAsUsed, ...], plan: Plan) -> tuple[LookAsUsed, ...]:
-    """The looks held as they would read were the arms exchanged: z turned, crossings decided anew."""
+def _turned_history(look: LookResult, plan: Plan) -> tuple[LookAsUsed, ...]:
+    """The looks held as they would read were the arms exchanged: z turned, crossings decided anew.
+
+    What the plan says of looks held before is said of experimental against control, whichever arm that is: it
+    reads the same.
+    """
     turned: list[LookAsUsed] = []
-    for held in past:
+    for held in look.past:
+        if held.number in look.held_before:
+            turned.append(held)
+            continue
         z = None if held.z is None else -held.z + 0.0
         over = first_crossed(turned, binding=is_binding(plan))
         here: Crossed = "none" if over else crossed(z, held, plan.design.sides)

@@ -35,7 +35,6 @@ def looks_record(
     views: Sequence[ClosedView],
     *,
     run_at: str,
-    held: Sequence[HeldCompared] = (),
     plan_findings: Sequence[Finding] = (),
 ) -> Record:
     """The record of one or several looks under one plan; all views share plan and orientation."""
@@ -46,7 +45,8 @@ def looks_record(
     orientation = {"of": first.of.value, "against": first.against.value}
     envelope = _envelope(kind, first.look.plan_digest, digests, orientation, run_at, findings)
     looks = [look_record(view) for view in views]
-    return {**envelope, "held": [_compared(look) for look in held] if held else None, "looks": looks}
+    held = [_compared(look) for look in first.look.held]
+    return {**envelope, "held": held or None, "looks": looks}
 
 
 def evaluation_record(
@@ -54,14 +54,13 @@ def evaluation_record(
     what_ifs: Sequence[WhatIf | None],
     *,
     run_at: str,
-    held: Sequence[HeldCompared] = (),
     plan_findings: Sequence[Finding] = (),
 ) -> Record:
     """The record that `evaluate` prints: that of the looks, and for each what was asked of it besides.
 
     The views are unmasked, with one reading each.
     """
-    record = looks_record("evaluation", views, run_at=run_at, held=held, plan_findings=plan_findings)
+    record = looks_record("evaluation", views, run_at=run_at, plan_findings=plan_findings)
     for look, asked in zip(record["looks"], what_ifs, strict=True):
         if "conditional_power" in look["outlook"]:
             look["outlook"]["conditional_power"]["chosen"] = None if asked is None else _chosen(asked)
@@ -74,7 +73,7 @@ def _chosen(asked: WhatIf) -> Record:
 
 
 def _compared(held: HeldCompared) -> Record:
-    """A look of the plan's [[held]]: as used, what we compute for it, and the difference of the bounds."""
+    """A look of the plan's [[held]]: as used, what we compute for it, and the differences."""
     ours, theirs = held.computed_efficacy_z, held.efficacy_z
     difference: Estimate | None = None
     if theirs is not None:
@@ -89,6 +88,7 @@ def _compared(held: HeldCompared) -> Record:
         "difference": estimate(difference),
         "alpha_spent": held.alpha_spent,
         "computed_alpha_spent": held.computed_alpha_spent,
+        "alpha_difference": held.alpha_spent - held.computed_alpha_spent,
     }
 
 

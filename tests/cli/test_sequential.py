@@ -198,11 +198,97 @@ def test_a_held_look_that_crossed_ends_the_test(tmp_path: Path, capsys: pytest.C
     assert "over-running" in look["stopping"]["not_estimable"]
 
 
-def test_held_looks_do_not_start_a_trial_file(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
-    arguments = ["start", plan(tmp_path, HELD), tmp_path / "q17.trial", "--by", "A. Person"]
-    assert main([*map(str, arguments)]) == 2
-    assert "Held looks have no snapshot in a trial file" in capsys.readouterr().err
-    assert not (tmp_path / "q17.trial").exists()
+BY = ("--by", "A. Person")
+UNMASKED = ('experimental = "TABLET"', 'experimental = "TABLET"\nmasked = false')
+
+
+def done(*arguments: object) -> None:
+    assert main([*map(str, arguments)]) == 0
+
+
+def unmasked(path: Path) -> Path:
+    path.write_text(path.read_text().replace(*UNMASKED))
+    return path
+
+
+def in_a_trial_file(folder: Path, locked: Path, *events: int, amended: Path | None = None) -> dict[str, Any]:
+    """Locked, amended, extracts received and frozen one after the other; the record of the last report."""
+    trial = folder / "q17.trial"
+    done("start", locked, trial, *BY)
+    if amended is not None:
+        done("amend", trial, amended, "--reason", "Fewer events than foreseen", *BY)
+    for number, n_events in enumerate(events, 3):
+        done("receive", trial, extract(folder, n_events), "--cutoff", f"2026-0{number}-01", *BY)
+        done("freeze", trial, *BY)
+    done("verify", trial)
+    done("report", trial, 2 + len(events), "--to", folder)
+    done("verify", folder)
+    (written,) = folder.glob("*.record.json")
+    found: dict[str, Any] = json.loads(written.read_text())
+    assert list(differences(found, LOOKS_RECORD)) == []
+    return found
+
+
+def test_held_looks_in_a_trial_file_are_used_as_evaluate_uses_them(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """The example above through a trial file: the same record, and the look after it rests on all three."""
+    path = unmasked(plan(tmp_path, HELD, planned_events=520))
+    looks = ("--look", extract(tmp_path, 390), "--look", extract(tmp_path, 470))
+    evaluated_ = record(capsys, "evaluate", path, *looks)
+    found = in_a_trial_file(tmp_path, path, 390, 470)
+    (look,) = found["looks"]
+    assert bounds(look["history"]) == pytest.approx([3.6128, 2.4406, 2.6006], abs=5e-5)
+    assert found["held"] == evaluated_["held"]
+    for part in ("history", "boundary", "ahead", "outlook", "repeated_interval", "stopping"):
+        assert look[part] == evaluated_["looks"][1][part]
+
+
+@pytest.mark.parametrize("alpha_recorded", [True, False])
+def test_a_total_revised_by_amendment_leaves_held_looks_as_they_were_locked(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str], alpha_recorded: bool
+) -> None:
+    """Locked with 400 planned events and held looks at 0.35 and 0.7 of them; amended to 520; look at 390."""
+    lines = HELD.splitlines(keepends=True)
+    held = "".join(line for line in lines if alpha_recorded or not line.startswith("alpha_spent"))
+    locked = unmasked(plan(tmp_path, held)).rename(tmp_path / "locked.toml")
+    amended = unmasked(plan(tmp_path, held, planned_events=520))
+    found = in_a_trial_file(tmp_path, locked, 390, amended=amended)
+    (look,) = found["looks"]
+    assert bounds(look["history"]) == pytest.approx([3.6128, 2.4406], abs=5e-5)
+    assert [past["fraction"] for past in look["history"]] == [0.35, 0.7]
+    assert look["boundary"]["efficacy_z"] == pytest.approx(2.6006, abs=5e-5)
+    assert [held["difference"] for held in found["held"]] == pytest.approx([0.0, 0.0], abs=1e-9)
+
+
+def test_a_held_look_that_crossed_starts_unmasked_and_leaves_over_running(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    crossed = plan(tmp_path, HELD.replace("z = 1.4", "z = 2.5", 1))
+    trial = tmp_path / "q17.trial"
+    assert main([*map(str, ("start", crossed, trial, *BY))]) == 2
+    assert capsys.readouterr().err.strip() == (
+        "A held look that crossed its bound would give the arm letters away in plan.toml, [[held]]. "
+        "Found look 2 beyond its efficacy_z, and arms that start masked. "
+        "Accepted: masked = false in [arms], or held looks of which none crossed. "
+        "Write masked = false, or correct the held look."
+    )
+    assert not trial.exists()
+    (look,) = in_a_trial_file(tmp_path, unmasked(crossed), 400)["looks"]
+    assert (look["boundary"]["crossed"], look["boundary"]["first_crossed"]) == ("none", 2)
+    assert "over-running" in look["boundary"]["efficacy_z"]["not_estimable"]
+
+
+def test_a_look_held_before_the_file_has_no_report_there(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    in_a_trial_file(tmp_path, plan(tmp_path, HELD, planned_events=520), 390)
+    capsys.readouterr()
+    assert main(["report", str(tmp_path / "q17.trial"), "1", "--to", str(tmp_path)]) == 4
+    assert capsys.readouterr().err.strip() == (
+        "Look 1 was held before this trial file. "
+        "Found no snapshot of it, and so no sheets, freeze or report. Accepted: look 3 or a later one. Read what is known of it in the plan, under [[held]]."
+    )
 
 
 def test_alpha_by_the_calendar_goes_by_the_cutoff(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:

@@ -90,9 +90,20 @@ def test_what_held_looks_rest_on_is_not_amended(change: tuple[bytes, bytes], key
 
 
 def test_looks_held_before_the_file_existed_are_not_amended() -> None:
-    later = replace(plan(), held=(HeldLook(1, 100, 1.0, 3.0, 0.001, "Charter"),))
-    with pytest.raises(PlanRefused, match="cannot be amended"):
-        refuse_fixed(plan_changes(plan(), later), "plan-2.toml")
+    """One sentence, whether they are added, changed or left out; no z of theirs is said."""
+    bare, with_one = plan(), replace(plan(), held=(HeldLook(1, 100, 1.234, 3.0, 0.001, "Charter"),))
+    turned = replace(plan(), held=(HeldLook(1, 100, -1.234, 3.0, 0.001, "Charter"),))
+    for before, after, keys in (
+        (bare, with_one, "held[1].number, held[1].events, held[1].z"),
+        (with_one, bare, "held[1].number, held[1].events, held[1].z"),
+        (with_one, turned, "held[1].z than"),
+    ):
+        with pytest.raises(PlanRefused) as refused:
+            refuse_fixed(plan_changes(before, after), "plan-2.toml")
+        (told,) = str(refused.value).splitlines()
+        start = "Held looks cannot be amended, added or left out in plan-2.toml, [[held]]. Found another "
+        assert told.startswith(f"{start}{keys}")
+        assert "1.234" not in told
 
 
 def test_everything_that_is_wrong_is_told_at_once() -> None:

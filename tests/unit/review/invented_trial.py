@@ -68,6 +68,19 @@ planned_subjects = 160
 """
 
 
+def held_before(
+    *zs: float, events: tuple[int, ...] = (10, 20), source: str = "Charter table 2"
+) -> tuple[str, str]:
+    """A change of the plan that enters looks with these z's as held before, with rounded bounds."""
+    used = zip(zs, events, (5.0, 4.33), (0.0000003, 0.00001), strict=False)
+    tables = [
+        f"[[held]]\nnumber = {number}\nevents = {count}\nz = {z}\n"
+        f'efficacy_z = {bound}\nalpha_spent = {spent}\nsource = "{source}"\n'
+        for number, (z, count, bound, spent) in enumerate(used, 1)
+    ]
+    return "[efficacy]\n", f"{''.join(tables)}[efficacy]\n"
+
+
 def plan_text(*changes: tuple[str, str], of: str = PLAN) -> bytes:
     """The plan's bytes, each (old, new) exchanged; an old text that is not there is a bug of the test."""
     for old, new in changes:

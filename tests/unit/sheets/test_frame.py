@@ -21,7 +21,7 @@ def around(*looks: LookOnFile) -> Surroundings:
 
 
 def still_planned(*looks: LookOnFile) -> list[tuple[int, float, int, str]]:
-    shown = spine(around(*looks), 1, {}).looks
+    shown = spine(around(*looks), 1, {}, {}).looks
     return [(look.number, look.fraction, look.events, look.kind) for look in shown if look.state == "planned"]
 
 
