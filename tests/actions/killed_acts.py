@@ -49,21 +49,30 @@ DEEDS: dict[str, Deed] = {
 }
 
 
+AFTER_A_HELD_LOOK: dict[str, Deed] = {
+    "freeze after a held look": DEEDS["freeze"],
+    "freeze and receive after a held look": DEEDS["freeze and receive"],
+}
+
+
 def main(folder: Path) -> None:
-    demo = folder / "demo.trial"
+    demo, held = folder / "demo.trial", folder / "held.trial"
     make_demo(SETTINGS, demo)
-    with Desk.open(SETTINGS, demo) as desk:
-        n_entries = len(desk.trial.entries())
-    for name, deed in DEEDS.items():
-        for own, done in deaths(folder / name, demo.read_bytes(), deed):
-            print(json.dumps({"act": name, "folder": str(own), "done": done, "entries_before": n_entries}))
+    given.start_after_a_held_look(SETTINGS, held)
+    for trial, deeds in ((demo, DEEDS), (held, AFTER_A_HELD_LOOK)):
+        with Desk.open(SETTINGS, trial) as desk:
+            n_entries = len(desk.trial.entries())
+        for name, deed in deeds.items():
+            for own, done in deaths(folder / name, trial.read_bytes(), deed):
+                death = {"act": name, "folder": str(own), "done": done, "entries_before": n_entries}
+                print(json.dumps(death))
 
 
-def deaths(folder: Path, demo: bytes, deed: Deed) -> Iterator[tuple[Path, bool]]:
+def deaths(folder: Path, trial: bytes, deed: Deed) -> Iterator[tuple[Path, bool]]:
     for n in count(1):
         own = folder / str(n)
         own.mkdir(parents=True)
-        (own / "Q17.trial").write_bytes(demo)
+        (own / "Q17.trial").write_bytes(trial)
         done = lives(lambda own=own, n=n: carry_out(own / "Q17.trial", deed, n))
         yield own, done
         if done:

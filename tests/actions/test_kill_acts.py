@@ -16,7 +16,7 @@ from app.settings import Settings
 from tests.actions import killed_acts
 
 ROOT = Path(__file__).resolve().parents[2]
-N_ENTRIES = {"freeze and receive": 2}
+N_ENTRIES = {"freeze and receive": 2, "freeze and receive after a held look": 2}
 
 
 @pytest.fixture(scope="module")
@@ -28,7 +28,7 @@ def deaths(tmp_path_factory: pytest.TempPathFactory) -> list[dict[str, object]]:
 
 
 @pytest.mark.slow
-@pytest.mark.parametrize("name", killed_acts.DEEDS)
+@pytest.mark.parametrize("name", [*killed_acts.DEEDS, *killed_acts.AFTER_A_HELD_LOOK])
 def test_the_act_is_there_wholly_or_not_at_all(
     deaths: list[dict[str, object]], settings: Settings, name: str
 ) -> None:

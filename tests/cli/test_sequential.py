@@ -287,7 +287,8 @@ def test_a_look_held_before_the_file_has_no_report_there(
     assert main(["report", str(tmp_path / "q17.trial"), "1", "--to", str(tmp_path)]) == 4
     assert capsys.readouterr().err.strip() == (
         "Look 1 was held before this trial file. "
-        "Found no snapshot of it, and so no sheets, freeze or report. Accepted: look 3 or a later one. Read what is known of it in the plan, under [[held]]."
+        "Found no snapshot of it, and so no sheets, freeze or report. Accepted: look 3 or a later one. "
+        "Read what is known of it in the plan, under [[held]]."
     )
 
 

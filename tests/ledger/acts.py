@@ -47,8 +47,16 @@ def ticking_settings(seed: int = 17) -> Settings:
     return Settings(clock=lambda: next(moments), random_bytes=random.Random(seed).randbytes)
 
 
-def start(path: Path, settings: Settings, *, masked: bool = True) -> Trial:
-    return Trial.create(path, settings, name="Q17", plan=PLAN, by="M. Berg", masked=masked)
+def start(path: Path, settings: Settings, *, masked: bool = True, looks_held_before: int = 0) -> Trial:
+    return Trial.create(
+        path,
+        settings,
+        name="Q17",
+        plan=PLAN,
+        by="M. Berg",
+        masked=masked,
+        looks_held_before=looks_held_before,
+    )
 
 
 def extract(number: int) -> bytes:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import replace
 from datetime import UTC, datetime
 from pathlib import Path
@@ -393,3 +393,55 @@ def test_the_key_that_unmasks_is_the_one_committed_to(trial: Trial) -> None:
     assert state.letters is None
     sentence = refusal(trial, lambda act: act.append(ArmsUnmasked.of(swapped, "why", "M. Berg")))
     assert sentence == "These arm letters are not the ones committed to when the plan was locked."
+
+
+# --- looks held before the file -----------------------------------------------------------------------
+
+
+@pytest.fixture
+def after_two(tmp_path: Path) -> Iterator[Trial]:
+    with acts.start(tmp_path / "after.trial", acts.ticking_settings(), looks_held_before=2) as trial:
+        yield trial
+
+
+def test_looks_are_counted_on_from_those_held_before(after_two: Trial) -> None:
+    assert refusal(after_two, lambda act: acts.receive(act, 1)) == (
+        "A snapshot out of its turn. Found snapshot 1. Accepted: snapshot 3."
+    )
+    with after_two.act() as act:
+        acts.receive(act, 3)
+    state = after_two.state()
+    assert (state.first_number, state.next_number) == (3, 4)
+    assert state.open_look is state.look(3)
+    assert after_two.snapshot(3).number == 3
+
+
+def test_a_look_held_before_is_told_from_one_that_does_not_exist(after_two: Trial) -> None:
+    before = refusal(after_two, lambda act: act.append(ResultsOpened(2, "s", "masked")))
+    assert before == (
+        "Look 2 was held before this trial file. "
+        "Found no snapshot of it, and so no sheets, freeze or report. Accepted: look 3 or a later one. "
+        "Read what is known of it in the plan, under [[held]]."
+    )
+    for number in (0, 3):
+        sentence = refusal(
+            after_two, lambda act, number=number: act.append(ResultsOpened(number, "s", "masked"))
+        )
+        assert sentence == NO_LOOK.format(number)
+
+
+def test_a_lock_of_before_there_were_such_looks_has_none(trial: Trial) -> None:
+    entry = trial.entries()[0]
+    older = entry.body.replace('"looks_held_before":0,', "")
+    assert older != entry.body
+    body = read_body(replace(entry, body=older))
+    assert isinstance(body, PlanLocked)
+    assert body.looks_held_before == 0
+
+
+def test_fewer_than_no_looks_held_before_are_refused(trial: Trial) -> None:
+    body = read_body(trial.entries()[0])
+    assert isinstance(body, PlanLocked)
+    entry = Entry.following(State().head, trial.entries()[0].at, replace(body, looks_held_before=-1))
+    with pytest.raises(LedgerError, match=r"Fewer than no looks held before\. Found -1"):
+        follow(State(), entry)

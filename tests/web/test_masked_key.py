@@ -18,7 +18,7 @@ from typing import Any
 
 import pytest
 
-from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL
+from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL, held_before
 from tests.web.dealt import dealt, pooled_patients, serving
 from tests.web.served import Served
 
@@ -26,6 +26,7 @@ N_TRIALS = 50
 FEWEST, MOST = 11, 39
 """Beyond these a fair coin falls in one of 40,000 times on either side (binomial, 50 throws)."""
 
+HELD_Z = 2.123
 SHEETS = ("glance", "data", "information", "curves", "boundary", "record")
 
 
@@ -60,6 +61,12 @@ def is_a(holds: Callable[[Seen], bool]) -> Callable[[Seen], str]:
 
 def last_digit(value: object) -> int:
     return int((re.findall(r"\d", repr(value)) or ["0"])[-1])
+
+
+def plan_s_z(seen: Seen) -> float:
+    """The z that the record has of a look held before, by arm; 1 where it has none."""
+    known = [held["z"] for held in seen.record["held"] or ()] + [past["z"] for past in seen.look["history"]]
+    return next((z for z in known if z is not None), 1.0)
 
 
 def odd(text: str) -> bool:
@@ -110,6 +117,9 @@ RULES: dict[str, Callable[[Seen], str]] = {
     "the letter that is drawn last": is_a(
         lambda seen: seen.pages["curves"].rfind("arm-a") > seen.pages["curves"].rfind("arm-b")
     ),
+    "the sign of a z that the plan has of a look held before": is_a(
+        lambda seen: plan_s_z(seen) * seen.look["logrank"]["z"] > 0
+    ),
     "the length of the pages": is_a(lambda seen: len(seen.all_pages) % 2 == 1),
     "the length of the record": is_a(lambda seen: len(json.dumps(seen.record)) % 2 == 1),
     "a digest of the pages": is_a(lambda seen: odd(seen.all_pages)),
@@ -128,15 +138,23 @@ def seen_by(served: Served, look: int) -> Seen:
     return Seen(pages, record)
 
 
-@pytest.fixture(scope="module")
-def trials(tmp_path_factory: pytest.TempPathFactory) -> list[tuple[Seen, str]]:
-    """What is seen of each trial, and the letter that its experimental arm truly has."""
+@pytest.fixture(scope="module", params=[False, True], ids=["looks of its own", "a look held before"])
+def trials(
+    request: pytest.FixtureRequest, tmp_path_factory: pytest.TempPathFactory
+) -> list[tuple[Seen, str]]:
+    """What is seen of each trial, and the letter that its experimental arm truly has.
+
+    A look held before had a z that points the same way as the patients do.
+    """
     folder, chance = tmp_path_factory.mktemp("masked"), random.Random(5)
+    first = 2 if request.param else 1
     found = []
     for number in range(N_TRIALS):
-        people = dealt(pooled_patients(100), chance.choice((0.2, 5.0)), seed=chance.randrange(10**6))
-        with serving(folder / str(number), people, looks=1, seed=chance.randrange(10**6)) as served:
-            found.append((seen_by(served, 1), served.desk.trial.letter_key().letters.experimental))
+        ratio, deal, seed = chance.choice((0.2, 5.0)), chance.randrange(10**6), chance.randrange(10**6)
+        changes = (held_before(HELD_Z if ratio < 1 else -HELD_Z),) if request.param else ()
+        people = dealt(pooled_patients(100), ratio, seed=deal)
+        with serving(folder / str(number), people, looks=1, seed=seed, changes=changes) as served:
+            found.append((seen_by(served, first), served.desk.trial.letter_key().letters.experimental))
     return found
 
 
@@ -149,6 +167,7 @@ def test_the_trials_are_strongly_one_sided_and_their_letters_fall_both_ways(
     for seen, _ in trials:
         assert CONTROL not in seen.all_pages
         assert EXPERIMENTAL not in seen.all_pages
+        assert not re.search(rf"(?<![\d.]){HELD_Z}(?!\d)", seen.all_pages + json.dumps(seen.record))
 
 
 @pytest.mark.slow
@@ -170,22 +189,42 @@ def test_a_record_that_gave_the_key_away_would_be_noticed(trials: list[tuple[See
     assert sum(rule(seen) == letter for seen, letter in leaking) > MOST
 
 
-def test_exchanged_arms_under_exchanged_letters_give_the_same_bytes(tmp_path: Path) -> None:
+@pytest.mark.slow
+def test_a_record_that_kept_the_z_of_a_held_look_would_be_noticed(tmp_path: Path) -> None:
+    """A planted leak: the plan's z stands in the masked record; its sign beside A against B names the arm."""
+    rule = RULES["the sign of a z that the plan has of a look held before"]
+    for seed, ratio in enumerate((0.2, 5.0, 0.2, 5.0)):
+        people, z = dealt(pooled_patients(100), ratio, seed=seed), HELD_Z if ratio < 1 else -HELD_Z
+        with serving(tmp_path / str(seed), people, looks=1, seed=seed, changes=(held_before(z),)) as served:
+            seen, key = seen_by(served, 2), served.desk.trial.letter_key().letters.experimental
+        leaking = {**seen.record, "held": [{**seen.record["held"][0], "z": z}]}
+        assert rule(replace(seen, record=leaking)) == key
+
+
+@pytest.mark.parametrize("before", [(), (1.5, -0.25)], ids=["looks of its own", "looks held before"])
+def test_exchanged_arms_under_exchanged_letters_give_the_same_bytes(
+    tmp_path: Path, before: tuple[float, ...]
+) -> None:
     """The pages depend on nothing but which patients are A: no rule whatever can do better than a coin."""
     people = dealt(pooled_patients(), 0.3, seed=3)
+    numbers = (1 + len(before), 2 + len(before))
     found = {}
     for seed in range(17, 40):
         exchanged = seed > 17
         with serving(
-            tmp_path / str(seed), people.with_arms_exchanged() if exchanged else people, looks=2, seed=seed
+            tmp_path / str(seed),
+            people.with_arms_exchanged() if exchanged else people,
+            looks=2,
+            seed=seed,
+            changes=(held_before(*before),) if before else (),
         ) as served:
             letters = served.desk.trial.letter_key().letters
             if letters.experimental not in found:
-                found[letters.experimental] = {look: seen_by(served, look) for look in (1, 2)}
+                found[letters.experimental] = {look: seen_by(served, look) for look in numbers}
         if len(found) == 2:
             break
     assert set(found) == {"A", "B"}
-    for look in (1, 2):
+    for look in numbers:
         one, other = found["A"][look], found["B"][look]
         assert one.look == other.look
         for name in one.pages:

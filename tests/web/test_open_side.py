@@ -18,10 +18,12 @@ from app.actions import looks as actions
 from app.actions.looks import assembled_look
 from app.sheets.blocks import LookBook, Sheet
 from app.sheets.words import line
-from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL
+from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL, held_before
 from tests.web.dealt import dealt, pooled_patients, serving
 from tests.web.served import OWN, Served
 
+EFFICACY = "[efficacy]\n"
+LESS_KNOWN = f'[[held]]\nnumber = 2\nevents = 20\nsource = "C"\n{EFFICACY}'
 LOOKS = (1, 2, 3)
 SHEETS = ("glance", "data", "information", "curves", "boundary", "record")
 Answer = tuple[int, tuple[tuple[str, str], ...], bytes]
@@ -182,6 +184,23 @@ def test_a_pooled_count_that_changes_changes_the_open_pages(
         assert f"/open/looks/3/{sheet}" in changed
     assert "/open/looks/3/report" in changed
     assert "/closed/looks/3/curves" not in changed
+
+
+def test_what_was_compared_at_looks_held_before_changes_nothing_on_the_open_side(tmp_path: Path) -> None:
+    """The same events; another z, bound, alpha and source."""
+    people = dealt(pooled_patients(), 1.0, seed=1)
+    found = []
+    for name, before in (
+        ("one", held_before(1.5, -0.25)),
+        ("other", held_before(-3.0, 3.9, source="Pelletol ahead")),
+        ("less known", (EFFICACY, '[[held]]\nnumber = 1\nevents = 10\nsource = "C"\n' + LESS_KNOWN)),
+    ):
+        with serving(tmp_path / name, people, looks=1, changes=(before,)) as served:
+            found.append(everything_open(served))
+    assert found[0]["/open/looks/3/glance"][0] == 200
+    assert b"held before" in found[0]["/open/looks/3/glance"][2]
+    for other in found[1:]:
+        assert differing(found[0], other) == []
 
 
 def test_unmasking_and_what_is_recorded_later_change_nothing_on_the_open_side(tmp_path: Path) -> None:

@@ -11,10 +11,11 @@ from hypothesis import strategies as st
 
 from app.model.extract import LookKind, Sample
 from app.model.look import LookResult
-from app.model.plan import Plan
+from app.model.plan import HeldLook, Plan
 from app.model.values import Absent, read_only
 from app.record.text import record_bytes
 from app.review import LookDeclared, as_used, review_look
+from app.review.held import held_looks
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
 from app.views.record import looks_record
 from tests.strategies import TwoArmSample, two_arm_samples
@@ -25,7 +26,11 @@ TWO_SIDED = replace(ONE_SIDED, design=replace(ONE_SIDED.design, alpha=0.4, sides
 GOOD_EVENT = replace(ONE_SIDED, endpoint=replace(ONE_SIDED.endpoint, event_is="good"))
 KEEN = replace(ONE_SIDED, design=replace(ONE_SIDED.design, alpha=0.4))  # crosses now and then
 
-plans = st.sampled_from([ONE_SIDED, TWO_SIDED, GOOD_EVENT, KEEN])
+BEFORE = (HeldLook(1, 1, 0.7, 6.0, 0.0, "Charter"),)
+HELD = replace(ONE_SIDED, held=BEFORE)
+OVER = replace(ONE_SIDED, held=(replace(BEFORE[0], z=6.5),))  # crossed before; never locked masked
+
+plans = st.sampled_from([ONE_SIDED, TWO_SIDED, GOOD_EVENT, KEEN, HELD, OVER])
 kinds = st.sampled_from(["planned", "planned", "planned", "unplanned", "safety", "final"])
 lives = st.lists(st.tuples(two_arm_samples(), kinds), min_size=1, max_size=4)
 Life = Sequence[tuple[TwoArmSample, LookKind]]
@@ -47,10 +52,12 @@ def sample_of(drawn: TwoArmSample, *, exchanged: bool) -> Sample:
 
 def looks(under: Plan, life: Life, *, exchanged: bool = False) -> list[LookResult]:
     held: list[LookResult] = []
-    for number, (drawn, kind) in enumerate(life, 1):
-        past = [as_used(look) for look in held]
+    before, compared = held_looks(under)
+    for number, (drawn, kind) in enumerate(life, 1 + len(before)):
+        past = [*before, *(as_used(look) for look in held)]
         sample = sample_of(drawn, exchanged=exchanged)
-        held.append(review_look(under, sample, LookDeclared(number, kind), past))
+        look = review_look(under, sample, LookDeclared(number, kind), past)
+        held.append(replace(look, held=compared))
     return held
 
 
@@ -93,7 +100,8 @@ def test_the_reading_that_is_true_says_what_the_unmasked_view_says(
         (true,) = [each for each in masked.readings if each.experimental == letters.experimental]
         assert true.verdict == full.verdict == unmasked_view(look, under, letters).readings[0].verdict
         assert [held.crossed for held in true.history] == [held.crossed for held in look.past]
-        assert [held.z for held in true.history] == [held.z for held in look.past]
+        seen = [None if held.number in look.held_before else held.z for held in look.past]
+        assert [held.z for held in true.history] == seen
 
 
 @few
@@ -122,7 +130,8 @@ def test_after_the_first_crossing_nothing_crosses_and_the_full_view_keeps_the_bo
             assert view.readings[0].verdict.crossed == "none"
             assert view.readings[0].verdict.first_crossed == min(firsts)
             assert isinstance(view.look.bound.efficacy_z, Absent)
-            assert view.look.bound.alpha_spent == held[min(firsts) - 1].bound.alpha_spent
+            (at_crossing,) = [each for each in view.readings[0].history if each.number == min(firsts)]
+            assert view.look.bound.alpha_spent == at_crossing.alpha_spent
             later = [each for each in view.readings[0].history if each.number > min(firsts)]
             assert all(isinstance(each.efficacy_z, Absent) for each in later)
             assert {each.alpha_spent for each in later} <= {view.look.bound.alpha_spent}

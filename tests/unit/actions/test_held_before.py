@@ -1,4 +1,4 @@
-"""A trial file whose plan has looks held before it: their numbers, their past, what each side sees of them."""
+"""A trial file whose plan has looks held before it: their numbers, their past, and what each side sees."""
 
 from __future__ import annotations
 

@@ -15,6 +15,7 @@ from app.model.look import LookResult
 from app.model.plan import Plan
 from app.model.values import Absent
 from app.review import LookDeclared, as_used, review_look
+from app.review.held import held_looks
 from app.review.look import planned_fraction
 from app.review.received import Delivery, review_delivery
 from app.settings import Limits
@@ -55,12 +56,16 @@ def held(
     under, people = under or plan(), people or patients()
     looks: list[Held] = []
     earlier: Delivery | None = None
-    for number, cutoff in enumerate(cutoffs, 1):
-        kind = kinds[number - 1] if number <= len(kinds) else "planned"
+    before, compared = held_looks(under)
+    for at_cutoff, cutoff in enumerate(cutoffs):
+        number = 1 + len(before) + at_cutoff
+        kind = kinds[at_cutoff] if at_cutoff < len(kinds) else "planned"
         file = received_file(f"adtte-{number}.csv", people.at(cutoff).csv())
         delivery = Delivery((file,), kind, cutoff)
-        past = [as_used(look.result) for look in looks]
-        reviewed = review_delivery(under, delivery, earlier, past, number=number, limits=Limits())
+        past = [*before, *(as_used(look.result) for look in looks)]
+        reviewed = review_delivery(
+            under, delivery, earlier, past, number=number, limits=Limits(), held=compared
+        )
         reasons = tuple(Acknowledgement(doubt.id, "Known") for doubt in reviewed.extract.doubts)
         at = f"{cutoff}T09:00:00Z"
         snapshot = Snapshot(number, (file,), kind, cutoff, None, at, "M. Berg", reasons)
@@ -90,8 +95,19 @@ def life(*zs: float, sides: int = 1) -> list[LookResult]:
 
 
 def surroundings(looks: Sequence[Held]) -> Surroundings:
-    design = looks[0].plan.design
-    kinds = [look.result.kind for look in looks]
+    design, before = looks[0].plan.design, len(looks[0].plan.held)
+    kinds: list[LookKind] = [*(["planned"] * before), *(look.result.kind for look in looks)]  # type: ignore[list-item]
+    held_before = (
+        LookOnFile(
+            number=held.number,
+            kind="planned",
+            fraction=held.events / design.planned_events,
+            events=held.events,
+            state="held before",
+            planned=planned_fraction(design.looks, kinds[: held.number]),
+        )
+        for held in looks[0].plan.held
+    )
     on_file = (
         LookOnFile(
             number=look.result.number,
@@ -103,7 +119,8 @@ def surroundings(looks: Sequence[Held]) -> Surroundings:
         )
         for look in looks
     )
-    return Surroundings(tuple(on_file), design.looks, design.planned_events, 1, looks[-1].snapshot.cutoff)
+    on_spine = (*held_before, *on_file)
+    return Surroundings(on_spine, design.looks, design.planned_events, 1, looks[-1].snapshot.cutoff)
 
 
 LOCKED = PlanVersion(1, "", entry=1, at="2024-01-01T09:00:00Z", by="M. Berg")
@@ -115,7 +132,14 @@ def book(looks: Sequence[Held], letters: Letters | None = None) -> LookBook:
         Look(SnapshotReceived.of(look.snapshot, look.extract.findings), look.snapshot.received_at, LOCKED)
         for look in looks
     )
-    state = State(looks=on_file, locked_at=f"{FIRST_DAY}T09:00:00Z", locked_by="M. Berg", plans=(LOCKED,))
+    before = len(looks[0].plan.held)
+    state = State(
+        looks=on_file,
+        looks_held_before=before,
+        locked_at=f"{FIRST_DAY}T09:00:00Z",
+        locked_by="M. Berg",
+        plans=(LOCKED,),
+    )
     history = History(state, ())
     last = looks[-1]
     return closed_book(last.view(letters), surroundings(looks), last.snapshot, last.extract, history)

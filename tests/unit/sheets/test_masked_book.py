@@ -10,7 +10,7 @@ import pytest
 from app.record.text import record_bytes
 from app.sheets.blocks import ArmLabel, LookBook
 from app.views.record import looks_record
-from tests.unit.review.invented_trial import CUTOFFS, Patients, patients, plan
+from tests.unit.review.invented_trial import CUTOFFS, Patients, held_before, patients, plan
 from tests.unit.sheets.invented_looks import (
     A_IS_CONTROL,
     A_IS_EXPERIMENTAL,
@@ -31,6 +31,7 @@ WORLDS = {
     "crossed": (plan(), patients()),
     "two sides": (plan(TWO_SIDED), patients()),
     "no ratio": (plan(), without_events_in_one_arm()),
+    "held before": (plan(held_before(1.5, -0.25)), patients()),
     "two to one": (plan(("allocation = [1, 1]", "allocation = [1, 2]")), patients()),
 }
 

@@ -10,7 +10,7 @@ import pytest
 
 from app.sheets.blocks import CurvesFigure, IntervalMark, Lane, LookBook, Sheet, Span
 from app.views.record import looks_record
-from tests.unit.review.invented_trial import plan
+from tests.unit.review.invented_trial import held_before, plan
 from tests.unit.sheets.invented_looks import A_IS_CONTROL, TWO_SIDED, Held, book, held, parts
 
 Shown = list[tuple[LookBook, set[float], Held]]
@@ -18,14 +18,21 @@ Shown = list[tuple[LookBook, set[float], Held]]
 
 @pytest.fixture(
     scope="module",
-    params=[(1, False), (1, True), (2, False), (2, True)],
-    ids=["unmasked", "masked", "two sides", "two sides, masked"],
+    params=[
+        (1, False, False),
+        (1, True, False),
+        (2, False, False),
+        (2, True, False),
+        (1, False, True),
+        (1, True, True),
+    ],
+    ids=["unmasked", "masked", "two sides", "two sides, masked", "held before", "held before, masked"],
 )
 def shown(request: pytest.FixtureRequest) -> Shown:
     """Each look of the invented trial: its book, the numbers of its record, and the look."""
-    sides, masked = request.param
+    sides, masked, before = request.param
     letters = A_IS_CONTROL if masked else None
-    looks = held(plan(*([TWO_SIDED] if sides == 2 else [])))
+    looks = held(plan(*([TWO_SIDED] if sides == 2 else []), *([held_before(1.5, -0.25)] if before else [])))
     return [
         (
             book(looks[:number], letters),

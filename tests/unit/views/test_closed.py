@@ -9,8 +9,10 @@ import pytest
 
 from app.model.boundary import LookAsUsed, Verdict
 from app.model.look import LookResult
+from app.model.plan import HeldLook, Plan
 from app.model.values import Absent, read_only
 from app.review import LookDeclared, as_used, review_look
+from app.review.held import held_looks
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
 from tests.unit.review.invented_trial import CONTROL, CUTOFFS, EXPERIMENTAL, patients, plan
 from tests.unit.sheets.invented_looks import A_IS_CONTROL, A_IS_EXPERIMENTAL, TWO_SIDED, held, life
@@ -158,3 +160,32 @@ def test_history_is_that_of_the_looks_as_used() -> None:
     looks = held(cutoffs=CUTOFFS[:3])
     history: tuple[LookAsUsed, ...] = looks[2].view().readings[0].history
     assert history == tuple(as_used(each.result) for each in looks[:2])
+
+
+def after_a_held_look(z: float | None) -> tuple[LookResult, Plan]:
+    under = replace(plan(), held=(HeldLook(1, 10, z, 4.0, 0.00001, "Charter"),))
+    before, compared = held_looks(under)
+    sample = patients().at(CUTOFFS[0]).sample()
+    look = review_look(under, sample, LookDeclared(2, "planned"), before)
+    return replace(look, held=compared), under
+
+
+def test_masked_a_look_held_before_reads_the_same_whichever_arm_is_experimental() -> None:
+    """Its z is of experimental against control in either reading; beside A against B it is not shown."""
+    look, under = after_a_held_look(1.5)
+    view = masked_view(look, under, A_IS_CONTROL)
+    assert [reading.history[0].z for reading in view.readings] == [None, None]
+    assert (view.look.past[0].z, view.look.held[0].z) == (None, None)
+    other = masked_view(after_a_held_look(-1.5)[0], under, A_IS_CONTROL)
+    assert (other.readings[0].history, other.look.past) == (view.readings[0].history, view.look.past)
+    assert unmasked_view(look, under, A_IS_CONTROL).readings[0].history[0].z == 1.5
+    assert full_view(look, under).look.held[0].z == 1.5
+
+
+def test_masked_a_crossing_before_ends_the_test_in_both_readings() -> None:
+    """No file with such a look is locked masked; were one, the letters would not be in what is shown."""
+    look, under = after_a_held_look(4.5)
+    for letters in (A_IS_CONTROL, A_IS_EXPERIMENTAL):
+        view = masked_view(look, under, letters)
+        assert [reading.verdict for reading in view.readings] == [Verdict("none", 1)] * 2
+        assert isinstance(view.look.bound.efficacy_z, Absent)
