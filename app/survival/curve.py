@@ -11,7 +11,7 @@ from app.model.survival import SurvivalCurve
 from app.model.values import Absent, Counts, Estimate, Floats
 from app.survival.checked import checked_flags, checked_times
 from app.survival.intervals import survival_limits
-from app.survival.risk_table import risk_table
+from app.survival.risk_table import RiskTable, risk_table
 
 FLAT_TOLERANCE = float(np.sqrt(np.finfo(np.float64).eps))  # a survival this near 0.5 is 0.5
 
@@ -67,7 +67,11 @@ def kaplan_meier(
     >>> curve.survival.tolist(), curve.median
     ([0.75, 0.75, 0.375, 0.0], 3.0)
     """
-    table = risk_table(time, event)
+    return _curve(risk_table(time, event), level, interval)
+
+
+def _curve(table: RiskTable, level: float, interval: str) -> SurvivalCurve:
+    """The curve of the one group and stratum of this table."""
     at_risk, events, censored = table.at_risk[0], table.events[0], table.censored[0]
     survival = product_limit(at_risk, events)
     error_of_log = greenwood(at_risk, events)
@@ -98,14 +102,13 @@ def kaplan_meier_by_arm(
     interval: str = "log-log",
 ) -> tuple[SurvivalCurve, SurvivalCurve]:
     """The curves of the control and of the experimental arm; see `kaplan_meier`."""
-    times = checked_times(time)
-    events = checked_flags(event, "event", times.size)
-    arm = checked_flags(experimental, "experimental", times.size)
-    control, experiment = (
-        kaplan_meier(times[rows], events[rows], level=level, interval=interval)
-        for rows in (np.flatnonzero(~arm), np.flatnonzero(arm))
+    arm = checked_flags(experimental, "experimental", np.size(time))
+    table = risk_table(time, event, stratum=arm)  # as strata the arms have columns of their own
+    first_experimental = int(np.searchsorted(table.stratum, 1))
+    return (
+        _curve(table.only(slice(first_experimental)), level, interval),
+        _curve(table.only(slice(first_experimental, None)), level, interval),
     )
-    return control, experiment
 
 
 def follow_up_median(time: ArrayLike, event: ArrayLike) -> Estimate:

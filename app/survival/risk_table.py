@@ -13,9 +13,9 @@ from numpy.typing import ArrayLike, NDArray
 
 from app.model.values import Bools, Counts, Floats, Ints
 from app.survival.checked import checked_codes, checked_flags, checked_times
-from app.survival.time_order import InTimeOrder, Outcomes, Positions, in_time_order
+from app.survival.time_order import InTimeOrder, Outcomes, Positions, in_time_order, values_at
 
-CELLS_PER_SUBJECT = 4  # days are counted rather than sorted while the grid of days stays this small
+CELLS_PER_SUBJECT = 2  # days are counted rather than sorted while the grid of days stays this small
 FEWEST_CELLS = 4096
 
 
@@ -91,15 +91,15 @@ class RiskTable:
 
     def at_events(self) -> EventTable:
         """Only the times at which an event fell."""
-        with_event = self.events.any(axis=0)
+        with_event = np.flatnonzero(self.events.any(axis=0))
         starts = first_of_runs(self.stratum)
         return EventTable(
             self.time[with_event],
             self.stratum[with_event],
-            self.at_risk[:, with_event],
-            self.events[:, with_event],
+            self.at_risk.take(with_event, axis=1),  # quicker than the same by brackets
+            self.events.take(with_event, axis=1),
             strata=self.stratum[starts],
-            subjects=self.at_risk[:, starts],
+            subjects=self.at_risk.take(starts, axis=1),
         )
 
     def strata(self) -> Iterator[RiskTable]:
@@ -151,7 +151,7 @@ def risk_table(
     """
     subjects = _subjects(time, event, group, stratum)
     days = whole_days(subjects.time, subjects.n_strata)
-    return _by_sorting(subjects) if days is None else _by_counting(subjects, days)
+    return _by_sorting(subjects) if days is None else _DayGrid.of(subjects, days).risk_table()
 
 
 def event_table(
@@ -167,7 +167,7 @@ def event_table(
     """
     subjects = _subjects(time, event, group, stratum)
     days = whole_days(subjects.time, subjects.n_strata)
-    return _events_by_sorting(subjects) if days is None else _by_counting(subjects, days).at_events()
+    return _events_by_sorting(subjects) if days is None else _DayGrid.of(subjects, days).event_table()
 
 
 def sum_of_rows(counts: Counts) -> Floats:
@@ -218,27 +218,63 @@ def _subjects(
     return _Subjects(times, outcome, n_groups, strata, n_strata)
 
 
-def _by_counting(subjects: _Subjects, days: Ints) -> RiskTable:
-    """One count of (outcome, stratum, day) cells; no sort."""
-    days_wide, strata = int(days.max()) + 1, subjects.n_strata
-    width = strata * days_wide
-    cell = days if subjects.stratum is None else subjects.stratum * days_wide + days
-    cell += subjects.outcome * np.int64(width)
-    leaving = np.bincount(cell, minlength=2 * subjects.n_groups * width)
-    leaving = leaving.reshape(subjects.n_groups, 2, width)
-    seen = np.flatnonzero(leaving.any(axis=(0, 1)))
-    stratum_of, day_of = np.divmod(seen, days_wide)
-    return _table(day_of.astype(np.float64), stratum_of, leaving[:, :, seen])
+@dataclass(frozen=True, eq=False)
+class _DayGrid:
+    """A cell for every day of every stratum, whether anybody leaves then or not: counts without a sort.
 
+    Counts have shape (groups, strata * days), the days of one stratum after those of another.
+    """
 
-def _table(time: Floats, stratum: Ints, leaving: Ints) -> RiskTable:
-    """At risk at a column = all who leave at it or later in its stratum."""
-    left = np.cumsum(leaving.sum(axis=1), axis=1)
-    starts = first_of_runs(stratum)
-    ends = np.append(starts[1:], time.size) - 1 if starts.size else starts
-    left_at_end = np.repeat(left[:, ends], np.diff(starts, append=time.size), axis=1)
-    at_risk = left_at_end - left + leaving.sum(axis=1)
-    return RiskTable(time, stratum, at_risk, events=leaving[:, 1], censored=leaving[:, 0])
+    events: Ints
+    censored: Ints
+    days: int
+
+    @classmethod
+    def of(cls, subjects: _Subjects, days: Ints) -> _DayGrid:
+        """One count of (outcome, stratum, day)."""
+        wide = int(days.max()) + 1
+        cells = subjects.n_strata * wide
+        cell = subjects.outcome * np.int64(cells)
+        cell += days
+        if subjects.stratum is not None:
+            cell += subjects.stratum * np.int64(wide)
+        leaving = np.bincount(cell, minlength=2 * subjects.n_groups * cells)
+        leaving = leaving.reshape(subjects.n_groups, 2, cells)
+        return cls(events=leaving[:, 1], censored=leaving[:, 0], days=wide)
+
+    def risk_table(self) -> RiskTable:
+        """A column for each cell in which somebody leaves."""
+        columns = np.flatnonzero(self.events.any(axis=0) | self.censored.any(axis=0))
+        return RiskTable(
+            *self._time_and_stratum(columns),
+            self._at_risk().take(columns, axis=1),
+            events=self.events.take(columns, axis=1),
+            censored=self.censored.take(columns, axis=1),
+        )
+
+    def event_table(self) -> EventTable:
+        """A column for each cell with an event."""
+        columns, at_risk = np.flatnonzero(self.events.any(axis=0)), self._at_risk()
+        subjects = at_risk[:, :: self.days]  # on the first day everybody is at risk
+        strata = np.flatnonzero(subjects.any(axis=0))
+        return EventTable(
+            *self._time_and_stratum(columns),
+            at_risk.take(columns, axis=1),
+            self.events.take(columns, axis=1),
+            strata=strata,
+            subjects=subjects.take(strata, axis=1),
+        )
+
+    def _time_and_stratum(self, columns: Ints) -> tuple[Floats, Ints]:
+        stratum, day = np.divmod(columns, self.days)
+        return day.astype(np.float64), stratum
+
+    def _at_risk(self) -> Ints:
+        """At risk in a cell = all who leave in it or later in its stratum."""
+        leaving = self.events + self.censored
+        backwards = leaving.reshape(leaving.shape[0], -1, self.days)[..., ::-1]
+        np.cumsum(backwards, axis=-1, out=backwards)
+        return leaving
 
 
 def _by_sorting(subjects: _Subjects) -> RiskTable:
@@ -248,7 +284,7 @@ def _by_sorting(subjects: _Subjects) -> RiskTable:
     starts, ends = ordered.runs()
     events = counts.events(starts, ends)
     return RiskTable(
-        time=ordered.time[starts],
+        time=values_at(starts, ordered.time),
         stratum=counts.at_each(starts, ordered.strata),
         at_risk=counts.at_risk(starts),
         events=events,
@@ -262,7 +298,7 @@ def _events_by_sorting(subjects: _Subjects) -> EventTable:
     starts, ends = ordered.runs_with_event()
     counts = _Counts.of(ordered, subjects.n_groups)
     return EventTable(
-        time=ordered.time[starts],
+        time=values_at(starts, ordered.time),
         stratum=counts.at_each(starts, ordered.strata),
         at_risk=counts.at_risk(starts),
         events=counts.events(starts, ends),
@@ -298,8 +334,8 @@ class _Counts:
         """Who leave with the event between the positions, shape (groups, m)."""
         by_group = [self.outcome == 2 * group + 1 for group in range(len(self.in_group))]
         flags = [self.outcome & 1 != 0, *by_group]
-        if starts.size == self.outcome.size or (ends - starts).max(initial=1) == 1:
-            total, *others = (flag[starts] for flag in flags)
+        if (ends - starts).max(initial=1) == 1:
+            total, *others = (values_at(starts, flag) for flag in flags)
         else:
             total, *others = (_running(flag)[ends] - _running(flag)[starts] for flag in flags)
         return _with_last_group(total, others)

@@ -65,20 +65,29 @@ class InTimeOrder:
         return is_first
 
 
+def values_at(positions: Counts, values: NDArray[Any]) -> NDArray[Any]:
+    """The values, shape (n,), at increasing positions; where these are all positions, nothing is gathered."""
+    return values if positions.size == values.size else values[positions]
+
+
 def in_time_order(time: Floats, outcome: Outcomes, stratum: Counts | None, n_strata: int) -> InTimeOrder:
     """Put subjects in order; all arrays of shape (n,), codes below `n_strata` or one stratum of all."""
     by_keys = _by_packed_keys(time, outcome, stratum, n_strata)
-    if by_keys is None:
-        order = positions_in_order(time, stratum)
-        by_keys = time[order], outcome[order]
-    return InTimeOrder(*by_keys, *strata_and_ends(stratum, n_strata, time.size))
+    if by_keys is not None:
+        return by_keys
+    order = positions_in_order(time, stratum)
+    return InTimeOrder(time[order], outcome[order], *strata_and_ends(stratum, n_strata, time.size))
 
 
 def strata_and_ends(stratum: Counts | None, n_strata: int, size: int) -> tuple[Ints, Ints]:
     """The codes of the strata that hold a subject, and where each ends once subjects are in order."""
     if stratum is None:
         return np.zeros(min(1, size), dtype=np.int64), np.full(min(1, size), size)
-    sizes = np.bincount(stratum, minlength=n_strata)
+    return _with_subjects(np.bincount(stratum, minlength=n_strata))
+
+
+def _with_subjects(sizes: Ints) -> tuple[Ints, Ints]:
+    """The strata of a size above 0, and where each ends."""
     strata = np.flatnonzero(sizes)
     return strata, np.cumsum(sizes[strata])
 
@@ -94,7 +103,7 @@ def positions_in_order(time: Floats, stratum: Counts | None) -> Ints:
 
 def _by_packed_keys(
     time: Floats, outcome: Outcomes, stratum: Counts | None, n_strata: int
-) -> tuple[Floats, Outcomes] | None:
+) -> InTimeOrder | None:
     """Sort [stratum | time | outcome] as integers; None where they need more than 64 bits."""
     if time.size == 0:
         return None
@@ -115,7 +124,11 @@ def _by_packed_keys(
     sorted_outcome = keys.astype(outcome.dtype)  # keeps the lower bits
     sorted_outcome &= (1 << outcome_bits) - 1
     keys >>= np.uint64(outcome_bits)
-    if stratum is not None:
+    if stratum is None:
+        strata, ends = strata_and_ends(None, 1, keys.size)
+    else:  # the sorted keys tell where each stratum starts, without a count
+        starts = np.searchsorted(keys, np.arange(n_strata, dtype=np.uint64) << np.uint64(time_bits))
+        strata, ends = _with_subjects(np.diff(starts, append=keys.size))
         keys &= np.uint64((1 << time_bits) - 1)
     keys += np.uint64(lowest)
-    return keys.view(np.float64), sorted_outcome
+    return InTimeOrder(keys.view(np.float64), sorted_outcome, strata, ends)
