@@ -117,7 +117,7 @@ def _events_between(event_rows: Ints, starts: Positions, ends: Positions) -> Int
     return np.searchsorted(event_rows, ends) - np.searchsorted(event_rows, starts)
 
 
-def _strata_with_events(per_stratum: Ints, ends: Ints) -> tuple[tuple[slice, int], ...]:
+def _strata_with_events(per_stratum: Ints, ends: Positions) -> tuple[tuple[slice, int], ...]:
     bounds = np.append(0, np.cumsum(per_stratum)).tolist()
     pairs = zip(pairwise(bounds), ends.tolist(), strict=True)
     return tuple((slice(first, last), end) for (first, last), end in pairs if last > first)

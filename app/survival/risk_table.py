@@ -303,7 +303,7 @@ def _events_by_sorting(subjects: _Subjects) -> EventTable:
         at_risk=counts.at_risk(starts),
         events=counts.events(starts, ends),
         strata=ordered.strata,
-        subjects=counts.leaving(np.append(0, ordered.ends)[:-1], ordered.ends),
+        subjects=counts.leaving(np.append(np.int32(0), ordered.ends)[:-1], ordered.ends),
     )
 
 
@@ -316,7 +316,7 @@ class _Counts:
     """
 
     outcome: Outcomes
-    ends: Ints
+    ends: Positions
     in_group: tuple[Positions, ...]
 
     @classmethod

@@ -36,16 +36,16 @@ class InTimeOrder:
     time: Floats
     outcome: Outcomes
     strata: Ints
-    ends: Ints
+    ends: Positions
 
     def runs(self) -> tuple[Positions, Positions]:
         """Where each run of subjects who share a time and a stratum starts, and where it ends."""
         starts_run = self._starts_run()
         if starts_run.all():
-            starts = np.arange(self.time.size, dtype=np.int32)
+            bounds = np.arange(self.time.size + 1, dtype=np.int32)
         else:
-            starts = np.flatnonzero(starts_run).astype(np.int32)
-        return starts, np.append(starts[1:], np.int32(self.time.size))
+            bounds = np.append(np.flatnonzero(starts_run), self.time.size).astype(np.int32)
+        return bounds[:-1], bounds[1:]
 
     def runs_with_event(self) -> tuple[Positions, Positions]:
         """The runs that hold an event."""
@@ -79,17 +79,17 @@ def in_time_order(time: Floats, outcome: Outcomes, stratum: Counts | None, n_str
     return InTimeOrder(time[order], outcome[order], *strata_and_ends(stratum, n_strata, time.size))
 
 
-def strata_and_ends(stratum: Counts | None, n_strata: int, size: int) -> tuple[Ints, Ints]:
+def strata_and_ends(stratum: Counts | None, n_strata: int, size: int) -> tuple[Ints, Positions]:
     """The codes of the strata that hold a subject, and where each ends once subjects are in order."""
     if stratum is None:
-        return np.zeros(min(1, size), dtype=np.int64), np.full(min(1, size), size)
+        return np.zeros(min(1, size), dtype=np.int64), np.full(min(1, size), size, dtype=np.int32)
     return _with_subjects(np.bincount(stratum, minlength=n_strata))
 
 
-def _with_subjects(sizes: Ints) -> tuple[Ints, Ints]:
+def _with_subjects(sizes: Ints) -> tuple[Ints, Positions]:
     """The strata of a size above 0, and where each ends."""
     strata = np.flatnonzero(sizes)
-    return strata, np.cumsum(sizes[strata])
+    return strata, np.cumsum(sizes[strata], dtype=np.int32)
 
 
 def positions_in_order(time: Floats, stratum: Counts | None) -> Ints:
@@ -117,7 +117,9 @@ def _by_packed_keys(
         return None
     keys = np.subtract(patterns, np.uint64(lowest), out=patterns)
     if stratum is not None:
-        keys |= stratum.astype(np.uint64) << np.uint64(time_bits)
+        above = stratum.astype(np.uint64)
+        above <<= np.uint64(time_bits)
+        keys |= above
     keys <<= np.uint64(outcome_bits)
     keys |= outcome
     keys.sort()

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import fields
 
 import numpy as np
 import pytest
@@ -11,7 +12,7 @@ from hypothesis import strategies as st
 
 from app.model.survival import SurvivalCurve
 from app.model.values import Absent, Estimate
-from app.survival import follow_up_median, kaplan_meier
+from app.survival import follow_up_median, kaplan_meier, kaplan_meier_by_arm
 from app.survival.intervals import KINDS
 from tests import naive
 from tests.strategies import TwoArmSample, two_arm_samples, whole_days
@@ -41,6 +42,16 @@ def test_curve_is_the_literal_one(sample: TwoArmSample) -> None:
         for row in rows
     ]
     assert curve.std_error.tolist() == pytest.approx(errors, rel=1e-12, abs=1e-15, nan_ok=True)
+
+
+@given(two_arm_samples(), st.booleans())
+def test_curves_by_arm_are_those_of_each_arm_alone(sample: TwoArmSample, one_arm_is_empty: bool) -> None:
+    arm = sample.experimental & (not one_arm_is_empty)
+    together = kaplan_meier_by_arm(sample.time, sample.event, arm)
+    for curve, rows in zip(together, (~arm, arm), strict=True):
+        alone = curve_of(sample.rows(np.flatnonzero(rows)))
+        for field in fields(SurvivalCurve):
+            np.testing.assert_array_equal(getattr(curve, field.name), getattr(alone, field.name))
 
 
 @given(two_arm_samples())

@@ -59,6 +59,14 @@ def test_strata_without_subjects_have_no_table() -> None:
     assert [part.at_risk.tolist() for part in table.strata()] == [[[1]], [[2, 1]]]
 
 
+def test_strata_told_by_flags_are_those_told_by_numbers() -> None:
+    time, event, stratum = [300, 200, 300], [True, False, True], np.array([True, False, True])
+    table = risk_table(time, event, None, stratum)  # days that a byte, such as a flag has, could not hold
+    assert table.time.tolist() == [200.0, 300.0]
+    assert table.stratum.tolist() == [0, 1]
+    assert table.at_risk.tolist() == [[1, 2]]
+
+
 @pytest.mark.parametrize(
     ("times", "strata", "counted"),
     [
