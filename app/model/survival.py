@@ -397,8 +397,12 @@ class ProportionalityTests:
 
 @dataclass(frozen=True, eq=False)
 class SmoothCurve:
-    """A smooth over a scale of time, shape (k,), with the standard error of its height."""
+    """A smooth over a scale of time, shape (k,), with the standard error of its height.
 
+    `time` is where each place of the scale lies, between events along a straight line.
+    """
+
+    time: Floats
     on_scale: Floats
     value: Floats
     std_error: Floats
@@ -416,6 +420,23 @@ class ScaledResiduals:
     coefficients: Floats
     smooth: tuple[SmoothCurve | Absent, ...]
     transform: str
+
+
+@dataclass(frozen=True, eq=False)
+class RatioOverTime:
+    """The smooth of two arms' scaled residuals as a hazard ratio over time, shape (k,), pointwise limits.
+
+    `events` are those up to and at each time; `log_hazard_ratio` and `std_error` are of the smooth itself.
+    """
+
+    time: Floats
+    events: Counts
+    log_hazard_ratio: Floats
+    std_error: Floats
+    hazard_ratio: Floats
+    ci_low: Floats
+    ci_high: Floats
+    level: float
 
 
 @dataclass(frozen=True)
@@ -480,6 +501,7 @@ class Shape:
 
     proportionality: ProportionalityResult | Absent
     residuals: ScaledResiduals | Absent
+    ratio_over_time: RatioOverTime | Absent
     restricted_mean: RestrictedMeanComparison | Absent | None
     weighted: tuple[WeightedResult | Absent, ...] | None
     weighted_maximum: WeightedMaximum | Absent | None

@@ -101,6 +101,13 @@ CHANGES = {
     "new_subjects_with_event": int, "vanished_with_event": int,
 }  # fmt: skip
 PROPORTIONALITY = {"chi_square": NUMBER, "p": NUMBER, "transform": str}
+RATIO_OVER_TIME = {
+    "time": [NUMBER], "events": [int], "log_hazard_ratio": [NUMBER], "std_error": [NUMBER],
+    "hazard_ratio": [NUMBER], "ci_low": [NUMBER], "ci_high": [NUMBER], "level": NUMBER,
+}  # fmt: skip
+RESIDUALS = {
+    "transform": str, "time": [NUMBER], "log_hazard_ratio": [NUMBER], "smooth": Estimable(RATIO_OVER_TIME),
+}  # fmt: skip
 RESTRICTED_MEAN = {
     "at": NUMBER, "arms": [{"arm": str, "mean": NUMBER, "std_error": NUMBER}], "difference": NUMBER,
     "std_error": NUMBER, "ci_low": NUMBER, "ci_high": NUMBER, "level": NUMBER, "p_two_sided": NUMBER,
@@ -125,6 +132,7 @@ LOOK = {
     "curves": [CURVE], "boundary": {**BOUND, "information": NUMBER, **CROSSING}, "readings": Maybe([READING]),
     "history": [HISTORY], "ahead": [BOUND], **ONWARDS,
     "repeated_interval": Maybe(Estimable(REPEATED_INTERVAL)), "proportionality": Estimable(PROPORTIONALITY),
+    "residuals": Estimable(RESIDUALS),
     "restricted_mean": Maybe(Estimable(RESTRICTED_MEAN)), "weighted": Maybe([WEIGHTED]),
     "weighted_maximum": Maybe(Estimable(WEIGHTED_MAXIMUM)), "landmarks": Maybe([LANDMARK]),
     **dict.fromkeys(NOT_ASKED, Maybe(())),

@@ -6,7 +6,9 @@ from app.model.extract import Sample
 from app.model.plan import Plan
 from app.model.survival import (
     LandmarkComparison,
+    RatioOverTime,
     RestrictedMeanComparison,
+    ScaledResiduals,
     Shape,
     SurvivalCurve,
     WeightedMaximum,
@@ -19,6 +21,7 @@ from app.survival import (
     compare_landmarks,
     compare_restricted_means,
     fleming_harrington,
+    hazard_ratio_over_time,
     proportionality,
     scaled_residuals,
     two_arm_events,
@@ -40,18 +43,26 @@ def shape_of(plan: Plan, sample: Sample, curves: Curves, *, mirrored: bool = Fal
     ties = plan.analysis.ties
     arguments = (time, sample.event, of)
     table = two_arm_events(*arguments, sample.stratum)
+    residuals = or_reason(
+        lambda: scaled_residuals(*arguments, stratum=sample.stratum, ties=ties, transform=TRANSFORM)
+    )
     return Shape(
         proportionality=or_reason(
             lambda: proportionality(*arguments, stratum=sample.stratum, ties=ties, transform=TRANSFORM)
         ),
-        residuals=or_reason(
-            lambda: scaled_residuals(*arguments, stratum=sample.stratum, ties=ties, transform=TRANSFORM)
-        ),
+        residuals=residuals,
+        ratio_over_time=_ratio_over_time(plan, residuals),
         restricted_mean=_restricted_mean(plan, against, one),
         weighted=_weighted(plan, table),
         weighted_maximum=_maximum(plan, table),
         landmarks=_landmarks(plan, against, one),
     )
+
+
+def _ratio_over_time(plan: Plan, residuals: ScaledResiduals | Absent) -> RatioOverTime | Absent:
+    if isinstance(residuals, Absent):
+        return residuals
+    return or_reason(lambda: hazard_ratio_over_time(residuals, level=plan.analysis.confidence))
 
 
 def _restricted_mean(

@@ -13,7 +13,12 @@ from app.survival.landmarks import compare_landmarks
 from app.survival.many_groups import groups_logrank, trend_logrank
 from app.survival.near_ties import merge_near_ties
 from app.survival.permutation import permutation_logrank
-from app.survival.proportionality import proportionality, proportionality_tests, scaled_residuals
+from app.survival.proportionality import (
+    hazard_ratio_over_time,
+    proportionality,
+    proportionality_tests,
+    scaled_residuals,
+)
 from app.survival.readings import counts_at, landmark, log_log_curve, quantile
 from app.survival.restricted_mean import (
     compare_restricted_means,
@@ -62,6 +67,7 @@ __all__ = [
     "follow_up_median",
     "gray_test",
     "groups_logrank",
+    "hazard_ratio_over_time",
     "interaction",
     "kaplan_meier",
     "kaplan_meier_by_arm",

@@ -8,7 +8,13 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from app.errors import NotEstimable
-from app.model.survival import ProportionalityResult, ProportionalityTests, ScaledResiduals, SmoothCurve
+from app.model.survival import (
+    ProportionalityResult,
+    ProportionalityTests,
+    RatioOverTime,
+    ScaledResiduals,
+    SmoothCurve,
+)
 from app.model.values import Absent, Floats, read_only
 from app.survival.chi_square import chi_square_test
 from app.survival.comparison import EXPERIMENTAL, two_arm_events
@@ -16,12 +22,14 @@ from app.survival.cox import maximise, two_arm_likelihood
 from app.survival.cox_data import CoxSubjects, cox_subjects
 from app.survival.cox_moments import CoxMoments, cox_moments
 from app.survival.cox_regression import cox_regression
+from app.survival.intervals import two_sided_quantile
 from app.survival.natural_spline import knots_of, natural_spline
 from app.survival.time_scales import event_times_on_scale
 
 SMOOTH_DEGREES = 4
 SMOOTH_POINTS = 40
 RANK_TOLERANCE = 1e-12
+LARGEST_EXPONENT = 700.0  # the largest double is exp(709.8)
 
 ONE_TIME = "all events that tell the arms apart fell at one time, so nothing can change with time"
 
@@ -169,16 +177,63 @@ def scaled_residuals(
     raw = subjects.covariates[subjects.event_rows] - expected[column]
     residuals = fitted.coefficients + subjects.events * raw @ covariance
     order = np.argsort(subjects.time[column], kind="stable")
-    on_scale = fitted.g[column][order]
+    event_times, on_scale = subjects.time[column][order], fitted.g[column][order]
     return ScaledResiduals(
-        time=read_only(subjects.time[column][order], np.float64),
+        time=read_only(event_times, np.float64),
         on_scale=read_only(on_scale, np.float64),
         residuals=read_only(residuals[order], np.float64),
         coefficients=read_only(fitted.coefficients, np.float64),
         smooth=tuple(
-            _smooth(on_scale, residuals[order, k], subjects.events * covariance[k, k]) for k in range(p)
+            _smooth(event_times, on_scale, residuals[order, k], subjects.events * covariance[k, k])
+            for k in range(p)
         ),
         transform=transform,
+    )
+
+
+def hazard_ratio_over_time(residuals: ScaledResiduals, *, level: float = 0.95) -> RatioOverTime:
+    """Read the smooth of two arms' scaled residuals as a hazard ratio over time.
+
+    Parameters
+    ----------
+    residuals : as `scaled_residuals` of `experimental` gives them
+    level : confidence level of the limits at each time by itself, between 0 and 1
+
+    Returns
+    -------
+    RatioOverTime
+        time, events up to it, the smooth with its standard error, ratio and limits, shape (k,).
+
+    Raises
+    ------
+    ValueError : level outside (0, 1) - a bug in the caller.
+    NotEstimable : the events lie at too few times for a smooth, or its limits are wider than numbers go.
+
+    Notes
+    -----
+    *Convention*: the limits are exp(smooth -+ z standard errors), pointwise. The curve describes; it tests
+    nothing, and its ends rest on few events.
+    *Checked*: R (tests/reference: the smooth and its standard error), by hand (tests/unit/survival).
+
+    References
+    ----------
+    Grambsch & Therneau (1994), Biometrika 81, 515-526.
+    """
+    (smooth,) = residuals.smooth
+    if isinstance(smooth, Absent):
+        raise NotEstimable(smooth.reason)
+    reach = two_sided_quantile(level) * smooth.std_error
+    if float(np.max(np.abs(smooth.value) + reach)) > LARGEST_EXPONENT:
+        raise NotEstimable("the limits of the smooth curve are wider than numbers go")
+    return RatioOverTime(
+        time=smooth.time,
+        events=read_only(np.searchsorted(residuals.time, smooth.time, side="right"), np.int64),
+        log_hazard_ratio=smooth.value,
+        std_error=smooth.std_error,
+        hazard_ratio=read_only(np.exp(smooth.value), np.float64),
+        ci_low=read_only(np.exp(smooth.value - reach), np.float64),
+        ci_high=read_only(np.exp(smooth.value + reach), np.float64),
+        level=level,
     )
 
 
@@ -215,14 +270,18 @@ class _Fitted:
             yield block.columns, moments, np.add.reduceat(of_events, first - first[0], axis=0)
 
 
-def _smooth(on_scale: Floats, residuals: Floats, variance: float) -> SmoothCurve | Absent:
+def _smooth(
+    event_times: Floats, on_scale: Floats, residuals: Floats, variance: float
+) -> SmoothCurve | Absent:
     """The spline at equal steps of the scale, with the standard error of its height."""
-    times = np.unique(on_scale).size
-    if times < SMOOTH_DEGREES + 1 or np.unique(knots_of(on_scale, SMOOTH_DEGREES)).size < SMOOTH_DEGREES:
+    places, first = np.unique(on_scale, return_index=True)
+    too_few = places.size < SMOOTH_DEGREES + 1
+    if too_few or np.unique(knots_of(on_scale, SMOOTH_DEGREES)).size < SMOOTH_DEGREES:
         return Absent(f"a smooth curve needs events spread over {SMOOTH_DEGREES + 1} times or more")
     at = np.linspace(on_scale.min(), on_scale.max(), SMOOTH_POINTS)
     value, error = natural_spline(on_scale, residuals, at, SMOOTH_DEGREES)
     return SmoothCurve(
+        time=read_only(np.interp(at, places, event_times[first]), np.float64),
         on_scale=read_only(at, np.float64),
         value=read_only(value, np.float64),
         std_error=read_only(error * np.sqrt(variance), np.float64),

@@ -149,6 +149,7 @@ def _lettered_shape(shape: Shape) -> Shape:
         shape,
         proportionality=_lettered(shape.proportionality),
         residuals=_lettered(shape.residuals),
+        ratio_over_time=_lettered(shape.ratio_over_time),
     )
 
 

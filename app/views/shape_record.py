@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from app.model.survival import LandmarkComparison
+from app.model.survival import LandmarkComparison, RatioOverTime
 from app.model.values import Absent
 from app.record.numbers import estimate, not_estimable
 from app.views.closed import ClosedView
@@ -16,6 +16,7 @@ def shape_record(view: ClosedView) -> Record:
     """The names of DESIGN's record for the Shape sheet and the landmarks of the Curves sheet."""
     return {
         "proportionality": _proportionality(view),
+        "residuals": _residuals(view),
         "restricted_mean": _restricted_mean(view),
         "weighted": _weighted(view),
         "weighted_maximum": _weighted_maximum(view),
@@ -28,6 +29,34 @@ def _proportionality(view: ClosedView) -> Record:
     if isinstance(test, Absent):
         return not_estimable(test.reason)
     return {"chi_square": test.chi_square, "p": test.p, "transform": test.transform}
+
+
+def _residuals(view: ClosedView) -> Record:
+    """Each event's scaled residual in the order of time, and the smooth through them."""
+    found = view.shape.residuals
+    if isinstance(found, Absent):
+        return not_estimable(found.reason)
+    return {
+        "transform": found.transform,
+        "time": found.time.tolist(),
+        "log_hazard_ratio": found.residuals[:, 0].tolist(),
+        "smooth": _smooth(view.shape.ratio_over_time),
+    }
+
+
+def _smooth(ratio: RatioOverTime | Absent) -> Record:
+    if isinstance(ratio, Absent):
+        return not_estimable(ratio.reason)
+    return {
+        "time": ratio.time.tolist(),
+        "events": ratio.events.tolist(),
+        "log_hazard_ratio": ratio.log_hazard_ratio.tolist(),
+        "std_error": ratio.std_error.tolist(),
+        "hazard_ratio": ratio.hazard_ratio.tolist(),
+        "ci_low": ratio.ci_low.tolist(),
+        "ci_high": ratio.ci_high.tolist(),
+        "level": ratio.level,
+    }
 
 
 def _restricted_mean(view: ClosedView) -> Record | None:

@@ -255,6 +255,11 @@ def test_scaled_residuals_and_their_smooth(name: str) -> None:
     at = [0, 9, 19, 29, 39]
     assert smooth.value[at].tolist() == pytest.approx(values()[name, "smooth"], rel=1e-6, abs=1e-7)
     assert smooth.std_error[at].tolist() == pytest.approx(values()[name, "smooth_std_error"], rel=1e-6)
+    ratio, theirs = s.hazard_ratio_over_time(ours), np.array(values()[name, "smooth"])
+    reach = 1.959963984540054 * np.array(values()[name, "smooth_std_error"])  # of the normal distribution
+    assert ratio.ci_low[at].tolist() == pytest.approx(np.exp(theirs - reach), rel=1e-5)
+    assert ratio.hazard_ratio[at].tolist() == pytest.approx(np.exp(theirs), rel=1e-5)
+    assert ratio.ci_high[at].tolist() == pytest.approx(np.exp(theirs + reach), rel=1e-5)
 
 
 @every_set

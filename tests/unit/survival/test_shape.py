@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import math
 import sys
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from app.errors import AccuracyNotReached, NotEstimable
+from app.model.survival import RatioOverTime
 from app.model.values import Absent
 from app.survival import (
     baseline_hazard,
@@ -22,6 +24,7 @@ from app.survival import (
     fleming_harrington,
     gray_test,
     groups_logrank,
+    hazard_ratio_over_time,
     interaction,
     kaplan_meier,
     kaplan_meier_by_arm,
@@ -303,6 +306,75 @@ def test_few_event_times_have_residuals_but_no_smooth() -> None:
     found = scaled_residuals([1, 2, 3, 4, 5, 6], [1, 1, 1, 0, 0, 0], [0, 1, 0, 1, 0, 1])
     assert found.residuals.shape == (3, 1)
     assert found.smooth == (Absent("a smooth curve needs events spread over 5 times or more"),)
+
+
+def ratio_of(event: list[int], arm: list[int], **settings: float) -> RatioOverTime:
+    return hazard_ratio_over_time(scaled_residuals(range(1, len(event) + 1), event, arm), **settings)
+
+
+def test_the_ratio_over_time_is_the_smooth_with_its_limits() -> None:
+    event, arm = [1, 1, 0, 1, 1, 1, 0, 1, 1, 1], [0, 1, 0, 1, 0, 0, 1, 1, 0, 1]
+    found = scaled_residuals(range(1, 11), event, arm)
+    smooth, ratio = found.smooth[0], ratio_of(event, arm, level=0.9)
+    assert not isinstance(smooth, Absent)
+    assert ratio.log_hazard_ratio.tolist() == smooth.value.tolist()
+    assert ratio.hazard_ratio == pytest.approx(np.exp(smooth.value), rel=1e-14)
+    # 1.6448536269514722 is the 95th percentile of the normal distribution
+    assert ratio.ci_low == pytest.approx(np.exp(smooth.value - 1.6448536269514722 * smooth.std_error))
+    assert ratio.ci_high == pytest.approx(np.exp(smooth.value + 1.6448536269514722 * smooth.std_error))
+    assert ratio.level == 0.9
+
+
+def test_the_ratio_over_time_runs_from_the_first_event_to_the_last_and_counts_them() -> None:
+    event, arm = [1, 1, 0, 1, 1, 1, 0, 1, 1, 1], [0, 1, 0, 1, 0, 0, 1, 1, 0, 1]
+    ratio = ratio_of(event, arm)
+    assert (ratio.time[0], ratio.time[-1]) == (1, 10)
+    assert (ratio.events[0], ratio.events[-1]) == (1, 8)
+    times = [time for time, happened in enumerate(event, 1) if happened]
+    assert ratio.events.tolist() == [sum(time <= at for time in times) for at in ratio.time]
+
+
+def test_a_place_between_two_events_lies_between_their_times_as_on_the_scale() -> None:
+    event, arm = [1, 1, 0, 1, 1, 1, 0, 1, 1, 1], [0, 1, 0, 1, 0, 0, 1, 1, 0, 1]
+    found = scaled_residuals(range(1, 11), event, arm)
+    smooth = found.smooth[0]
+    assert not isinstance(smooth, Absent)
+    for place, time in zip(smooth.on_scale, smooth.time, strict=True):
+        after = int(np.searchsorted(found.on_scale, place))
+        if after == 0 or found.on_scale[after] == place:
+            assert time == pytest.approx(found.time[after])
+            continue
+        low, high = found.on_scale[after - 1], found.on_scale[after]
+        share = (place - low) / (high - low)
+        start, end = found.time[after - 1], found.time[after]
+        assert time == pytest.approx(start + share * (end - start))
+
+
+def test_the_other_arm_sees_the_same_curve_turned() -> None:
+    event, arm = [1, 1, 0, 1, 1, 1, 0, 1, 1, 1], [0, 1, 0, 1, 0, 0, 1, 1, 0, 1]
+    one, other = ratio_of(event, arm), ratio_of(event, [1 - of for of in arm])
+    assert other.log_hazard_ratio == pytest.approx(-one.log_hazard_ratio, abs=1e-12)
+    assert other.ci_low == pytest.approx(1 / one.ci_high, rel=1e-12)
+    assert other.time.tolist() == one.time.tolist()
+
+
+def test_without_a_smooth_there_is_no_ratio_over_time() -> None:
+    found = scaled_residuals([1, 2, 3, 4, 5, 6], [1, 1, 1, 0, 0, 0], [0, 1, 0, 1, 0, 1])
+    assert reason_of(hazard_ratio_over_time, found) == (
+        "a smooth curve needs events spread over 5 times or more"
+    )
+
+
+def test_limits_that_no_number_can_hold_are_said() -> None:
+    found = scaled_residuals(range(1, 9), [1] * 8, [0, 1, 0, 1, 1, 0, 1, 0])
+    smooth = found.smooth[0]
+    assert not isinstance(smooth, Absent)
+    wide = replace(found, smooth=(replace(smooth, std_error=smooth.std_error + 400),))
+    assert reason_of(hazard_ratio_over_time, wide) == (
+        "the limits of the smooth curve are wider than numbers go"
+    )
+    with pytest.raises(ValueError, match="level is 1"):
+        hazard_ratio_over_time(found, level=1)
 
 
 def test_events_heaped_at_one_time_have_residuals_but_no_smooth() -> None:
