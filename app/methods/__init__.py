@@ -62,10 +62,19 @@ METHODS: dict[str, Method] = {
         "Klein, Logan, Harhoff and Andersen (2007), Statistics in Medicine 26, 4505–4519.",
     ),
     "log-log": Method(
-        "Figure",
+        "log(−log)",
         "log(−log *S*) of each Kaplan-Meier curve against time on a log scale, at the times with an event: "
         "parallel when hazards are proportional. Early steps rest on few events.",
         "Kay (1977), Applied Statistics 26, 227–237.",
+    ),
+    "residuals": Method(
+        "Residuals",
+        "Each event’s scaled Schoenfeld residual plus the log hazard ratio of the Cox model, "
+        "*b* + *d* *V* *r*: an estimate of the log hazard ratio at its time. The smooth line is a natural "
+        "cubic spline with 4 coefficients over 1\u00a0−\u00a0*S*(*t*−), drawn against time; its band takes "
+        "*d* *V* for the variance of a residual and holds at each time by itself. It describes and tests "
+        "nothing.",
+        "Grambsch and Therneau (1994), Biometrika 81, 515–526; Schoenfeld (1982), Biometrika 69, 239–241.",
     ),
     "proportionality": Method(
         "Proportional hazards",

@@ -17,7 +17,7 @@ NUMBER = re.compile(r"-?\d[\d ]*(\.\d+)?")
 
 def sheet_tables(sheet: Sheet) -> tuple[tuple[str, bytes], ...]:
     """Every table of a sheet as (file name, bytes): the figure's own numbers first."""
-    tables = (*((sheet.figure_table,) if sheet.figure_table else ()), *sheet.wide_tables, *sheet.tables)
+    tables = (*sheet.figure_tables, *sheet.wide_tables, *sheet.tables)
     return tuple((f"{sheet.key}-{n}.csv", table_csv(table)) for n, table in enumerate(tables, start=1))
 
 

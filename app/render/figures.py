@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from app.render.svg import boundary, calendar, chances, counts, curves, log_log
+from app.render.svg import boundary, calendar, chances, counts, curves, log_log, residuals
 from app.render.svg.drawing import Drawing
 from app.sheets.blocks import (
     BoundaryFigure,
@@ -11,6 +11,7 @@ from app.sheets.blocks import (
     CurvesFigure,
     Figure,
     LogLogFigure,
+    ResidualFigure,
 )
 
 
@@ -23,9 +24,20 @@ def wide(figure: Figure) -> Drawing:
         return calendar.wide(figure)
     if isinstance(figure, LogLogFigure):
         return log_log.wide(figure)
+    if isinstance(figure, ResidualFigure):
+        return residuals.wide(figure)
     if isinstance(figure, ChancesFigure):
         return chances.wide(figure)
     return counts.wide(figure)
+
+
+def half(figure: Figure) -> Drawing:
+    """A figure that stands beside another; only those that may are drawn so."""
+    if isinstance(figure, LogLogFigure):
+        return log_log.half(figure)
+    if isinstance(figure, ResidualFigure):
+        return residuals.half(figure)
+    raise TypeError(f"a {figure.kind} figure takes the whole width")
 
 
 def narrow(figure: Figure) -> Drawing:
@@ -37,6 +49,8 @@ def narrow(figure: Figure) -> Drawing:
         return calendar.narrow(figure)
     if isinstance(figure, LogLogFigure):
         return log_log.narrow(figure)
+    if isinstance(figure, ResidualFigure):
+        return residuals.narrow(figure)
     if isinstance(figure, ChancesFigure):
         return chances.narrow(figure)
     return counts.narrow(figure)

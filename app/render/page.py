@@ -41,6 +41,7 @@ def page_environment(templates: Path) -> Environment:
         caution_lead=LEAD,
         disclosed=DISCLOSED,
         drawn_wide=drawn_wide,
+        drawn_half=drawn_half,
         drawn_narrow=drawn_narrow,
         strip_wide=strip_wide,
         strip_narrow=strip_narrow,
@@ -58,6 +59,10 @@ def page_environment(templates: Path) -> Environment:
 
 def drawn_wide(figure: Figure) -> Markup:
     return Markup(figures.wide(figure))  # markup of our own making, escaped where it was built
+
+
+def drawn_half(figure: Figure) -> Markup:
+    return Markup(figures.half(figure))
 
 
 def drawn_narrow(figure: Figure) -> Markup:

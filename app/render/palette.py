@@ -22,6 +22,9 @@ ZONE_PLANNED = "#EEEEEC"
 HATCH_PAST = "#B4B4B8"
 HATCH_NOW = INK_3
 
+MANY_MARKS = HATCH_PAST  # marks of events so many that darker ones would hide the line through them
+BAND = ZONE_PLANNED  # limits of what belongs to no arm; the grid still shows on it
+
 BAND_OPACITY = 0.09  # at 0.12 arm B's line fell below 3:1 where the bands overlap
 
 

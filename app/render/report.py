@@ -66,17 +66,20 @@ Numbered = tuple[tuple[str, Table], ...]
 
 @dataclass(frozen=True)
 class NumberedTables:
-    """Tables with their numbers: in two columns under the figure, as wide as the page, and at the end."""
+    """Tables with their numbers: in two columns under the figure, those of two figures likewise, as wide as
+    the page, and at the end.
+    """
 
     narrow: Numbered
+    beside: Numbered
     wide: Numbered
     further: Numbered
 
 
 def numbered_tables(sheet: Sheet) -> NumberedTables:
-    """4.1, 4.2 ... in the order in which they stand."""
-    own = (sheet.figure_table,) if sheet.figure_table else ()
-    parts = (sheet.tables, (*own, *sheet.wide_tables), sheet.folded)
+    """4.1, 4.2 ... in the order in which they stand; tables of two figures stand beside each other."""
+    beside, under = (sheet.figure_tables, ()) if sheet.second_figure else ((), sheet.figure_tables)
+    parts = (sheet.tables, beside, (*under, *sheet.wide_tables), sheet.folded)
     counter = count(1)
     return NumberedTables(
         *(tuple((_table_number(sheet, next(counter)), table) for table in part) for part in parts)

@@ -70,6 +70,12 @@ def time_axis(curves: tuple[SurvivalCurve, ...], time_unit: TimeUnit) -> TimeAxi
     return TimeAxis(unit, scale, _ticks(step, math.ceil(whole / step)), False, known)
 
 
+def ticks_up_to(end: float, unit: str) -> tuple[float, ...]:
+    """Round times from 0 that do not pass `end`, the last time shown; `end` itself where none is so small."""
+    step = _step(end, unit)
+    return _ticks(step, math.floor(end / step)) if end >= step else (0.0, end)
+
+
 def _ticks(step: float, number: int) -> tuple[float, ...]:
     return tuple(index * step for index in range(max(1, number) + 1))
 

@@ -224,6 +224,40 @@ class LogLogFigure:
 
 
 @dataclass(frozen=True)
+class SmoothPoint:
+    """A place of a smooth line: time in the figure's units, the log hazard ratio and its limits."""
+
+    time: float
+    log_ratio: float
+    low: float
+    high: float
+
+
+@dataclass(frozen=True)
+class ResidualFigure:
+    """Each event's estimate of the log hazard ratio at its time, the smooth through them, and one ratio for
+    all times.
+
+    `points` are (time, log ratio), events of either arm alike. Ticks are (place, words); up is a larger
+    ratio.
+    """
+
+    title: str
+    description: str
+    x_title: str
+    y_title: str
+    x_ticks: tuple[tuple[float, str], ...]
+    y_ticks: tuple[tuple[float, str], ...]
+    points: tuple[tuple[float, float], ...]
+    smooth: tuple[SmoothPoint, ...]
+    constant: float
+    constant_words: Span
+    favours_up: str
+    favours_down: str
+    kind: Literal["residuals"] = "residuals"
+
+
+@dataclass(frozen=True)
 class CountsFigure:
     """A row of counts, each with the words under it."""
 
@@ -305,7 +339,15 @@ class ZStrip:
     kind: Literal["z strip"] = "z strip"
 
 
-Figure = CurvesFigure | BoundaryFigure | CalendarFigure | LogLogFigure | CountsFigure | ChancesFigure
+Figure = (
+    CurvesFigure
+    | BoundaryFigure
+    | CalendarFigure
+    | LogLogFigure
+    | ResidualFigure
+    | CountsFigure
+    | ChancesFigure
+)
 Strip = CountsFigure | InformationStrip | IntervalStrip | ZStrip
 
 
@@ -341,7 +383,8 @@ class Sheet:
     """One question, answered. `number` is None for At a glance; `answer` has two lines for two readings.
 
     `tables` stand beside the figure, `wide_tables` under it, `folded` ones behind a fold on a page and open
-    in print; `figure_table` says the figure in numbers.
+    in print; `figure_table` says the figure in numbers. A `second_figure` stands beside the first, both half
+    as wide.
     """
 
     key: str
@@ -357,7 +400,17 @@ class Sheet:
     notes: tuple[Line, ...] = ()
     methods: tuple[MethodLine, ...] = ()
     figure_table: Table | None = None
+    second_figure: Figure | None = None
+    second_figure_table: Table | None = None
     acts: tuple[ActLink, ...] = ()
+
+    @property
+    def figures(self) -> tuple[Figure, ...]:
+        return tuple(figure for figure in (self.figure, self.second_figure) if figure)
+
+    @property
+    def figure_tables(self) -> tuple[Table, ...]:
+        return tuple(table for table in (self.figure_table, self.second_figure_table) if table)
 
 
 @dataclass(frozen=True)

@@ -18,7 +18,9 @@ from app.sheets.axis import display_unit
 from app.sheets.blocks import Cell, Column, Line, LogLogFigure, LogLogLine, Row, Sheet, Table
 from app.sheets.curves import against, in_unit
 from app.sheets.methods import methods
+from app.sheets.residuals import residual_figure, residual_table, residual_words
 from app.sheets.words import (
+    DESCRIPTIVE,
     P,
     Z,
     count,
@@ -35,7 +37,6 @@ from app.survival import log_log_curve
 from app.views.closed import ArmView, ClosedView
 
 QUESTION = "Does one hazard ratio tell the story?"
-DESCRIPTIVE = "descriptive, not adjusted for looks"
 SUSPECT = 0.05
 X_TICKS = (0.1, 0.25, 0.5, 1.0, 2.0, 3.0, 6.0, 12.0, 24.0, 36.0, 60.0, 120.0, 240.0)
 SHARES = (0.01, 0.02, 0.05, 0.1, 0.2, 0.5, 0.8, 0.95)  # with the event; ticks of the vertical axis
@@ -43,7 +44,11 @@ SHARES = (0.01, 0.02, 0.05, 0.1, 0.2, 0.5, 0.8, 0.95)  # with the event; ticks o
 
 def shape_sheet(view: ClosedView) -> Sheet:
     shape = view.shape
+    figures = [figure for figure in (log_log_figure(view), residual_figure(view)) if figure]
     asked = {
+        "log-log": True,
+        "residuals": True,
+        "proportionality": True,
         "restricted-mean": shape.restricted_mean is not None,
         "weighted": shape.weighted is not None,
         "weighted-maximum": shape.weighted is not None and len(shape.weighted) > 1,
@@ -54,12 +59,14 @@ def shape_sheet(view: ClosedView) -> Sheet:
         name="Shape",
         question=QUESTION,
         answer=(_answer(view),),
-        figure=log_log_figure(view),
+        figure=figures[0] if figures else None,
+        second_figure=figures[1] if len(figures) > 1 else None,
         tables=tuple(table for table in (_proportionality_table(view), _mean_table(view)) if table),
         folded=tuple(table for table in (_weighted_table(view),) if table),
         notes=(_note(view),),
-        methods=methods("log-log", "proportionality", *(key for key, wanted in asked.items() if wanted)),
+        methods=methods(*(key for key, wanted in asked.items() if wanted)),
         figure_table=_figure_table(view),
+        second_figure_table=residual_table(view),
     )
 
 
@@ -168,11 +175,11 @@ def _z_and_p(z: float, p: float) -> tuple[Cell, Cell]:
 
 
 def _note(view: ClosedView) -> Line:
-    level = level_text(view.plan.analysis.confidence)
+    level, compared = level_text(view.plan.analysis.confidence), against(view)
     return line(
-        f"Comparisons are of {against(view)}; intervals are at {level}. "
-        "Nothing on this sheet is tested against the boundary. With few events a change with time is easily "
-        "missed, and a departure early in the figure rests on few events."
+        f"{compared[:1].upper()}{compared[1:]}, {level} intervals. {residual_words(view)} "
+        "Nothing here is tested against the boundary. With few events a change is easily missed; the curves "
+        "begin, and the smooth ends, on few events."
     )
 
 
@@ -240,4 +247,4 @@ def _figure_table(view: ClosedView) -> Table | None:
     if not rows:
         return None
     columns = (Column(line(unit.capitalize())), Column(line("Event-free, %")))
-    return Table(line("Points of the figure"), columns, tuple(rows), line("Arm"))
+    return Table(line("Points of the log(−log) curves"), columns, tuple(rows), line("Arm"))

@@ -14,6 +14,7 @@ NO_BREAK = "\u00a0"
 NO_BREAK_HYPHEN = "\u2011"
 NOT_REACHED = "not reached"
 NOT_ESTIMABLE = "not estimable"
+DESCRIPTIVE = "descriptive, not adjusted for looks"
 DAYS_PER_MONTH = 30.4375
 FEWEST_Z_PLACES = 3
 MOST_Z_PLACES = 17  # any two doubles near a bound differ by then

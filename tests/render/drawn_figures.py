@@ -92,11 +92,21 @@ FIGURES = {
     "calendar": invented.calendar_figure(),
     "log-log": invented.log_log_figure(),
     "log-log masked": invented.log_log_figure("masked"),
+    "residuals": invented.residual_figure(),
+    "residuals masked": invented.residual_figure("masked"),
+    "residuals of few events": invented.residual_figure(events=60),
+    "residuals with long names": replace(
+        invented.residual_figure(),
+        favours_up="favours extended-release tablet with titration and counselling",
+        favours_down=f"favours {HOSTILE}",
+        y_title="Hazard ratio of a tablet with a long name against another with a longer one, log scale",
+    ),
     "counts": invented.counts_figure(),
     "chances": invented.chances_figure("not crossed"),
     "chances masked": invented.chances_figure("masked"),
     "chances without a number": without_a_chance(),
 }
+HALVES = [name for name in FIGURES if name.startswith(("log-log", "residuals"))]
 STRIPS = {
     "counts strip": invented.counts_figure(),
     "information strip": invented.information_strip(),
@@ -116,6 +126,8 @@ def drawings() -> dict[str, str]:
     for name, figure in FIGURES.items():
         drawn[f"{name}, wide"] = str(figures.wide(figure))
         drawn[f"{name}, narrow"] = str(figures.narrow(figure))
+    for name in HALVES:
+        drawn[f"{name}, half"] = str(figures.half(FIGURES[name]))
     for name, strip in STRIPS.items():
         drawn[f"{name}, wide"] = str(strips.wide(strip))
         drawn[f"{name}, narrow"] = str(strips.narrow(strip))

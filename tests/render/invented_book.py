@@ -39,9 +39,11 @@ from app.sheets.blocks import (
     LookBook,
     MethodLine,
     PageFrame,
+    ResidualFigure,
     Row,
     Series,
     Sheet,
+    SmoothPoint,
     Span,
     Spine,
     SpineLook,
@@ -226,6 +228,33 @@ def log_log_figure(state: State = "not crossed") -> LogLogFigure:
             for share in (0.001, 0.01, 0.05, 0.2, 0.5, 0.8)
         ),
         lines=tuple(lines),
+    )
+
+
+def residual_figure(state: State = "not crossed", events: int = 384) -> ResidualFigure:
+    """Two bands of marks about a ratio that goes from 0.6 to 1, limits wider where fewer are left."""
+    of, against = ("arm A", "arm B") if state == "masked" else ("tablet", "placebo")
+    draw = np.random.default_rng(11)
+    times = np.sort(np.minimum(draw.exponential(12, events), 30.0 * draw.uniform(0.2, 1, events)))
+    sides = np.where(draw.uniform(size=events) < 0.45, 2.1, -1.9)
+    heights = sides + draw.normal(0, 0.1, events) * (1 + times / 12) - 0.2
+    smooth = tuple(
+        SmoothPoint(month, -0.5 + month / 60, -0.9 - month / 30, -0.1 + month / 15)
+        for month in np.linspace(float(times[0]), float(times[-1]), 40).tolist()
+    )
+    return ResidualFigure(
+        title=f"Hazard ratio over time, {of} against {against}",
+        description="A mark for each event, a smooth line with its limits, the one ratio dashed.",
+        x_title="Months since randomisation",
+        y_title="Hazard ratio, log scale",
+        x_ticks=tuple((float(month), f"{month}") for month in range(0, math.ceil(times[-1]), 6)),
+        y_ticks=tuple((math.log(ratio), f"{ratio:g}") for ratio in (0.2, 0.5, 1, 2, 5)),
+        points=tuple(zip(times.tolist(), heights.tolist(), strict=True)),
+        smooth=smooth,
+        constant=math.log(0.804),
+        constant_words=n(0.804),
+        favours_up=f"favours {against}",
+        favours_down=f"favours {of}",
     )
 
 
@@ -428,6 +457,19 @@ def estimates_table(state: State) -> Table:
     )
     columns = tuple(Column(text(arm.name), arm=arm) for arm in arms)
     return Table(text("Estimates with 95% intervals"), columns, rows)
+
+
+def ratio_table() -> Table:
+    rows = tuple(
+        Row(text(month), (cell(events), cell(ratio, limits)))
+        for month, events, ratio, limits in (
+            ("0.1", "1", "0.607", "0.407 to 0.905"),
+            ("9.8", "240", "0.714", "0.293 to 1.739"),
+            ("27.4", "384", "0.958", "0.163 to 5.623"),
+        )
+    )
+    columns = (Column(text("Events so far")), Column(text("Hazard ratio")))
+    return Table(text("Smoothed hazard ratio, 95% limits"), columns, rows, corner=text("Months"))
 
 
 def findings_table() -> Table:
@@ -646,6 +688,20 @@ def sheets(state: State) -> tuple[Sheet, ...]:
             notes=(note,),
             methods=METHODS,
             figure_table=looks_table(),
+        ),
+        Sheet(
+            "shape",
+            5,
+            "Shape",
+            "Does one hazard ratio tell the story?",
+            (text("No change of the hazard ratio with time is seen, from 384 events."),),
+            log_log_figure(state),
+            tables=(difference,),
+            notes=(text("Marks are events’ scaled residuals; the smooth is no test."),),
+            methods=METHODS[2:],
+            figure_table=arms,
+            second_figure=residual_figure(state),
+            second_figure_table=ratio_table(),
         ),
         Sheet(
             "record",

@@ -46,10 +46,9 @@ def answer(route: Route) -> None:
     if figure:
         sheet = book.sheet(key)
         assert sheet is not None
-        assert sheet.figure is not None
-        route.fulfill(
-            body=json.dumps(plotly_figure(sheet.figure)), content_type="application/json", headers=headers
-        )
+        shown = sheet.figures[{"figure.json": 0, "second-figure.json": 1}[figure[0]]]
+        body = json.dumps(plotly_figure(shown, beside=len(sheet.figures) > 1))
+        route.fulfill(body=body, content_type="application/json", headers=headers)
         return
     html = render_sheet(ENVIRONMENT, book, key, base=f"/{side}")
     route.fulfill(body=html, content_type="text/html; charset=utf-8", headers=headers)
@@ -208,6 +207,36 @@ def test_the_chart_takes_the_place_and_the_size_of_the_drawing(
         assert page.locator(".chart").count() == 0
 
 
+@pytest.mark.parametrize("width", [375, 1366, 1920])
+def test_each_of_two_figures_is_zoomed_into_in_its_own_place(chromium: Browser, width: int) -> None:
+    box = (
+        "all => all.map(e => { const b = e.getBoundingClientRect(); return [b.x, b.y, b.width, b.height]; })"
+    )
+    with opened(chromium) as (_, page):
+        page.set_viewport_size({"width": width, "height": 1000})
+        go(page, "shape", "masked")
+        drawn = page.eval_on_selector_all(".drawing", box)
+        for _ in drawn:
+            page.get_by_role("button", name="Zoom and read values").first.click()
+            page.get_by_role("button", name="Back to the drawing").first.wait_for()
+        page.wait_for_function("document.querySelectorAll('.chart .nsewdrag').length === 2")
+        charts = page.eval_on_selector_all(".chart", box)
+        assert [place for chart in charts for place in chart] == pytest.approx(
+            [place for drawing in drawn for place in drawing], abs=1
+        )
+        assert obstacles(page) == []
+
+
+def test_two_figures_stand_in_a_row_until_there_is_no_room(chromium: Browser) -> None:
+    box = "all => all.map(e => { const b = e.getBoundingClientRect(); return [b.x, b.y]; })"
+    with opened(chromium) as (_, page):
+        for width, in_a_row in ((1366, True), (700, True), (375, False)):
+            page.set_viewport_size({"width": width, "height": 768})
+            go(page, "shape")
+            (left, top), (second_left, second_top) = page.eval_on_selector_all(".figure", box)
+            assert (second_top == top, second_left > left) == (in_a_row, in_a_row)
+
+
 def test_zooming_is_remembered_for_the_session_and_offers_no_way_to_send_anything(chromium: Browser) -> None:
     with opened(chromium) as (_, page):
         go(page, "curves")
@@ -310,6 +339,6 @@ def test_a_report_opens_from_disk_in_its_own_faces(chromium: Browser, tmp_path: 
             )
             assert faces == 5
             assert obstacles(page) == []
-        # each of the six sheets starts a page; how it was computed and the record share one
-        assert pages_of(page.pdf(prefer_css_page_size=True)) == 7
+        # each of the seven sheets starts a page; how it was computed and the record share one
+        assert pages_of(page.pdf(prefer_css_page_size=True)) == 8
         assert seen.noticed == []

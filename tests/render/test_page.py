@@ -85,7 +85,7 @@ def test_neighbours_are_the_sheets_before_and_after(environment: Environment) ->
     beside = re.compile(r'<a class="(prev|next)" rel="\1" href="([^"]+)"')
     assert beside.findall(page(environment, "boundary")) == [
         ("prev", "/closed/looks/3/curves"),
-        ("next", "/closed/looks/3/record"),
+        ("next", "/closed/looks/3/shape"),
     ]
     assert [rel for rel, _ in beside.findall(page(environment, "at-a-glance"))] == ["next"]
     assert [rel for rel, _ in beside.findall(page(environment, "record"))] == ["prev"]
@@ -102,6 +102,19 @@ def test_only_a_figure_that_can_be_zoomed_into_says_where_its_numbers_are(enviro
     assert 'data-figure="/closed/looks/3/boundary/figure.json"' in page(environment, "boundary")
     assert "data-figure" not in page(environment, "data")  # counts
     assert "Zoom and read values" not in page(environment, "boundary")  # the script offers it
+
+
+def test_two_figures_stand_beside_each_other_with_their_tables_in_one_fold(environment: Environment) -> None:
+    html = page(environment, "shape")
+    assert re.findall(r'data-figure="([^"]+)"', html) == [
+        "/closed/looks/3/shape/figure.json",
+        "/closed/looks/3/shape/second-figure.json",
+    ]
+    assert html.count('viewBox="0 0 360 372"') == 2
+    assert html.count('viewBox="0 0 343 290"') == 2
+    assert html.count("<summary>The figures as tables</summary>") == 1
+    assert "Smoothed hazard ratio, 95% limits" in html
+    assert "The figures as tables" not in page(environment, "curves")
 
 
 def test_numbers_of_a_column_agree_at_the_point(environment: Environment) -> None:
@@ -126,7 +139,7 @@ def test_a_sheet_that_a_look_lacks_is_said(environment: Environment) -> None:
         page(environment, "astrology")
     assert str(caught.value) == (
         "No such sheet in look 3. Found 'astrology'. "
-        "Accepted: at-a-glance, data, information, curves, boundary, record."
+        "Accepted: at-a-glance, data, information, curves, boundary, shape, record."
     )
 
 

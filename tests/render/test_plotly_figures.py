@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import math
 import re
 from typing import Any
 
@@ -12,15 +13,23 @@ from plotly.graph_objects import Figure
 from app.render import figures
 from app.render.plotly_figures import plotly_figure
 from app.render.plotly_figures.setting import in_line
-from app.sheets.blocks import BoundaryFigure, CalendarFigure, CurvesFigure, LogLogFigure
+from app.render.svg.panel import HALF_PAGE
+from app.sheets.blocks import (
+    BoundaryFigure,
+    CalendarFigure,
+    CurvesFigure,
+    LogLogFigure,
+    ResidualFigure,
+)
 from tests.render import invented_book as invented
-from tests.render.drawn_figures import FIGURES
+from tests.render.drawn_figures import FIGURES, HALVES
 
 HEIGHTS: dict[type, dict[str, float]] = {
     CurvesFigure: {"wide": 250, "narrow": 200},
     BoundaryFigure: {"wide": 236, "narrow": 220},
     CalendarFigure: {"wide": 250, "narrow": 200},
     LogLogFigure: {"wide": 320, "narrow": 220},
+    ResidualFigure: {"wide": 320, "narrow": 220},
 }
 CHARTS = {name: plotly_figure(figure) for name, figure in FIGURES.items()}
 every_chart = pytest.mark.parametrize("name", [name for name, chart in CHARTS.items() if chart is not None])
@@ -117,6 +126,35 @@ def test_marks_and_bounds_answer_the_pointer_with_their_own_words() -> None:
     said = strings(chart["wide"]["data"])
     for words in ("Look 3: z 2.129", "Look 3: efficacy bound 2.434", "Look 3: futility bound 0.958"):
         assert words in said
+
+
+@pytest.mark.parametrize("name", HALVES)
+def test_beside_another_a_chart_takes_the_place_of_the_half_drawing(name: str) -> None:
+    chart = plotly_figure(FIGURES[name], beside=True)
+    assert chart is not None
+    assert chart["narrow"] == plotly_figure(FIGURES[name])["narrow"]  # type: ignore[index]
+    layout, drawing = chart["wide"]["layout"], figures.half(FIGURES[name])
+    assert len(Figure(chart["wide"], skip_invalid=False).data) == len(chart["wide"]["data"])
+    width = drawing.width - layout["margin"]["l"] - layout["margin"]["r"]
+    assert width == HALF_PAGE.plot.width
+    plot = layout["yaxis"]["domain"][1] - layout["yaxis"]["domain"][0]
+    assert plot * (drawing.height - layout["margin"]["t"]) == pytest.approx(HALF_PAGE.plot.height)
+
+
+def test_every_event_and_the_ratio_at_each_place_of_the_smooth_can_be_read() -> None:
+    figure, chart = FIGURES["residuals"], CHARTS["residuals"]
+    assert isinstance(figure, ResidualFigure)
+    assert chart is not None
+    band, marks, smooth = chart["wide"]["data"]
+    assert list(zip(marks["x"], marks["y"], strict=True)) == list(figure.points)
+    assert band["y"] == [p.high for p in figure.smooth] + [p.low for p in reversed(figure.smooth)]
+    assert smooth["customdata"][3] == pytest.approx(
+        [math.exp(each) for each in (figure.smooth[3].log_ratio, figure.smooth[3].low, figure.smooth[3].high)]
+    )
+    one, constant = chart["wide"]["layout"]["shapes"]
+    assert (one["y0"], constant["y0"]) == (0.0, figure.constant)
+    said = [note["text"] for note in chart["wide"]["layout"]["annotations"]]
+    assert {"smooth", "constant", "0.804", "↑ favours placebo", "↓ favours tablet"} <= set(said)
 
 
 @pytest.mark.parametrize(

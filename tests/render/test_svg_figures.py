@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from dataclasses import replace
 from itertools import combinations
@@ -9,8 +10,8 @@ from xml.etree import ElementTree
 
 import pytest
 
-from app.render import palette
-from app.render.svg import boundary, curves
+from app.render import figures, palette
+from app.render.svg import boundary, curves, residuals
 from app.render.svg.element import coordinate
 from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, LanePage, lane_plot
 from app.render.svg.lettering import broken, point_offset, text_width
@@ -152,6 +153,84 @@ def test_a_curve_of_many_steps_stays_small() -> None:
     )
     svg = str(curves.wide(type(invented.curves_figure())("t", "d", "x", "y", (0, 30), (many,))))
     assert len(svg) < 120_000
+
+
+# --- the hazard ratio over time -----------------------------------------------------------------------------
+
+PAGES = {"wide": residuals.WIDE_PAGE, "half": residuals.HALF_PAGE, "narrow": residuals.NARROW_PAGE}
+
+
+def marks(svg: str, ink: str) -> list[tuple[float, float]]:
+    """The left upper corners of the squares of this ink."""
+    found = re.search(rf'<path d="([^"]*)" fill="{ink}"/>', svg)
+    assert found is not None
+    return [(float(x), float(y)) for x, y in re.findall(r"M(\S+) (\S+?)h", found[1])]
+
+
+@pytest.mark.parametrize("page", PAGES)
+def test_marks_of_events_stand_at_their_time_and_height(page: str) -> None:
+    figure = invented.residual_figure(events=60)
+    x, y = residuals.scales(figure, PAGES[page])
+    found = marks(DRAWN[f"residuals of few events, {page}"], palette.INK_3)
+    half = residuals.MARK / 2
+    for time, height in figure.points:
+        assert any(
+            abs(left + half - x(time)) <= 0.26 and abs(top + half - y(height)) <= 0.26 for left, top in found
+        )
+    assert len(found) <= len(figure.points)
+
+
+def test_marks_of_many_events_are_paler_and_few_are_not() -> None:
+    assert marks(DRAWN["residuals, half"], palette.MANY_MARKS)
+    assert f'fill="{palette.MANY_MARKS}"' not in DRAWN["residuals of few events, half"]
+
+
+@pytest.mark.parametrize("page", PAGES)
+def test_no_mark_and_no_limit_reaches_the_words_for_the_directions(page: str) -> None:
+    figure, place = invented.residual_figure(events=60), PAGES[page]
+    _, y = residuals.scales(figure, place)
+    (_, _, upper), (_, _, lower) = residuals.directions(figure, place)
+    ends = [end for point in figure.smooth for end in (point.low, point.high)]
+    for height in [*ends, *(height for _, height in figure.points)]:
+        assert upper < y(height) - residuals.MARK < y(height) + residuals.MARK < lower - 9
+
+
+def test_the_one_ratio_is_dashed_and_a_ratio_of_1_is_not() -> None:
+    figure, place = invented.residual_figure(), residuals.HALF_PAGE
+    _, y = residuals.scales(figure, place)
+    across = f"H{place.plot.right:g}"
+    dashed = re.findall(r'd="M34 (\S+?)H284"[^>]*stroke-dasharray', DRAWN["residuals, half"])
+    assert [float(at) for at in dashed] == [math.floor(y(figure.constant)) + 0.5]
+    whole = f'd="M34 {math.floor(y(0.0)) + 0.5:g}{across}" fill="none" stroke="{palette.INK_3}"/>'
+    assert whole in DRAWN["residuals, half"]
+
+
+@pytest.mark.parametrize("page", PAGES)
+def test_the_lines_are_named_where_they_end(page: str) -> None:
+    figure, place = invented.residual_figure(), PAGES[page]
+    _, y = residuals.scales(figure, place)
+    found = {t.words: t for t in texts(DRAWN[f"residuals, {page}"])}
+    assert abs(found["smooth"].y - y(figure.smooth[-1].log_ratio)) < 24
+    assert abs(found["constant"].y - y(figure.constant)) < 24
+    assert found["0.804"].y - found["constant"].y == 16
+    assert all(found[words].left > place.plot.right for words in ("smooth", "constant", "0.804"))
+
+
+def test_a_cloud_of_thirty_thousand_events_stays_small() -> None:
+    assert len(str(residuals.half(invented.residual_figure(events=30_000)))) < 400_000
+
+
+def test_two_figures_beside_each_other_have_their_axes_on_one_line() -> None:
+    baselines = [
+        {t.y for t in texts(DRAWN[f"{name}, half"]) if t.words == "6"} for name in ("log-log", "residuals")
+    ]
+    assert baselines[0] == baselines[1]
+    assert len(baselines[0]) == 1
+
+
+def test_a_figure_that_takes_the_whole_width_is_not_halved() -> None:
+    with pytest.raises(TypeError, match="a boundary figure takes the whole width"):
+        figures.half(invented.boundary_figure("not crossed"))
 
 
 # --- boundary -----------------------------------------------------------------------------------------------

@@ -60,6 +60,7 @@ GETS = (
     "/closed/looks/{}/curves",
     "/closed/looks/3/{}",
     "/closed/looks/3/{}/figure.json",
+    "/closed/looks/3/{}/second-figure.json",
     "/closed/looks/{}/record.json",
     "/closed/looks/{}/report",
     "/open/looks/{}/data",

@@ -27,7 +27,7 @@ FEWEST, MOST = 11, 39
 """Beyond these a fair coin falls in one of 40,000 times on either side (binomial, 50 throws)."""
 
 HELD_Z = 2.123
-SHEETS = ("glance", "data", "information", "curves", "boundary", "record")
+SHEETS = ("glance", "data", "information", "curves", "boundary", "shape", "record")
 
 
 @dataclass(frozen=True)
@@ -131,8 +131,10 @@ def seen_by(served: Served, look: int) -> Seen:
     served.enter()
     addresses = {sheet: f"/closed/looks/{look}/{sheet}" for sheet in SHEETS}
     addresses |= {
-        f"{sheet} figure": f"/closed/looks/{look}/{sheet}/figure.json" for sheet in ("curves", "boundary")
+        f"{sheet} figure": f"/closed/looks/{look}/{sheet}/figure.json"
+        for sheet in ("curves", "boundary", "shape")
     }
+    addresses["ratio over time"] = f"/closed/looks/{look}/shape/second-figure.json"
     pages = {name: served.get(address).text for name, address in addresses.items()}
     record = json.loads(served.get(f"/closed/looks/{look}/record.json").text)
     return Seen(pages, record)

@@ -92,6 +92,9 @@ def test_figures_and_records_are_json(served: Served) -> None:
     served.enter()
     for sheet in ("curves", "boundary", "information"):
         assert set(served.get(f"/closed/looks/3/{sheet}/figure.json").json()) == {"wide", "narrow"}
+    for name in ("figure", "second-figure"):
+        assert set(served.get(f"/closed/looks/3/shape/{name}.json").json()) == {"wide", "narrow"}
+    assert served.get("/closed/looks/3/curves/second-figure.json").status_code == 404
     record = served.get("/closed/looks/3/record.json").json()
     assert (record["format"], record["looks"][0]["number"]) == (1, 3)
     assert record["orientation"] == {"of": "A", "against": "B"}

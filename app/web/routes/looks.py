@@ -35,7 +35,12 @@ def closed_record(site: TheSite, session: TheSession, look: LookNumber) -> Respo
 
 @router.get("/closed/looks/{look}/{sheet}/figure.json")
 def closed_figure(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
-    return figure(closed_look(site, session, look), sheet)
+    return figure(closed_look(site, session, look), sheet, 0)
+
+
+@router.get("/closed/looks/{look}/{sheet}/second-figure.json")
+def closed_second_figure(site: TheSite, session: TheSession, look: LookNumber, sheet: str) -> Response:
+    return figure(closed_look(site, session, look), sheet, 1)
 
 
 @router.get("/closed/looks/{look}/{sheet}/tables.zip")
@@ -58,7 +63,7 @@ def closed_sheet(site: TheSite, session: TheSession, look: LookNumber, sheet: st
 
 @router.get("/open/looks/{look}/{sheet}/figure.json")
 def open_figure(site: TheSite, look: LookNumber, sheet: str) -> Response:
-    return figure(open_look(site, look), sheet)
+    return figure(open_look(site, look), sheet, 0)
 
 
 @router.get("/open/looks/{look}/{sheet}/tables.zip")
@@ -107,10 +112,10 @@ def page(site: Site, book: LookBook, sheet: str, base: str, *, status: int = 200
     return HTMLResponse(html, status_code=status)
 
 
-def figure(book: LookBook, sheet: str) -> Response:
-    """The interactive figure of a sheet; a sheet without one has no such address."""
-    drawn = require_sheet(book, sheet).figure
-    interactive = None if drawn is None else plotly_figure(drawn)
+def figure(book: LookBook, sheet: str, place: int) -> Response:
+    """The interactive figure of a sheet, the first or the second; without one there is no such address."""
+    drawn = require_sheet(book, sheet).figures
+    interactive = plotly_figure(drawn[place], beside=len(drawn) > 1) if place < len(drawn) else None
     if interactive is None:
         raise HTTPException(404)
     return JSONResponse(interactive)
