@@ -53,7 +53,7 @@
   }
 
   // Lengths in the figure are for a root of 16 px; the page grows with the room, and the chart with it.
-  const lengths = new Set(["size", "width", "l", "r", "t", "b", "xshift", "yshift", "ticklen", "ticklabelstandoff"]);
+  const lengths = new Set(["size", "width", "l", "r", "t", "b", "xshift", "yshift", "ticklen", "ticklabelstandoff", "standoff"]);
 
   function scaled(part, factor) {
     if (Array.isArray(part)) return part.map((each) => scaled(each, factor));

@@ -11,11 +11,15 @@ from dataclasses import dataclass
 
 @dataclass(frozen=True)
 class Method:
-    """`term` heads the entry on a page; `text` states formula and convention; `source` the publication."""
+    """`term` heads the entry on a page; `text` states formula and convention; `source` the publication.
+
+    `masked` is the text where arms are letters, for an entry that names them by their part.
+    """
 
     term: str
     text: str
     source: str
+    masked: str = ""
 
 
 METHODS: dict[str, Method] = {
@@ -48,6 +52,9 @@ METHODS: dict[str, Method] = {
         "strata; *z* = *s*(*E* − *O*)/√*V* with *s* = 1 for a bad event and −1 for a good one.",
         "Mantel (1966), Cancer Chemotherapy Reports 50, 163–170; "
         "Mantel and Haenszel (1959), JNCI 22, 719–748.",
+        masked="Log-rank: *U* = *O* − *E* and hypergeometric variance *V* of arm A, each summed over strata; "
+        "*z* = *s*(*E* − *O*)/√*V* with *s* = 1 for a bad event and −1 for a good one, if A is "
+        "experimental; if B is, *z* with the other sign.",
     ),
     "cox": Method(
         "Hazard ratio",

@@ -148,7 +148,7 @@ class Lane:
     lower: Span | None
     crossed: bool = False
     futility: Span | None = None  # hatched below; mirrored on the right lane of "two lanes"
-    harm: Span | None = None  # grey below; not drawn on "two lanes"
+    harm: Span | None = None  # grey below; mirrored likewise
 
 
 @dataclass(frozen=True)

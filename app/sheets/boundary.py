@@ -70,6 +70,7 @@ def boundary_sheet(view: ClosedView) -> Sheet:
             "bound-hazard-ratio",
             "repeated-interval",
             "cox",
+            masked=view.masked,
         ),
         figure_table=_looks_table(view),
     )
@@ -214,10 +215,16 @@ def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
         z=_z_shown(held.z, held.efficacy_z),
         upper=upper,
         lower=lower,
-        crossed=held.number in firsts or held.crossed in ("futility", "harm"),
+        crossed=held.number in firsts or _crossed_below_at(view, held.number),
         futility=_lower_shown(held.futility_z, held.final),
         harm=_lower_shown(held.harm_z, final=False),
     )
+
+
+def _crossed_below_at(view: ClosedView, look: int) -> bool:
+    """Whether a look held crossed futility or harm, in any reading."""
+    held = (each for reading in view.readings for each in reading.history)
+    return any(each.number == look and each.crossed in ("futility", "harm") for each in held)
 
 
 def _lane_now(view: ClosedView) -> Lane:
@@ -571,14 +578,13 @@ def _on_another_scale(view: ClosedView) -> bool:
 
 
 def _note(view: ClosedView) -> Line:
-    lanes = "Each look has two lanes: the left reads as if A, the right as if B were experimental. "
+    lanes = "Left lanes: if A is experimental; right: if B. "
     start = lanes if boundary_figure(view).layout == "two lanes" else ""
     past = [str(held.number) for held in view.look.past if not isinstance(held.efficacy_z, Absent)]
     used = "bounds and fractions" if _on_another_scale(view) else "bounds"
     as_used = f" Look{'s' if len(past) > 1 else ''} {listed(past)}: {used} as used." if past else ""
     return line(
-        f"{start}Grey: beyond the {_grey_words(view)} bound.{_hatched_words(view)} "
-        f"Bounds exist at looks only; the dotted line guides the eye.{as_used}",
+        f"{start}{_grey_words(view)}{_hatched_words(view)} Dotted: a guide; bounds exist at looks.{as_used}",
         *_ahead_words(view),
         _no_bound_words(view),
         held_words(view),
@@ -587,7 +593,10 @@ def _note(view: ClosedView) -> Line:
 
 
 def _grey_words(view: ClosedView) -> str:
-    return "efficacy bound, below: beyond the harm" if view.plan.harm and not view.masked else "efficacy"
+    if view.plan.harm is None:
+        return "Grey: beyond the efficacy bound."
+    across = "at the other end" if view.masked else "below"
+    return f"Grey: beyond efficacy; {across}, harm."
 
 
 def _hatched_words(view: ClosedView) -> str:

@@ -83,6 +83,7 @@ def glance_sheet(view: ClosedView, around: Surroundings, record: Line) -> Sheet:
             "logrank",
             spending_key(view.plan.efficacy.spending),
             "boundary",
+            masked=view.masked,
         ),
     )
 

@@ -14,11 +14,12 @@ def marked(text: str) -> Line:
     )
 
 
-def methods(*keys: str) -> tuple[MethodLine, ...]:
-    """One line per key: text, then its source."""
+def methods(*keys: str, masked: bool = False) -> tuple[MethodLine, ...]:
+    """One line per key: text, then its source; `masked` where arms are letters."""
+    entries = (METHODS[key] for key in keys)
     return tuple(
-        MethodLine(METHODS[key].term, line(marked(METHODS[key].text), f" {METHODS[key].source}"))
-        for key in keys
+        MethodLine(entry.term, line(marked((masked and entry.masked) or entry.text), f" {entry.source}"))
+        for entry in entries
     )
 
 

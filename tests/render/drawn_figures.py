@@ -8,10 +8,11 @@ from xml.etree import ElementTree
 from app.render import figures
 from app.render.svg import strips
 from app.render.svg.lettering import text_width
-from app.sheets.blocks import ArmLabel, BoundaryFigure, ChancesFigure, CurvesFigure, Lane, Span
+from app.sheets.blocks import ArmLabel, BoundaryFigure, ChancesFigure, CurvesFigure, Lane, LaneRow, Span
 from tests.render import invented_book as invented
 
 SVG = "{http://www.w3.org/2000/svg}"
+HARM = (-2.356, -2.363, -2.390, -2.335)
 HOSTILE = "<script>alert('1')</script>&\"]]>\x00\x0b</svg>"
 
 
@@ -68,6 +69,20 @@ def with_long_names() -> CurvesFigure:
     return replace(figure, lines=lines)
 
 
+def with_harm(state: invented.State, *, z: float | None = None) -> BoundaryFigure:
+    """The figure with a harm bound at each look and its row; the look shown at this z, then crossed."""
+    figure = invented.boundary_figure(state)
+    lanes = tuple(replace(lane, harm=invented.n(HARM[lane.look - 1])) for lane in figure.lanes)
+    if z is not None:
+        shown = (
+            replace(lane, z=invented.n(z), crossed=True) if lane.state == "now" else lane for lane in lanes
+        )
+        lanes = tuple(shown)
+    words = invented.text("Harm bound")
+    row = LaneRow(words, words, tuple(map(invented.n, HARM)))
+    return replace(figure, lanes=lanes, rows=(*figure.rows[:-1], row, figure.rows[-1]))
+
+
 def without_a_chance() -> ChancesFigure:
     figure = invented.chances_figure("masked")
     first, *others = figure.chances
@@ -84,6 +99,10 @@ FIGURES = {
     "boundary at close looks": boundary_at([0.48, 0.5, 0.505, 1.0], now=3),
     "boundary run over": boundary_at([0.4, 0.8, 1.13], now=3),
     "boundary masked at ten looks": boundary_at([look / 10 for look in range(1, 11)], now=4, two_lanes=True),
+    "boundary with harm": with_harm("not crossed"),
+    "boundary with harm crossed": with_harm("not crossed", z=-2.5),
+    "boundary masked with harm": with_harm("masked"),
+    "boundary masked with harm crossed": with_harm("masked", z=2.4),
     "curves": invented.curves_figure(),
     "curves masked": invented.curves_figure("masked"),
     "curves pooled": invented.pooled_curves_figure(),

@@ -8,31 +8,40 @@ import re
 from typing import Any
 
 import pytest
-from plotly.graph_objects import Figure
+from plotly.graph_objects import Figure as PlotlyFigure
 
-from app.render import figures
+from app.render import figures, palette
 from app.render.plotly_figures import plotly_figure
 from app.render.plotly_figures.setting import in_line
+from app.render.svg.boundary import direction_at
+from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, lane_plot
 from app.render.svg.panel import HALF_PAGE
 from app.sheets.blocks import (
     BoundaryFigure,
     CalendarFigure,
     CurvesFigure,
+    Figure,
     LogLogFigure,
     ResidualFigure,
 )
 from tests.render import invented_book as invented
-from tests.render.drawn_figures import FIGURES, HALVES
+from tests.render.drawn_figures import FIGURES, HALVES, HARM
 
 HEIGHTS: dict[type, dict[str, float]] = {
     CurvesFigure: {"wide": 250, "narrow": 200},
-    BoundaryFigure: {"wide": 236, "narrow": 220},
     CalendarFigure: {"wide": 250, "narrow": 200},
     LogLogFigure: {"wide": 320, "narrow": 220},
     ResidualFigure: {"wide": 320, "narrow": 220},
 }
 CHARTS = {name: plotly_figure(figure) for name, figure in FIGURES.items()}
 every_chart = pytest.mark.parametrize("name", [name for name, chart in CHARTS.items() if chart is not None])
+
+
+def tall(figure: Figure, page: str) -> float:
+    """How tall the drawing has its plot; lanes give room to rows."""
+    if isinstance(figure, BoundaryFigure):
+        return lane_plot(figure, WIDE_PAGE if page == "wide" else NARROW_PAGE).area.height
+    return HEIGHTS[type(figure)][page]
 
 
 def strings(part: Any) -> list[str]:
@@ -60,13 +69,13 @@ def test_plotly_knows_every_name_that_a_chart_uses(name: str, page: str) -> None
     chart = CHARTS[name]
     assert chart is not None
     part = {key: value for key, value in chart[page].items() if key in ("data", "layout")}
-    known = Figure(part, skip_invalid=False)
+    known = PlotlyFigure(part, skip_invalid=False)
     assert len(known.data) == len(part["data"])
 
 
 def test_plotly_refuses_a_name_it_does_not_know() -> None:
     with pytest.raises(ValueError, match="Invalid property"):
-        Figure({"data": [{"type": "scatter", "lines": {}}]}, skip_invalid=False)
+        PlotlyFigure({"data": [{"type": "scatter", "lines": {}}]}, skip_invalid=False)
 
 
 @every_chart
@@ -89,9 +98,7 @@ def test_a_chart_brings_its_own_plain_look_and_fits_the_drawing(name: str, page:
     assert layout["margin"]["l"] + layout["margin"]["r"] < drawing.width
     plot = layout["yaxis"]["domain"][1] - layout["yaxis"]["domain"][0]
     assert 0 <= layout["yaxis2"]["domain"][1] < layout["yaxis"]["domain"][0] < 1
-    assert plot * (drawing.height - layout["margin"]["t"]) == pytest.approx(
-        HEIGHTS[type(FIGURES[name])][page], abs=9
-    )
+    assert plot * (drawing.height - layout["margin"]["t"]) == pytest.approx(tall(FIGURES[name], page), abs=9)
 
 
 def test_rows_at_risk_are_text_under_the_axis_that_they_follow() -> None:
@@ -168,3 +175,84 @@ def test_every_event_and_the_ratio_at_each_place_of_the_smooth_can_be_read() -> 
 )
 def test_a_number_is_padded_so_that_its_point_stays_in_line(text: str, padded: str) -> None:
     assert in_line(text) == padded
+
+
+# --- as near to the drawing as a chart can be -------------------------------------------------------------
+
+
+def shapes(name: str) -> list[dict[str, Any]]:
+    chart = CHARTS[name]
+    assert chart is not None
+    found: list[dict[str, Any]] = chart["wide"]["layout"]["shapes"]
+    return found
+
+
+def notes(name: str) -> dict[str, dict[str, Any]]:
+    chart = CHARTS[name]
+    assert chart is not None
+    return {note["text"]: note for note in chart["wide"]["layout"]["annotations"]}
+
+
+def test_guides_join_the_bounds_under_the_lanes() -> None:
+    drawn = shapes("boundary with harm")
+    guides = [index for index, shape in enumerate(drawn) if shape["line"].get("dash") == "1px,3px"]
+    lanes = [index for index, shape in enumerate(drawn) if shape["type"] == "rect"]
+    assert len(guides) == 3
+    assert max(guides) < min(lanes)
+    assert [place.split()[-1] for place in drawn[guides[-1]]["path"].split(" L ")] == [
+        f"{z:.6f}" for z in HARM
+    ]
+
+
+def test_the_words_beside_a_lane_stand_at_their_bound_and_follow_it() -> None:
+    said = notes("boundary")
+    for words, z in (
+        ("efficacy\u00a02.434", 2.434),
+        ("futility\u00a00.958", 0.958),
+        ("needed\u00a02.005", 2.005),
+    ):
+        assert said[words]["y"] == pytest.approx(z, abs=0.4)  # labels are kept apart
+        assert "yref" not in said[words]  # that is, the axis of z
+        assert said[words]["x"] in [lane.fraction for lane in invented.boundary_figure("not crossed").lanes]
+    assert said["z\u00a02.129"]["font"]["weight"] == 600
+
+
+def test_what_up_means_stands_where_the_drawing_has_it() -> None:
+    plot = lane_plot(invented.boundary_figure("not crossed"), WIDE_PAGE)
+    (place,) = [(x, y) for text, x, y in direction_at(plot) if text.startswith("↑")]
+    note = notes("boundary")["↑ favours tablet"]
+    assert note["xshift"] + plot.area.left == pytest.approx(place[0] - 2)
+    assert plot.area.top - note["yshift"] == pytest.approx(place[1], abs=6)
+
+
+def test_masked_both_readings_of_harm_answer_the_pointer() -> None:
+    chart = CHARTS["boundary masked with harm"]
+    assert chart is not None
+    said = strings(chart["wide"]["data"])
+    assert "Look 3: harm bound, if A −2.390" in said
+    assert "Look 3: harm bound, if B −2.390" in said
+    heights = {trace["y"][2] for trace in chart["wide"]["data"] if "harm" in str(trace["text"])}
+    assert heights == {-2.390, 2.390}
+
+
+def test_each_arm_has_a_sample_of_its_line_before_its_name() -> None:
+    samples = [shape for shape in shapes("curves") if shape.get("yref") == "paper"]
+    expected = []
+    for line in invented.curves_figure().lines:
+        ink = palette.arm_ink(line.arm)
+        expected += [ink.line, palette.PAPER] if ink.hollow else [ink.line]
+    assert [shape["line"]["color"] for shape in samples] == expected
+    assert len(samples) == 3
+    assert all(shape["x0"] < shape["x1"] < 0 for shape in samples)
+
+
+def test_censorings_stand_off_their_line_away_from_the_other_arm() -> None:
+    chart = CHARTS["curves"]
+    assert chart is not None
+    strokes = [t for t in chart["wide"]["data"] if t.get("marker", {}).get("symbol") == "line-ns-open"]
+    lines = invented.curves_figure().lines
+    upper = max(range(2), key=lambda index: lines[index].survival[-1])
+    assert [trace["marker"]["angle"] for trace in strokes] == [
+        180 if index == upper else 0 for index in range(2)
+    ]
+    assert all(trace["marker"]["standoff"] > 3 for trace in strokes)

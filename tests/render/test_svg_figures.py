@@ -11,13 +11,13 @@ from xml.etree import ElementTree
 import pytest
 
 from app.render import figures, palette
-from app.render.svg import boundary, curves, residuals
+from app.render.svg import boundary, curves, gauge, residuals
 from app.render.svg.element import coordinate
 from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, LanePage, lane_plot
 from app.render.svg.lettering import broken, point_offset, text_width
-from app.sheets.blocks import CurvesFigure
+from app.sheets.blocks import BoundaryFigure, CurvesFigure
 from tests.render import invented_book as invented
-from tests.render.drawn_figures import FIGURES, HOSTILE, SVG, Text, drawings, texts
+from tests.render.drawn_figures import FIGURES, HARM, HOSTILE, SVG, Text, drawings, texts, with_harm
 
 DRAWN = drawings()
 every_drawing = pytest.mark.parametrize("svg", DRAWN.values(), ids=DRAWN.keys())
@@ -280,6 +280,76 @@ def test_masked_the_two_readings_mirror_each_other() -> None:
 
 def test_masked_nothing_is_drawn_as_crossed() -> None:
     assert palette.CROSSED not in DRAWN["boundary masked, wide"]
+
+
+# --- harm ---------------------------------------------------------------------------------------------------
+
+
+def zones_of(figure: BoundaryFigure, look: int) -> list[list[tuple[str, str, bool]]]:
+    """For each reading of a look: (colour, whether it reaches the top or the bottom, hatched)."""
+    plot = lane_plot(figure, WIDE_PAGE)
+    (lane,) = [lane for lane in figure.lanes if lane.look == look]
+    return [
+        [
+            (zone.colour, "top" if zone.box.top == plot.area.top else "bottom", zone.hatched)
+            for zone in gauge.zones(plot, lane, reading)
+        ]
+        for reading in gauge.lane_readings(plot, lane)
+    ]
+
+
+def test_harm_is_grey_below_with_a_solid_bar_of_its_own() -> None:
+    figure = with_harm("not crossed")
+    grey, hatch = palette.ZONE_NOW, palette.HATCH_NOW
+    assert zones_of(figure, 3) == [[(grey, "top", False), (grey, "bottom", False), (hatch, "bottom", True)]]
+    plot = lane_plot(figure, WIDE_PAGE)
+    (reading,) = gauge.lane_readings(plot, figure.lanes[2])
+    harm = [bar for bar in gauge.bars(plot, figure.lanes[2], reading) if bar.y == plot.y(HARM[2])]
+    assert [(bar.colour, bar.width, bar.dashed) for bar in harm] == [(palette.INK, 2.5, False)]
+
+
+def test_masked_each_reading_has_its_harm_at_its_own_end() -> None:
+    grey, hatch = palette.ZONE_NOW, palette.HATCH_NOW
+    left, right = zones_of(with_harm("masked"), 3)
+    assert left == [(grey, "top", False), (grey, "bottom", False), (hatch, "bottom", True)]
+    assert right == [(grey, "bottom", False), (grey, "top", False), (hatch, "top", True)]
+    plot = lane_plot(with_harm("masked"), WIDE_PAGE)
+    for lane in plot.figure.lanes:
+        one, other = gauge.lane_readings(plot, lane)
+        assert {-limit.z for limit in one.limits} == {limit.z for limit in other.limits}
+
+
+def test_a_crossed_harm_bound_has_its_zone_bar_and_diamond_in_crossed() -> None:
+    ((_, harm, _),) = zones_of(FIGURES["boundary with harm crossed"], 3)  # type: ignore[arg-type]
+    assert harm == (palette.CROSSED_ZONE, "bottom", False)
+    drawn = DRAWN["boundary with harm crossed, wide"]
+    assert re.search(rf'<polygon [^>]*fill="{palette.CROSSED}"', drawn)
+    assert palette.CROSSED not in DRAWN["boundary with harm, wide"]
+
+
+def test_masked_harm_is_crossed_in_the_reading_that_crossed_it() -> None:
+    left, right = zones_of(FIGURES["boundary masked with harm crossed"], 3)  # type: ignore[arg-type]
+    assert [colour for colour, _, _ in left] == [palette.ZONE_NOW, palette.ZONE_NOW, palette.HATCH_NOW]
+    assert [colour for colour, _, _ in right] == [palette.ZONE_NOW, palette.CROSSED_ZONE, palette.HATCH_NOW]
+
+
+def test_rows_beyond_the_page_take_their_room_from_the_lanes() -> None:
+    """A laptop screen shows every row: 430 units under one line of an answer, 36 less under two."""
+    for name, tallest in (("boundary with harm", 430), ("boundary masked with harm", 394)):
+        assert boundary.wide(FIGURES[name]).height <= tallest  # type: ignore[arg-type]
+    before = lane_plot(invented.boundary_figure("masked"), WIDE_PAGE).area
+    after = lane_plot(with_harm("masked"), WIDE_PAGE).area
+    assert 0 < before.bottom - after.bottom <= 16
+    assert lane_plot(with_harm("masked"), NARROW_PAGE).area.height == pytest.approx(
+        lane_plot(invented.boundary_figure("masked"), NARROW_PAGE).area.height
+    )
+
+
+def test_the_bounds_of_harm_are_joined_by_a_guide_of_their_own() -> None:
+    plot = lane_plot(with_harm("not crossed"), WIDE_PAGE)
+    harm = [plot.y(z) for z in HARM]
+    assert [y for _, y in boundary.guides(plot)[-1]] == harm
+    assert len(boundary.guides(lane_plot(with_harm("masked"), WIDE_PAGE))) == 2
 
 
 def test_only_a_look_ahead_is_called_needed() -> None:

@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
-from app.render.palette import CROSSED, HAIRLINE, INK, INK_2, PAPER
+from app.render.palette import CROSSED, HAIRLINE, INK, INK_2, INK_3, PAPER
 from app.render.plotly_figures.setting import (
     NOTE_EDGE,
     Json,
     Sheet,
+    font,
     in_line,
     layout,
     row_of_numbers,
     said,
+    stroke_at,
     words_at,
 )
 from app.render.svg import boundary as drawing
@@ -20,6 +22,7 @@ from app.render.svg.gauge import (
     Zone,
     bars,
     column,
+    crosses_a_bar,
     edge_colour,
     lane_readings,
     mark_radius,
@@ -31,13 +34,18 @@ from app.render.svg.lane_plot import (
     WIDE_PAGE,
     LanePage,
     LanePlot,
-    is_crossed_above,
-    is_crossed_below,
     lane_plot,
     lower_bound,
     number,
 )
-from app.render.svg.lane_words import look_name, looks_by_number, placed_rows, row_indent
+from app.render.svg.lane_words import (
+    labels_start,
+    look_name,
+    looks_by_number,
+    placed_labels,
+    placed_rows,
+    row_indent,
+)
 from app.render.svg.lettering import SMALL, plain
 from app.sheets.blocks import BoundaryFigure, Lane, Span
 
@@ -62,17 +70,37 @@ def _chart(plot: LanePlot, page: LanePage, height: float) -> Json:
     y = {"range": [plot.y.low, plot.y.high], "tickmode": "array", "tickvals": list(ticks)}
     y["ticktext"] = [drawing.signed(tick) for tick in ticks]
     traces = [*_bounds(plot), *_marks(plot), *_rows(plot)]
-    setting = layout(sheet, x=x, y=y, notes=_notes(plot, sheet), shapes=_shapes(plot))
+    setting = layout(sheet, x=x, y=y, notes=_notes(plot, sheet), shapes=_shapes(plot, sheet))
     return {"data": traces, "layout": {**setting, "hovermode": "closest"}}
 
 
 # --- lanes as shapes ----------------------------------------------------------------------------------------
 
 
-def _shapes(plot: LanePlot) -> list[Json]:
+def _shapes(plot: LanePlot, sheet: Sheet) -> list[Json]:
     zero = {"type": "line", "xref": "paper", "x0": 0, "x1": 1, "y0": 0, "y1": 0, "layer": "between"}
     zero["line"] = {"color": HAIRLINE, "width": 1}
-    return [zero, *(shape for lane in plot.figure.lanes for shape in _lane_shapes(plot, lane))]
+    lanes = (shape for lane in plot.figure.lanes for shape in _lane_shapes(plot, lane))
+    return [zero, *_guides(plot), *lanes, *_rules(plot, sheet)]
+
+
+def _guides(plot: LanePlot) -> list[Json]:
+    """The dotted guides between looks, under the lanes."""
+    dotted = {"color": INK_3, "width": 1, "dash": "1px,3px"}
+    paths = (
+        "M " + " L ".join(f"{plot.x.inverse(x):.6f} {plot.y.inverse(y):.6f}" for x, y in guide)
+        for guide in drawing.guides(plot)
+    )
+    return [{"type": "path", "path": path, "line": dotted, "layer": "between"} for path in paths]
+
+
+def _rules(plot: LanePlot, sheet: Sheet) -> list[Json]:
+    """The hairlines over rows that a rule sets apart."""
+    return [
+        stroke_at(sheet, (0, plot.page.width), placed.y - 20, HAIRLINE, 1)
+        for placed in placed_rows(plot)
+        if placed.row.rule_above
+    ]
 
 
 def _lane_shapes(plot: LanePlot, lane: Lane) -> list[Json]:
@@ -133,7 +161,8 @@ def _bar(plot: LanePlot, bar: Bar) -> Json:
 
 
 def _bounds(plot: LanePlot) -> list[Json]:
-    """The bounds as points that are not seen but answer the pointer, joined by the dotted guide."""
+    """The bounds as points that are not seen but answer the pointer."""
+    if_a = ", if A" if plot.is_masked else ""
     of_kind = (
         (
             "efficacy bound" if not plot.is_two_sided else "bound",
@@ -143,11 +172,29 @@ def _bounds(plot: LanePlot) -> list[Json]:
             "bound" if plot.is_two_sided else "efficacy bound",
             [(lane, lane.lower, lower_bound(lane)) for lane in plot.figure.lanes],
         ),
-        ("futility bound", [(lane, lane.futility, number(lane.futility)) for lane in plot.figure.lanes]),
-        ("harm bound", [(lane, lane.harm, number(lane.harm)) for lane in plot.figure.lanes]),
+        (
+            f"futility bound{if_a}",
+            [(lane, lane.futility, number(lane.futility)) for lane in plot.figure.lanes],
+        ),
+        (f"harm bound{if_a}", [(lane, lane.harm, number(lane.harm)) for lane in plot.figure.lanes]),
+        *_mirrored(plot),
     )
     return [
         _bound_trace(plot, name, points) for name, points in of_kind if any(z is not None for *_, z in points)
+    ]
+
+
+def _mirrored(plot: LanePlot) -> list[tuple[str, list[tuple[Lane, Span | None, float | None]]]]:
+    """Masked, futility and harm of the right lanes, which are read upside down."""
+    if not plot.is_masked:
+        return []
+    kinds = (
+        ("futility bound, if B", [(lane, lane.futility) for lane in plot.figure.lanes]),
+        ("harm bound, if B", [(lane, lane.harm) for lane in plot.figure.lanes]),
+    )
+    return [
+        (name, [(lane, span, None if (z := number(span)) is None else -z) for lane, span in pairs])
+        for name, pairs in kinds
     ]
 
 
@@ -193,7 +240,7 @@ def _is_marked(plot: LanePlot, lane: Lane) -> bool:
 def _symbol(plot: LanePlot, lane: Lane) -> str:
     if not _is_marked(plot, lane):
         return "circle"
-    return "diamond" if is_crossed_above(lane) or is_crossed_below(lane) else "diamond-open"
+    return "diamond" if crosses_a_bar(plot, lane) else "diamond-open"
 
 
 def _rows(plot: LanePlot) -> list[Json]:
@@ -230,17 +277,35 @@ def _letters(plot: LanePlot, sheet: Sheet) -> list[Json]:
     ]
 
 
+def _labels(plot: LanePlot, lane: Lane) -> list[Json]:
+    """The words beside a lane, following the axes when they are zoomed."""
+    aside = labels_start(plot, lane) - plot.middle(lane)
+    return [
+        {
+            "text": said(plain(line)),
+            "x": lane.fraction,
+            "y": plot.y.inverse(middle),
+            "xshift": aside,
+            "xanchor": "left",
+            "yanchor": "middle",
+            "showarrow": False,
+            "borderpad": 0,
+            "bgcolor": PAPER,
+            "font": font(colour=label.fill, semibold=label.semibold),
+        }
+        for label, line, middle in placed_labels(plot, lane)
+    ]
+
+
 def _notes(plot: LanePlot, sheet: Sheet) -> list[Json]:
     """The words of the drawing that are not numbers: what the axis is, what up means, what each row is."""
     title = plain(drawing.axis_title(plot))
-    up, down = f"↑ {plot.figure.favours_up}", f"↓ {plot.figure.favours_down}"
-    zero = plot.y(0)
-    direction = [] if plot.page.short else [(up, zero - 6), (down, zero + 15)]
     head = [words_at(sheet, "Look", 0, plot.area.bottom + 20)] if looks_by_number(plot) else []
     return [
         words_at(sheet, title, drawing.title_at(plot), 14, size=SMALL),
-        *(words_at(sheet, text, 0, y, size=SMALL, colour=INK_2) for text, y in direction),
+        *(words_at(sheet, text, x, y, size=SMALL) for text, x, y in drawing.direction_at(plot)),
         *head,
+        *(note for lane in plot.figure.lanes for note in _labels(plot, lane)),
         *_letters(plot, sheet),
         *(
             words_at(sheet, plain(placed.head), row_indent(plot, placed.row), placed.y)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from app.render.palette import BAND_OPACITY, HAIRLINE, INK, INK_2, arm_ink
+from app.render.palette import BAND_OPACITY, HAIRLINE, INK, INK_2, PAPER, arm_ink
 from app.render.plotly_figures.setting import (
     FIGURE_SPACE,
     Json,
@@ -12,15 +12,20 @@ from app.render.plotly_figures.setting import (
     layout,
     row_of_numbers,
     step_line,
+    stroke_at,
     words_at,
 )
 from app.render.svg.curves import (
+    BASELINE,
     NARROW_PAGE,
     PERCENT_TICKS,
     ROW_PITCH,
+    STROKE,
+    STROKE_OFF,
     WIDE_PAGE,
     Page,
     end_labels_at,
+    is_upper,
     label_left,
     name_lines,
     row_heights,
@@ -30,7 +35,7 @@ from app.render.svg.curves import (
 )
 from app.render.svg.curves import narrow as narrow_drawing
 from app.render.svg.curves import wide as wide_drawing
-from app.render.svg.geometry import Scale
+from app.render.svg.geometry import Scale, snapped
 from app.render.svg.lettering import SMALL
 from app.sheets.blocks import CurveLine, CurvesFigure
 
@@ -54,12 +59,13 @@ def _chart(figure: CurvesFigure, page: Page, height: float) -> Json:
     traces = [
         *(band for line in figure.lines for band in _bands(line, end)),
         *(trace for line in figure.lines for trace in _line(line, end)),
-        *(_strokes(line, end) for line in figure.lines),
+        *(_strokes(line, end, upwards=is_upper(line, figure.lines)) for line in figure.lines),
         *_rows(figure, page),
     ]
     half = {"type": "line", "xref": "paper", "x0": 0, "x1": 1, "y0": 50, "y1": 50, "layer": "between"}
     half["line"] = {"color": HAIRLINE, "width": 1}
-    setting = layout(sheet, x=x, y=y, notes=_notes(figure, page, sheet), shapes=[half])
+    shapes = [half, *_samples(figure, page, sheet)]
+    setting = layout(sheet, x=x, y=y, notes=_notes(figure, page, sheet), shapes=shapes)
     return {"data": traces, "layout": {**setting, "hovermode": "x unified"}}
 
 
@@ -100,7 +106,8 @@ def translucent(colour: str, opacity: float) -> str:
     return f"rgba({red},{green},{blue},{opacity:g})"
 
 
-def _strokes(line: CurveLine, end: float) -> Json:
+def _strokes(line: CurveLine, end: float, *, upwards: bool) -> Json:
+    """Censorings, off the line as the drawing has them: above the upper arm, below the lower one."""
     inside = [(t, s) for t, s in line.censored_at if t <= end]
     return {
         "type": "scatter",
@@ -109,7 +116,9 @@ def _strokes(line: CurveLine, end: float) -> Json:
         "y": [s for _, s in inside],
         "marker": {
             "symbol": "line-ns-open",
-            "size": 7,
+            "size": STROKE / 1.4,  # plotly.js draws this symbol 1.4 times its size tall
+            "angle": 180 if upwards else 0,  # stands off against this direction
+            "standoff": STROKE_OFF + STROKE / 2,
             "color": arm_ink(line.arm).line,
             "line": {"width": 0.75},
         },
@@ -164,6 +173,20 @@ def _end_labels(figure: CurvesFigure, page: Page, sheet: Sheet) -> list[Json]:
             semibold=True,
         )
         for line, y in zip(figure.lines, end_labels_at(figure, page), strict=True)
+    ]
+
+
+def _samples(figure: CurvesFigure, page: Page, sheet: Sheet) -> list[Json]:
+    """A sample of each line before the name of its arm."""
+    above = ROW_PITCH if page.name_above else 0.0
+    strokes = (
+        (arm_ink(line.arm), snapped(y - above - BASELINE))
+        for line, y in zip(figure.lines, row_heights(figure, page), strict=True)
+    )
+    return [
+        stroke_at(sheet, (0, 18), y, colour, width)
+        for ink, y in strokes
+        for colour, width in (((ink.line, 3.25), (PAPER, 1.75)) if ink.hollow else ((ink.line, 1.75),))
     ]
 
 

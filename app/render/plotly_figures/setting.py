@@ -120,6 +120,16 @@ def words_at(
     }
 
 
+def stroke_at(sheet: Sheet, x: tuple[float, float], y: float, colour: str, width: float) -> Json:
+    """A stroke across at a place of the drawing, outside the axes too, staying there whatever is zoomed."""
+    plot = sheet.plot
+    left, right = ((end - plot.left) / plot.width for end in x)
+    height = 1 - (y - plot.top) / sheet.inner_height
+    ends = {"x0": left, "x1": right, "y0": height, "y1": height}
+    line = {"color": colour, "width": width}
+    return {"type": "line", "xref": "paper", "yref": "paper", **ends, "line": line}
+
+
 def row_of_numbers(
     x: Sequence[Any], texts: Sequence[str], y: float, *, colours: Sequence[str], semibold: Sequence[bool]
 ) -> Json:

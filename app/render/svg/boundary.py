@@ -6,8 +6,6 @@ lane a look. Masked, two: the left is read as if A were experimental, the right 
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 from app.render.palette import HAIRLINE, INK_2, INK_3
 from app.render.svg.drawing import Drawing, axis_line, horizontal, small_print
 from app.render.svg.element import Element, coordinate, element
@@ -87,23 +85,41 @@ def title_at(plot: LanePlot) -> float:
 
 
 def _direction(plot: LanePlot) -> tuple[Element, ...]:
-    """What up and down mean, astride the zero line; left of the numbers when a lane stands there."""
+    """What up and down mean."""
+    return tuple(small_print(text, x, y) for text, x, y in direction_at(plot))
+
+
+def direction_at(plot: LanePlot) -> list[tuple[str, float, float]]:
+    """Words astride the zero line; left of the numbers when a lane stands there."""
     if plot.page.short:
-        return ()
+        return []
     up, down, zero = f"↑ {plot.figure.favours_up}", f"↓ {plot.figure.favours_down}", plot.y(0)
     first = min((plot.middle(lane) for lane in plot.figure.lanes), default=plot.page.right)
     left = plot.page.zero + 2
     if left + max(text_width(up, SMALL), text_width(down, SMALL)) + 8 <= first - plot.lane_width / 2:
-        return small_print(up, left, zero - 6), small_print(down, left, zero + 15)
-    return small_print(up, 130, zero - 6, "end"), small_print(down, 130, zero + 15, "end")
+        return [(up, left, zero - 6), (down, left, zero + 15)]
+    return [(up, 130 - text_width(up, SMALL), zero - 6), (down, 130 - text_width(down, SMALL), zero + 15)]
 
 
 def _guides(plot: LanePlot) -> tuple[Element, ...]:
     """Dotted lines between the bounds of neighbouring looks; the lanes are drawn over them."""
-    upper = [number(lane.upper) for lane in plot.figure.lanes]
-    lower = [_lower_guide(plot, lane) for lane in plot.figure.lanes]
-    paths = _guide(plot, upper) + _guide(plot, lower)
+    paths = "".join(
+        "M" + "L".join(f"{coordinate(x)} {coordinate(y)}" for x, y in guide) for guide in guides(plot)
+    )
     return (element("path", d=paths, fill="none", stroke=INK_3, stroke_dasharray="1 3"),) if paths else ()
+
+
+def guides(plot: LanePlot) -> list[list[tuple[float, float]]]:
+    """The points that each guide joins: the upper bounds, those below, those of harm."""
+    lanes = plot.figure.lanes
+    upper = [number(lane.upper) for lane in lanes]
+    lower = [_lower_guide(plot, lane) for lane in lanes]
+    harm = [None if plot.is_masked else number(lane.harm) for lane in lanes]
+    joined = [
+        [(plot.middle(lane), plot.y(z)) for lane, z in zip(lanes, bounds, strict=True) if z is not None]
+        for bounds in (upper, lower, harm)
+    ]
+    return [points for points in joined if len(points) > 1]
 
 
 def _lower_guide(plot: LanePlot, lane: Lane) -> float | None:
@@ -111,12 +127,3 @@ def _lower_guide(plot: LanePlot, lane: Lane) -> float | None:
     if lane.lower is None and not plot.is_masked:
         return number(lane.futility)
     return lower_bound(lane)
-
-
-def _guide(plot: LanePlot, bounds: Sequence[float | None]) -> str:
-    points = [
-        f"{coordinate(plot.middle(lane))} {coordinate(plot.y(bound))}"
-        for lane, bound in zip(plot.figure.lanes, bounds, strict=True)
-        if bound is not None
-    ]
-    return f"M{'L'.join(points)}" if len(points) > 1 else ""

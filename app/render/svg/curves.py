@@ -69,7 +69,7 @@ def _drawn(figure: CurvesFigure, page: Page) -> Drawing:
             *_percent_axis(figure, page, y),
             *(_band(line, x, y) for line in figure.lines),
             *(stroke for line in figure.lines for stroke in _line(line, x, y)),
-            *(_strokes(line, x, y, upwards=_is_upper(line, figure.lines)) for line in figure.lines),
+            *(_strokes(line, x, y, upwards=is_upper(line, figure.lines)) for line in figure.lines),
             *_time_axis(figure, page, x),
             *_end_labels(figure, page),
             *rows,
@@ -203,7 +203,7 @@ def _strokes(line: CurveLine, x: Scale, y: Scale, *, upwards: bool) -> Element:
     return element("path", d=down or "M0 0", fill="none", stroke=arm_ink(line.arm).line, stroke_width=0.75)
 
 
-def _is_upper(line: CurveLine, lines: Sequence[CurveLine]) -> bool:
+def is_upper(line: CurveLine, lines: Sequence[CurveLine]) -> bool:
     """Strokes of the arm that is higher where the axis ends go above it, of the lower one below."""
     return line.survival[-1] >= max(other.survival[-1] for other in lines)
 

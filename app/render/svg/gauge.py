@@ -1,15 +1,16 @@
-"""One look as a gauge: grey beyond its bounds, hatched beyond futility, clear between, z as a mark."""
+"""One look as a gauge: grey beyond efficacy and harm, hatched beyond futility, clear between, z as a mark."""
 
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import Literal
 
 from app.render.palette import CROSSED, CROSSED_ZONE, EFFICACY_ZONE, HAIRLINE, HATCH, INK, INK_3, PAPER
 from app.render.svg.drawing import diamond, disc, rectangle
 from app.render.svg.element import Element, coordinate, element
 from app.render.svg.geometry import Box, Segment, hatching, snapped
-from app.render.svg.lane_plot import LanePlot, is_crossed_above, is_crossed_below, lower_bound, number
+from app.render.svg.lane_plot import LanePlot, lower_bound, number
 from app.render.svg.lettering import words
 from app.sheets.blocks import Lane
 
@@ -18,14 +19,20 @@ ROOM_FOR_LETTERS = 24.0
 
 
 @dataclass(frozen=True)
+class Limit:
+    """A bound as it is read in a lane: its height, whether its zone lies above, and what it is a bound of."""
+
+    z: float
+    above: bool
+    kind: Literal["efficacy", "harm", "futility"]
+
+
+@dataclass(frozen=True)
 class Reading:
     """A lane, or half of one while masked, with the bounds that are read in it."""
 
     box: Box
-    above: float | None = None  # grey above this
-    below: float | None = None  # grey below this
-    hatch_below: float | None = None
-    hatch_above: float | None = None
+    limits: tuple[Limit, ...]
 
 
 @dataclass(frozen=True)
@@ -77,56 +84,63 @@ def edge_colour(lane: Lane) -> str:
 
 def lane_readings(plot: LanePlot, lane: Lane) -> tuple[Reading, ...]:
     """Masked, the left half is read as if A were experimental, the right one, mirrored, as if B were."""
-    box, upper, lower, futility = (
-        column(plot, lane),
-        number(lane.upper),
-        lower_bound(lane),
-        number(lane.futility),
-    )
+    box, upper, lower = column(plot, lane), number(lane.upper), lower_bound(lane)
+    efficacy = _limits(upper, True, "efficacy")
+    lower_efficacy = _limits(lower, False, "efficacy")
+    harm, futility = number(lane.harm), number(lane.futility)
+    own = (*_limits(harm, False, "harm"), *_limits(futility, False, "futility"))
     if not plot.is_masked:
-        grey_below = number(lane.harm) if lower is None else lower
-        return (Reading(box, above=upper, below=grey_below, hatch_below=futility),)
+        return (Reading(box, (*efficacy, *lower_efficacy, *own)),)
     middle = plot.middle(lane)
     left = Box(box.left, box.top, middle, box.bottom)
     right = Box(middle, box.top, box.right, box.bottom)
-    mirrored = None if futility is None else -futility
-    return Reading(left, above=upper, hatch_below=futility), Reading(right, below=lower, hatch_above=mirrored)
+    mirrored = tuple(replace(limit, z=-limit.z, above=True) for limit in own)
+    return Reading(left, (*efficacy, *own)), Reading(right, (*lower_efficacy, *mirrored))
+
+
+def _limits(z: float | None, above: bool, kind: Literal["efficacy", "harm", "futility"]) -> tuple[Limit, ...]:
+    return () if z is None else (Limit(z, above, kind),)
+
+
+def is_crossed(lane: Lane, limit: Limit) -> bool:
+    """Whether the crossing recorded for this lane is of this bound; futility alone is not set in crossed."""
+    z = number(lane.z)
+    if not lane.crossed or z is None or limit.kind == "futility":
+        return False
+    return z >= limit.z if limit.above else z <= limit.z
+
+
+def crosses_a_bar(plot: LanePlot, lane: Lane) -> bool:
+    """Whether a bound drawn as a solid bar is crossed, and not one that does not bind."""
+    return any(is_crossed(lane, limit) for reading in lane_readings(plot, lane) for limit in reading.limits)
 
 
 # --- zones and bars -----------------------------------------------------------------------------------------
 
 
 def zones(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Zone]:
-    grey, hatch = EFFICACY_ZONE[lane.state], HATCH[lane.state]
-    if reading.above is not None:
-        yield Zone(_over(plot, reading, reading.above), CROSSED_ZONE if is_crossed_above(lane) else grey)
-    if reading.below is not None:
-        yield Zone(_under(plot, reading, reading.below), CROSSED_ZONE if is_crossed_below(lane) else grey)
-    if reading.hatch_below is not None:
-        yield Zone(_under(plot, reading, reading.hatch_below), hatch, hatched=True)
-    if reading.hatch_above is not None:
-        yield Zone(_over(plot, reading, reading.hatch_above), hatch, hatched=True)
+    """Grey beyond efficacy and harm, and over it the hatch beyond futility."""
+    for limit in sorted(reading.limits, key=lambda limit: limit.kind == "futility"):
+        box = _beyond(plot, reading.box, limit)
+        if limit.kind == "futility":
+            yield Zone(box, HATCH[lane.state], hatched=True)
+        else:
+            yield Zone(box, CROSSED_ZONE if is_crossed(lane, limit) else EFFICACY_ZONE[lane.state])
 
 
-def _over(plot: LanePlot, reading: Reading, z: float) -> Box:
-    return Box(reading.box.left, reading.box.top, reading.box.right, plot.y(z))
-
-
-def _under(plot: LanePlot, reading: Reading, z: float) -> Box:
-    return Box(reading.box.left, plot.y(z), reading.box.right, reading.box.bottom)
+def _beyond(plot: LanePlot, lane: Box, limit: Limit) -> Box:
+    y = plot.y(limit.z)
+    return Box(lane.left, *((lane.top, lane.right, y) if limit.above else (y, lane.right, lane.bottom)))
 
 
 def bars(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Bar]:
-    """The bounds themselves, in ink over the zone's edge: solid for efficacy, dashed for futility."""
+    """The bounds themselves, in ink over the zone's edge: solid, dashed for futility."""
     left, right, is_now = reading.box.left, reading.box.right, lane.state == "now"
-    solid = ((reading.above, is_crossed_above(lane)), (reading.below, is_crossed_below(lane)))
-    for bound, is_crossed in solid:
-        if bound is not None:
-            colour, width = CROSSED if is_crossed else INK, 2.5 if is_now else 1.5
-            yield Bar(left, right, plot.y(bound), colour, width, dashed=False)
-    for bound in (reading.hatch_below, reading.hatch_above):
-        if bound is not None:
-            yield Bar(left, right, plot.y(bound), INK, 1.75 if is_now else 1.0, dashed=True)
+    for limit in reading.limits:
+        dashed = limit.kind == "futility"
+        width = (1.75 if is_now else 1.0) if dashed else (2.5 if is_now else 1.5)
+        colour = CROSSED if is_crossed(lane, limit) else INK
+        yield Bar(left, right, plot.y(limit.z), colour, width, dashed)
 
 
 def _drawn_zone(zone: Zone) -> Element:
@@ -173,7 +187,7 @@ def _mark(plot: LanePlot, lane: Lane) -> tuple[Element, ...]:
         return _level(plot, lane, y), disc(x, y, radius + 2, PAPER), disc(x, y, radius, INK)
     if not lane.crossed:
         return disc(x, y, radius + 1.5, PAPER), disc(x, y, radius, INK)
-    if is_crossed_above(lane) or is_crossed_below(lane):
+    if crosses_a_bar(plot, lane):
         return diamond(x, y, radius + 3, PAPER), diamond(x, y, radius + 1, CROSSED)
     return (diamond(x, y, radius, PAPER, CROSSED, 1.75),)  # a bound that does not bind: an open diamond
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import pairwise
@@ -24,13 +25,18 @@ class LanePage:
     lane: float
     two_lanes: float
     numbers_end: float
+    tallest: float  # the whole drawing: rows beyond it take their room from the lanes
     short: bool
 
 
-WIDE_PAGE = LanePage(WIDE, 168, 639, 162, 663, 236, 30, 40, 155, short=False)
-NARROW_PAGE = LanePage(NARROW, 36, 309, 30, 335, 220, 22, 30, 24, short=True)
+# 430 under an answer of one line ends where the caution of a laptop screen begins
+WIDE_PAGE = LanePage(WIDE, 168, 639, 162, 663, 236, 30, 40, 155, tallest=430, short=False)
+NARROW_PAGE = LanePage(NARROW, 36, 309, 30, 335, 220, 22, 30, 24, tallest=math.inf, short=True)
 TOP = 24.5
 LETTERS = 12.0  # what the letters over two lanes take
+ANSWER_LINE = 36.0  # masked, the answer has a second line
+FIRST_ROW, ROW_PITCH, RULE_ROOM, UNDER_ROWS = 37.5, 16.0, 9.0, 5.0
+SHORTEST = 160.0  # lanes give no more room than this leaves
 THINNEST, THIN = 6.0, 18.0
 
 
@@ -64,12 +70,22 @@ class LanePlot:
 def lane_plot(figure: BoundaryFigure, page: LanePage) -> LanePlot:
     masked = figure.layout == "two lanes"
     top = TOP + (LETTERS if masked else 0)
-    area = Box(page.left, top, page.right, TOP + page.height + (8 if masked else 0))
+    bottom = TOP + page.height + (8 if masked else 0) - _room_for_rows(figure, page)
+    area = Box(page.left, top, page.right, max(bottom, top + SHORTEST))
     x = Scale(0, max([1.0, *(lane.fraction for lane in figure.lanes)]), page.zero, page.one)
     low, high = z_range(figure)
     pitch = _closest([x(lane.fraction) for lane in figure.lanes])
     width = _lane_width(page.two_lanes if masked else page.lane, pitch)
     return LanePlot(figure, page, x, Scale(low, high, area.bottom, area.top), area, width, pitch)
+
+
+def _room_for_rows(figure: BoundaryFigure, page: LanePage) -> float:
+    """What the lanes give up so that the drawing with all its rows is not too tall for its page."""
+    masked = figure.layout == "two lanes"
+    rules = sum(row.rule_above for row in figure.rows)
+    rows = FIRST_ROW + ROW_PITCH * (len(figure.rows) - 1) + RULE_ROOM * rules + UNDER_ROWS
+    tallest = page.tallest - (ANSWER_LINE if masked else 0)
+    return max(0.0, TOP + page.height + (8 if masked else 0) + rows - tallest)
 
 
 def _closest(places: Sequence[float]) -> float:
@@ -106,15 +122,3 @@ def lower_bound(lane: Lane) -> float | None:
     """The lower bound as drawn: below zero, whichever sign its recorded number carries."""
     bound = number(lane.lower)
     return None if bound is None else -abs(bound)
-
-
-def is_crossed_above(lane: Lane) -> bool:
-    """Whether the crossing recorded for this lane is of its upper bound."""
-    return (
-        lane.crossed and number(lane.upper) is not None and (number(lane.z) or 0) >= (number(lane.upper) or 0)
-    )
-
-
-def is_crossed_below(lane: Lane) -> bool:
-    bound = lower_bound(lane)
-    return lane.crossed and bound is not None and (number(lane.z) or 0) <= bound

@@ -9,18 +9,24 @@ from app.render.palette import CROSSED, INK, INK_2
 from app.render.svg.drawing import ground, rule, ticks_below
 from app.render.svg.element import Element
 from app.render.svg.geometry import apart_within
-from app.render.svg.lane_plot import LanePlot, lower_bound, number
+from app.render.svg.lane_plot import (
+    FIRST_ROW,
+    ROW_PITCH,
+    RULE_ROOM,
+    UNDER_ROWS,
+    LanePlot,
+    lower_bound,
+    number,
+)
 from app.render.svg.lettering import LABEL, SMALL, Anchor, line_width, point_offset, text_width, words
 from app.sheets.blocks import Lane, LaneRow, Line, Span
 
 LABEL_GAP = 16.0
 BASELINE = 4.5  # from the middle of a line of labels down to its baseline
-ROW_PITCH = 16.0
 POINT_AT = -7.0  # decimal points stand here from the lane's middle
 UNITS_AT = 10.0  # and the last digit of a whole number ends here
 NAMES_APART = 56.0
 INDENT = 14.0
-RULE_ROOM = 9.0
 
 
 # --- beside the lanes ---------------------------------------------------------------------------------------
@@ -39,16 +45,25 @@ class Label:
 
 def lane_labels(plot: LanePlot, lane: Lane) -> tuple[Element, ...]:
     """The numbers of the look shown, and what the next one needs, at the right of what they name."""
-    start = plot.right_of(lane) + 7
-    room = _free_until(plot, lane) - start
+    start = labels_start(plot, lane)
+    return tuple(
+        part
+        for label, line, middle in placed_labels(plot, lane)
+        for part in _set_label(label, line, start, middle + BASELINE)
+    )
+
+
+def labels_start(plot: LanePlot, lane: Lane) -> float:
+    return plot.right_of(lane) + 7
+
+
+def placed_labels(plot: LanePlot, lane: Lane) -> list[tuple[Label, Line, float]]:
+    """Each label that has room, its words, and the height of their middle once they are kept apart."""
+    room = _free_until(plot, lane) - labels_start(plot, lane)
     fitting = [(label, _fitting(label, room)) for label in _labels(plot, lane)]
     shown = [(label, line) for label, line in fitting if line]
     placed = apart_within([label.y for label, _ in shown], LABEL_GAP, plot.area.top + 4, plot.area.bottom - 4)
-    return tuple(
-        part
-        for (label, line), middle in zip(shown, placed, strict=True)
-        for part in _set_label(label, line, start, middle + BASELINE)
-    )
+    return [(label, line, middle) for (label, line), middle in zip(shown, placed, strict=True)]
 
 
 def _set_label(label: Label, line: Line, left: float, baseline: float) -> tuple[Element, Element]:
@@ -161,7 +176,7 @@ class PlacedRow:
 def placed_rows(plot: LanePlot) -> tuple[PlacedRow, ...]:
     """The rows that have room; a rule above one is drawn 20 over its baseline and takes 9 more."""
     placed: list[PlacedRow] = []
-    y = plot.area.bottom + 37.5 - ROW_PITCH
+    y = plot.area.bottom + FIRST_ROW - ROW_PITCH
     for row in plot.figure.rows:
         head = row.short_head if plot.page.short else row.head
         if head and _has_room(plot, row, head):
@@ -176,7 +191,7 @@ def rows_under(plot: LanePlot) -> tuple[tuple[Element, ...], float]:
     rules = (rule(each.y - 20, 0, plot.page.width) for each in placed if each.row.rule_above)
     rows = (part for each in placed for part in _row(plot, each.row, each.head, each.y))
     last = placed[-1].y if placed else plot.area.bottom + 20
-    return (*rules, *rows), last + 5
+    return (*rules, *rows), last + UNDER_ROWS
 
 
 def _row(plot: LanePlot, row: LaneRow, head: Line, y: float) -> list[Element]:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 
 from app.model.plan import Plan
@@ -9,7 +11,7 @@ from app.review import LookDeclared, as_used, review_look
 from app.sheets.blocks import BoundaryFigure, Chance, ChancesFigure, Lane, Sheet
 from app.sheets.boundary import boundary_sheet
 from app.sheets.outlook import outlook_sheet
-from app.views.closed import masked_view, unmasked_view
+from app.views.closed import full_view, masked_view, unmasked_view
 from tests.unit.review.invented_trial import CUTOFFS, patients, plan
 from tests.unit.sheets.invented_looks import (
     A_IS_CONTROL,
@@ -187,6 +189,29 @@ def test_the_figure_draws_futility_and_harm_and_names_both_in_its_rows() -> None
     last = next(lane for lane in sheet.figure.lanes if lane.final)
     assert last.futility is None
     assert "Hatched: futility, not binding." in text(sheet.notes[0])
+
+
+def test_the_note_says_what_grey_is_where_there_is_harm() -> None:
+    (unmasked,) = seen(0.5, under(), boundary_sheet).notes
+    (masked,) = seen(0.5, under(), boundary_sheet, masked=True).notes
+    assert "Grey: beyond efficacy; below, harm." in text(unmasked)
+    assert (
+        "Left lanes: if A is experimental; right: if B. Grey: beyond efficacy; at the other end, harm."
+        in text(masked)
+    )
+
+
+def test_a_look_held_that_crossed_below_in_any_reading_is_marked_so() -> None:
+    of = under()
+    first = review_look(of, patients().at(CUTOFFS[0]).sample(), LookDeclared(1, "planned"), ())
+    for z in (3.0, -3.0):  # masked, one of the readings has crossed harm
+        turned = with_z(first, z)
+        past = [as_used(replace(turned, verdict=full_view(turned, of).readings[0].verdict))]
+        second = review_look(of, patients().at(CUTOFFS[1]).sample(), LookDeclared(2, "planned"), past)
+        for letters in (A_IS_CONTROL, A_IS_EXPERIMENTAL):
+            figure = boundary_sheet(masked_view(second, of, letters)).figure
+            assert isinstance(figure, BoundaryFigure)
+            assert figure.lanes[0].crossed
 
 
 @pytest.mark.parametrize("letters", [A_IS_CONTROL, A_IS_EXPERIMENTAL])
