@@ -141,7 +141,7 @@ def test_beside_another_a_chart_takes_the_place_of_the_half_drawing(name: str) -
     assert chart is not None
     assert chart["narrow"] == plotly_figure(FIGURES[name])["narrow"]  # type: ignore[index]
     layout, drawing = chart["wide"]["layout"], figures.half(FIGURES[name])
-    assert len(Figure(chart["wide"], skip_invalid=False).data) == len(chart["wide"]["data"])
+    assert len(PlotlyFigure(chart["wide"], skip_invalid=False).data) == len(chart["wide"]["data"])
     width = drawing.width - layout["margin"]["l"] - layout["margin"]["r"]
     assert width == HALF_PAGE.plot.width
     plot = layout["yaxis"]["domain"][1] - layout["yaxis"]["domain"][0]
