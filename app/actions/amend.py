@@ -11,6 +11,8 @@ from app.intake.amendment import PlanChange, plan_changes, refuse_fixed
 from app.intake.plan import read_plan
 from app.ledger.bodies import KeyChanged, PlanAmended
 from app.ledger.history import State
+from app.model.extract import Finding
+from app.review.feasibility import plan_doubts
 from app.verification.assembly import plan_under
 
 
@@ -19,7 +21,7 @@ class Amendment:
     """What an amendment would be, before it is recorded.
 
     `results_opened` are the looks whose comparative results had been seen; `stays` is the open look, which
-    remains under the version in force when its snapshot came.
+    remains under the version in force when its snapshot came. `doubts` are about the new plan by itself.
     """
 
     version: int
@@ -27,6 +29,7 @@ class Amendment:
     results_opened: tuple[int, ...]
     unmasked: bool
     stays: int | None
+    doubts: tuple[Finding, ...]
 
 
 def understand_amendment(desk: Desk, *, plan_name: str, plan: bytes) -> Amendment:
@@ -76,4 +79,5 @@ def _amendment(desk: Desk, state: State, plan_name: str, plan: bytes) -> Amendme
         results_opened=state.results_opened,
         unmasked=state.unmasked,
         stays=state.open_look.number if state.open_look else None,
+        doubts=plan_doubts(amended),
     )

@@ -11,14 +11,12 @@ from app.actions.desk import UploadedFile
 from app.errors import InputError
 from app.intake.extract import received_file
 from app.intake.plan import read_plan
-from app.model.boundary import LookAsUsed, PlannedBoundary
+from app.model.boundary import LookAsUsed
 from app.model.extract import LookKind
-from app.model.plan import Plan
 from app.review import as_used
-from app.review.feasibility import power_doubts
+from app.review.feasibility import boundary_of, plan_doubts, power_doubts
 from app.review.held import held_looks
 from app.review.received import Delivery, review_delivery
-from app.sequential.design import planned_boundary
 from app.settings import Settings
 from app.validation import published_rows
 from app.validation.rows import RowOutcome
@@ -68,7 +66,7 @@ def evaluate(
         views.append(unmasked_view(reviewed.result, read, Letters("A")))
         past.append(as_used(reviewed.result))
         earlier = delivery
-    doubts = power_doubts(read, _planned(read).feasibility)
+    doubts = plan_doubts(read)
     asked = [None if hazard_ratio is None else what_if(view, hazard_ratio) for view in views]
     return evaluation_record(views, asked, run_at=_now(settings), plan_findings=doubts)
 
@@ -78,23 +76,9 @@ def boundary(
 ) -> dict[str, Any]:
     """The record of a plan's bounds at its own looks or at these fractions."""
     read = read_plan(plan, name=plan_name, limits=settings.limits)
-    planned = _planned(read, fractions, final)
+    planned = boundary_of(read, fractions, final=final)
     doubts = power_doubts(read, planned.feasibility)
     return boundary_record(planned, plan_digest=read.digest, run_at=_now(settings), findings=doubts)
-
-
-def _planned(plan: Plan, fractions: Sequence[float] | None = None, final: bool = False) -> PlannedBoundary:
-    return planned_boundary(
-        plan.design,
-        plan.efficacy,
-        experimental_share=plan.arms.experimental_share,
-        direction=plan.endpoint.direction,
-        futility=plan.futility,
-        harm=plan.harm,
-        parameter=plan.endpoint.parameter,
-        fractions=fractions,
-        final=final,
-    )
 
 
 def validate() -> tuple[RowOutcome, ...]:

@@ -13,6 +13,7 @@ from app.ledger.history import Look, State
 from app.model.extract import LookKind
 from app.model.look import PooledResult
 from app.model.plan import Plan
+from app.review.feasibility import plan_doubts
 from app.review.look import planned_fraction
 from app.review.received import pool_delivery
 from app.sheets.blocks import LookBook
@@ -56,7 +57,8 @@ def closed_book_of(desk: Desk, number: int, history: History, run_on: date) -> L
     assembled = assembled_look(desk, number)
     view = closed_view(desk.trial, history.state, assembled)
     around = surroundings(desk, history.state, number, run_on, freezing=history.freezing)
-    return set_closed_book(view, around, assembled.snapshot, assembled.extract, history)
+    doubts = plan_doubts(assembled.plan)
+    return set_closed_book(view, around, assembled.snapshot, assembled.extract, history, doubts)
 
 
 def _record_opening(desk: Desk, look: int, session: str, by: str) -> None:

@@ -8,7 +8,9 @@ from app.actions.names import recorded_name
 from app.errors import DesignInvalid
 from app.intake.plan import read_plan
 from app.ledger.trial import Trial
+from app.model.extract import Finding
 from app.model.plan import Plan
+from app.review.feasibility import plan_doubts
 from app.review.held import held_looks
 from app.settings import Settings
 
@@ -27,10 +29,11 @@ def refuse_telling_held_look(plan: Plan, plan_name: str) -> None:
         )
 
 
-def start(settings: Settings, *, plan_name: str, plan: bytes, path: Path, by: str) -> None:
-    """Read and check the plan, draw the arm letters, and write both into a new file."""
+def start(settings: Settings, *, plan_name: str, plan: bytes, path: Path, by: str) -> tuple[Finding, ...]:
+    """Read and check the plan, draw the arm letters, and write both into a new file; the plan's doubts."""
     read = read_plan(plan, name=plan_name, limits=settings.limits)
     refuse_telling_held_look(read, plan_name)
+    doubts = plan_doubts(read)
     Trial.create(
         path,
         settings,
@@ -40,3 +43,4 @@ def start(settings: Settings, *, plan_name: str, plan: bytes, path: Path, by: st
         masked=read.arms.masked,
         looks_held_before=len(read.held),
     ).close()
+    return doubts

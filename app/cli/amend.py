@@ -9,6 +9,7 @@ from app.actions.amend import Amendment, amend
 from app.cli.at_desk import at_desk
 from app.cli.files import read_file
 from app.cli.parsing import Command
+from app.cli.said import tell
 from app.settings import Settings
 
 
@@ -35,6 +36,7 @@ def run(options: Namespace, settings: Settings) -> int:
             by=options.by,
             decided_by=options.decided_by,
         )
+    tell(amendment.doubts)
     print(as_text(amendment))
     return 0
 

@@ -65,9 +65,7 @@ def run(options: Namespace, settings: Settings) -> int:
 def tell(understood: Understanding) -> None:
     """What was understood on standard output, doubts and notes on standard error; what blocks is raised."""
     sys.stdout.write(as_text(understood))
-    for finding in understood.extract.findings:
-        if finding.severity != "block":
-            print(f"{finding.severity} {finding.id}: {finding}", file=sys.stderr)
+    said.tell(understood.extract.findings)
 
 
 def as_text(understood: Understanding) -> str:

@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+import sys
+from collections.abc import Iterable
 from typing import Any
 
 from app.errors import sentence
+from app.model.extract import Finding
 from app.model.values import Absent, Estimate
 from app.sheets import words
 from app.sheets.blocks import Line, Span
@@ -46,6 +49,13 @@ def alpha(value: Any) -> str:
 def bound(value: Any, places: int = 3) -> str:
     """A bound, or a dash where the look has none; the reason is in the record."""
     return "-" if isinstance(value, dict) else number(value, places)
+
+
+def tell(findings: Iterable[Finding]) -> None:
+    """Findings on standard error, a line each; what blocks is raised elsewhere."""
+    for found in findings:
+        if found.severity != "block":
+            print(f"{found.severity} {found.id}: {found}", file=sys.stderr)
 
 
 def finding(found: dict[str, Any]) -> str:

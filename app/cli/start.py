@@ -9,6 +9,7 @@ from pathlib import Path
 from app.actions.start import start
 from app.cli.files import read_file
 from app.cli.parsing import Command
+from app.cli.said import tell
 from app.settings import Settings
 
 
@@ -25,7 +26,8 @@ def arguments(parser: ArgumentParser) -> None:
 
 def run(options: Namespace, settings: Settings) -> int:
     plan = read_file(options.plan)
-    start(settings, plan_name=options.plan.name, plan=plan, path=options.trial, by=options.by)
+    doubts = start(settings, plan_name=options.plan.name, plan=plan, path=options.trial, by=options.by)
+    tell(doubts)
     print(f"Locked {options.plan.name} into {options.trial}. No key of it can change unrecorded.")
     return 0
 

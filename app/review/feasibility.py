@@ -2,11 +2,36 @@
 
 from __future__ import annotations
 
-from app.model.boundary import Feasibility
+from collections.abc import Sequence
+
+from app.model.boundary import Feasibility, PlannedBoundary
 from app.model.extract import Finding
 from app.model.plan import Plan
+from app.sequential.design import planned_boundary
 
 POWER_AGREES = 0.02  # whole events and a round total are no disagreement
+
+
+def boundary_of(
+    plan: Plan, fractions: Sequence[float] | None = None, *, final: bool = False
+) -> PlannedBoundary:
+    """The plan's bounds at its own looks, or at these fractions, and what its looks cost."""
+    return planned_boundary(
+        plan.design,
+        plan.efficacy,
+        experimental_share=plan.arms.experimental_share,
+        direction=plan.endpoint.direction,
+        futility=plan.futility,
+        harm=plan.harm,
+        parameter=plan.endpoint.parameter,
+        fractions=fractions,
+        final=final,
+    )
+
+
+def plan_doubts(plan: Plan) -> tuple[Finding, ...]:
+    """What a person who locks, amends or reads this plan is to be told of it. It blocks nothing."""
+    return power_doubts(plan, boundary_of(plan).feasibility)
 
 
 def power_doubts(plan: Plan, reached: Feasibility) -> tuple[Finding, ...]:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from app.model.extract import Extract, Snapshot
+from app.model.extract import Extract, Finding, Snapshot
 from app.sheets.blocks import LookBook, Sheet
 from app.sheets.boundary import boundary_sheet
 from app.sheets.curves import curves_sheet, open_curves_sheet
@@ -18,8 +18,14 @@ from app.views.open import OpenView
 
 
 def closed_book(
-    view: ClosedView, around: Surroundings, snapshot: Snapshot, extract: Extract, history: History
+    view: ClosedView,
+    around: Surroundings,
+    snapshot: Snapshot,
+    extract: Extract,
+    history: History,
+    plan_doubts: tuple[Finding, ...] = (),
 ) -> LookBook:
+    """`plan_doubts` are of the plan that the look is held under, by itself."""
     number = view.look.number
     sheets = (
         glance_sheet(view, around, state_sentence(history, number)),
@@ -29,7 +35,7 @@ def closed_book(
         boundary_sheet(view),
         shape_sheet(view),
         outlook_sheet(view),
-        record_sheet(history, number),
+        record_sheet(history, number, plan_doubts),
     )
     return LookBook(closed_frame(view, around, _named(sheets)), sheets)
 

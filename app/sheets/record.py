@@ -23,6 +23,7 @@ from app.ledger.bodies import (
 )
 from app.ledger.entries import Entry
 from app.ledger.history import Look, State
+from app.model.extract import Finding
 from app.sheets.blocks import ActLink, Cell, Column, Line, Row, Sheet, Span, Table
 from app.sheets.methods import methods
 from app.sheets.plan_versions import plan_tables
@@ -51,7 +52,7 @@ class History:
     freezing: Freezing | None = None
 
 
-def record_sheet(history: History, number: int) -> Sheet:
+def record_sheet(history: History, number: int, plan_doubts: Sequence[Finding] = ()) -> Sheet:
     look = history.state.look(number)
     return Sheet(
         key="record",
@@ -61,10 +62,14 @@ def record_sheet(history: History, number: int) -> Sheet:
         answer=(state_sentence(history, number),),
         tables=(_look_table(look, number, history.freezing), _file_table(history.state)),
         wide_tables=(*_advice_tables(history), *plan_tables(history.state), _history_table(history)),
-        notes=(line(NOT_A_SIGNATURE),),
+        notes=(*(_plan_doubt(look, doubt) for doubt in plan_doubts), line(NOT_A_SIGNATURE)),
         methods=methods("chain"),
         acts=() if history.freezing else _acts(history.state, look, number),
     )
+
+
+def _plan_doubt(look: Look, doubt: Finding) -> Line:
+    return line(Span("Doubt", "doubt"), f" about plan version {look.plan.version}: {doubt}")
 
 
 def state_sentence(history: History, number: int) -> Line:

@@ -78,6 +78,19 @@ def test_the_version_of_each_look_stands_on_every_page(desk: Desk) -> None:
     assert closed_book(desk, 1, session=None).frame.colophon[1] == "Plan version 1 (look 4: version 2)"
 
 
+def test_a_doubt_about_a_plan_stands_on_the_record_sheet_of_the_looks_under_it(desk: Desk) -> None:
+    fewer = given.plan_with((b"planned_events = 538", b"planned_events = 400"))
+    amendment = amend(desk, plan_name="plan-2.toml", plan=fewer, reason="Slow accrual", by=given.BY)
+    assert [doubt.id for doubt in amendment.doubts] == ["power-reached"]
+    number = given.freeze_and_receive_the_fourth(desk)
+    under_it, before = (closed_book(desk, look, session=None).sheet("record") for look in (number, 3))
+    assert under_it is not None
+    assert before is not None
+    said = "Doubt about plan version 2: Hazard ratio, events and power disagree in the plan, [design]."
+    assert plain(under_it.notes[0]).startswith(said)
+    assert len(before.notes) == 1
+
+
 def test_the_record_sheet_tells_what_changed_who_decided_and_what_was_known(desk: Desk) -> None:
     closed_book(desk, 3, session="an evening")
     revise(desk)

@@ -361,6 +361,23 @@ def test_a_power_that_the_events_do_not_have_is_a_doubt(
     assert enough["power_reached"] == pytest.approx(0.9, abs=1e-3)
 
 
+def test_locking_and_amending_tell_a_power_that_the_events_do_not_have_and_go_on(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    trial = tmp_path / "q17.trial"
+    done("start", plan(tmp_path), trial, *BY)
+    told = capsys.readouterr()
+    assert told.err.startswith("doubt power-reached: Hazard ratio, events and power disagree in the plan, ")
+    assert "Locked plan.toml" in told.out
+    needed = record(capsys, "boundary", plan(tmp_path))["events_needed"]
+    done("amend", trial, plan(tmp_path, planned_events=needed), "--reason", "Enough events", *BY)
+    assert capsys.readouterr().err == ""
+    done("amend", trial, plan(tmp_path, planned_events=300), "--reason", "Too few", *BY)
+    told = capsys.readouterr()
+    assert "with 300 events at hazard ratio 0.75" in told.err
+    assert "Plan version 3 governs" in told.out
+
+
 def test_the_text_shows_futility_harm_and_the_outlook(
     tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:

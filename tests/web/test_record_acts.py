@@ -181,6 +181,22 @@ def test_an_amendment_is_shown_key_by_key_and_recorded_when_confirmed(served: Se
     assert served.post("/closed/amend/confirm", **answers).headers["location"] == "/closed/amend"  # once
 
 
+def test_a_power_that_the_amended_events_do_not_have_is_told_before_and_blocks_nothing(
+    served: Served,
+) -> None:
+    served.enter()
+    fewer = given.plan_with((b"planned_events = 538", b"planned_events = 400"))
+    assert "disagree" not in record_sheet(served)
+    assert upload_plan(served, fewer).status_code == 303
+    response = served.get("/closed/amend/confirm")
+    assert "Doubt Hazard ratio, events and power disagree in the plan, [design]. Found 81.3%" in words(
+        response
+    )
+    token = token_on(response.text)
+    served.post("/closed/amend/confirm", token=token, reason="Fewer.", by=BY)
+    assert isinstance(last(served), PlanAmended)
+
+
 def test_who_records_an_amendment_decided_it_when_nobody_else_did(served: Served) -> None:
     served.enter()
     upload_plan(served, given.revised_plan())

@@ -358,7 +358,7 @@ def test_the_record_sheet_tells_the_state_in_a_sentence(tmp_path: Path) -> None:
         assert answers(first) == [
             "Look 1 was frozen on 8 Dec 2024, 09:00 UTC, by M. Berg. The arms are masked."
         ]
-        assert text(sheet.notes[0]).endswith("this is not an electronic signature.")
+        assert text(sheet.notes[-1]).endswith("this is not an electronic signature.")
 
 
 def test_files_that_are_kept_and_not_read_come_back_as_they_were(tmp_path: Path) -> None:
