@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from datetime import date
-from typing import Any
+from typing import Any, Literal
 
 from app.actions.desk import Desk
 from app.ledger.bodies import ResultsOpened
@@ -21,7 +22,14 @@ from app.sheets.book import closed_book as set_closed_book
 from app.sheets.book import open_book as set_open_book
 from app.sheets.frame import LookOnFile, Surroundings
 from app.sheets.record import Freezing, History
-from app.verification.assembly import Assembled, assemble, closed_view, delivery_of, plan_under
+from app.verification.assembly import (
+    Assembled,
+    assemble,
+    closed_view,
+    delivery_of,
+    frozen_record,
+    plan_under,
+)
 from app.views.closed import ClosedView
 from app.views.open import OpenView
 from app.views.record import looks_record
@@ -56,7 +64,8 @@ def closed_book_of(desk: Desk, number: int, history: History, run_on: date) -> L
     """The sheets of a look as they stand at one point of the history."""
     assembled = assembled_look(desk, number)
     view = closed_view(desk.trial, history.state, assembled)
-    around = surroundings(desk, history.state, number, run_on, freezing=history.freezing)
+    pooled = surroundings(desk, history.state, number, run_on, freezing=history.freezing)
+    around = closed_surroundings(desk, pooled, assembled.plan)
     doubts = plan_doubts(assembled.plan)
     return set_closed_book(view, around, assembled.snapshot, assembled.extract, history, doubts)
 
@@ -101,7 +110,30 @@ def surroundings(
         planned_events=plan.design.planned_events,
         plan_version=held.version,
         run_on=run_on,
+        by=by_events(plan),
     )
+
+
+def by_events(plan: Plan) -> Literal["", "events"]:
+    """Pooled counts are counts of events; that is said where the plan counts information in another way."""
+    return "" if plan.design.information == "events" else "events"
+
+
+def closed_surroundings(desk: Desk, around: Surroundings, plan: Plan) -> Surroundings:
+    """The same looks by the information that the plan counts: V / planned V, which needs the arms."""
+    planned = plan.design.planned_score_variance
+    if plan.design.information == "events" or planned is None:
+        return around
+    looks = (replace(look, fraction=_information_used(desk, look.number) / planned) for look in around.looks)
+    return replace(around, looks=tuple(looks), by="score variance")
+
+
+def _information_used(desk: Desk, number: int) -> float:
+    """As it was recorded, or as it stands while the look is open."""
+    if desk.trial.state().look(number).frozen is None:
+        return assembled_look(desk, number).result.information_used
+    used: float = frozen_record(desk.trial, number)["looks"][0]["boundary"]["information"]
+    return used
 
 
 def _held_before(plan: Plan) -> tuple[LookOnFile, ...]:
@@ -177,6 +209,7 @@ def open_view(desk: Desk, number: int) -> OpenView:
         planned=plan.design.looks,
         planned_subjects=plan.enrolment.planned_subjects,
         look=pooled_look(desk, number),
+        by=by_events(plan),
     )
 
 

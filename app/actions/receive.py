@@ -5,9 +5,11 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from datetime import date
+from typing import Literal
 
 from app.actions.desk import Desk, UploadedFile
 from app.actions.freeze import freeze_within
+from app.actions.looks import by_events
 from app.actions.names import recorded_name, recorded_reason
 from app.errors import LedgerError, ValueRejected
 from app.intake.extract import received_file
@@ -37,7 +39,10 @@ class Incoming:
 
 @dataclass(frozen=True, eq=False)
 class Understanding:
-    """What was understood; nothing is stored. Only pooled numbers: nothing comparative is computed here."""
+    """What was understood; nothing is stored. Only pooled numbers: nothing comparative is computed here.
+
+    `fraction` is by events, which is said (`by`) where the plan counts information in another way.
+    """
 
     incoming: Incoming
     extract: Extract
@@ -47,6 +52,7 @@ class Understanding:
     events: int | None
     fraction: float | None
     changes: Changes | None
+    by: Literal["", "events"] = ""
 
 
 def understand(desk: Desk, incoming: Incoming) -> Understanding:
@@ -66,6 +72,7 @@ def understand(desk: Desk, incoming: Incoming) -> Understanding:
         events=events,
         fraction=None if events is None else events / plan.design.planned_events,
         changes=_changes(desk, plan, state, extract),
+        by=by_events(plan),
     )
 
 

@@ -75,6 +75,7 @@ def as_text(understood: Understanding) -> str:
         lines.append(
             f"{understood.subjects} subjects, {understood.events} events, "
             f"information fraction {said.number(understood.fraction)}"
+            f"{f' by {understood.by}' if understood.by else ''}"
         )
     if understood.changes is not None:
         lines.append(changes_text(understood.changes))

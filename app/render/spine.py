@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from app.render.svg.geometry import apart_within
 from app.render.svg.lettering import fraction_text
-from app.sheets.blocks import Spine, SpineLook
+from app.sheets.blocks import CountedBy, Spine, SpineLook
 
 ROOMY = 36 / 560  # two lines of words, on the shortest rail that is common
 CLOSE = 20 / 560  # one line
@@ -65,6 +65,7 @@ class SpineMarks:
     filled: str
     so_far: str
     dense: bool
+    by: str
 
     @property
     def places(self) -> frozenset[str]:
@@ -80,7 +81,7 @@ def spine_marks(spine: Spine) -> SpineMarks:
     dense = len(spine.looks) * ROOMY > 1
     words_at = _words_at([look.fraction / end for look in spine.looks], CLOSE if dense else ROOMY)
     return SpineMarks(
-        marks=tuple(_mark(look, at, end) for look, at in zip(spine.looks, words_at, strict=True)),
+        marks=tuple(_mark(look, at, end, spine.by) for look, at in zip(spine.looks, words_at, strict=True)),
         ticks=tuple(
             SpineTick(place_of(fraction / end), fraction_text(fraction), 0 < fraction < 1)
             for fraction in sorted({0.0, *spine.planned, 1.0})
@@ -90,6 +91,7 @@ def spine_marks(spine: Spine) -> SpineMarks:
         if shown
         else "",
         dense=dense,
+        by=f" by {spine.by}" if spine.by else "",
     )
 
 
@@ -97,7 +99,7 @@ def _words_at(fractions: Sequence[float], gap: float) -> tuple[float, ...]:
     return apart_within(fractions, min(gap, 1 / max(len(fractions), 1)), 0.0, 1.0)
 
 
-def _mark(look: SpineLook, words_at: float, end: float) -> SpineMark:
+def _mark(look: SpineLook, words_at: float, end: float, by: CountedBy) -> SpineMark:
     here, there = place_of(look.fraction / end), place_of(words_at)
     return SpineMark(
         look=look,
@@ -105,14 +107,16 @@ def _mark(look: SpineLook, words_at: float, end: float) -> SpineMark:
         words_place=there,
         leader="" if here == there else "down" if words_at > look.fraction / end else "up",
         bracket="" if look.planned is None or look.state == "planned" else place_of(look.planned / end),
-        numbers=_numbers(look),
+        numbers=_numbers(look, by),
         further=_further(look),
     )
 
 
-def _numbers(look: SpineLook) -> str:
+def _numbers(look: SpineLook, by: CountedBy) -> str:
+    """Where information is score variance, how many events a planned look will have is foreseen only."""
     if look.state == "planned":
-        return f"final, {look.events} events" if look.kind == "final" else f"{look.events} events"
+        events = f"{'about ' if by == 'score variance' else ''}{look.events} events"
+        return f"final, {events}" if look.kind == "final" else events
     return f"{look.fraction:.3f} · {look.events} events"
 
 

@@ -413,6 +413,10 @@ class Sheet:
         return tuple(table for table in (self.figure_table, self.second_figure_table) if table)
 
 
+CountedBy = Literal["", "events", "score variance"]
+"""How information is counted, to be said where a plan counts it in score variance."""
+
+
 @dataclass(frozen=True)
 class SpineLook:
     """One look on the spine; `planned` is the plan's fraction bound to it.
@@ -433,9 +437,12 @@ class SpineLook:
 
 @dataclass(frozen=True)
 class Spine:
+    """The axis of looks. `by` says how information is counted where that is not taken for granted."""
+
     looks: tuple[SpineLook, ...]
     planned: tuple[float, ...]
     planned_events: int
+    by: CountedBy = ""
 
 
 @dataclass(frozen=True)

@@ -10,7 +10,7 @@ from typing import Literal
 from app.model.boundary import Crossed
 from app.model.extract import LookKind
 from app.sequential.design import events_by
-from app.sheets.blocks import DateMark, PageFrame, Spine, SpineLook
+from app.sheets.blocks import CountedBy, DateMark, PageFrame, Spine, SpineLook
 from app.sheets.words import day_text, listed
 from app.views.closed import ClosedView
 from app.views.open import OpenView
@@ -22,7 +22,7 @@ LookState = Literal["held before", "frozen", "open"]
 class LookOnFile:
     """One look as both sides may know it, received or held before; `planned` is the fraction it used up.
 
-    `fraction` is of the events planned by the version of the look shown: the spine has one scale.
+    `fraction` is of what is planned by the version of the look shown: the spine has one scale.
     """
 
     number: int
@@ -36,13 +36,18 @@ class LookOnFile:
 
 @dataclass(frozen=True)
 class Surroundings:
-    """What the frame needs besides the look itself. `looks` are those held before, then all received."""
+    """What the frame needs besides the look itself. `looks` are those held before, then all received.
+
+    Where the plan counts information in score variance, `by` says how their fractions are counted here: the
+    open side has events only, since V needs the arms.
+    """
 
     looks: tuple[LookOnFile, ...]
     planned: tuple[float, ...]
     planned_events: int
     plan_version: int
     run_on: date
+    by: CountedBy = ""
 
     def state_of(self, number: int) -> LookState:
         return next(look.state for look in self.looks if look.number == number)
@@ -118,7 +123,7 @@ def spine(
         )
         for look in around.looks
     ]
-    return Spine((*held, *_still_planned(around)), around.planned, around.planned_events)
+    return Spine((*held, *_still_planned(around)), around.planned, around.planned_events, around.by)
 
 
 def _still_planned(around: Surroundings) -> Sequence[SpineLook]:

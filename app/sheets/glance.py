@@ -30,9 +30,9 @@ from app.sheets.curves import (
 from app.sheets.extract import changed_events_sentence, changes_figure, data_sentence, open_data_sheet
 from app.sheets.frame import Surroundings
 from app.sheets.information import (
+    counted_by,
     follow_up_sentence,
     information_sentence,
-    is_by_variance,
     open_information_sheet,
 )
 from app.sheets.methods import methods, spending_key
@@ -149,7 +149,7 @@ def _information_line(view: ClosedView, around: Surroundings) -> Line:
         information.planned_events,
         information.fraction,
         planned,
-        by_variance=is_by_variance(view),
+        by=counted_by(view),
     )
     return line(said, " ", follow_up_sentence(view))
 
@@ -161,7 +161,7 @@ def _information_strip(around: Surroundings, shown: int) -> InformationStrip:
         description="Looks held, on the scale of information from 0 to 1.",
         held=held,
         planned=around.planned,
-        total=count(around.planned_events),
+        total=Span("planned") if around.by == "score variance" else count(around.planned_events),
     )
 
 

@@ -9,7 +9,18 @@ from app.model.look import CalendarCounts
 from app.model.values import Absent, Estimate
 from app.sheets.arms import label_of
 from app.sheets.axis import display_unit
-from app.sheets.blocks import CalendarFigure, Cell, Column, Line, Row, Series, Sheet, Span, Table
+from app.sheets.blocks import (
+    CalendarFigure,
+    Cell,
+    Column,
+    CountedBy,
+    Line,
+    Row,
+    Series,
+    Sheet,
+    Span,
+    Table,
+)
 from app.sheets.curves import in_unit, preposition
 from app.sheets.methods import methods
 from app.sheets.words import NO_BREAK, count, day_text, decimal, line, number, of_total
@@ -36,7 +47,7 @@ def information_sheet(view: ClosedView, planned: float | None) -> Sheet:
                 information.planned_events,
                 information.fraction,
                 planned,
-                by_variance=is_by_variance(view),
+                by=counted_by(view),
             ),
         ),
         figure=calendar_figure(look.calendar, information.planned_events, look.cutoff_day),
@@ -55,7 +66,7 @@ def open_information_sheet(view: OpenView, planned: float | None) -> Sheet:
         number=2,
         name="Information",
         question=QUESTION,
-        answer=(information_sentence(look.events, look.planned_events, look.fraction, planned),),
+        answer=(information_sentence(look.events, look.planned_events, look.fraction, planned, by=view.by),),
         figure=calendar_figure(look.calendar, look.planned_events, look.cutoff_day),
         tables=(_pooled_table(view),),
         folded=_pooled_strata_table(view),
@@ -65,18 +76,18 @@ def open_information_sheet(view: OpenView, planned: float | None) -> Sheet:
 
 
 def information_sentence(
-    events: int, total: int, fraction: float, planned: float | None, *, by_variance: bool = False
+    events: int, total: int, fraction: float, planned: float | None, *, by: CountedBy = ""
 ) -> Line:
     """ "384 of 538 planned events: information fraction 0.714, planned 0.75." """
     against = line(", planned ", plan_fraction(planned)) if planned is not None else ()
-    unit = " by score variance" if by_variance else ""
+    unit = f" by {by}" if by else ""
     said = line(" planned events: information fraction ", number(fraction, 3), unit)
     return line(of_total(events, total), said, against, ".")
 
 
-def is_by_variance(view: ClosedView) -> bool:
-    """Whether the plan counts information in score variance; the open side always counts events."""
-    return view.plan.design.information == "score variance"
+def counted_by(view: ClosedView) -> CountedBy:
+    """Said where the plan counts information in score variance; the open side always counts events."""
+    return "score variance" if view.plan.design.information == "score variance" else ""
 
 
 def plan_fraction(value: float) -> Span:

@@ -67,7 +67,10 @@ def counts_table(understood: Understanding) -> Table:
         return Table(line("Counts"), (), ())
     rows = (
         Row(line("Events, of subjects"), (Cell(of_total(understood.events, understood.subjects)),)),
-        Row(line("Information fraction"), (Cell(line(decimal(understood.fraction, 3))),)),
+        Row(
+            line(f"Information fraction{f' by {understood.by}' if understood.by else ''}"),
+            (Cell(line(decimal(understood.fraction, 3))),),
+        ),
     )
     return Table(line("Both arms together"), (Column(()),), rows)
 

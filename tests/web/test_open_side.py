@@ -22,6 +22,7 @@ from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL, held_before
 from tests.web.dealt import dealt, pooled_patients, serving
 from tests.web.served import OWN, Served
 
+EVENTS = "planned_events = 80"
 EFFICACY = "[efficacy]\n"
 LESS_KNOWN = f'[[held]]\nnumber = 2\nevents = 20\nsource = "C"\n{EFFICACY}'
 LOOKS = (1, 2, 3)
@@ -201,6 +202,16 @@ def test_what_was_compared_at_looks_held_before_changes_nothing_on_the_open_side
     assert b"held before" in found[0]["/open/looks/3/glance"][2]
     for other in found[1:]:
         assert differing(found[0], other) == []
+
+
+def test_where_information_is_score_variance_the_open_side_does_not_depend_on_it(tmp_path: Path) -> None:
+    by_variance = f'{EVENTS}\ninformation = "score variance"\nplanned_score_variance = 20.0'
+    people, found = dealt(pooled_patients(), 0.3, seed=3), []
+    for name, trial in (("one", people), ("other", dealt(pooled_patients(), 3.0, seed=4))):
+        with serving(tmp_path / name, trial, looks=2, changes=((EVENTS, by_variance),)) as served:
+            found.append(everything_open(served))
+    assert b"Information by events" in found[0]["/open/looks/2/glance"][2]
+    assert differing(*found) == []
 
 
 def test_unmasking_and_what_is_recorded_later_change_nothing_on_the_open_side(tmp_path: Path) -> None:

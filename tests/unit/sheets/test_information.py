@@ -119,7 +119,7 @@ def test_masked_follow_up_and_counts_are_by_letter() -> None:
 
 
 def test_information_counted_in_score_variance_is_said_so() -> None:
-    said = information_sentence(384, 538, 0.7, 0.75, by_variance=True)
+    said = information_sentence(384, 538, 0.7, 0.75, by="score variance")
     assert text(said) == (
         "384 of 538 planned events: information fraction 0.700 by score variance, planned 0.75."
     )
