@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass, fields, is_dataclass
 from datetime import date
@@ -9,7 +10,7 @@ from typing import Any
 
 from app.errors import DesignInvalid
 from app.intake.plan import PlanRefused
-from app.model.plan import Plan
+from app.model.plan import Hypothesis, Plan
 
 NOT_SET = "not set"
 TABLE_OF_FIELD = {"hypotheses": "hypothesis"}
@@ -25,6 +26,8 @@ FIXED: Mapping[str, str] = {
     "endpoint.event_is": ANOTHER_TRIAL,
     "design.sides": "leave it as it was: alpha was spent on the sides of the plan in force",
     "design.information": "leave it as it was: looks were held by the information of the plan in force",
+    "harm.parameter": "leave it as it was: looks were held with harm judged on that endpoint",
+    "hypothesis.event_is": "leave it as it was, or drop this hypothesis: looks were held in that direction",
 }
 """Keys on which looks already held rest, with what a person can do instead."""
 
@@ -50,6 +53,7 @@ def plan_changes(before: Plan, after: Plan) -> tuple[PlanChange, ...]:
 
 def refuse_fixed(changes: Sequence[PlanChange], name: str) -> None:
     """PlanRefused with a sentence for each change that looks already held do not allow."""
+    whole = {_table(change) for change in changes if _comes_or_goes(change)}
     problems = [
         DesignInvalid(
             f"{change.key} cannot be amended",
@@ -59,7 +63,7 @@ def refuse_fixed(changes: Sequence[PlanChange], name: str) -> None:
             remedy=remedy,
         )
         for change in changes
-        if (remedy := FIXED.get(change.key, ""))
+        if (remedy := FIXED.get(_unnumbered(change.key), "")) and _table(change) not in whole
     ]
     problems += _held_problems(changes, name)
     if problems:
@@ -79,6 +83,24 @@ def _held_problems(changes: Sequence[PlanChange], name: str) -> Iterator[DesignI
         )
 
 
+MAY_COME_AND_GO = ("harm.spending", "hypothesis.spending")
+"""A required key of each table that may be added or dropped whole; with it every key of the table changes."""
+
+
+def _table(change: PlanChange) -> str:
+    return change.key.rpartition(".")[0].removesuffix(".efficacy")
+
+
+def _comes_or_goes(change: PlanChange) -> bool:
+    key = _unnumbered(change.key).replace(".efficacy", "")
+    return key in MAY_COME_AND_GO and NOT_SET in (change.before, change.after)
+
+
+def _unnumbered(key: str) -> str:
+    """The key without what tells tables of one name apart."""
+    return re.sub(r"\[.*\]", "", key)
+
+
 def _keys_of_plan(plan: Plan) -> Iterator[tuple[str, str]]:
     for part in fields(plan):
         if part.name != "digest":
@@ -93,7 +115,8 @@ def _keys(name: str, value: Any) -> Iterator[tuple[str, str]]:
             yield from _keys(f"{name}.{key.name}", getattr(value, key.name))
     elif isinstance(value, tuple) and value and is_dataclass(value[0]):
         for number, item in enumerate(value, start=1):
-            yield from _keys(f"{name}[{number}]", item)
+            told_apart_by = item.parameter if isinstance(item, Hypothesis) else number
+            yield from _keys(f"{name}[{told_apart_by}]", item)
     elif value is not None and value != ():
         yield KEY_OF_FIELD.get(name, name), written(value)
 

@@ -11,6 +11,7 @@ from difflib import get_close_matches
 import numpy as np
 
 from app.intake.checks import Checked, all_findings
+from app.intake.further_endpoints import further_findings
 from app.intake.csv_table import TableRefused, read_header
 from app.intake.findings import finding
 from app.intake.privacy import identifying_columns
@@ -141,10 +142,13 @@ def _rows(survey: _Survey, plan: Plan, limits: Limits, findings: list[Finding]) 
     except TableRefused as refusal:
         findings.append(refusal.finding)
         return None
-    if plan.endpoint.parameter not in rows.parts["parameter"].texts:
-        findings.append(_parameter_absent(rows, plan.endpoint.parameter))
-        return None
-    return rows
+    absent = [
+        _parameter_absent(rows, each.parameter)
+        for each in (plan.endpoint, *plan.further_endpoints)
+        if each.parameter not in rows.parts["parameter"].texts
+    ]
+    findings += absent
+    return None if absent else rows
 
 
 def _parameter_absent(rows: Rows, parameter: str) -> Finding:
@@ -165,13 +169,21 @@ def _parameter_absent(rows: Rows, parameter: str) -> Finding:
 def _understood(
     survey: _Survey, rows: Rows, plan: Plan, cutoff: date | None, findings: list[Finding]
 ) -> Extract:
-    endpoint = endpoint_rows(rows.of_parameter(plan.endpoint.parameter))
-    findings += all_findings(Checked(endpoint, plan, cutoff))
+    primary, *further = (
+        Checked(endpoint_rows(rows.of_parameter(each.parameter)), plan.on(each), cutoff)
+        for each in (plan.endpoint, *plan.further_endpoints)
+    )
+    findings += all_findings(primary)
+    told = {each.id for each in findings}
+    for each in further:
+        findings += further_findings(each, primary, told)
     blocked = any(each.severity == "block" for each in findings)
+    samples = [] if blocked else [sample_of(each.endpoint, each.plan) for each in (primary, *further)]
     return Extract(
         files=_readings(survey, rows),
         findings=_sorted(findings),
-        sample=None if blocked else sample_of(endpoint, plan),
+        sample=samples[0] if samples else None,
+        further=tuple(samples[1:]),
         parameters=_parameters(rows),
     )
 

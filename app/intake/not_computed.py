@@ -23,8 +23,6 @@ class NotComputed:
 
 
 NOT_COMPUTED = (
-    NotComputed("harm", "a harm boundary on another endpoint is not computed", key="parameter"),
-    NotComputed("hypothesis", "further hypotheses are not computed"),
     NotComputed("enrolment", "a monthly rate of enrolment is not used", key="planned_per_month"),
     NotComputed("enrolment", "drop-out for forecasts is not used", key="dropout_per_year"),
     NotComputed("analysis", "subgroups are not computed", key="subgroups"),

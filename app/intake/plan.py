@@ -259,11 +259,16 @@ def _rule_problems(tables: Mapping[str, list[Values]], place: Place) -> Iterator
 
 def _repeated_problems(tables: Mapping[str, list[Values]], place: Place) -> Iterator[DesignInvalid]:
     hypotheses = tables.get("hypothesis", [])
-    yield from rules.hypothesis_rules(hypotheses, place.table("hypothesis", repeated=True))
+    first = {key: tables[key][0] for key in ("design", "endpoint", "harm") if tables.get(key)}
+    design = first.get("design", {})
+    where = place.table("hypothesis", repeated=True)
+    yield from rules.hypothesis_rules(hypotheses, where)
+    yield from rules.endpoint_rules(hypotheses, where, first.get("endpoint", {}), first.get("harm", {}))
     for number, item in enumerate(hypotheses, 1):
         inner = place.table("hypothesis", number=number, repeated=True).key("efficacy")
-        yield from rules.family_rules(item.get("efficacy", {}), inner, alpha_one_side=item.get("alpha"))
-    design = tables["design"][0] if tables.get("design") else {}
+        alpha, sides = item.get("alpha"), design.get("sides")
+        level = alpha / sides if alpha and sides else None
+        yield from rules.family_rules(item.get("efficacy", {}), inner, alpha_one_side=level)
     yield from rules.held_rules(tables.get("held", []), place.table("held", repeated=True), design)
 
 

@@ -206,6 +206,16 @@ def hypothesis_rules(hypotheses: Sequence[Values], place: Place) -> Problems:
             accepted="a different name for each; 'primary' is the plan's own endpoint",
             remedy="rename one of them",
         )
+    waits = {item["name"]: item["after"] for item in hypotheses if "name" in item and "after" in item}
+    circle = sorted(name for name in waits if _waits_for_itself(name, waits))
+    if len(circle) > 1:
+        yield DesignInvalid(
+            "Hypotheses wait for each other in a circle",
+            where=str(place.key("after")),
+            found=", ".join(map(shown, circle)),
+            accepted="a chain that begins at 'primary' or at a hypothesis without after",
+            remedy="let one of them wait for none of the others",
+        )
     for item in hypotheses:
         if "after" in item and (item["after"] not in names or item["after"] == item.get("name")):
             yield DesignInvalid(
@@ -214,6 +224,38 @@ def hypothesis_rules(hypotheses: Sequence[Values], place: Place) -> Problems:
                 found=shown(item["after"]),
                 accepted="'primary' or the name of another hypothesis",
                 remedy="correct the name",
+            )
+
+
+def _waits_for_itself(name: str, waits: Mapping[str, str]) -> bool:
+    """True where the chain of what it waits for comes back to it."""
+    at, seen = waits.get(name), set[str]()
+    while at is not None and at != name and at not in seen:
+        seen.add(at)
+        at = waits.get(at)
+    return at == name
+
+
+def endpoint_rules(hypotheses: Sequence[Values], place: Place, endpoint: Values, harm: Values) -> Problems:
+    """Each hypothesis stands on an endpoint of its own, and harm counts bad events."""
+    codes = [endpoint.get("parameter"), *(item.get("parameter") for item in hypotheses)]
+    known = [code for code in codes if code is not None]
+    for code in sorted({code for code in known if known.count(code) > 1}):
+        yield DesignInvalid(
+            "Two hypotheses stand on one endpoint",
+            where=str(place.key("parameter")),
+            found=shown(code),
+            accepted="a parameter of its own for each, and none that is the plan's [endpoint]",
+            remedy="correct the parameter, or remove one of them",
+        )
+    for item in hypotheses:
+        if item.get("event_is") == "good" and item.get("parameter") == harm.get("parameter", ""):
+            yield DesignInvalid(
+                "Harm would be judged on an endpoint whose event is good",
+                where=str(place.key("event_is")),
+                found=f"event_is = 'good' for {shown(item['parameter'])}, which [harm] names",
+                accepted="an endpoint with bad events for harm",
+                remedy="correct event_is, or the parameter of [harm]",
             )
 
 

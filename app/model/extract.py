@@ -94,11 +94,16 @@ class ReadingOfFile:
 
 @dataclass(frozen=True, eq=False)
 class Extract:
-    """An extract as understood under a plan. `sample` is None exactly when a finding blocks."""
+    """An extract as understood under a plan. `sample` is None exactly when a finding blocks.
+
+    `further` holds the plan's further endpoints (`Plan.further_endpoints`, in that order), all of them or,
+    when a finding blocks, none.
+    """
 
     files: tuple[ReadingOfFile, ...]
     findings: tuple[Finding, ...]
     sample: Sample | None
+    further: tuple[Sample, ...] = ()
     parameters: tuple[tuple[str, int, int], ...] = ()  # every endpoint in the extract: PARAMCD, rows, events
 
     @property

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from datetime import date
 from typing import Literal
 
@@ -124,7 +124,10 @@ class Futility:
 
 @dataclass(frozen=True)
 class Harm:
-    """Harm boundary with its own one-sided alpha; `endpoint_parameter` names another endpoint."""
+    """Harm boundary with its own one-sided alpha; `endpoint_parameter` names another endpoint.
+
+    The events of that endpoint are bad ones, whatever those of the plan's are.
+    """
 
     spending: str
     alpha: float
@@ -146,6 +149,8 @@ class Analysis:
 
 @dataclass(frozen=True)
 class Hypothesis:
+    """A further endpoint with its own alpha, on the sides of the plan's; `after` names what it waits for."""
+
     name: str
     parameter: str
     label: str
@@ -154,6 +159,10 @@ class Hypothesis:
     planned_events: int
     efficacy: Efficacy
     after: str | None = None
+
+    @property
+    def endpoint(self) -> Endpoint:
+        return Endpoint(self.parameter, self.label, self.event_is)
 
 
 @dataclass(frozen=True)
@@ -183,3 +192,45 @@ class Plan:
     harm: Harm | None = None
     hypotheses: tuple[Hypothesis, ...] = ()
     held: tuple[HeldLook, ...] = ()
+
+    @property
+    def harm_endpoint(self) -> Endpoint | None:
+        """The endpoint of harm, where it is another one than the plan's."""
+        named = None if self.harm is None else self.harm.endpoint_parameter
+        return None if named in (None, self.endpoint.parameter) else Endpoint(named, named)
+
+    @property
+    def further_endpoints(self) -> tuple[Endpoint, ...]:
+        """What an extract must hold beside the plan's endpoint, each parameter once."""
+        named = tuple(each.endpoint for each in self.hypotheses)
+        harm = self.harm_endpoint
+        known = harm is None or harm.parameter in {each.parameter for each in named}
+        return named if known or harm is None else (*named, harm)
+
+    def on(self, endpoint: Endpoint) -> Plan:
+        """This plan read on another endpoint: arms, columns and analysis as they are."""
+        return replace(self, endpoint=endpoint)
+
+    def for_hypothesis(self, hypothesis: Hypothesis) -> Plan:
+        """The plan of a further hypothesis: its own endpoint, alpha, events and spending, nothing else of a test.
+
+        Information is its events. Looks held before the file, futility and harm are those of the plan's own
+        endpoint; a safety look costs it nothing.
+        """
+        design = replace(
+            self.design,
+            alpha=hypothesis.alpha,
+            planned_events=hypothesis.planned_events,
+            information="events",
+            planned_score_variance=None,
+            safety_spend=0.0,
+        )
+        return replace(
+            self.on(hypothesis.endpoint),
+            design=design,
+            efficacy=hypothesis.efficacy,
+            futility=None,
+            harm=None,
+            hypotheses=(),
+            held=(),
+        )

@@ -61,6 +61,7 @@ NO_HARM_ALPHA_TO_SPEND = Absent(
     "the alpha for harm that may be spent by this information fraction is already spent, or less than a "
     "double can hold: no harm bound exists"
 )
+NO_HARM_EVENTS_PLANNED = Absent("the plan foresees no events of harm's own endpoint")
 NO_CRITERION = Absent("the last look has no efficacy bound, so there is no conditional power to be limited")
 
 
@@ -189,13 +190,15 @@ def _standing_after(rules: _Rules, past: Sequence[LookAsUsed]) -> _Standing:
         if rules.futility is not None:
             stays = rules.efficacy.region(look.efficacy_z, lower)
             under_effect = under_effect.then(look.information, stays)
-        harm_course = harm_course.then(_harm_information(look), Region(upper=-_finite(look.harm_z)))
+        if rules.harm is not None:
+            of_harm = _harm_information(rules.harm, look)
+            harm_course = harm_course.then(of_harm, Region(upper=-_finite(look.harm_z)))
     return _Standing(
         course,
         under_effect,
         harm_course,
         information=max((look.information for look in past), default=0.0),
-        harm_information=max(map(_harm_information, past), default=0.0),
+        harm_information=max((_harm_information(rules.harm, look) for look in past), default=0.0),
         alpha_spent=_alpha_spent(rules.efficacy, past, crossing),
         type_two_spent=max((look.type_two_spent for look in past), default=0.0),
         harm_alpha_spent=max((look.harm_alpha_spent for look in past), default=0.0),
@@ -208,8 +211,13 @@ def _finite(z: Estimate | None) -> float:
     return -math.inf if z is None or isinstance(z, Absent) else z
 
 
-def _harm_information(look: LookAsUsed | LookAhead) -> float:
-    return look.information if look.harm_information is None else look.harm_information
+def _harm_information(rule: HarmRule | None, look: LookAsUsed | LookAhead) -> float:
+    """What harm's correlations use: its own endpoint's, of which a look held without one had none."""
+    if rule is None or not rule.own_endpoint:
+        return look.information
+    if look.harm_information is None:
+        return 0.0 if isinstance(look, LookAsUsed) else look.information
+    return look.harm_information
 
 
 def _alpha_spent(rule: EfficacyRule, past: Sequence[LookAsUsed], crossing: float) -> float:
@@ -240,7 +248,7 @@ def _bound_at(rules: _Rules, standing: _Standing, look: LookAhead) -> tuple[Boun
     efficacy = _efficacy_side(rules.efficacy, standing, look, untested)
     futility = _futility_side(rules, standing, look, efficacy, untested)
     harm = _harm_side(rules.harm, standing, look)
-    bound = _bound(rules.efficacy.direction, look, efficacy, futility, harm)
+    bound = _bound(rules, look, efficacy, futility, harm)
     return bound, _stand(rules, standing, look, (efficacy, futility, harm))
 
 
@@ -363,7 +371,7 @@ def _harm_side(rule: HarmRule | None, standing: _Standing, look: LookAhead) -> _
     """The mirror of a one-sided bound at harm's own alpha, by the information of harm's endpoint."""
     if rule is None:
         return None
-    spent, information = standing.harm_alpha_spent, _harm_information(look)
+    spent, information = standing.harm_alpha_spent, _harm_information(rule, look)
     if standing.crossed_at is not None:
         return _Side(_over_running(standing.crossed_at), spent)
     if information <= standing.harm_information:
@@ -381,15 +389,15 @@ def _stand(
     """What stands after this look. A final futility bound is the efficacy bound: no region lies between."""
     efficacy, futility, harm = sides
     lower = -math.inf if futility is None or look.final else _finite(futility.z)
-    tested = look.kind != "safety"
+    tested, of_harm = look.kind != "safety", _harm_information(rules.harm, look)
     stays = rules.efficacy.region(efficacy.z, lower if rules.binding else -math.inf) if tested else Region()
     under_effect = rules.efficacy.region(efficacy.z, lower) if futility and tested else Region()
     return _Standing(
         standing.course.then(look.information, stays),
         standing.course_under_effect.then(look.information, under_effect),
-        standing.harm_course.then(_harm_information(look), Region(upper=-_finite(harm.z if harm else None))),
+        standing.harm_course.then(of_harm, Region(upper=-_finite(harm.z))) if harm else standing.harm_course,
         information=max(standing.information, look.information),
-        harm_information=max(standing.harm_information, _harm_information(look)),
+        harm_information=max(standing.harm_information, of_harm),
         alpha_spent=efficacy.spent,
         type_two_spent=futility.spent if futility else standing.type_two_spent,
         harm_alpha_spent=harm.spent if harm else standing.harm_alpha_spent,
@@ -398,9 +406,9 @@ def _stand(
 
 
 def _bound(
-    turn: Direction, look: LookAhead, efficacy: _Side, futility: _Side | None, harm: _Side | None
+    rules: _Rules, look: LookAhead, efficacy: _Side, futility: _Side | None, harm: _Side | None
 ) -> Bound:
-    harm_variance = look.score_variance if look.harm_score_variance is None else look.harm_score_variance
+    turn = rules.efficacy.direction
     return Bound(
         number=look.number,
         information_fraction=look.fraction,
@@ -416,5 +424,12 @@ def _bound(
         futility_hazard_ratio=hazard_ratio_at(futility.z, look.score_variance, turn) if futility else None,
         harm_z=harm.z if harm else None,
         harm_alpha_spent=harm.spent if harm else None,
-        harm_hazard_ratio=hazard_ratio_at(harm.z, harm_variance, turn) if harm else None,
+        harm_hazard_ratio=_harm_ratio(rules.harm, look, harm.z, turn) if rules.harm and harm else None,
     )
+
+
+def _harm_ratio(rule: HarmRule, look: LookAhead, z: Estimate, turn: Direction) -> Estimate:
+    variance = look.harm_score_variance if rule.own_endpoint else look.score_variance
+    if variance is None:
+        return z if isinstance(z, Absent) else NO_HARM_EVENTS_PLANNED
+    return hazard_ratio_at(z, variance, rule.direction(turn))

@@ -103,10 +103,18 @@ FutilityRule = FutilitySpending | FutilityByConditionalPower | FutilityByHazardR
 
 @dataclass(frozen=True)
 class HarmRule:
-    """How harm spends its own one-sided alpha; on `own_endpoint` its information is not that of the test."""
+    """How harm spends its own one-sided alpha.
+
+    On `own_endpoint` its information and its z are not those of the test, and its event is a bad one. Alpha
+    is spent by the clock of the test all the same: the plan foresees no total for that endpoint.
+    """
 
     spending: SpendingFunction
     own_endpoint: bool = False
+
+    def direction(self, of_the_test: Direction) -> Direction:
+        """Which way z points: +1 where harm counts the bad events of its own endpoint."""
+        return 1 if self.own_endpoint else of_the_test
 
 
 @dataclass(frozen=True)
@@ -115,7 +123,8 @@ class LookAhead:
 
     `score_variance` is the I of the hazard ratio at a bound: V observed for a look held, d p q for a planned
     one, or the reason why there is none. `clock` is the calendar fraction where the plan spends by the
-    calendar. What begins with harm is of harm's own endpoint, where it has one.
+    calendar. What begins with harm is of harm's own endpoint, where it has one; without it the information of
+    that endpoint is taken to grow as that of the test does.
     """
 
     number: int

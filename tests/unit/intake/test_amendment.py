@@ -52,11 +52,35 @@ def test_whole_tables_come_and_go_key_by_key() -> None:
     )
 
 
-def test_repeated_tables_are_numbered() -> None:
-    death = Hypothesis("Death", "DEATH", "Death", "bad", 0.025, 300, Efficacy("Pocock-type"), after="primary")
-    keys = [change.key for change in plan_changes(plan(), replace(plan(), hypotheses=(death,)))]
-    assert keys[0] == "hypothesis[1].name"
-    assert "hypothesis[1].efficacy.spending" in keys
+DEATH = Hypothesis("Death", "DEATH", "Death", "bad", 0.025, 300, Efficacy("Pocock-type"), after="primary")
+STROKE = replace(DEATH, name="Stroke", parameter="STROKE")
+
+
+def test_hypotheses_are_told_apart_by_their_endpoint() -> None:
+    keys = [change.key for change in plan_changes(plan(), replace(plan(), hypotheses=(DEATH,)))]
+    assert keys[0] == "hypothesis[DEATH].name"
+    assert "hypothesis[DEATH].efficacy.spending" in keys
+    both, one = replace(plan(), hypotheses=(DEATH, STROKE)), replace(plan(), hypotheses=(STROKE,))
+    assert {change.key.partition(".")[0] for change in plan_changes(both, one)} == {"hypothesis[DEATH]"}
+
+
+def test_a_hypothesis_comes_or_goes_whole_but_does_not_turn_round() -> None:
+    one = replace(plan(), hypotheses=(DEATH,))
+    refuse_fixed(plan_changes(plan(), one), "plan-2.toml")
+    refuse_fixed(plan_changes(one, plan()), "plan-2.toml")
+    turned = replace(plan(), hypotheses=(replace(DEATH, event_is="good"),))
+    with pytest.raises(PlanRefused, match=r"Hypothesis\[DEATH\].event_is cannot be amended"):
+        refuse_fixed(plan_changes(one, turned), "plan-2.toml")
+
+
+def test_harm_comes_or_goes_whole_but_stays_on_its_endpoint() -> None:
+    on_death = replace(plan(), harm=Harm("Pocock-type", 0.05, "DEATH"))
+    refuse_fixed(plan_changes(plan(), on_death), "plan-2.toml")
+    refuse_fixed(plan_changes(on_death, plan()), "plan-2.toml")
+    elsewhere = replace(plan(), harm=Harm("Pocock-type", 0.05))
+    for before, after in ((on_death, elsewhere), (elsewhere, on_death)):
+        with pytest.raises(PlanRefused, match="Harm.parameter cannot be amended"):
+            refuse_fixed(plan_changes(before, after), "plan-2.toml")
 
 
 def test_every_key_of_a_plan_has_the_name_that_the_plan_file_gives_it() -> None:

@@ -345,12 +345,12 @@ source = "Charter table 2"
 """
 
 
-def test_tables_of_later_work_are_refused_by_name():
-    assert [told.split(". ")[0] for told in problems(SOUND + OPTIONAL_TABLES)] == [
-        "A harm boundary on another endpoint is not computed by this version in q17.toml, table [harm], "
-        "key parameter",
-        "Further hypotheses are not computed by this version in q17.toml, table [[hypothesis]]",
-    ]
+def test_harm_on_another_endpoint_and_further_hypotheses_are_read():
+    plan = read(SOUND + OPTIONAL_TABLES)
+    assert plan.harm.endpoint_parameter == "DEATH"
+    (death,) = plan.hypotheses
+    assert (death.name, death.after, death.alpha, death.planned_events) == ("Death", "primary", 0.025, 300)
+    assert death.efficacy.spending == "O'Brien-Fleming-type"
 
 
 def test_futility_harm_and_held_looks_are_read():

@@ -1,0 +1,92 @@
+"""Tests that wait for another: a hypothesis is tested only at looks at which the one before it has crossed.
+
+Its own bounds stand at every look, by its own spending function and its own information, whether or not it is
+tested there; what they spend is never given back. So each hypothesis is tested at its own level within a
+closed test, and no error is made by choosing when to open the gate.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+
+from app.model.boundary import Bound, Crossed, LookAsUsed, Verdict
+from app.model.plan import Hypothesis, Sides
+from app.sequential.verdict import crossed, first_crossed, verdict
+
+PRIMARY = "primary"
+
+
+def opened_at(past: Sequence[LookAsUsed], here: Verdict, number: int) -> int | None:
+    """The first look at which efficacy was crossed, `here` being the verdict of look `number`; None if none.
+
+    A crossing on the other side, or of futility, opens nothing.
+    """
+    held = next((look.number for look in past if look.crossed == "efficacy"), None)
+    return number if held is None and here.crossed == "efficacy" else held
+
+
+def gated_history(
+    past: Sequence[LookAsUsed], opened: int | None, sides: Sides
+) -> tuple[LookAsUsed, ...]:
+    """The looks held of a hypothesis that waits, each crossing decided anew: none before the gate opened."""
+    decided: list[LookAsUsed] = []
+    for look in past:
+        tested = opened is not None and look.number >= opened and first_crossed(decided) is None
+        here: Crossed = crossed(look.z, look, sides) if tested else "none"
+        decided.append(replace(look, crossed=here))
+    return tuple(decided)
+
+
+def gated_verdict(
+    past: Sequence[LookAsUsed], z: float | None, bound: Bound, sides: Sides, opened: int | None
+) -> Verdict:
+    """Where a hypothesis stands at a look whose gate opened at look `opened`, or has not opened (None).
+
+    Notes
+    -----
+    *Convention*: a hypothesis whose z lay beyond its bound while it waited has not crossed; it is tested with
+    what it holds at the look that opens the gate, and at those after.
+
+    References
+    ----------
+    Hung, Wang & O'Neill (2007), Journal of Biopharmaceutical Statistics 17, 1201-1210; Glimm, Maurer & Bretz
+    (2010), Statistics in Medicine 29, 219-228; Tamhane, Mehta & Liu (2010), Biometrics 66, 1174-1184.
+    """
+    if opened is None:
+        return Verdict("none", None)
+    return verdict(gated_history(past, opened, sides), z, bound, sides)
+
+
+def in_testing_order(hypotheses: Sequence[Hypothesis]) -> tuple[Hypothesis, ...]:
+    """Each after the one that it waits for; else as the plan has them. Names are known and run in no circle."""
+    done: dict[str, Hypothesis] = {}
+    while len(done) < len(hypotheses):
+        for each in hypotheses:
+            if each.name not in done and each.after in {None, PRIMARY, *done}:
+                done[each.name] = each
+    return tuple(done.values())
+
+
+def family_alpha(primary: float, hypotheses: Sequence[Hypothesis]) -> float:
+    """The level at which all hypotheses together are tested: alpha in the sense in which the plan gives it.
+
+    Notes
+    -----
+    *Convention*: hypotheses side by side add up (Bonferroni); along a chain the larger counts, of a
+    hypothesis and of all that wait for it, since the ones that wait are tested only where it was rejected.
+
+    References
+    ----------
+    Bonferroni's inequality and the closure principle: Marcus, Peritz & Gabriel (1976), Biometrika 63, 655-660.
+    """
+    waiting: Mapping[str, list[Hypothesis]] = {
+        name: [each for each in hypotheses if each.after == name]
+        for name in (PRIMARY, *(each.name for each in hypotheses))
+    }
+
+    def of_chain(name: str, alpha: float) -> float:
+        return max(alpha, sum(of_chain(each.name, each.alpha) for each in waiting[name]))
+
+    beside = sum(of_chain(each.name, each.alpha) for each in hypotheses if each.after is None)
+    return of_chain(PRIMARY, primary) + beside
