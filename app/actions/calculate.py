@@ -17,6 +17,7 @@ from app.review import as_used
 from app.review.feasibility import boundary_of, plan_doubts, power_doubts
 from app.review.held import held_looks
 from app.review.received import Delivery, review_delivery
+from app.sequential.design import bounds_planned
 from app.settings import Settings
 from app.validation import published_rows
 from app.validation.rows import RowOutcome
@@ -77,8 +78,11 @@ def boundary(
     """The record of a plan's bounds at its own looks or at these fractions."""
     read = read_plan(plan, name=plan_name, limits=settings.limits)
     planned = boundary_of(read, fractions, final=final)
+    hypotheses = [
+        (each, bounds_planned(read.for_hypothesis(each), fractions, final=final)) for each in read.hypotheses
+    ]
     doubts = power_doubts(read, planned.feasibility)
-    return boundary_record(planned, plan_digest=read.digest, run_at=_now(settings), findings=doubts)
+    return boundary_record(planned, read, run_at=_now(settings), hypotheses=hypotheses, findings=doubts)
 
 
 def validate() -> tuple[RowOutcome, ...]:

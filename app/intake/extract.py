@@ -11,9 +11,9 @@ from difflib import get_close_matches
 import numpy as np
 
 from app.intake.checks import Checked, all_findings
-from app.intake.further_endpoints import further_findings
 from app.intake.csv_table import TableRefused, read_header
 from app.intake.findings import finding
+from app.intake.further_endpoints import further_findings
 from app.intake.privacy import identifying_columns
 from app.intake.readings import censor
 from app.intake.rows import (

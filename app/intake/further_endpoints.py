@@ -1,4 +1,4 @@
-"""The plan's further endpoints: each checked as the plan's own is, then held against it subject by subject."""
+"""The plan's further endpoints: checked as the plan's own is, then held against it subject by subject."""
 
 from __future__ import annotations
 
@@ -90,4 +90,5 @@ def _differs(further: Checked, primary: Checked, here: TextColumn, there: TextCo
     by_subject[subject.codes] = there.codes
     known = _in_codes_of(subject, _subject(further))
     elsewhere = np.where(known == NOT_THERE, NOT_THERE, by_subject[known])
-    return (elsewhere != NOT_THERE) & (elsewhere != _in_codes_of(there, here))
+    differs: Bools = (elsewhere != NOT_THERE) & (elsewhere != _in_codes_of(there, here))
+    return differs

@@ -22,7 +22,8 @@ class LookAsUsed:
     `information` is what correlations use: events, or score variance where the plan says so. `alpha_spent` is
     cumulative, of one side. `efficacy_z` is Absent where the look had no efficacy bound. `futility_z` and
     `harm_z` are None where the plan had no such boundary. `harm_information` and `z_for_harm` are those of
-    harm's own endpoint, None where it is judged on the plan's.
+    harm's own endpoint, None where it is judged on the plan's. `further` holds, by its parameter, what each
+    further hypothesis used at this look.
     """
 
     number: int
@@ -42,6 +43,11 @@ class LookAsUsed:
     harm_alpha_spent: float = 0.0
     harm_information: float | None = None
     z_for_harm: float | None = None
+    further: tuple[tuple[str, LookAsUsed], ...] = ()
+
+    def of(self, parameter: str) -> LookAsUsed | None:
+        """What the hypothesis on this endpoint used at this look, where the plan then had it."""
+        return dict(self.further).get(parameter)
 
 
 @dataclass(frozen=True)

@@ -8,6 +8,7 @@ from datetime import date
 from app.model.boundary import Bound, HeldCompared, LookAsUsed, Verdict
 from app.model.extract import Changes, Finding, LookKind, TimeUnit
 from app.model.outlook import Outlook, RepeatedInterval, Stopping
+from app.model.plan import Hypothesis
 from app.model.survival import ArmComparison, CoxResult, LogrankResult, Shape, SurvivalCurve
 from app.model.values import Absent, Estimate, Ints
 
@@ -64,6 +65,36 @@ class Onwards:
     stopping: Stopping | Absent
 
 
+@dataclass(frozen=True)
+class HarmResult:
+    """Harm judged on an endpoint of its own: who was counted there, and the test, from the side of each arm.
+
+    `information_used` is what its correlations use: events, or score variance where the plan says so.
+    """
+
+    parameter: str
+    control: ArmCounts
+    experimental: ArmCounts
+    information_used: float
+    stratum_labels: tuple[str, ...]
+    compared: ArmComparison
+    mirrored: ArmComparison  # control against experimental
+
+    @property
+    def z(self) -> float | None:
+        test = self.compared.logrank
+        return None if isinstance(test, Absent) else test.z
+
+
+@dataclass(frozen=True, eq=False)
+class HypothesisResult:
+    """A further hypothesis at one look; `opened_at` is the look that opened its gate, None while it waits."""
+
+    hypothesis: Hypothesis
+    result: LookResult
+    opened_at: int | None = None
+
+
 @dataclass(frozen=True, eq=False)
 class LookResult:
     """One look under one plan: information, curves, tests, boundary. `past` are the looks as used.
@@ -102,6 +133,8 @@ class LookResult:
     snapshot_digests: tuple[str, ...]
     plan_digest: str
     held: tuple[HeldCompared, ...] = ()
+    harm: HarmResult | None = None  # where harm stands on an endpoint of its own
+    hypotheses: tuple[HypothesisResult, ...] = ()
 
     @property
     def held_before(self) -> frozenset[int]:

@@ -212,7 +212,7 @@ class Plan:
         return replace(self, endpoint=endpoint)
 
     def for_hypothesis(self, hypothesis: Hypothesis) -> Plan:
-        """The plan of a further hypothesis: its own endpoint, alpha, events and spending, nothing else of a test.
+        """The plan of a further hypothesis: its own endpoint, alpha, planned events and spending.
 
         Information is its events. Looks held before the file, futility and harm are those of the plan's own
         endpoint; a safety look costs it nothing.

@@ -2,7 +2,8 @@
 
 A shape is a Python value: a type or tuple of types for a leaf, a dict for an object with exactly these keys,
 a one-element list for a list. `Maybe(shape)` may also be null (not asked), `Estimable(shape)` may also be
-`{"not_estimable": reason}`. NaN and infinities are no numbers of a record.
+`{"not_estimable": reason}`, and `Later(shape)` may be lacking in a record that was frozen before it came. NaN
+and infinities are no numbers of a record.
 """
 
 from __future__ import annotations
@@ -22,6 +23,13 @@ class Maybe:
 
 @dataclass(frozen=True)
 class Estimable:
+    shape: Any
+
+
+@dataclass(frozen=True)
+class Later:
+    """A name that came after records had been frozen: theirs may lack it."""
+
     shape: Any
 
 
@@ -75,12 +83,16 @@ STOPPING = {
 }  # fmt: skip
 ONWARDS = {"outlook": Maybe(Estimable(OUTLOOK)), "stopping": Maybe(Estimable(STOPPING))}
 """Masked these depend on the reading and stand there; ratios in them are experimental / control."""
-CROSSING = {"crossed": Maybe(str), "first_crossed": Maybe(int)}
-READING = {"experimental": str, "z": ESTIMATE, "p_one_sided": ESTIMATE, **CROSSING, **ONWARDS}
+CROSSING = {"crossed": Maybe(str), "first_crossed": Maybe(int), "waits_for": Later(Maybe(str))}
+READING = {
+    "experimental": str, "z": ESTIMATE, "p_one_sided": ESTIMATE, "z_for_harm": Later(Maybe(NUMBER)),
+    **CROSSING, **ONWARDS,
+}  # fmt: skip
 HISTORY = {
     "number": int, "kind": str, "information": NUMBER, "events": int, "fraction": NUMBER, "z": Maybe(NUMBER),
     "efficacy_z": ESTIMATE, "efficacy_hazard_ratio": ESTIMATE, "alpha_spent": NUMBER, "final": bool,
     "crossed": Maybe(str), "futility_z": Maybe(ESTIMATE), "harm_z": Maybe(ESTIMATE),
+    "z_for_harm": Later(Maybe(NUMBER)),
 }  # fmt: skip
 HELD = {
     "number": int, "events": int, "source": str, "z": Maybe(NUMBER), "efficacy_z": Maybe(NUMBER),
@@ -118,11 +130,13 @@ LANDMARK = {
     "at": NUMBER, "arms": [{"arm": str, "survival": ESTIMATE, "ci_low": ESTIMATE, "ci_high": ESTIMATE}],
     "difference": ESTIMATE, "ci_low": ESTIMATE, "ci_high": ESTIMATE,
 }  # fmt: skip
-NOT_ASKED = (
-    "hypotheses",
-)  # fmt: skip
-"""Parts of a look that a plan of this version cannot ask for: null, so that a reader finds every name."""
-LOOK = {
+HARM_ENDPOINT = {
+    "parameter": str, "information": NUMBER,
+    "arms": [{"arm": str, "subjects": int, "events": int, "person_time": NUMBER,
+              "follow_up_median": ESTIMATE}],
+    "logrank": Estimable(LOGRANK), "cox": Estimable(COX),
+}  # fmt: skip
+ENDPOINT_AT_LOOK = {
     "number": int, "kind": str, "final": bool, "time_unit": str,
     "cutoff": Maybe(str), "extracted": Maybe(str),
     "information": INFORMATION, "changes": Maybe(CHANGES),
@@ -135,7 +149,13 @@ LOOK = {
     "residuals": Estimable(RESIDUALS),
     "restricted_mean": Maybe(Estimable(RESTRICTED_MEAN)), "weighted": Maybe([WEIGHTED]),
     "weighted_maximum": Maybe(Estimable(WEIGHTED_MAXIMUM)), "landmarks": Maybe([LANDMARK]),
-    **dict.fromkeys(NOT_ASKED, Maybe(())),
+}  # fmt: skip
+HYPOTHESIS = {
+    "name": str, "parameter": str, "label": str, "event_is": str, "after": Maybe(str), "alpha": NUMBER,
+}  # fmt: skip
+LOOK = {
+    **ENDPOINT_AT_LOOK, "harm_endpoint": Later(Maybe(HARM_ENDPOINT)),
+    "hypotheses": Maybe([{**HYPOTHESIS, **ENDPOINT_AT_LOOK}]), "alpha_of_all": Later(NUMBER),
 }  # fmt: skip
 ENVELOPE = {
     "format": int, "kind": str, "program": {"name": str, "version": str}, "plan_digest": str,
@@ -151,8 +171,10 @@ EVALUATION_RECORD = {**LOOKS_RECORD, "looks": [LOOK_ASKED]}
 CHANCE = {
     "number": int, "efficacy": NUMBER, "futility": NUMBER, "harm": NUMBER, "control": NUMBER,
 }  # fmt: skip
+HYPOTHESIS_BOUNDS = {**HYPOTHESIS, "planned_events": int, "looks": [BOUND]}
 BOUNDARY_RECORD = {
-    **ENVELOPE, "sides": int, "looks": [BOUND], "noncentrality": ESTIMATE, "power": NUMBER,
+    **ENVELOPE, "hypotheses": Maybe([HYPOTHESIS_BOUNDS]), "alpha_of_all": NUMBER,
+    "sides": int, "looks": [BOUND], "noncentrality": ESTIMATE, "power": NUMBER,
     "inflation": ESTIMATE,
     "expected_information_fraction": {"null": ESTIMATE, "half": ESTIMATE, "design": ESTIMATE},
     "crossing_probability": {"null": [CHANCE], "half": [CHANCE], "design": [CHANCE]},
@@ -163,7 +185,9 @@ BOUNDARY_RECORD = {
 
 def differences(record: Any, shape: Any, where: str = "record") -> Iterator[str]:
     """Every place where `record` does not keep to `shape`, in words; nothing when it does."""
-    if isinstance(shape, Maybe):
+    if isinstance(shape, Later):
+        yield from differences(record, shape.shape, where)
+    elif isinstance(shape, Maybe):
         if record is not None:
             yield from differences(record, shape.shape, where)
     elif isinstance(shape, Estimable):
@@ -194,6 +218,8 @@ def _object_differences(record: Any, shape: dict[str, Any], where: str) -> Itera
         return
     yield from (f"{where}.{key}: not a name of the record" for key in record.keys() - shape.keys())
     for key, part in shape.items():
+        if isinstance(part, Later) and key not in record:
+            continue
         if key in record:
             yield from differences(record[key], part, f"{where}.{key}")
         else:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 from app.model.boundary import Bound, LookAsUsed
@@ -27,12 +28,15 @@ def as_used(look: LookResult) -> LookAsUsed:
         type_two_spent=look.bound.type_two_spent or 0.0,
         harm_z=look.bound.harm_z,
         harm_alpha_spent=look.bound.harm_alpha_spent or 0.0,
+        harm_information=None if look.harm is None else look.harm.information_used,
+        z_for_harm=None if look.harm is None else look.harm.z,
+        further=tuple((each.hypothesis.parameter, as_used(each.result)) for each in look.hypotheses),
     )
 
 
 def as_used_of_record(look: dict[str, Any]) -> LookAsUsed:
     """A held look from the full record that was frozen with it, every number as it stands there."""
-    bound, test = look["boundary"], look["logrank"]
+    bound, test, harm = look["boundary"], look["logrank"], look.get("harm_endpoint")
     return LookAsUsed(
         number=look["number"],
         kind=look["kind"],
@@ -49,6 +53,9 @@ def as_used_of_record(look: dict[str, Any]) -> LookAsUsed:
         type_two_spent=bound["type_two_spent"] or 0.0,
         harm_z=_read_if_asked(bound["harm_z"]),
         harm_alpha_spent=bound["harm_alpha_spent"] or 0.0,
+        harm_information=None if harm is None else harm["information"],
+        z_for_harm=None if harm is None else harm["logrank"].get("z"),
+        further=tuple((each["parameter"], as_used_of_record(each)) for each in look.get("hypotheses") or ()),
     )
 
 
@@ -58,6 +65,16 @@ def _read_if_asked(value: float | dict[str, str] | None) -> Estimate | None:
 
 def _read(value: float | dict[str, str]) -> Estimate:
     return Absent(value["not_estimable"]) if isinstance(value, dict) else value
+
+
+def with_bounds_as_used(result: LookResult, look: dict[str, Any]) -> LookResult:
+    """A look with the bounds that were used, from the full record frozen with it, hypotheses included."""
+    stored = {each["parameter"]: each for each in look.get("hypotheses") or ()}
+    further = tuple(
+        replace(each, result=with_bounds_as_used(each.result, stored[each.hypothesis.parameter]))
+        for each in result.hypotheses
+    )
+    return replace(result, bound=bound_of_record(look), hypotheses=further)
 
 
 def bound_of_record(look: dict[str, Any]) -> Bound:

@@ -1,4 +1,4 @@
-"""The whole of one look on the closed side, experimental against control."""
+"""One endpoint at one look on the closed side, experimental against control."""
 
 from __future__ import annotations
 
@@ -7,9 +7,9 @@ from dataclasses import dataclass, replace
 from datetime import date
 
 from app.errors import ValueRejected
-from app.model.boundary import Bound, LookAsUsed
+from app.model.boundary import Bound, LookAsUsed, Verdict
 from app.model.extract import Changes, Finding, LookKind, Sample
-from app.model.look import Information, LookResult
+from app.model.look import HarmResult, Information, LookResult
 from app.model.plan import Plan
 from app.model.survival import LogrankResult, SurvivalCurve
 from app.model.values import Absent, Estimate
@@ -36,17 +36,19 @@ class LookDeclared:
     snapshot_digests: tuple[str, ...] = ()
 
 
-def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequence[LookAsUsed]) -> LookResult:
-    """Compute everything of one look.
-
-    `past` are the looks as used, in order. The bound does not depend on what earlier looks crossed: a
-    crossing depends on which arm is experimental, and the masked view reads the same bound both ways.
-    """
+def review_endpoint(
+    plan: Plan,
+    sample: Sample,
+    declared: LookDeclared,
+    past: Sequence[LookAsUsed],
+    harm: HarmResult | None = None,
+) -> LookResult:
+    """Everything of the plan's endpoint at one look; `harm` where it is judged on an endpoint of its own."""
     compared, mirrored = compare_arms(plan, sample)
     test = compared.logrank
     information = _information(plan, sample, test)
     rules, used = plan_rules(plan), _information_used(plan, information)
-    now, *planned = _bounds(plan, rules, information, declared, past)
+    now, *planned = _bounds(plan, rules, information, declared, past, harm)
     z = test if isinstance(test, Absent) else test.z
     mirrored_z = z if isinstance(z, Absent) else -z + 0.0
     curves = _curve(plan, sample, False), _curve(plan, sample, True)
@@ -72,16 +74,28 @@ def review_look(plan: Plan, sample: Sample, declared: LookDeclared, past: Sequen
         control_curve=curves[0],
         experimental_curve=curves[1],
         bound=now,
-        verdict=verdict(
-            past, None if isinstance(z, Absent) else z, now, plan.design.sides, binding=rules.binding
-        ),
+        verdict=_verdict(plan, rules, past, z, now, harm),
         past=tuple(past),
         planned=tuple(planned),
         onwards=onwards_of(plan, rules, z, used, information, past, (now, *planned)),
         mirrored_onwards=onwards_of(plan, rules, mirrored_z, used, information, past, (now, *planned)),
         snapshot_digests=declared.snapshot_digests,
         plan_digest=plan.digest,
+        harm=harm,
     )
+
+
+def _verdict(
+    plan: Plan,
+    rules: PlanRules,
+    past: Sequence[LookAsUsed],
+    z: Estimate,
+    now: Bound,
+    harm: HarmResult | None,
+) -> Verdict:
+    known = None if isinstance(z, Absent) else z
+    of_harm = None if harm is None else harm.z
+    return verdict(past, known, now, plan.design.sides, binding=rules.binding, z_for_harm=of_harm)
 
 
 def _curve(plan: Plan, sample: Sample, experimental: bool) -> SurvivalCurve:
@@ -137,6 +151,7 @@ def _bounds(
     information: Information,
     declared: LookDeclared,
     past: Sequence[LookAsUsed],
+    harm: HarmResult | None,
 ) -> tuple[Bound, ...]:
     """The bound here, then the bounds at the plan's looks still to come, were they held as planned."""
     here = LookAhead(
@@ -147,10 +162,17 @@ def _bounds(
         events=information.events,
         score_variance=information.score_variance,
         clock=calendar_fraction(plan, declared.cutoff, declared.number),
+        harm_information=None if harm is None else harm.information_used,
+        harm_score_variance=None if harm is None else _harm_variance(harm),
     )
     ahead = () if here.final or _was_final(past) else _looks_to_come(plan, here, past)
     untested = [replace(look, crossed="none") for look in past]
     return rules.bounds(untested, (here, *ahead))
+
+
+def _harm_variance(harm: HarmResult) -> Estimate:
+    test = harm.compared.logrank
+    return test if isinstance(test, Absent) else test.variance
 
 
 def calendar_fraction(plan: Plan, cutoff: date | None, number: int) -> float | None:
@@ -181,12 +203,25 @@ def _looks_to_come(plan: Plan, here: LookAhead, past: Sequence[LookAsUsed]) -> t
     looks = planned_looks(
         plan.design, fractions, plan.arms.experimental_share, final=False, first_number=here.number + 1
     )
+    if here.harm_information is not None:
+        looks = tuple(_harm_in_proportion(look, here) for look in looks)
     if here.clock is None:
         return looks
     pace = (1.0 - here.clock) / (1.0 - here.fraction)  # along the straight line to the planned end
     return tuple(
         replace(look, clock=1.0 - pace * (1.0 - look.fraction) if look.fraction < 1.0 else 1.0)
         for look in looks
+    )
+
+
+def _harm_in_proportion(look: LookAhead, here: LookAhead) -> LookAhead:
+    """The information of harm's own endpoint, were it to grow as that of the test does."""
+    growth = look.information / here.information if here.information else 1.0
+    information, variance = here.harm_information, here.harm_score_variance
+    return replace(
+        look,
+        harm_information=None if information is None else information * growth,
+        harm_score_variance=variance * growth if isinstance(variance, float) else variance,
     )
 
 

@@ -13,7 +13,8 @@ from app.model.boundary import HeldCompared, LookAsUsed
 from app.model.extract import Changes, Extract, LookKind, ReceivedFile, Sample
 from app.model.look import LookResult, PooledResult
 from app.model.plan import Plan
-from app.review.look import LookDeclared, review_look
+from app.review.endpoints import review_look
+from app.review.look import LookDeclared
 from app.review.pooled import review_pooled
 from app.settings import Limits
 
@@ -92,7 +93,7 @@ def review_delivery(
         changes=None if earlier is None else changes_between(plan, earlier, sample, limits),
         snapshot_digests=delivery.digests,
     )
-    result = review_look(plan, sample, declared, past)
+    result = review_look(plan, sample, declared, past, extract.further)
     return Reviewed(extract, replace(result, held=tuple(held)))
 
 

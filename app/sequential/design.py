@@ -11,7 +11,7 @@ import numpy as np
 
 from app.errors import DesignInvalid
 from app.model.boundary import Bound, Feasibility, LookChances, PlannedBoundary
-from app.model.plan import Design, Efficacy, Futility, Harm
+from app.model.plan import Design, Efficacy, Futility, Harm, Plan
 from app.sequential.density import Region, crossing_probabilities, start
 from app.sequential.effect import (
     PlanRules,
@@ -20,12 +20,13 @@ from app.sequential.effect import (
     fixed_noncentrality,
     lower_stop,
     noncentrality_for_power,
+    plan_rules,
     planned_looks,
     rules_of,
 )
 from app.sequential.sample_size import freedman_events, schoenfeld_events
 
-__all__ = ["crossing_power", "events_by", "planned_boundary", "planned_looks"]
+__all__ = ["bounds_planned", "crossing_power", "events_by", "planned_boundary", "planned_looks"]
 
 
 def planned_boundary(
@@ -103,6 +104,16 @@ def planned_boundary(
         chances_design=cost.chances(effect),
         feasibility=cost.feasibility(design, experimental_share),
     )
+
+
+def bounds_planned(
+    plan: Plan, fractions: Sequence[float] | None = None, *, final: bool = False
+) -> tuple[Bound, ...]:
+    """The bounds alone, at the plan's looks or at chosen fractions, as `planned_boundary` has them."""
+    if fractions is None:
+        fractions, final = plan.design.looks, False
+    _require_increasing(fractions)
+    return _bounds_at(plan_rules(plan), plan.design, fractions, plan.arms.experimental_share, final)
 
 
 def _bounds_at(

@@ -26,9 +26,7 @@ def opened_at(past: Sequence[LookAsUsed], here: Verdict, number: int) -> int | N
     return number if held is None and here.crossed == "efficacy" else held
 
 
-def gated_history(
-    past: Sequence[LookAsUsed], opened: int | None, sides: Sides
-) -> tuple[LookAsUsed, ...]:
+def gated_history(past: Sequence[LookAsUsed], opened: int | None, sides: Sides) -> tuple[LookAsUsed, ...]:
     """The looks held of a hypothesis that waits, each crossing decided anew: none before the gate opened."""
     decided: list[LookAsUsed] = []
     for look in past:
@@ -59,7 +57,7 @@ def gated_verdict(
 
 
 def in_testing_order(hypotheses: Sequence[Hypothesis]) -> tuple[Hypothesis, ...]:
-    """Each after the one that it waits for; else as the plan has them. Names are known and run in no circle."""
+    """Each after the one that it waits for, else as the plan has them; names run in no circle."""
     done: dict[str, Hypothesis] = {}
     while len(done) < len(hypotheses):
         for each in hypotheses:
@@ -78,7 +76,7 @@ def family_alpha(primary: float, hypotheses: Sequence[Hypothesis]) -> float:
 
     References
     ----------
-    Bonferroni's inequality and the closure principle: Marcus, Peritz & Gabriel (1976), Biometrika 63, 655-660.
+    Bonferroni's inequality; closed tests: Marcus, Peritz & Gabriel (1976), Biometrika 63, 655-660.
     """
     waiting: Mapping[str, list[Hypothesis]] = {
         name: [each for each in hypotheses if each.after == name]

@@ -15,7 +15,7 @@ from app.model.look import LookResult
 from app.model.plan import Plan
 from app.record.canonical import parse_strict
 from app.record.schema import LOOKS_RECORD, differences
-from app.review.as_used import as_used_of_record, bound_of_record
+from app.review.as_used import as_used_of_record, with_bounds_as_used
 from app.review.held import held_looks
 from app.review.received import Delivery, review_delivery
 from app.settings import Limits
@@ -103,7 +103,7 @@ def assemble(trial: Trial, number: int, limits: Limits) -> Assembled:
     if trial.state().look(number).frozen is None:
         return assembled
     stored = frozen_record(trial, number)["looks"][0]
-    return replace(assembled, result=replace(assembled.result, bound=bound_of_record(stored)))
+    return replace(assembled, result=with_bounds_as_used(assembled.result, stored))
 
 
 def letters_for(plan: Plan, trial: Trial) -> Letters:

@@ -8,9 +8,9 @@ from datetime import date
 from typing import Any
 
 from app import __version__
-from app.model.boundary import Bound, HeldCompared, LookAsUsed, PlannedBoundary, Verdict
+from app.model.boundary import Bound, HeldCompared, LookAsUsed, PlannedBoundary
 from app.model.extract import Changes, Finding
-from app.model.look import CalendarCounts
+from app.model.look import ArmCounts, CalendarCounts
 from app.model.outlook import (
     ConditionalPower,
     NextLook,
@@ -20,10 +20,12 @@ from app.model.outlook import (
     Stopping,
     WhatIf,
 )
+from app.model.plan import Hypothesis, Plan
 from app.model.survival import CoxResult, LogrankResult
 from app.model.values import Absent, Estimate
 from app.record.numbers import column, estimate, not_estimable
-from app.record.schema import CONDITIONAL_POWER, EFFECTS, FORMAT, NEXT_LOOK, NOT_ASKED
+from app.record.schema import CONDITIONAL_POWER, EFFECTS, FORMAT, NEXT_LOOK
+from app.sequential.gatekeeping import family_alpha
 from app.views.closed import ArmView, ClosedView, Reading
 from app.views.shape_record import shape_record
 
@@ -93,12 +95,20 @@ def _compared(held: HeldCompared) -> Record:
 
 
 def boundary_record(
-    planned: PlannedBoundary, *, plan_digest: str, run_at: str, findings: Sequence[Finding] = ()
+    planned: PlannedBoundary,
+    plan: Plan,
+    *,
+    run_at: str,
+    hypotheses: Sequence[tuple[Hypothesis, Sequence[Bound]]] = (),
+    findings: Sequence[Finding] = (),
 ) -> Record:
+    """The bounds of a plan and what its design needs; each further hypothesis with its own bounds."""
     doubts = [finding_record(finding) for finding in findings]
     chances = (planned.chances_null, planned.chances_half, planned.chances_design)
     return {
-        **_envelope("boundary", plan_digest, [], None, run_at, doubts),
+        **_envelope("boundary", plan.digest, [], None, run_at, doubts),
+        "hypotheses": [_planned_hypothesis(*each, planned.sides) for each in hypotheses] or None,
+        "alpha_of_all": family_alpha(plan.design.alpha, plan.hypotheses),
         "sides": planned.sides,
         "looks": [bound_record(bound, planned.sides) for bound in planned.bounds],
         "noncentrality": estimate(planned.noncentrality),
@@ -147,6 +157,57 @@ def finding_record(finding: Finding) -> Record:
 
 
 def look_record(view: ClosedView) -> Record:
+    hypotheses = [{**_hypothesis(each.hypothesis), **_endpoint_record(each.view)} for each in view.hypotheses]
+    return {
+        **_endpoint_record(view),
+        "harm_endpoint": _harm_endpoint(view),
+        "hypotheses": hypotheses or None,
+        "alpha_of_all": family_alpha(view.plan.design.alpha, view.plan.hypotheses),
+    }
+
+
+def _hypothesis(hypothesis: Hypothesis) -> Record:
+    return {
+        "name": hypothesis.name,
+        "parameter": hypothesis.parameter,
+        "label": hypothesis.label,
+        "event_is": hypothesis.event_is,
+        "after": hypothesis.after,
+        "alpha": hypothesis.alpha,
+    }
+
+
+def _planned_hypothesis(hypothesis: Hypothesis, bounds: Sequence[Bound], sides: int) -> Record:
+    looks = [bound_record(bound, sides) for bound in bounds]
+    return {**_hypothesis(hypothesis), "planned_events": hypothesis.planned_events, "looks": looks}
+
+
+def _harm_endpoint(view: ClosedView) -> Record | None:
+    harm = view.harm
+    if harm is None:
+        return None
+    only = None if view.masked else view.readings[0]
+    return {
+        "parameter": harm.parameter,
+        "information": harm.information_used,
+        "arms": [_counts(arm, counts) for arm, counts in zip(view.arms, harm.counts, strict=True)],
+        "logrank": _logrank(harm.logrank, harm.stratum_labels, only),
+        "cox": _cox(harm.cox),
+    }
+
+
+def _counts(arm: ArmView, counts: ArmCounts) -> Record:
+    return {
+        "arm": arm.value,
+        "subjects": counts.subjects,
+        "events": counts.events,
+        "person_time": counts.person_time,
+        "follow_up_median": estimate(counts.follow_up_median),
+    }
+
+
+def _endpoint_record(view: ClosedView) -> Record:
+    """The plan's own endpoint at a look, or that of a further hypothesis."""
     look = view.look
     sides = view.plan.design.sides
     only = None if view.masked else view.readings[0]
@@ -169,7 +230,7 @@ def look_record(view: ClosedView) -> Record:
         "boundary": {
             **bound_record(look.bound, sides),
             "information": look.information_used,
-            **_crossing(only.verdict if only else None),
+            **_crossing(only),
         },
         "readings": [_reading(reading, look.final) for reading in view.readings] if view.masked else None,
         "history": [_held(held, view) for held in view.readings[0].history],
@@ -177,7 +238,6 @@ def look_record(view: ClosedView) -> Record:
         **(_onwards(only, look.final) if only else {"outlook": None, "stopping": None}),
         "repeated_interval": _part(view.readings[0].onwards.repeated_interval),
         **shape_record(view),
-        **dict.fromkeys(NOT_ASKED),
     }
 
 
@@ -195,16 +255,7 @@ def _information(view: ClosedView) -> Record:
         "planned_subjects": view.plan.enrolment.planned_subjects,
         "score_variance": estimate(information.score_variance),
         "variance_ratio": estimate(information.variance_ratio),
-        "arms": [
-            {
-                "arm": arm.value,
-                "subjects": arm.counts.subjects,
-                "events": arm.counts.events,
-                "person_time": arm.counts.person_time,
-                "follow_up_median": estimate(arm.counts.follow_up_median),
-            }
-            for arm in view.arms
-        ],
+        "arms": [_counts(arm, arm.counts) for arm in view.arms],
         "strata": [_stratum(view, index) for index in range(len(view.strata))],
     }
 
@@ -246,7 +297,7 @@ def _calendar(calendar: CalendarCounts | None) -> Record | None:
     }
 
 
-def _logrank(result: LogrankResult | Absent, labels: list[str], only: Reading | None) -> Record:
+def _logrank(result: LogrankResult | Absent, labels: Sequence[str], only: Reading | None) -> Record:
     if isinstance(result, Absent):
         return not_estimable(result.reason)
     return {
@@ -357,11 +408,16 @@ def _part(part: PredictivePower | RepeatedInterval | Stopping | Absent) -> Recor
     return {item.name: estimate(getattr(part, item.name)) for item in fields(part)}
 
 
-def _crossing(verdict: Verdict | None) -> Record:
+def _crossing(reading: Reading | None) -> Record:
     """Masked, what is crossed depends on the reading and stands there only."""
-    if verdict is None:
-        return {"crossed": None, "first_crossed": None}
-    return {"crossed": verdict.crossed, "first_crossed": verdict.first_crossed}
+    if reading is None:
+        return {"crossed": None, "first_crossed": None, "waits_for": None}
+    stands = reading.verdict
+    return {
+        "crossed": stands.crossed,
+        "first_crossed": stands.first_crossed,
+        "waits_for": reading.waits_for,
+    }
 
 
 def _reading(reading: Reading, final: bool) -> Record:
@@ -369,7 +425,8 @@ def _reading(reading: Reading, final: bool) -> Record:
         "experimental": reading.experimental,
         "z": estimate(reading.z),
         "p_one_sided": estimate(reading.p_one_sided),
-        **_crossing(reading.verdict),
+        "z_for_harm": reading.z_for_harm,
+        **_crossing(reading),
         **_onwards(reading, final),
     }
 
@@ -389,4 +446,5 @@ def _held(held: LookAsUsed, view: ClosedView) -> Record:
         "crossed": None if view.masked else held.crossed,
         "futility_z": estimate(held.futility_z),
         "harm_z": estimate(held.harm_z),
+        "z_for_harm": held.z_for_harm,
     }

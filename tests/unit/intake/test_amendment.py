@@ -79,7 +79,7 @@ def test_harm_comes_or_goes_whole_but_stays_on_its_endpoint() -> None:
     refuse_fixed(plan_changes(on_death, plan()), "plan-2.toml")
     elsewhere = replace(plan(), harm=Harm("Pocock-type", 0.05))
     for before, after in ((on_death, elsewhere), (elsewhere, on_death)):
-        with pytest.raises(PlanRefused, match="Harm.parameter cannot be amended"):
+        with pytest.raises(PlanRefused, match=r"Harm\.parameter cannot be amended"):
             refuse_fixed(plan_changes(before, after), "plan-2.toml")
 
 

@@ -94,7 +94,7 @@ def test_a_subject_in_two_strata_and_subjects_without_a_row_are_doubts() -> None
     other = of("BLEED")[:10]
     other[2]["REGION"] = "South"
     stranger = {**other[0], "USUBJID": "T1-099"}
-    extract = read(file_of(rows() + [*other, stranger]), under=plan(HARM))
+    extract = read(file_of([*rows(), *other, stranger]), under=plan(HARM))
     doubts = {each.id: each for each in extract.doubts}
     assert doubts["stratum-differs"].rows == (15,)
     found = doubts["subjects-differ"].found
@@ -117,7 +117,9 @@ def test_a_subject_in_two_strata_and_subjects_without_a_row_are_doubts() -> None
         (
             (
                 HYPOTHESIS.replace('"primary"', '"Bleed"'),
-                HYPOTHESIS.replace("Stroke", "Bleed").replace("STROKE", "BLEED").replace('"primary"', '"Stroke"'),
+                HYPOTHESIS.replace("Stroke", "Bleed")
+                .replace("STROKE", "BLEED")
+                .replace('"primary"', '"Stroke"'),
             ),
             "Hypotheses wait for each other in a circle",
         ),
