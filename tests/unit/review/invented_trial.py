@@ -68,6 +68,25 @@ planned_subjects = 160
 """
 
 
+HARM_ON_DEATH = """
+[harm]
+spending = "Pocock-type"
+alpha = 0.025
+parameter = "DEATH"
+"""
+DEATH_AFTER_RELAPSE = """
+[[hypothesis]]
+name = "Death"
+parameter = "DEATH"
+label = "Death from any cause"
+event_is = "bad"
+after = "primary"
+alpha = 0.025
+planned_events = 60
+efficacy = {spending = "Pocock-type"}
+"""
+
+
 def held_before(
     *zs: float, events: tuple[int, ...] = (10, 20), source: str = "Charter table 2"
 ) -> tuple[str, str]:
@@ -141,18 +160,19 @@ class Seen:
             end_day=read_only(start + self.time.astype(np.int64) - 1, np.int64),
         )
 
-    def csv(self) -> bytes:
+    def csv(self, parameter: str = "RELAPSE", *, head: bool = True) -> bytes:
         """The extract as the data centre would write it, with a column that nobody needs."""
         text = io.StringIO()
         rows = csv.writer(text, lineterminator="\n")
-        rows.writerow(COLUMNS)
+        if head:
+            rows.writerow(COLUMNS)
         for at in range(self.subject.size):
             start = FIRST_DAY + timedelta(days=int(self.entry[at]))
             end = start + timedelta(days=int(self.time[at]) - 1)
             rows.writerow(
                 [
                     "K4", f"K4-{self.subject[at]:04d}",
-                    EXPERIMENTAL if self.experimental[at] else CONTROL, "RELAPSE", "Time to relapse (days)",
+                    EXPERIMENTAL if self.experimental[at] else CONTROL, parameter, "",
                     int(self.time[at]), int(not self.event[at]), start, end, REGIONS[self.region[at]], "F",
                 ]
             )  # fmt: skip
@@ -173,8 +193,20 @@ def patients(seed: int = 4, size: int = 160, hazard_ratio: float = 0.5, median: 
     )
 
 
+def with_deaths(people: Patients, seed: int = 9) -> Patients:
+    """The same people, their deaths some time after their relapses."""
+    later = np.ceil(np.random.default_rng(seed).exponential(250.0, people.time.size))
+    return replace(people, time=people.time + later)
+
+
 CUTOFFS = (date(2024, 12, 1), date(2025, 4, 20), date(2025, 11, 1), date(2027, 1, 1))
 """When the looks are held; at these the trial of seed 4 has the events that `look_events` says."""
+
+
+def two_endpoints(people: Patients, cutoff: date) -> bytes:
+    """An extract with a row of RELAPSE and a row of DEATH for each subject."""
+    deaths = with_deaths(people).at(cutoff).csv("DEATH", head=False)
+    return people.at(cutoff).csv() + deaths
 
 
 def extract(cutoff: date, people: Patients | None = None, name: str = "adtte.csv") -> ReceivedFile:

@@ -24,8 +24,19 @@ from app.sheets.book import closed_book
 from app.sheets.frame import LookOnFile, Surroundings
 from app.sheets.record import History
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
-from tests.unit.review.invented_trial import CUTOFFS, FIRST_DAY, Patients, patients, plan
+from tests.unit.review.invented_trial import (
+    CUTOFFS,
+    DEATH_AFTER_RELAPSE,
+    FIRST_DAY,
+    HARM_ON_DEATH,
+    Patients,
+    patients,
+    plan,
+    two_endpoints,
+)
 
+FURTHER = ("[enrolment]", f"{HARM_ON_DEATH}{DEATH_AFTER_RELAPSE}[enrolment]")
+"""A change of the plan: harm on death, and death as a hypothesis after the plan's own."""
 A_IS_CONTROL, A_IS_EXPERIMENTAL = Letters("A"), Letters("B")
 TWO_SIDED = ("alpha = 0.025\nsides = 1", "alpha = 0.05\nsides = 2")
 
@@ -60,7 +71,8 @@ def held(
     for at_cutoff, cutoff in enumerate(cutoffs):
         number = 1 + len(before) + at_cutoff
         kind = kinds[at_cutoff] if at_cutoff < len(kinds) else "planned"
-        file = received_file(f"adtte-{number}.csv", people.at(cutoff).csv())
+        content = two_endpoints(people, cutoff) if under.further_endpoints else people.at(cutoff).csv()
+        file = received_file(f"adtte-{number}.csv", content)
         delivery = Delivery((file,), kind, cutoff)
         past = [*before, *(as_used(look.result) for look in looks)]
         reviewed = review_delivery(

@@ -14,6 +14,7 @@ from tests.unit.review.invented_trial import CUTOFFS, Patients, held_before, pat
 from tests.unit.sheets.invented_looks import (
     A_IS_CONTROL,
     A_IS_EXPERIMENTAL,
+    FURTHER,
     TWO_SIDED,
     book,
     held,
@@ -28,6 +29,7 @@ def without_events_in_one_arm() -> Patients:
 
 
 WORLDS = {
+    "further endpoints": (plan(FURTHER), patients()),
     "crossed": (plan(), patients()),
     "two sides": (plan(TWO_SIDED), patients()),
     "no ratio": (plan(), without_events_in_one_arm()),

@@ -20,7 +20,7 @@ from app.review import LookDeclared, review_look
 from app.views.closed import ClosedView, Letters, full_view, masked_view, unmasked_view
 from app.views.record import looks_record
 from tests.unit.review.invented_trial import CUTOFFS, patients, plan
-from tests.unit.sheets.invented_looks import A_IS_CONTROL, TWO_SIDED, Held, held
+from tests.unit.sheets.invented_looks import A_IS_CONTROL, A_IS_EXPERIMENTAL, FURTHER, TWO_SIDED, Held, held
 
 WITHOUT_STRATA = (('strata = ["REGION"]', ""),)
 GOOD_EVENT = (('event_is = "bad"', 'event_is = "good"'), ("hazard_ratio = 0.5", "hazard_ratio = 2.0"))
@@ -37,8 +37,8 @@ def record(view: ClosedView) -> dict[str, Any]:
 
 @pytest.mark.parametrize(
     "changes",
-    [(), (TWO_SIDED,), WITHOUT_STRATA, GOOD_EVENT],
-    ids=["plain", "two sides", "no strata", "good event"],
+    [(), (TWO_SIDED,), WITHOUT_STRATA, GOOD_EVENT, (FURTHER,)],
+    ids=["plain", "two sides", "no strata", "good event", "further endpoints"],
 )
 @pytest.mark.parametrize("kinds", [(), ("safety", "unplanned", "final")], ids=["planned", "other kinds"])
 def test_every_look_in_every_view_keeps_to_the_names(
@@ -74,6 +74,34 @@ def test_a_masked_record_carries_the_one_directional_parts_for_both_readings_onl
     assert look["logrank"]["p_one_sided"] is None
     assert [reading["experimental"] for reading in look["readings"]] == ["A", "B"]
     assert {each["crossed"] for each in look["history"]} == {None}
+
+
+@pytest.mark.parametrize("changes", [(), (FURTHER,)], ids=["plain", "further endpoints"])
+def test_a_masked_record_is_the_same_whichever_letter_is_experimental(
+    changes: Sequence[tuple[str, str]],
+) -> None:
+    """The same patients under A and under B; only what the plan calls them is exchanged."""
+    under = plan(*changes)
+    as_they_are, exchanged = held(under), held(under, patients().with_arms_exchanged())
+    for one, other in zip(as_they_are, exchanged, strict=True):
+        seen = record(one.view(A_IS_CONTROL))["looks"]
+        assert record_bytes(seen) == record_bytes(record(other.view(A_IS_EXPERIMENTAL))["looks"])
+
+
+def test_while_it_waits_a_hypothesis_says_for_what_in_each_reading() -> None:
+    waiting, tested = (held(plan(FURTHER))[at] for at in (1, 3))
+    (of_record,) = record(waiting.view())["looks"][0]["hypotheses"]
+    assert (of_record["name"], of_record["after"], of_record["alpha"]) == ("Death", "primary", 0.025)
+    assert of_record["boundary"]["waits_for"] == "primary"
+    masked = record(tested.view(A_IS_CONTROL))["looks"][0]["hypotheses"][0]
+    assert [reading["waits_for"] for reading in masked["readings"]] == ["primary", None]
+    assert [reading["crossed"] for reading in masked["readings"]] == ["none", "efficacy"]
+    assert masked["boundary"]["waits_for"] is masked["boundary"]["crossed"] is None
+
+
+def test_the_level_of_all_hypotheses_is_recorded() -> None:
+    assert record(held()[0].view())["looks"][0]["alpha_of_all"] == 0.025
+    assert record(held(plan(FURTHER))[0].view())["looks"][0]["alpha_of_all"] == 0.025
 
 
 def test_an_unmasked_record_has_one_direction_and_no_readings() -> None:
