@@ -183,8 +183,17 @@ METHODS: dict[str, Method] = {
     ),
     "harm": Method(
         "Harm",
-        "The mirror of a one-sided test at harm’s own alpha; efficacy ignores it.",
+        "The mirror of a one-sided test at harm’s own alpha; efficacy ignores it. On an endpoint of its own "
+        "it has that endpoint’s log-rank test and information, and spends by the fraction of the plan’s.",
         "DeMets and Ware (1982), Biometrika 69, 661–663.",
+    ),
+    "hypotheses": Method(
+        "Further hypotheses",
+        "Each has its own log-rank test and its own bounds, by its own alpha and events. One that waits is "
+        "tested only from the look at which the one before it has crossed; what its bounds spend is not "
+        "given back. Alphas side by side add up, along a chain the largest counts.",
+        "Hung, Wang and O’Neill (2007), Journal of Biopharmaceutical Statistics 17, 1201–1210; Glimm, Maurer "
+        "and Bretz (2010), Statistics in Medicine 29, 219–228.",
     ),
     "repeated-interval": Method(
         "Repeated interval",

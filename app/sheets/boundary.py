@@ -21,9 +21,20 @@ from app.sheets.blocks import (
     Table,
 )
 from app.sheets.curves import NOT_ADJUSTED, against, cox_level
+from app.sheets.further import (
+    harm_endpoint_name,
+    harm_note,
+    harm_table,
+    hypotheses_note,
+    hypotheses_table,
+    hypothesis_details,
+    is_harm_elsewhere,
+)
 from app.sheets.held import HELD_BEFORE, held_tables, held_words
 from app.sheets.methods import methods, spending_key
 from app.sheets.words import (
+    CROSSED,
+    DASH,
     MINUS,
     NO_BREAK,
     P,
@@ -36,6 +47,7 @@ from app.sheets.words import (
     line,
     listed,
     number,
+    or_dash,
     p_values,
     z_number,
     z_places,
@@ -43,8 +55,6 @@ from app.sheets.words import (
 from app.views.closed import ClosedView, Reading
 
 QUESTION = "Where does the test stand?"
-CROSSED = Span("crossed", "crossed")
-DASH = Span("–", "quiet")
 FINAL_WORDS = (
     " A final look spends all alpha that is left; "
     "ending early because of comparative results does not release it."
@@ -60,13 +70,14 @@ def boundary_sheet(view: ClosedView) -> Sheet:
         answer=boundary_answer(view),
         figure=boundary_figure(view),
         tables=_standing_tables(view),
-        folded=(*held_tables(view, _side_words(view)), *_strata_table(view)),
+        folded=(*held_tables(view, _side_words(view)), *hypothesis_details(view), *_folded_score(view), *_strata_table(view)),
         notes=(_note(view),),
         methods=methods(
             "logrank",
             spending_key(view.plan.efficacy.spending),
             "boundary",
             *(key for key in ("futility", "harm") if getattr(view.plan, key) is not None),
+            *(("hypotheses",) if view.hypotheses else ()),
             "bound-hazard-ratio",
             "repeated-interval",
             "cox",
@@ -127,6 +138,8 @@ def _below_against(view: ClosedView, reading: Reading) -> Line:
     bound = view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
     binds = crossed == "futility" and view.plan.futility is not None and view.plan.futility.binding
     advice = "." if binds or crossed == "harm" else "; it does not bind."
+    if crossed == "harm" and is_harm_elsewhere(view):
+        return line(f" on {harm_endpoint_name(view)}: ", _harm_against(reading, bound), ".")
     if bound is None or isinstance(bound, Absent):
         return line(".")
     return line(
@@ -157,8 +170,20 @@ def _masked_below(view: ClosedView, reading: Reading) -> Line:
     """ ", futility bound 0.958 crossed." """
     crossed = reading.verdict.crossed
     bound = view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
+    if crossed == "harm" and is_harm_elsewhere(view):
+        beside = _harm_against(reading, bound)
+        return line(f", harm on {harm_endpoint_name(view)} ", CROSSED, ": ", beside, ".")
     shown = z_number(bound, places=z_places(reading.z, bound)) if bound is not None else Span("")
     return line(f", {crossed} bound ", shown, NO_BREAK, CROSSED, ".")
+
+
+def _harm_against(reading: Reading, bound: Estimate | None) -> Line:
+    """ "z -2.611 against -2.380", of harm's own endpoint."""
+    if bound is None or isinstance(bound, Absent) or reading.z_for_harm is None:
+        return ()
+    places = z_places(reading.z_for_harm, bound)
+    z = z_number(reading.z_for_harm, places=places)
+    return line(Z, NO_BREAK, z, " against ", z_number(bound, places=places))
 
 
 def _reason(bound: Absent) -> str:
@@ -217,7 +242,7 @@ def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
         lower=lower,
         crossed=held.number in firsts or _crossed_below_at(view, held.number),
         futility=_lower_shown(held.futility_z, held.final),
-        harm=_lower_shown(held.harm_z, final=False),
+        harm=_harm_shown(view, held.harm_z),
     )
 
 
@@ -232,19 +257,24 @@ def _lane_now(view: ClosedView) -> Lane:
     upper, lower = _bounds_shown(view, z, look.bound.efficacy_z, look.number)
     crossed = any(each.verdict.crossed != "none" for each in view.readings)
     fraction, shown = look.bound.information_fraction, _z_shown(z, look.bound.efficacy_z)
-    below = _below_shown(look.bound)
+    below = _below_shown(view, look.bound)
     return Lane(look.number, fraction, "now", look.final, shown, upper, lower, crossed, *below)
 
 
 def _planned_lane(view: ClosedView, bound: Bound) -> Lane:
     upper, lower = _bounds_shown(view, None, bound.efficacy_z, bound.number)
-    fraction, below = bound.information_fraction, _below_shown(bound)
+    fraction, below = bound.information_fraction, _below_shown(view, bound)
     return Lane(bound.number, fraction, "planned", bound.final, None, upper, lower, False, *below)
 
 
-def _below_shown(bound: Bound) -> tuple[Span | None, Span | None]:
+def _below_shown(view: ClosedView, bound: Bound) -> tuple[Span | None, Span | None]:
     """The futility and the harm bound of a lane."""
-    return _lower_shown(bound.futility_z, bound.final), _lower_shown(bound.harm_z, final=False)
+    return _lower_shown(bound.futility_z, bound.final), _harm_shown(view, bound.harm_z)
+
+
+def _harm_shown(view: ClosedView, z: Estimate | None) -> Span | None:
+    """Not in the lane of another z than the one it is for."""
+    return None if is_harm_elsewhere(view) else _lower_shown(z, final=False)
 
 
 def _lower_shown(z: Estimate | None, final: bool) -> Span | None:
@@ -299,6 +329,7 @@ class _Column:
     spent: float
     futility: Estimate | None = None
     harm: Estimate | None = None
+    z_for_harm: float | None = None
 
 
 def _columns(view: ClosedView) -> tuple[_Column, ...]:
@@ -312,14 +343,16 @@ def _columns(view: ClosedView) -> tuple[_Column, ...]:
             each.alpha_spent,
             each.futility_z,
             each.harm_z,
+            each.z_for_harm,
         )
         for each in view.readings[0].history
     )
     ahead = () if _all_over(view) else view.look.planned
-    return (*held, _of_bound(view.look.bound, _z_now(view)), *(_of_bound(bound, None) for bound in ahead))
+    now = _of_bound(view.look.bound, _z_now(view), view.readings[0].z_for_harm)
+    return (*held, now, *(_of_bound(bound, None) for bound in ahead))
 
 
-def _of_bound(bound: Bound, z: float | None) -> _Column:
+def _of_bound(bound: Bound, z: float | None, z_for_harm: float | None = None) -> _Column:
     return _Column(
         bound.information_fraction,
         bound.events,
@@ -329,6 +362,7 @@ def _of_bound(bound: Bound, z: float | None) -> _Column:
         bound.alpha_spent,
         bound.futility_z,
         bound.harm_z,
+        z_for_harm,
     )
 
 
@@ -337,8 +371,8 @@ def _lane_rows(view: ClosedView) -> tuple[LaneRow, ...]:
     columns = _columns(view)
     plus_minus = ", ±" if view.masked or view.plan.design.sides == 2 else ""
     fractions = tuple(number(each.fraction, 3) for each in columns)
-    bounds = tuple(_or_dash(each.bound, _places(each.z, each.bound)) for each in columns)
-    ratios = tuple(_or_dash(each.ratio, 3) for each in columns)
+    bounds = tuple(or_dash(each.bound, _places(each.z, each.bound)) for each in columns)
+    ratios = tuple(or_dash(each.ratio, 3) for each in columns)
     rows = (
         LaneRow(line("Information fraction"), line("Fraction"), fractions),
         LaneRow(line("Events"), line("Events"), tuple(count(each.events) for each in columns)),
@@ -362,19 +396,22 @@ def _rows_below(view: ClosedView, columns: tuple[_Column, ...]) -> tuple[LaneRow
         ("Futility", view.plan.futility, [column.futility for column in columns]),
         ("Harm", view.plan.harm, [column.harm for column in columns]),
     )
-    return tuple(
+    rows = tuple(
         LaneRow(
             line(f"{name} bound{each}"),
             line(name),
-            tuple(DASH if z is None else _or_dash(z, 3) for z in bounds),
+            tuple(DASH if z is None else or_dash(z, 3) for z in bounds),
         )
         for name, table, bounds in kinds
         if table is not None
     )
+    return (*rows[:-1], _harm_z_row(view, columns), rows[-1]) if is_harm_elsewhere(view) else rows
 
 
-def _or_dash(value: Estimate, places: int) -> Span:
-    return DASH if isinstance(value, Absent) else number(value, places)
+def _harm_z_row(view: ClosedView, columns: tuple[_Column, ...]) -> LaneRow:
+    """z of harm's own endpoint, over the bound that it is for."""
+    of_harm = tuple(None if each.z_for_harm is None else z_number(each.z_for_harm) for each in columns)
+    return LaneRow(line(Z, f" of {harm_endpoint_name(view)}"), line("Harm ", Z), of_harm)
 
 
 def _side_words(view: ClosedView) -> str:
@@ -385,11 +422,19 @@ def _side_words(view: ClosedView) -> str:
 
 
 def _standing_tables(view: ClosedView) -> tuple[Table, ...]:
-    """Masked, both readings leave no room for the score itself: it stands with its strata, folded."""
-    if not view.masked:
-        return (_observed_beside_bound(view), _interval_table(view), _logrank_table(view))
-    tables = _masked_tables(view)
-    return tables if view.plan.columns.strata else (*tables, _logrank_table(view))
+    """Both readings, further hypotheses or harm leave no room for the score itself: it stands folded."""
+    beside = (*hypotheses_table(view), *harm_table(view))
+    own = _masked_tables(view) if view.masked else (_observed_beside_bound(view), _interval_table(view))
+    return (*own, *beside) if _is_score_folded(view) else (*own, *beside, _logrank_table(view))
+
+
+def _is_score_folded(view: ClosedView) -> bool:
+    return bool(view.hypotheses) or view.harm is not None or (view.masked and bool(view.plan.columns.strata))
+
+
+def _folded_score(view: ClosedView) -> tuple[Table, ...]:
+    """The score, where neither the page nor its strata show it."""
+    return (_logrank_table(view),) if _is_score_folded(view) and not view.plan.columns.strata else ()
 
 
 def _observed_beside_bound(view: ClosedView) -> Table:
@@ -401,9 +446,9 @@ def _observed_beside_bound(view: ClosedView) -> Table:
         caption=line(f"Look{NO_BREAK}{view.look.number}, {against(view)}"),
         columns=(Column(line("observed")), Column(line("efficacy bound"))),
         rows=(
-            Row(line(Z), _pair(number(reading.z, places), _or_dash(bound.efficacy_z, places))),
+            Row(line(Z), _pair(number(reading.z, places), or_dash(bound.efficacy_z, places))),
             Row(line(P, ", one-sided"), _pair(p_observed, _existing(bound.efficacy_p_one_sided, p_bound))),
-            Row(line("Hazard ratio"), _pair(number(ratio, 3), _or_dash(bound.efficacy_hazard_ratio, 3))),
+            Row(line("Hazard ratio"), _pair(number(ratio, 3), or_dash(bound.efficacy_hazard_ratio, 3))),
         ),
     )
 
@@ -466,7 +511,7 @@ def _masked_tables(view: ClosedView) -> tuple[Table, ...]:
 def _z_and_bound(view: ClosedView, reading: Reading) -> tuple[Span, Span]:
     bound = view.look.bound.efficacy_z
     places = z_places(reading.z, bound)
-    return number(reading.z, places), _tested(view, reading, _or_dash(bound, places))
+    return number(reading.z, places), _tested(view, reading, or_dash(bound, places))
 
 
 def _tested(view: ClosedView, reading: Reading, bound: Span) -> Span:
@@ -589,11 +634,13 @@ def _note(view: ClosedView) -> Line:
         _no_bound_words(view),
         held_words(view),
         FINAL_WORDS if view.look.final and view.look.information.fraction < 1 else "",
+        harm_note(view),
+        hypotheses_note(view),
     )
 
 
 def _grey_words(view: ClosedView) -> str:
-    if view.plan.harm is None:
+    if view.plan.harm is None or is_harm_elsewhere(view):
         return "Grey: beyond the efficacy bound."
     across = "at the other end" if view.masked else "below"
     return f"Grey: beyond efficacy; {across}, harm."

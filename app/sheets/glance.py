@@ -18,7 +18,7 @@ from app.sheets.blocks import (
     Span,
     ZStrip,
 )
-from app.sheets.boundary import CROSSED, boundary_answer, boundary_figure
+from app.sheets.boundary import boundary_answer, boundary_figure
 from app.sheets.curves import (
     NOT_ADJUSTED,
     event_free_sentence,
@@ -29,6 +29,7 @@ from app.sheets.curves import (
 )
 from app.sheets.extract import changed_events_sentence, changes_figure, data_sentence, open_data_sheet
 from app.sheets.frame import Surroundings
+from app.sheets.further import hypotheses_sentence
 from app.sheets.information import (
     counted_by,
     follow_up_sentence,
@@ -36,7 +37,7 @@ from app.sheets.information import (
     open_information_sheet,
 )
 from app.sheets.methods import methods, spending_key
-from app.sheets.words import NO_BREAK, count, interval, level_text, line, number, of_total
+from app.sheets.words import CROSSED, NO_BREAK, count, interval, level_text, line, number, of_total
 from app.views.closed import ArmView, ClosedView, Reading
 from app.views.open import OpenView
 
@@ -201,7 +202,8 @@ def _marks(view: ClosedView, arm: ArmView, time: float) -> tuple[IntervalMark, .
 def _boundary_line(view: ClosedView) -> Line:
     answer = boundary_answer(view)
     said = answer[0] if len(answer) == 1 else line(answer[0], " ", answer[1])
-    return line(said, _needed_next(view)) if not view.masked else said
+    further = hypotheses_sentence(view)
+    return line(said, further) if view.masked else line(said, _needed_next(view), further)
 
 
 def _needed_next(view: ClosedView) -> Line:

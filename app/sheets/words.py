@@ -43,6 +43,8 @@ def symbol(text: str) -> Span:
 
 Z = symbol("z")
 P = symbol("p")
+CROSSED = Span("crossed", "crossed")
+DASH = Span("–", "quiet")
 
 
 def decimal(value: float, places: int) -> str:
@@ -58,6 +60,11 @@ def number(value: Estimate, places: int, *, tone: Tone = "plain") -> Span:
     if isinstance(value, Absent):
         return Span(NOT_REACHED if value.reason.startswith(NOT_REACHED) else NOT_ESTIMABLE, "quiet")
     return Span(decimal(value, places), tone, value=float(value))
+
+
+def or_dash(value: Estimate, places: int) -> Span:
+    """A bound, or a dash where there is no such bound."""
+    return DASH if isinstance(value, Absent) else number(value, places)
 
 
 def count(value: int, *, tone: Tone = "plain") -> Span:

@@ -11,28 +11,40 @@ import pytest
 from app.sheets.blocks import CurvesFigure, IntervalMark, Lane, LookBook, Sheet, Span
 from app.views.record import looks_record
 from tests.unit.review.invented_trial import held_before, plan
-from tests.unit.sheets.invented_looks import A_IS_CONTROL, TWO_SIDED, Held, book, held, parts
+from tests.unit.sheets.invented_looks import A_IS_CONTROL, FURTHER, TWO_SIDED, Held, book, held, parts
 
+BEFORE = held_before(1.5, -0.25)
 Shown = list[tuple[LookBook, set[float], Held]]
 
 
 @pytest.fixture(
     scope="module",
     params=[
-        (1, False, False),
-        (1, True, False),
-        (2, False, False),
-        (2, True, False),
-        (1, False, True),
-        (1, True, True),
+        ((), False),
+        ((), True),
+        ((TWO_SIDED,), False),
+        ((TWO_SIDED,), True),
+        ((FURTHER,), False),
+        ((FURTHER,), True),
+        ((BEFORE,), False),
+        ((BEFORE,), True),
     ],
-    ids=["unmasked", "masked", "two sides", "two sides, masked", "held before", "held before, masked"],
+    ids=[
+        "unmasked",
+        "masked",
+        "two sides",
+        "two sides, masked",
+        "further endpoints",
+        "further endpoints, masked",
+        "held before",
+        "held before, masked",
+    ],
 )
 def shown(request: pytest.FixtureRequest) -> Shown:
     """Each look of the invented trial: its book, the numbers of its record, and the look."""
-    sides, masked, before = request.param
+    changes, masked = request.param
     letters = A_IS_CONTROL if masked else None
-    looks = held(plan(*([TWO_SIDED] if sides == 2 else []), *([held_before(1.5, -0.25)] if before else [])))
+    looks = held(plan(*changes))
     return [
         (
             book(looks[:number], letters),
