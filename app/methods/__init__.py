@@ -184,7 +184,8 @@ METHODS: dict[str, Method] = {
     "harm": Method(
         "Harm",
         "The mirror of a one-sided test at harm’s own alpha; efficacy ignores it. On an endpoint of its own "
-        "it has that endpoint’s log-rank test and information, and spends by the fraction of the plan’s.",
+        "it has that endpoint’s log-rank test and information and spends by the plan’s fraction; bounds "
+        "ahead suppose that its events grow as those of the test do.",
         "DeMets and Ware (1982), Biometrika 69, 661–663.",
     ),
     "hypotheses": Method(

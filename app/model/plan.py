@@ -200,12 +200,16 @@ class Plan:
         return None if named in (None, self.endpoint.parameter) else Endpoint(named, named)
 
     @property
+    def harm_endpoint_is_a_hypothesis(self) -> bool:
+        harm = self.harm_endpoint
+        return harm is not None and harm.parameter in {each.parameter for each in self.hypotheses}
+
+    @property
     def further_endpoints(self) -> tuple[Endpoint, ...]:
         """What an extract must hold beside the plan's endpoint, each parameter once."""
         named = tuple(each.endpoint for each in self.hypotheses)
         harm = self.harm_endpoint
-        known = harm is None or harm.parameter in {each.parameter for each in named}
-        return named if known or harm is None else (*named, harm)
+        return named if harm is None or self.harm_endpoint_is_a_hypothesis else (*named, harm)
 
     def on(self, endpoint: Endpoint) -> Plan:
         """This plan read on another endpoint: arms, columns and analysis as they are."""

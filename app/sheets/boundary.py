@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from app.model.boundary import Bound, LookAsUsed
 from app.model.survival import LogrankResult, LogrankStratum
@@ -23,12 +23,12 @@ from app.sheets.blocks import (
 from app.sheets.curves import NOT_ADJUSTED, against, cox_level
 from app.sheets.further import (
     harm_endpoint_name,
-    harm_note,
     harm_table,
-    hypotheses_note,
-    hypotheses_table,
     hypothesis_details,
+    hypothesis_rows,
     is_harm_elsewhere,
+    rows_under_lanes,
+    waiting_note,
 )
 from app.sheets.held import HELD_BEFORE, held_tables, held_words
 from app.sheets.methods import methods, spending_key
@@ -70,7 +70,13 @@ def boundary_sheet(view: ClosedView) -> Sheet:
         answer=boundary_answer(view),
         figure=boundary_figure(view),
         tables=_standing_tables(view),
-        folded=(*held_tables(view, _side_words(view)), *hypothesis_details(view), *_folded_score(view), *_strata_table(view)),
+        folded=(
+            *held_tables(view, _side_words(view)),
+            *hypothesis_details(view),
+            *harm_table(view),
+            *_folded_score(view),
+            *_strata_table(view),
+        ),
         notes=(_note(view),),
         methods=methods(
             "logrank",
@@ -380,6 +386,7 @@ def _lane_rows(view: ClosedView) -> tuple[LaneRow, ...]:
         LaneRow(line(f"Efficacy bound{plus_minus}"), line("Efficacy"), bounds),
         LaneRow(line("as a hazard ratio"), line("as HR"), ratios, indent=True),
         *_rows_below(view, columns),
+        *rows_under_lanes(view, [lane.look if lane.state != "planned" else None for lane in _lanes(view)]),
         LaneRow(
             line(f"Alpha spent, {_side_words(view)}"),
             line("Alpha"),
@@ -405,7 +412,12 @@ def _rows_below(view: ClosedView, columns: tuple[_Column, ...]) -> tuple[LaneRow
         for name, table, bounds in kinds
         if table is not None
     )
-    return (*rows[:-1], _harm_z_row(view, columns), rows[-1]) if is_harm_elsewhere(view) else rows
+    if not is_harm_elsewhere(view):
+        return rows
+    *others, bound = rows
+    of_it = replace(bound, head=line(f"Harm bound on {harm_endpoint_name(view)}{each}"))
+    is_shown = view.plan.harm_endpoint_is_a_hypothesis
+    return (*others, of_it) if is_shown else (*others, _harm_z_row(view, columns), of_it)
 
 
 def _harm_z_row(view: ClosedView, columns: tuple[_Column, ...]) -> LaneRow:
@@ -423,9 +435,8 @@ def _side_words(view: ClosedView) -> str:
 
 def _standing_tables(view: ClosedView) -> tuple[Table, ...]:
     """Both readings, further hypotheses or harm leave no room for the score itself: it stands folded."""
-    beside = (*hypotheses_table(view), *harm_table(view))
     own = _masked_tables(view) if view.masked else (_observed_beside_bound(view), _interval_table(view))
-    return (*own, *beside) if _is_score_folded(view) else (*own, *beside, _logrank_table(view))
+    return own if _is_score_folded(view) else (*own, _logrank_table(view))
 
 
 def _is_score_folded(view: ClosedView) -> bool:
@@ -449,6 +460,7 @@ def _observed_beside_bound(view: ClosedView) -> Table:
             Row(line(Z), _pair(number(reading.z, places), or_dash(bound.efficacy_z, places))),
             Row(line(P, ", one-sided"), _pair(p_observed, _existing(bound.efficacy_p_one_sided, p_bound))),
             Row(line("Hazard ratio"), _pair(number(ratio, 3), or_dash(bound.efficacy_hazard_ratio, 3))),
+            *hypothesis_rows(view),
         ),
     )
 
@@ -503,6 +515,7 @@ def _masked_tables(view: ClosedView) -> tuple[Table, ...]:
                 _pair(*(_tested(view, each, _existing(p_bound, p_at_bound)) for each in view.readings)),
                 indent=True,
             ),
+            *hypothesis_rows(view),
         ),
     )
     return both, _whichever_table(view)
@@ -634,8 +647,7 @@ def _note(view: ClosedView) -> Line:
         _no_bound_words(view),
         held_words(view),
         FINAL_WORDS if view.look.final and view.look.information.fraction < 1 else "",
-        harm_note(view),
-        hypotheses_note(view),
+        waiting_note(view),
     )
 
 

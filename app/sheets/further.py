@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from app.model.plan import Hypothesis
-from app.model.values import Absent
+from collections.abc import Sequence
+
+from app.model.survival import CoxResult
+from app.model.values import Absent, Estimate
 from app.sequential.gatekeeping import PRIMARY, family_alpha
 from app.sheets.arms import label_of
-from app.sheets.blocks import Cell, Column, Line, Row, Span, Table
+from app.sheets.blocks import Cell, Column, LaneRow, Line, Row, Span, Table
 from app.sheets.words import (
     CROSSED,
     DASH,
@@ -14,7 +16,6 @@ from app.sheets.words import (
     P,
     Z,
     alpha,
-    count,
     interval,
     level_text,
     line,
@@ -42,53 +43,74 @@ def harm_endpoint_name(view: ClosedView) -> str:
 # --- further hypotheses ---------------------------------------------------------------------------------
 
 
-def hypotheses_table(view: ClosedView) -> tuple[Table, ...]:
-    """Where each further hypothesis stands; nothing where the plan has none."""
-    if not view.hypotheses:
-        return ()
-    rows = [row for each in view.hypotheses for row in (_masked_rows if view.masked else _rows)(each)]
-    if view.masked:
-        columns = tuple(Column(line(f"if {each.experimental} is experimental")) for each in view.readings)
-    else:
-        columns = (Column(line("observed")), Column(line("efficacy bound")))
-    return (Table(line("Further hypotheses"), columns, tuple(rows)),)
+def hypothesis_rows(view: ClosedView) -> tuple[Row, ...]:
+    """A row of each further hypothesis for the table of where the test stands."""
+    return tuple((_masked_row if view.masked else _row)(each) for each in view.hypotheses)
 
 
-def _rows(each: HypothesisView) -> tuple[Row, ...]:
+def _row(each: HypothesisView) -> Row:
     (reading,) = each.view.readings
     bound = each.view.look.bound.efficacy_z
     places = z_places(reading.z, bound)
     cells = Cell((number(reading.z, places),)), Cell((or_dash(bound, places),))
-    stands = line(_counted(each), ": ", _state(each, reading))
+    return Row(line(Z, f" of {each.hypothesis.name}, ", _state(each, reading)), cells)
+
+
+def _masked_row(each: HypothesisView) -> Row:
+    states = tuple(Cell(_state(each, reading)) for reading in each.view.readings)
+    return Row(line(each.hypothesis.name), states)
+
+
+def rows_under_lanes(view: ClosedView, looks: Sequence[int | None]) -> tuple[LaneRow, ...]:
+    """z of each further hypothesis and the bound that it is for; `looks` are lanes, None one to come."""
+    return tuple(row for each in view.hypotheses for row in _lane_rows(each, looks))
+
+
+def _lane_rows(each: HypothesisView, looks: Sequence[int | None]) -> tuple[LaneRow, LaneRow]:
+    view, reading = each.view, each.view.readings[0]
+    used = {held.number: (held.z, held.efficacy_z) for held in reading.history}
+    z = None if isinstance(reading.z, Absent) else reading.z
+    used[view.look.number] = (z, view.look.bound.efficacy_z)
+    shown = [used.get(look) if look is not None else None for look in looks]
+    plus_minus = ", ±" if view.masked or view.plan.design.sides == 2 else ""
     return (
-        Row(line(each.hypothesis.name, ", ", Z), cells),
-        Row(stands, (Cell(()), Cell(())), indent=True),
+        LaneRow(line(Z, f" of {each.hypothesis.name}"), line(Z, " of it"), tuple(map(_z_cell, shown))),
+        LaneRow(
+            line(f"its efficacy bound{plus_minus}"),
+            line("its bound"),
+            tuple(map(_bound_cell, shown)),
+            indent=True,
+        ),
     )
 
 
-def _masked_rows(each: HypothesisView) -> tuple[Row, ...]:
-    bound = each.view.look.bound.efficacy_z
-    readings = each.view.readings
-    places = [z_places(reading.z, bound) for reading in readings]
-    z = (Cell((number(reading.z, at),)) for reading, at in zip(readings, places, strict=True))
-    bounds = (Cell((or_dash(bound, at),)) for at in places)
-    return (
-        Row(line(each.hypothesis.name, ", ", Z), tuple(z)),
-        Row(line("Efficacy bound"), tuple(bounds), indent=True),
-        Row(_counted(each), tuple(Cell(_state(each, reading)) for reading in readings), indent=True),
-    )
+_Used = tuple[float | None, Estimate]
+
+
+def _z_cell(used: _Used | None) -> Span | None:
+    if used is None:
+        return None
+    z, bound = used
+    return None if z is None else number(z, z_places(z, bound))
+
+
+def _bound_cell(used: _Used | None) -> Span | None:
+    if used is None:
+        return None
+    z, bound = used
+    return or_dash(bound, 3 if z is None else z_places(z, bound))
 
 
 def _counted(each: HypothesisView) -> Line:
     information = each.view.look.information
-    return line(of_total(information.events, information.planned_events), f"{NO_BREAK}events")
+    return line(of_total(information.events, information.planned_events))
 
 
 def _state(each: HypothesisView, reading: Reading) -> Line:
-    """ "waits for the plan's endpoint", "crossed", "crossed at look 3", "not crossed"."""
+    """ "waits", "crossed", "crossed at look 3", "not crossed"."""
     first, number_ = reading.verdict.first_crossed, each.view.look.number
     if reading.waits_for is not None:
-        return line(f"waits for {named(reading.waits_for)}")
+        return line("waits")
     if first is not None and first < number_:
         return line(CROSSED, f" at look{NO_BREAK}{first}")
     if reading.verdict.crossed == "control":
@@ -103,66 +125,66 @@ def named(hypothesis: str) -> str:
 
 
 def hypotheses_sentence(view: ClosedView) -> Line:
-    """ " Death: z 1.703 against 3.065, waits for the plan's endpoint." for each that the plan has."""
+    """ " Death waits for the plan's endpoint." for each further hypothesis; empty where there is none."""
     return line(*(_said(each) for each in view.hypotheses))
 
 
 def _said(each: HypothesisView) -> Line:
-    """Masked, where each reading stands; the z of both readings are in the table."""
-    states = [_state(each, reading) for reading in each.view.readings]
-    if len(states) == 2:
-        said = states[0] if states[0] == states[1] else _by_reading(each, states)
-        return line(f" {each.hypothesis.name}: ", said, ".")
-    (reading,) = each.view.readings
+    name, readings = each.hypothesis.name, each.view.readings
+    states = [_state(each, reading) for reading in readings]
+    waits = {reading.waits_for for reading in readings}
+    if None not in waits:
+        return line(f" {name} waits for {named(readings[0].waits_for or PRIMARY)}.")
+    if len(readings) == 1:
+        return line(f" {name}: ", _z_beside_bound(each, readings[0]), ", ", states[0], ".")
+    if states[0] == states[1]:
+        return line(f" {name}: ", states[0], " in both readings.")
+    one, other = (reading.experimental for reading in readings)
+    return line(f" {name}: ", states[0], f" if {one} is experimental, ", states[1], f" if {other} is.")
+
+
+def _z_beside_bound(each: HypothesisView, reading: Reading) -> Line:
     bound = each.view.look.bound.efficacy_z
     places = z_places(reading.z, bound)
     z = line(Z, NO_BREAK, number(reading.z, places))
-    beside = line(" against ", number(bound, places)) if not isinstance(bound, Absent) else line()
-    return line(f" {each.hypothesis.name}: ", z, beside, ", ", states[0], ".")
+    return z if isinstance(bound, Absent) else line(z, " against ", number(bound, places))
 
 
-def _by_reading(each: HypothesisView, states: list[Line]) -> Line:
-    first, second = each.view.readings
-    return line(
-        states[0], f" if {first.experimental} is experimental, ", states[1], f" if {second.experimental} is"
-    )
-
-
-def hypotheses_note(view: ClosedView) -> Line:
-    """What the hypotheses share, and how they were planned."""
-    if not view.hypotheses:
-        return ()
-    design = view.plan.design
-    sides = "one-sided" if design.sides == 1 else "two-sided"
-    level = family_alpha(design.alpha, view.plan.hypotheses)
-    planned = (_planned(each.hypothesis) for each in view.hypotheses)
-    return line(
-        f" All hypotheses together: {sides} ", alpha(level), ". ", *planned, "Each spends by its own events."
-    )
-
-
-def _planned(hypothesis: Hypothesis) -> Line:
-    waits = "" if hypothesis.after is None else f", after {named(hypothesis.after)}"
-    return line(f"{hypothesis.name}: alpha ", alpha(hypothesis.alpha), f"{waits}. ")
+def waiting_note(view: ClosedView) -> Line:
+    """Which hypotheses still wait, and for what."""
+    return line(*(_said(each) for each in view.hypotheses if each.view.readings[0].waits_for is not None))
 
 
 def hypothesis_details(view: ClosedView) -> tuple[Table, ...]:
     """A table of each further hypothesis with its counts, test, ratio and bound; folded."""
-    return tuple(_details(each) for each in view.hypotheses)
+    sides = "one-sided" if view.plan.design.sides == 1 else "two-sided"
+    level = family_alpha(view.plan.design.alpha, view.plan.hypotheses)
+    shared = line(f" All hypotheses together are tested at {sides} ", alpha(level), ".")
+    return tuple(_details(each, shared) for each in view.hypotheses)
 
 
-def _details(each: HypothesisView) -> Table:
+def _details(each: HypothesisView, shared: Line) -> Table:
     view = each.view
+    after = "at once" if each.hypothesis.after is None else f"after {named(each.hypothesis.after)}"
     return Table(
-        caption=line(f"{each.hypothesis.label}, {_against(view)}"),
+        caption=line(f"{each.hypothesis.name}, {_against(view)}"),
+        note=line(f"{each.hypothesis.label}, tested {after}.", shared),
         columns=tuple(Column(line(head)) for head in ("observed", "at the efficacy bound")),
         rows=(
             *(_arm_row(view, index) for index in range(2)),
+            Row(line("Events of planned"), (Cell(_counted(each)), Cell(()))),
             *_test_rows(view),
-            Row(line("Hazard ratio"), (Cell(*_ratio(view)), Cell((_bound_ratio(view),)))),
-            Row(line("Alpha spent"), (Cell((alpha(view.look.bound.alpha_spent),)), Cell(()))),
+            Row(line("Hazard ratio"), (Cell(*_ratio(view.cox)), Cell((_bound_ratio(view),)))),
+            Row(
+                line("Alpha of one side, spent so far and in all"),
+                (_alpha_cell(view.look.bound.alpha_spent), _alpha_cell(view.plan.design.alpha_one_side)),
+            ),
         ),
     )
+
+
+def _alpha_cell(value: float) -> Cell:
+    return Cell((alpha(value),))
 
 
 def _against(view: ClosedView) -> str:
@@ -189,9 +211,8 @@ def _test_rows(view: ClosedView) -> tuple[Row, ...]:
     return z, Row(line(P, ", one-sided"), (Cell((observed,)), Cell((beside,))))
 
 
-def _ratio(view: ClosedView) -> tuple[Line, Line]:
+def _ratio(cox: CoxResult | Absent) -> tuple[Line, Line]:
     """The estimate, and under it its interval."""
-    cox = view.cox
     if isinstance(cox, Absent):
         return line(number(cox, 3)), ()
     limits = line(f"{level_text(cox.level)}: ", interval(cox.ci_low, cox.ci_high, 3))
@@ -210,8 +231,7 @@ def harm_table(view: ClosedView) -> tuple[Table, ...]:
     harm = view.harm
     if harm is None:
         return ()
-    test, cox = harm.logrank, harm.cox
-    ratio = cox if isinstance(cox, Absent) else cox.hazard_ratio
+    test = harm.logrank
     counted = (
         Row(
             line(f"Events, {label_of(view, arm).in_sentence}"),
@@ -227,7 +247,7 @@ def harm_table(view: ClosedView) -> tuple[Table, ...]:
                 *counted,
                 Row(line(Z), (Cell(line(number(test if isinstance(test, Absent) else test.z, 3))),)),
                 Row(line("Harm bound"), (Cell(line(or_dash(_harm_bound(view), 3))),)),
-                Row(line("Hazard ratio"), (Cell(line(number(ratio, 3))),)),
+                Row(line("Hazard ratio"), (Cell(*_ratio(harm.cox)),)),
             ),
         ),
     )
@@ -236,13 +256,3 @@ def harm_table(view: ClosedView) -> tuple[Table, ...]:
 def _harm_bound(view: ClosedView) -> float | Absent:
     bound = view.look.bound.harm_z
     return Absent("the plan has no harm boundary") if bound is None else bound
-
-
-def harm_note(view: ClosedView) -> Line:
-    if view.harm is None:
-        return ()
-    events = sum(counts.events for counts in view.harm.counts)
-    return line(
-        f" Harm is judged on {harm_endpoint_name(view)} (", count(events), " events so far); "
-        "bounds ahead suppose that its events grow as those of the test do.",
-    )  # fmt: skip
