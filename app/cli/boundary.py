@@ -49,7 +49,24 @@ def as_text(record: dict[str, Any]) -> str:
     extra = [kind for kind in ("futility", "harm") if looks[0][f"{kind}_z"] is not None]
     heads = (*HEADS, *(f"{kind.capitalize()} as z" for kind in extra))
     rows = [(*bound_row(look), *(said.bound(look[f"{kind}_z"], 4) for kind in extra)) for look in looks]
-    return f"{aligned(heads, rows)}\n{design_text(record)}"
+    return f"{aligned(heads, rows)}\n{design_text(record)}{hypotheses_text(record)}"
+
+
+def hypotheses_text(record: dict[str, Any]) -> str:
+    """The bounds of each further hypothesis by its own events, and the level of all together."""
+    if record["hypotheses"] is None:
+        return ""
+    blocks = [
+        f"\n{each['name']}, alpha {said.alpha(each['alpha'])}, {waiting_text(each)}\n"
+        f"{aligned(HEADS, [bound_row(look) for look in each['looks']])}"
+        for each in record["hypotheses"]
+    ]
+    return f"{''.join(blocks)}\nAll hypotheses together: alpha {said.alpha(record['alpha_of_all'])}\n"
+
+
+def waiting_text(hypothesis: dict[str, Any]) -> str:
+    after = hypothesis["after"]
+    return "tested at once" if after is None else f"tested once {after} has crossed"
 
 
 def bound_row(look: dict[str, Any]) -> tuple[str, ...]:

@@ -179,17 +179,45 @@ def test_text(look: dict[str, Any], orientation: dict[str, str]) -> str:
         ("Hazard ratio", ratio, said.bound(bound["efficacy_hazard_ratio"])),
     ]
     heads = (f"{orientation['of']} against {orientation['against']}", "Observed", "Efficacy bound")
-    return f"{aligned(heads, rows)}\n{verdict_text(look)}{lower_bounds_text(bound)}{outlook_text(look)}"
+    said_of_it = verdict_text(look) + lower_bounds_text(look) + hypotheses_text(look) + outlook_text(look)
+    return f"{aligned(heads, rows)}\n{said_of_it}"
 
 
-def lower_bounds_text(bound: dict[str, Any]) -> str:
-    """Futility and harm, where the plan has them."""
+def lower_bounds_text(look: dict[str, Any]) -> str:
+    """Futility and harm, where the plan has them; harm beside its own z where that is another."""
+    bound, harm = look["boundary"], look["harm_endpoint"]
     parts = [
         f"{kind.capitalize()} bound {said.bound(bound[f'{kind}_z'])}"
         for kind in ("futility", "harm")
         if bound[f"{kind}_z"] is not None
     ]
+    if harm is not None:
+        parts[-1] += f", z of {harm['parameter']} {z_of(harm)}"
     return f"{'. '.join(parts)}.\n" if parts else ""
+
+
+def hypotheses_text(look: dict[str, Any]) -> str:
+    return "".join(f"{hypothesis_text(each)}.\n" for each in look["hypotheses"] or ())
+
+
+def hypothesis_text(hypothesis: dict[str, Any]) -> str:
+    """ "Death: 142 of 300 planned events, z 1.703 against 3.065, alpha spent 0.00112; waits for primary"."""
+    information, bound = hypothesis["information"], hypothesis["boundary"]
+    counted = f"{information['events']} of {information['planned_events']} planned events"
+    tested = f"z {z_of(hypothesis)} against {said.bound(bound['efficacy_z'])}"
+    return (
+        f"{hypothesis['name']}: {counted}, {tested}, alpha spent {said.alpha(bound['alpha_spent'])}; "
+        f"{standing_text(bound)}"
+    )
+
+
+def standing_text(bound: dict[str, Any]) -> str:
+    if bound["waits_for"] is not None:
+        return f"waits for {bound['waits_for']}"
+    if bound["crossed"] != "none":
+        return f"crossed: {bound['crossed']}"
+    first = bound["first_crossed"]
+    return "not crossed" if first is None else f"crossed at look {first}"
 
 
 def outlook_text(look: dict[str, Any]) -> str:

@@ -456,3 +456,67 @@ def test_what_is_no_ratio_or_two_is_refused_in_a_sentence(
     look = str(extract(tmp_path, 140))
     assert main(["evaluate", str(plan(tmp_path)), "--look", look, "--hazard-ratio", *options]) == 2
     assert said in capsys.readouterr().err
+
+
+def two_endpoints(folder: Path, events: int, deaths: int, *, deaths_on_tablet: float = 0.46) -> Path:
+    """The rows of one extract, and under DEATH those of another."""
+    both = extract(folder, events).read_text(), extract(folder, deaths, deaths_on_tablet).read_text()
+    rows = both[1].replace("DEATHHF", "DEATH").partition("\n")[2]
+    path = folder / f"both-{events}-{deaths}-{deaths_on_tablet}.csv"
+    path.write_text(both[0] + rows, encoding="utf-8")
+    return path
+
+
+DEATH = """\
+[[hypothesis]]
+name = "Death"
+parameter = "DEATH"
+label = "Death from any cause"
+event_is = "bad"
+after = "primary"
+alpha = 0.025
+planned_events = 200
+efficacy = {spending = "O'Brien-Fleming-type"}
+"""
+
+
+def test_harm_on_another_endpoint_and_a_hypothesis_that_waits(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """Deaths at the plan's own fractions have the plan's own bounds: 3.6128, 2.4406, 2.0002, as above."""
+    path = plan(tmp_path, HARM + 'parameter = "DEATH"\n' + DEATH)
+    counts = ((140, 70), (280, 140), (400, 200))
+    looks = [part for each in counts for part in ("--look", two_endpoints(tmp_path, *each))]
+    found = evaluated(capsys, path, *looks)
+    assert bounds(found) == pytest.approx([3.6128, 2.4406, 2.0002], abs=5e-5)
+    deaths = [look["hypotheses"][0] for look in found]
+    assert bounds(deaths) == pytest.approx([3.6128, 2.4406, 2.0002], abs=5e-5)
+    assert [look["harm_endpoint"]["information"] for look in found] == [70, 140, 200]
+    assert [look["harm_endpoint"]["logrank"]["z"] for look in found] == [
+        look["logrank"]["z"] for look in deaths
+    ]
+    assert {death["boundary"]["waits_for"] for death in deaths} <= {"primary", None}
+    printed = record(capsys, "boundary", path)
+    assert bounds(printed["hypotheses"][0]["looks"]) == pytest.approx([3.6128, 2.4406, 2.0002], abs=5e-5)
+    assert printed["alpha_of_all"] == 0.025
+
+
+def test_harm_crosses_on_its_own_endpoint_while_the_plans_own_does_not(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    path = plan(tmp_path, HARM + 'parameter = "DEATH"\n')
+    (look,) = evaluated(capsys, path, "--look", two_endpoints(tmp_path, 140, 100, deaths_on_tablet=0.75))
+    assert look["boundary"]["crossed"] == "harm"
+    assert look["boundary"]["first_crossed"] is None
+    assert look["logrank"]["z"] > 0 > look["boundary"]["harm_z"] > look["harm_endpoint"]["logrank"]["z"]
+
+
+def test_the_commands_say_what_waits(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    path = plan(tmp_path, HARM + 'parameter = "DEATH"\n' + DEATH)
+    assert main(["evaluate", str(path), "--look", str(two_endpoints(tmp_path, 140, 70))]) == 0
+    told = capsys.readouterr().out
+    assert "Death: 70 of 200 planned events, z " in told
+    assert "; waits for primary." in told
+    assert ", z of DEATH " in told
+    assert main(["boundary", str(path)]) == 0
+    assert "Death, alpha 0.0250, tested once primary has crossed" in capsys.readouterr().out

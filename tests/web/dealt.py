@@ -13,6 +13,7 @@ from fastapi.testclient import TestClient
 from app.web.application import create_app
 from tests.unit.actions.invented_file import desk, live, started
 from tests.unit.review.invented_trial import Patients, patients
+from tests.unit.sheets.invented_looks import FURTHER
 from tests.web.served import ADDRESS, KEYS, Served
 
 
@@ -49,7 +50,7 @@ def serving(
     """A trial file with so many looks received and all but the last frozen, behind the real application."""
     folder.mkdir(parents=True, exist_ok=True)
     path = started(folder, changes, seed)
-    live(path, looks, looks - 1, ("planned",) * looks, people)
+    live(path, looks, looks - 1, ("planned",) * looks, people, further=FURTHER in changes)
     with desk(path, looks) as open_desk:
         app = create_app(open_desk.settings, open_desk, KEYS, port=ADDRESS.port)
         client = TestClient(app, base_url=ADDRESS.url, raise_server_exceptions=False)

@@ -15,7 +15,15 @@ from app.actions.receive import Incoming, receive
 from app.actions.start import start
 from app.model.extract import LookKind
 from app.settings import Settings
-from tests.unit.review.invented_trial import CUTOFFS, FIRST_DAY, Patients, patients, plan_text
+from tests.unit.review.invented_trial import (
+    CUTOFFS,
+    FIRST_DAY,
+    Patients,
+    patients,
+    plan_text,
+    two_endpoints,
+)
+from tests.unit.sheets.invented_looks import FURTHER
 
 BY = "M. Berg"
 
@@ -61,7 +69,7 @@ def held(
     if people is None:
         file.write_bytes(_made(looks, frozen, tuple(changes), tuple(kinds)))
     else:
-        live(started(path, changes, name=name), looks, frozen, kinds, people)
+        live(started(path, changes, name=name), looks, frozen, kinds, people, further=FURTHER in changes)
     return file
 
 
@@ -71,14 +79,25 @@ def _made(
 ) -> bytes:
     with TemporaryDirectory() as folder:
         file = started(Path(folder), changes)
-        live(file, looks, frozen, kinds, patients())
+        live(file, looks, frozen, kinds, patients(), further=FURTHER in changes)
         return file.read_bytes()
 
 
-def live(file: Path, looks: int, frozen: int, kinds: Sequence[LookKind], people: Patients) -> None:
+def live(
+    file: Path,
+    looks: int,
+    frozen: int,
+    kinds: Sequence[LookKind],
+    people: Patients,
+    *,
+    further: bool = False,
+) -> None:
+    """Receive and freeze so many looks; `further` adds the rows of the plan's further endpoints."""
     for number, (cutoff, kind) in enumerate(zip(CUTOFFS[:looks], kinds, strict=False), 1):
         with desk(file, number) as open_desk:
-            receive(open_desk, incoming(cutoff, people, kind), acknowledgements={}, by=BY)
+            content = two_endpoints(people, cutoff) if further else None
+            given = incoming(cutoff, people, kind, content)
+            receive(open_desk, given, acknowledgements={}, by=BY)
             if number <= frozen:
                 freeze(open_desk, by=BY)
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import typing
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import fields, is_dataclass, replace
 from pathlib import Path
 from typing import Any
@@ -19,7 +19,7 @@ from app.sheets.frame import Surroundings
 from app.views.open import OpenView
 from tests.unit.actions.invented_file import desk, held
 from tests.unit.review.invented_trial import Patients, patients
-from tests.unit.sheets.invented_looks import parts, text
+from tests.unit.sheets.invented_looks import FURTHER, parts, text
 
 ARM_WORDS = ("arm", "arms", "treatment", "experimental", "control", "letter", "letters", "masked")
 
@@ -50,21 +50,26 @@ def assigned_anew(people: Patients, seed: int) -> Patients:
     return replace(people, experimental=np.random.default_rng(seed).permutation(people.experimental))
 
 
-def books(folder: Path, people: Patients, name: str) -> tuple[list[LookBook], list[LookBook]]:
+def books(
+    folder: Path, people: Patients, name: str, changes: Sequence[tuple[str, str]] = ()
+) -> tuple[list[LookBook], list[LookBook]]:
     """The open and the closed book of each of two looks, one of them frozen."""
-    with desk(held(folder, 2, people=people, name=name), 2) as open_desk:
+    with desk(held(folder, 2, people=people, name=name, changes=changes), 2) as open_desk:
         return (
             [open_book(open_desk, look) for look in (1, 2)],
             [closed_book(open_desk, look, session=None) for look in (1, 2)],
         )
 
 
-def test_open_pages_are_the_same_whoever_got_which_arm(tmp_path: Path) -> None:
+@pytest.mark.parametrize("changes", [(), (FURTHER,)], ids=["one endpoint", "further endpoints"])
+def test_open_pages_are_the_same_whoever_got_which_arm(
+    tmp_path: Path, changes: Sequence[tuple[str, str]]
+) -> None:
     """The arms exchanged, and the arms dealt anew; the pages that may compare do differ."""
     people = patients()
-    open_books, closed_books = books(tmp_path, people, "k4.trial")
+    open_books, closed_books = books(tmp_path, people, "k4.trial", changes)
     for index, other in enumerate([people.with_arms_exchanged(), assigned_anew(people, 1)]):
-        open_others, closed_others = books(tmp_path, other, f"k4-{index}.trial")
+        open_others, closed_others = books(tmp_path, other, f"k4-{index}.trial", changes)
         assert repr(open_others) == repr(open_books)
         assert repr(closed_others) != repr(closed_books)
 

@@ -54,6 +54,24 @@ def test_nothing_masked_names_an_arm(world: str, letters: object) -> None:
             assert word not in shown.lower()
 
 
+@pytest.mark.parametrize("world", WORLDS)
+def test_masked_sheets_are_the_same_whichever_letter_is_experimental(world: str) -> None:
+    """The same patients under A and under B, whatever the plan calls them; the ratio planned goes with them."""
+    under, people = WORLDS[world]
+    if under.arms.unequal:
+        under = replace(under, arms=replace(under.arms, allocation=under.arms.allocation[::-1]))
+        there = WORLDS[world][0]
+    else:
+        there = under
+    one, other = held(there, people), held(under, people.with_arms_exchanged())
+    for number in range(1, len(one) + 1):
+        seen, exchanged = book(one[:number], A_IS_CONTROL), book(other[:number], A_IS_EXPERIMENTAL)
+        for key in ("glance", "information", "curves", "boundary", "shape", "outlook"):
+            if under.arms.unequal and key == "information":
+                continue  # it tells the ratio as the plan writes it
+            assert seen.sheet(key) == exchanged.sheet(key)
+
+
 def test_unmasked_the_names_do_stand_there() -> None:
     """The search above finds what there is to find."""
     shown = repr(book(held()[:1]))
