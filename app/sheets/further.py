@@ -27,6 +27,8 @@ from app.sheets.words import (
 )
 from app.views.closed import ClosedView, HypothesisView, Reading
 
+LONGEST_NAME = 20
+
 
 def is_harm_elsewhere(view: ClosedView) -> bool:
     """Whether harm is judged by another z than that of the plan's endpoint."""
@@ -74,7 +76,11 @@ def _lane_rows(each: HypothesisView, looks: Sequence[int | None]) -> tuple[LaneR
     shown = [used.get(look) if look is not None else None for look in looks]
     plus_minus = ", ±" if view.masked or view.plan.design.sides == 2 else ""
     return (
-        LaneRow(line(Z, f" of {each.hypothesis.name}"), line(Z, " of it"), tuple(map(_z_cell, shown))),
+        LaneRow(
+            line(Z, f" of {_fitting(each)}"),
+            line(Z, f" {each.hypothesis.parameter}"),
+            tuple(map(_z_cell, shown)),
+        ),
         LaneRow(
             line(f"its efficacy bound{plus_minus}"),
             line("its bound"),
@@ -82,6 +88,12 @@ def _lane_rows(each: HypothesisView, looks: Sequence[int | None]) -> tuple[LaneR
             indent=True,
         ),
     )
+
+
+def _fitting(each: HypothesisView) -> str:
+    """The name, or where that is too long for the column beside the lanes the endpoint's code."""
+    name = each.hypothesis.name
+    return name if len(name) <= LONGEST_NAME else each.hypothesis.parameter
 
 
 _Used = tuple[float | None, Estimate]
