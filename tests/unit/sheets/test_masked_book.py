@@ -56,7 +56,7 @@ def test_nothing_masked_names_an_arm(world: str, letters: object) -> None:
 
 @pytest.mark.parametrize("world", WORLDS)
 def test_masked_sheets_are_the_same_whichever_letter_is_experimental(world: str) -> None:
-    """The same patients under A and under B, whatever the plan calls them; the ratio planned goes with them."""
+    """The same patients under A and under B, whatever the plan calls them, its allocation with them."""
     under, people = WORLDS[world]
     if under.arms.unequal:
         under = replace(under, arms=replace(under.arms, allocation=under.arms.allocation[::-1]))
