@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from app.model.boundary import Bound, LookAsUsed
+from app.model.boundary import Bound, Crossed, LookAsUsed
 from app.model.survival import LogrankResult, LogrankStratum
 from app.model.values import Absent, Estimate
 from app.sheets.arms import label_of, labels
@@ -255,13 +255,19 @@ def _past_lane(view: ClosedView, held: LookAsUsed) -> Lane:
 def _crossed_below_at(view: ClosedView, look: int) -> bool:
     """Whether a look held crossed futility or harm, in any reading."""
     held = (each for reading in view.readings for each in reading.history)
-    return any(each.number == look and each.crossed in ("futility", "harm") for each in held)
+    below = (each.crossed for each in held if each.number == look)
+    return any(crossed in ("futility", "harm") and _is_in_lane(view, crossed) for crossed in below)
+
+
+def _is_in_lane(view: ClosedView, crossed: Crossed) -> bool:
+    """False of harm that another z than the lane's has crossed."""
+    return crossed != "none" and not (crossed == "harm" and is_harm_elsewhere(view))
 
 
 def _lane_now(view: ClosedView) -> Lane:
     look, z = view.look, _z_now(view)
     upper, lower = _bounds_shown(view, z, look.bound.efficacy_z, look.number)
-    crossed = any(each.verdict.crossed != "none" for each in view.readings)
+    crossed = any(_is_in_lane(view, each.verdict.crossed) for each in view.readings)
     fraction, shown = look.bound.information_fraction, _z_shown(z, look.bound.efficacy_z)
     below = _below_shown(view, look.bound)
     return Lane(look.number, fraction, "now", look.final, shown, upper, lower, crossed, *below)
