@@ -179,7 +179,7 @@ def _note(view: ClosedView) -> Line:
     return line(
         f"{compared[:1].upper()}{compared[1:]}, {level} intervals. {residual_words(view)} "
         "Nothing here is tested against the boundary. With few events a change is easily missed; the curves "
-        "begin, and the smooth ends, on few events."
+        "begin, and the smooth ends, on few."
     )
 
 

@@ -8,7 +8,16 @@ from xml.etree import ElementTree
 from app.render import figures
 from app.render.svg import strips
 from app.render.svg.lettering import text_width
-from app.sheets.blocks import ArmLabel, BoundaryFigure, ChancesFigure, CurvesFigure, Lane, LaneRow, Span
+from app.sheets.blocks import (
+    ArmLabel,
+    BoundaryFigure,
+    ChancesFigure,
+    CurvesFigure,
+    Lane,
+    LaneRow,
+    LogLogFigure,
+    Span,
+)
 from tests.render import invented_book as invented
 
 SVG = "{http://www.w3.org/2000/svg}"
@@ -89,6 +98,16 @@ def without_a_chance() -> ChancesFigure:
     return replace(figure, chances=(replace(first, percent=Span("not estimable")), *others))
 
 
+def with_long_log_log_names() -> LogLogFigure:
+    figure = invented.log_log_figure()
+    names = ("Extended-release tablet with titration", "Matching placebo capsule")
+    lines = tuple(
+        replace(line, arm=replace(line.arm, name=name))
+        for line, name in zip(figure.lines, names, strict=True)
+    )
+    return replace(figure, lines=lines)
+
+
 FIGURES = {
     "boundary": invented.boundary_figure("not crossed"),
     "boundary crossed": invented.boundary_figure("crossed"),
@@ -111,6 +130,7 @@ FIGURES = {
     "calendar": invented.calendar_figure(),
     "log-log": invented.log_log_figure(),
     "log-log masked": invented.log_log_figure("masked"),
+    "log-log with long names": with_long_log_log_names(),
     "residuals": invented.residual_figure(),
     "residuals masked": invented.residual_figure("masked"),
     "residuals of few events": invented.residual_figure(events=60),

@@ -228,6 +228,24 @@ def test_two_figures_beside_each_other_have_their_axes_on_one_line() -> None:
     assert len(baselines[0]) == 1
 
 
+@pytest.mark.parametrize("page", ["half", "narrow"])
+def test_names_beside_the_curves_begin_under_the_top_of_the_plot(page: str) -> None:
+    """Above it stands the button to zoom."""
+    svg = DRAWN[f"log-log with long names, {page}"]
+    named = [t for t in texts(svg) if t.semibold]
+    first, second, cut, *others = [t.words for t in named]
+    assert (first, second, *others) == ("Extended-", "release", "Matching", "placebo", "capsule")
+    assert cut.startswith("tablet w")
+    assert cut.endswith("…")
+    assert min(t.y for t in named) - 13 * 0.7 > residuals.NARROW_PAGE.plot.top
+
+
+def test_a_name_breaks_after_a_hyphen_and_keeps_its_spaces_within_a_line() -> None:
+    assert broken("Extended-release tablet", 60, most_lines=3) == ("Extended-", "release", "tablet")
+    assert broken("Extended-release tablet", 105, most_lines=3) == ("Extended-release", "tablet")
+    assert broken("slow release tablet", 80, most_lines=3) == ("slow release", "tablet")
+
+
 def test_a_figure_that_takes_the_whole_width_is_not_halved() -> None:
     with pytest.raises(TypeError, match="a boundary figure takes the whole width"):
         figures.half(invented.boundary_figure("not crossed"))

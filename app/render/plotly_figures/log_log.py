@@ -8,8 +8,7 @@ from app.render.palette import arm_ink
 from app.render.plotly_figures.panel import axes, paper, titles_at
 from app.render.plotly_figures.setting import Json, layout, step_line, words_at
 from app.render.svg import log_log as drawing
-from app.render.svg.log_log import NARROW_PAGE
-from app.render.svg.panel import HALF_PAGE, WIDE_PAGE, Page
+from app.render.svg.panel import HALF_PAGE, NARROW_PAGE, WIDE_PAGE, Page
 from app.sheets.blocks import LogLogFigure, LogLogLine
 
 

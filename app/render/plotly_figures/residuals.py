@@ -9,8 +9,8 @@ from app.render.plotly_figures.panel import axes, paper, titles_at
 from app.render.plotly_figures.setting import Json, layout, words_at
 from app.render.svg import residuals as drawing
 from app.render.svg.lettering import SMALL
-from app.render.svg.panel import HALF_PAGE, WIDE_PAGE, Page
-from app.render.svg.residuals import MANY, NARROW_PAGE
+from app.render.svg.panel import HALF_PAGE, NARROW_PAGE, WIDE_PAGE, Page
+from app.render.svg.residuals import MANY
 from app.sheets.blocks import ResidualFigure, SmoothPoint
 
 

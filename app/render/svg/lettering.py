@@ -6,6 +6,7 @@ files; a drawing has no browser to ask, and a label must know whether it has roo
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from typing import Literal
 
@@ -61,6 +62,7 @@ SEMIBOLD_WIDTHS: dict[int, str] = {
     850: "m%@…",
 }
 UNKNOWN_WIDTH = 600
+PIECE = re.compile(r"[^\s-]*-+\s*|[^\s-]+\s*")  # a word, or its part up to a hyphen, with the spaces after it
 
 
 def _by_character(widths: dict[int, str]) -> dict[str, int]:
@@ -129,19 +131,18 @@ def point_offset(text: str, size: float = LABEL, *, semibold: bool = False) -> f
 def broken(
     text: str, width: float, *, most_lines: int, size: float = LABEL, semibold: bool = False
 ) -> tuple[str, ...]:
-    """`text` in lines no wider than `width`; what does not fit into `most_lines` ends in an ellipsis."""
+    """`text` in lines no wider than `width`, broken at spaces and hyphens; what is too much ends in "…"."""
     if text_width(text, size, semibold=semibold) <= width:
         return (text,)
     lines: list[str] = []
-    for word in text.split():
-        candidate = f"{lines[-1]} {word}" if lines else word
-        if lines and text_width(candidate, size, semibold=semibold) <= width:
-            lines[-1] = candidate
+    for piece in PIECE.findall(text):
+        if lines and text_width((lines[-1] + piece).rstrip(), size, semibold=semibold) <= width:
+            lines[-1] += piece
         else:
-            lines.append(word)
+            lines.append(piece)
     if len(lines) > most_lines:
-        lines = [*lines[: most_lines - 1], " ".join(lines[most_lines - 1 :])]
-    return tuple(shortened(line, width, size=size, semibold=semibold) for line in lines)
+        lines = [*lines[: most_lines - 1], "".join(lines[most_lines - 1 :])]
+    return tuple(shortened(line.rstrip(), width, size=size, semibold=semibold) for line in lines)
 
 
 def shortened(text: str, width: float, *, size: float = LABEL, semibold: bool = False) -> str:

@@ -7,14 +7,14 @@ from app.render.svg.drawing import Drawing
 from app.render.svg.element import Element, element
 from app.render.svg.geometry import Scale, apart_within, step_path, thinned
 from app.render.svg.lettering import broken, words
-from app.render.svg.panel import HALF_PAGE, WIDE_PAGE, Page, axes, narrow_page
+from app.render.svg.panel import HALF_PAGE, NARROW_PAGE, WIDE_PAGE, Page, axes
 from app.sheets.blocks import LogLogFigure, LogLogLine
 
 FINEST = 0.25
 LABEL_GAP = 16.0
 BASELINE = 4.5
+NAME_OFF = 8.0  # of a name, from the plot
 MARGIN = 0.03  # of the axis, left and right of the first and last step
-NARROW_PAGE = narrow_page(327)  # letters alone stand beside the plot
 
 
 def wide(figure: LogLogFigure) -> Drawing:
@@ -74,19 +74,14 @@ def _line(line: LogLogLine, x: Scale, y: Scale) -> tuple[Element, ...]:
 def names_at(figure: LogLogFigure, page: Page) -> tuple[tuple[LogLogLine, str, float, float], ...]:
     """Each line of each arm's name beside the end of its curve: words, left and baseline."""
     _, y = scales(figure, page)
-    left = page.plot.right + (5 if page is NARROW_PAGE else 10)
-    texts = [_name(line, page) for line in figure.lines]
+    left, room = page.plot.right + NAME_OFF, page.beside - NAME_OFF
+    most = 2 if page is WIDE_PAGE else 3
+    texts = [broken(line.arm.name, room, most_lines=most, semibold=True) for line in figure.lines]
     ends = [y(line.log_minus_log[-1]) for line in figure.lines]
     gap = LABEL_GAP * max(len(text) for text in texts)
-    middles = apart_within(ends, gap, page.plot.top, page.plot.bottom)
+    middles = apart_within(ends, gap, page.plot.top + gap / 2, page.plot.bottom)
     return tuple(
         (line, text, left, middle + BASELINE - LABEL_GAP * (len(lines) - 1) / 2 + LABEL_GAP * row)
         for line, lines, middle in zip(figure.lines, texts, middles, strict=True)
         for row, text in enumerate(lines)
     )
-
-
-def _name(line: LogLogLine, page: Page) -> tuple[str, ...]:
-    if page is NARROW_PAGE:
-        return (line.arm.letter,)
-    return broken(line.arm.name, page.beside - 10, most_lines=2, semibold=True)

@@ -34,11 +34,7 @@ class Page:
 
 WIDE_PAGE = Page(WIDE, Box(176, 26.5, 648, 346.5), 372, 167, False)
 HALF_PAGE = Page(HALF, Box(34, 26.5, 284, 326.5), 372, 26, True)
-
-
-def narrow_page(right: float) -> Page:
-    """A narrow drawing whose plot ends at `right`, before the words beside it."""
-    return Page(NARROW, Box(40, 26.5, right, 246.5), 290, 31, True)
+NARROW_PAGE = Page(NARROW, Box(40, 26.5, 270, 246.5), 290, 31, True)
 
 
 def titles(figure: PanelFigure, page: Page) -> tuple[tuple[str, float, float], ...]:

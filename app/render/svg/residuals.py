@@ -7,7 +7,7 @@ from app.render.svg.drawing import Drawing, small_print
 from app.render.svg.element import Element, coordinate, element
 from app.render.svg.geometry import Scale, apart_within, snapped
 from app.render.svg.lettering import SMALL, shortened, words
-from app.render.svg.panel import HALF_PAGE, WIDE_PAGE, Page, axes, narrow_page
+from app.render.svg.panel import HALF_PAGE, NARROW_PAGE, WIDE_PAGE, Page, axes
 from app.sheets.blocks import ResidualFigure
 
 MANY = 250  # events, from where on their marks are smaller and paler
@@ -16,7 +16,6 @@ CELL, SMALL_CELL = 0.5, 1.0  # marks that fall on one place of this grid are one
 DIRECTION_ROOM = 20.0  # above the highest mark and below the lowest, for whom a ratio there favours
 LABEL_GAP = 16.0
 BASELINE = 4.5
-NARROW_PAGE = narrow_page(270)
 
 
 def wide(figure: ResidualFigure) -> Drawing:
