@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from typing import TypeVar
+
 from app.model.extract import Sample
 from app.model.plan import Plan
 from app.model.survival import (
@@ -30,6 +33,7 @@ from app.survival import (
 )
 
 TRANSFORM = "km"
+T = TypeVar("T")
 Curves = tuple[SurvivalCurve, SurvivalCurve]
 
 
@@ -40,16 +44,18 @@ def shape_of(plan: Plan, sample: Sample, curves: Curves, *, mirrored: bool = Fal
     """
     time, of = times_of(sample), ~sample.experimental if mirrored else sample.experimental
     against, one = reversed(curves) if mirrored else curves
-    ties = plan.analysis.ties
     arguments = (time, sample.event, of)
     table = two_arm_events(*arguments, sample.stratum)
-    residuals = or_reason(
-        lambda: scaled_residuals(*arguments, stratum=sample.stratum, ties=ties, transform=TRANSFORM)
-    )
+
+    def along_time(estimate: Callable[..., T]) -> T | Absent:
+        settings = {"stratum": sample.stratum, "ties": plan.analysis.ties, "transform": TRANSFORM}
+        return or_reason(lambda: estimate(*arguments, **settings))
+
+    tested, residuals = along_time(proportionality), along_time(scaled_residuals)
+    if isinstance(residuals, Absent) and isinstance(tested, Absent):
+        residuals = tested  # one fact, said of arms and not of a covariate
     return Shape(
-        proportionality=or_reason(
-            lambda: proportionality(*arguments, stratum=sample.stratum, ties=ties, transform=TRANSFORM)
-        ),
+        proportionality=tested,
         residuals=residuals,
         ratio_over_time=_ratio_over_time(plan, residuals),
         restricted_mean=_restricted_mean(plan, against, one),
