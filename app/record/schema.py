@@ -146,7 +146,7 @@ ENDPOINT_AT_LOOK = {
     "curves": [CURVE], "boundary": {**BOUND, "information": NUMBER, **CROSSING}, "readings": Maybe([READING]),
     "history": [HISTORY], "ahead": [BOUND], **ONWARDS,
     "repeated_interval": Maybe(Estimable(REPEATED_INTERVAL)), "proportionality": Estimable(PROPORTIONALITY),
-    "residuals": Estimable(RESIDUALS),
+    "residuals": Later(Estimable(RESIDUALS)),
     "restricted_mean": Maybe(Estimable(RESTRICTED_MEAN)), "weighted": Maybe([WEIGHTED]),
     "weighted_maximum": Maybe(Estimable(WEIGHTED_MAXIMUM)), "landmarks": Maybe([LANDMARK]),
 }  # fmt: skip

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -70,7 +70,7 @@ def curves_sheet(view: ClosedView) -> Sheet:
         answer=(event_free_sentence(view),),
         figure=curves_figure(shown, axis),
         tables=(_estimates(shown, axis), hazard_ratio_table(view)),
-        folded=_landmark_table(view, axis),
+        folded=(*_landmark_table(view, axis), *_hypotheses_estimates(view)),
         notes=(_note(shown, axis),),
         methods=methods(
             "kaplan-meier",
@@ -254,6 +254,17 @@ def _estimates(shown: Sequence[CurveShown], axis: TimeAxis) -> Table:
             ),
         ),
     )
+
+
+def _hypotheses_estimates(view: ClosedView) -> tuple[Table, ...]:
+    """The same estimates on the endpoint of each further hypothesis."""
+    tables = []
+    for each in view.hypotheses:
+        shown = tuple(_shown(each.view, arm) for arm in each.view.arms)
+        axis = time_axis(tuple(item.curve for item in shown), each.view.look.time_unit)
+        table = _estimates(shown, axis)
+        tables.append(replace(table, caption=line(f"{each.hypothesis.name}: ", *table.caption)))
+    return tuple(tables)
 
 
 def in_unit(value: Estimate, scale: float) -> Span:

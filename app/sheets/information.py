@@ -51,7 +51,7 @@ def information_sheet(view: ClosedView, planned: float | None) -> Sheet:
             ),
         ),
         figure=calendar_figure(look.calendar, information.planned_events, look.cutoff_day),
-        tables=(_arms_table(view), _variance_table(view)),
+        tables=(_arms_table(view), _variance_table(view), *_hypotheses_table(view)),
         folded=_strata_table(view),
         notes=_notes(view),
         methods=methods("information", "variance-ratio", "person-time", "follow-up"),
@@ -201,6 +201,22 @@ def _variance_table(view: ClosedView) -> Table:
     if planned is not None:
         rows.insert(0, Row(line("Subjects of planned"), (Cell(of_total(information.subjects, planned)),)))
     return Table(line("Both arms"), (Column(()),), tuple(rows))
+
+
+def _hypotheses_table(view: ClosedView) -> tuple[Table, ...]:
+    """How much is known of each further hypothesis, by its own planned events."""
+    if not view.hypotheses:
+        return ()
+    counted = ((each.hypothesis.name, each.view.look.information) for each in view.hypotheses)
+    rows = (
+        Row(
+            line(name),
+            (Cell(of_total(known.events, known.planned_events)), Cell((number(known.fraction, 3),))),
+        )
+        for name, known in counted
+    )
+    columns = (Column(line("planned events")), Column(line("fraction")))
+    return (Table(line("Further hypotheses"), columns, tuple(rows)),)
 
 
 def _ratio(value: Estimate) -> Span:

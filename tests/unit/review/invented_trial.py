@@ -24,6 +24,7 @@ CONTROL, EXPERIMENTAL = "SYRUPINE", "PELLETOL"
 FIRST_DAY = date(2024, 1, 8)
 EPOCH = date(1970, 1, 1)
 REGIONS = ("North", "South")
+DESCRIBED = {"RELAPSE": "Time to relapse (days)", "DEATH": "Time to death (days)"}
 COLUMNS = (
     "STUDYID",
     "USUBJID",
@@ -172,7 +173,7 @@ class Seen:
             rows.writerow(
                 [
                     "K4", f"K4-{self.subject[at]:04d}",
-                    EXPERIMENTAL if self.experimental[at] else CONTROL, parameter, "",
+                    EXPERIMENTAL if self.experimental[at] else CONTROL, parameter, DESCRIBED[parameter],
                     int(self.time[at]), int(not self.event[at]), start, end, REGIONS[self.region[at]], "F",
                 ]
             )  # fmt: skip
