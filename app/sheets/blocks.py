@@ -327,7 +327,7 @@ class IntervalStrip:
 
 @dataclass(frozen=True)
 class ZStrip:
-    """The gauge of one look lying down: z above, bounds below."""
+    """The gauge of one look lying down: z above, bounds below; `masked`, A's reading over B's."""
 
     title: str
     description: str
@@ -336,6 +336,8 @@ class ZStrip:
     lower: Span | None
     crossed: bool
     futility: Span | None = None
+    harm: Span | None = None
+    masked: bool = False
     kind: Literal["z strip"] = "z strip"
 
 

@@ -222,7 +222,8 @@ def _needed_next(view: ClosedView) -> Line:
 
 
 def _z_strip(view: ClosedView) -> ZStrip:
-    lane = next(lane for lane in boundary_figure(view).lanes if lane.state == "now")
+    figure = boundary_figure(view)
+    lane = next(lane for lane in figure.lanes if lane.state == "now")
     return ZStrip(
         title="z against its bound",
         description="The z of this look on the scale of its efficacy bound.",
@@ -231,6 +232,8 @@ def _z_strip(view: ClosedView) -> ZStrip:
         lower=lane.lower,
         crossed=lane.crossed,
         futility=lane.futility,
+        harm=lane.harm,
+        masked=figure.layout == "two lanes",
     )
 
 

@@ -35,9 +35,9 @@ ALONG = "Conditional power along the planned looks"
 
 
 def outlook_sheet(view: ClosedView) -> Sheet:
-    """Masked, while one reading goes on, what the other says of ending here stands behind a fold."""
+    """While a reading goes on, what is said of ending here stands behind a fold."""
     stopping = _stopping_tables(view)
-    folded = view.masked and bool(_outlooks(view))
+    folded = bool(_outlooks(view))
     return Sheet(
         key="outlook",
         number=6,

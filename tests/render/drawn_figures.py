@@ -17,6 +17,7 @@ from app.sheets.blocks import (
     LaneRow,
     LogLogFigure,
     Span,
+    ZStrip,
 )
 from tests.render import invented_book as invented
 
@@ -92,6 +93,15 @@ def with_harm(state: invented.State, *, z: float | None = None) -> BoundaryFigur
     return replace(figure, lanes=lanes, rows=(*figure.rows[:-1], row, figure.rows[-1]))
 
 
+def z_strip_with_harm(
+    state: invented.State, z: float, *, futility: float = 0.958, upper: float = 2.434
+) -> ZStrip:
+    strip = invented.z_strip(state)
+    crossed = z <= HARM[2] or z >= -HARM[2] or 0 < z <= futility
+    bounds = {"upper": invented.n(upper), "harm": invented.n(HARM[2]), "futility": invented.n(futility)}
+    return replace(strip, z=invented.n(z), crossed=crossed, **bounds)
+
+
 def without_a_chance() -> ChancesFigure:
     figure = invented.chances_figure("masked")
     first, *others = figure.chances
@@ -156,6 +166,11 @@ STRIPS = {
     "z strip": invented.z_strip("not crossed"),
     "z strip crossed": invented.z_strip("crossed"),
     "z strip masked": invented.z_strip("masked"),
+    "z strip with harm": z_strip_with_harm("not crossed", -0.5),
+    "z strip with harm crossed": z_strip_with_harm("not crossed", -2.5),
+    "z strip with futility crossed": z_strip_with_harm("not crossed", 0.2),
+    "z strip with harm, early": z_strip_with_harm("not crossed", 0.9, futility=-0.799, upper=4.241),
+    "z strip masked with harm crossed": z_strip_with_harm("masked", 2.4),
 }
 
 

@@ -352,7 +352,8 @@ def z_strip(state: State) -> ZStrip:
         upper=n(2.434),
         lower=n(-2.434) if state == "masked" else None,
         crossed=state == "crossed",
-        futility=None if state == "masked" else n(0.958),
+        futility=n(0.958),
+        masked=state == "masked",
     )
 
 

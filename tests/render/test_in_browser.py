@@ -10,6 +10,7 @@ import mimetypes
 import re
 from collections.abc import Iterator
 from contextlib import contextmanager
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -23,6 +24,7 @@ from app.render.report import render_report
 from app.web.headers import CONTENT_SECURITY_POLICY
 from tests.browser.watched import Watched, obstacles, watched
 from tests.render import invented_book as invented
+from tests.render.drawn_figures import with_harm
 from tests.render.test_report import FACTS
 
 ORIGIN = "http://lookledger.test"
@@ -112,6 +114,28 @@ def test_every_sheet_fits_a_laptop_screen(chromium: Browser) -> None:
         for key in KEYS:
             go(page, key, "masked")
             assert page.evaluate("document.documentElement.scrollHeight") <= 768
+
+
+def test_a_plan_with_futility_and_harm_fits_it_too(chromium: Browser) -> None:
+    """Seven rows under two lanes a look, and a sentence for each reading."""
+    book = invented.book("masked")
+    sheets = tuple(
+        replace(sheet, figure=with_harm("masked")) if sheet.key == "boundary" else sheet
+        for sheet in book.sheets
+    )
+    html = render_sheet(ENVIRONMENT, replace(book, sheets=sheets), "boundary", base="/masked")
+    with opened(chromium) as (seen, page):
+        seen.context.route(
+            f"{ORIGIN}/masked/looks/3/boundary",
+            lambda route: route.fulfill(
+                body=html,
+                content_type="text/html; charset=utf-8",
+                headers={"Content-Security-Policy": CONTENT_SECURITY_POLICY},
+            ),
+        )
+        go(page, "boundary", "masked")
+        assert page.locator(".drawing .wide text", has_text="Harm bound").count() == 1
+        assert page.evaluate("document.documentElement.scrollHeight") <= 768
 
 
 POINTS = """

@@ -3,8 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass, replace
-from typing import Literal
+from dataclasses import dataclass
 
 from app.render.palette import CROSSED, CROSSED_ZONE, EFFICACY_ZONE, HAIRLINE, HATCH, INK, INK_3, PAPER
 from app.render.svg.drawing import diamond, disc, rectangle
@@ -12,6 +11,7 @@ from app.render.svg.element import Element, coordinate, element
 from app.render.svg.geometry import Box, Segment, hatching, snapped
 from app.render.svg.lane_plot import LanePlot, lower_bound, number
 from app.render.svg.lettering import words
+from app.render.svg.limits import Limit, Limits, is_reached, limits_read
 from app.sheets.blocks import Lane
 
 HATCH_APART = 7.0
@@ -19,20 +19,11 @@ ROOM_FOR_LETTERS = 24.0
 
 
 @dataclass(frozen=True)
-class Limit:
-    """A bound as it is read in a lane: its height, whether its zone lies above, and what it is a bound of."""
-
-    z: float
-    above: bool
-    kind: Literal["efficacy", "harm", "futility"]
-
-
-@dataclass(frozen=True)
 class Reading:
     """A lane, or half of one while masked, with the bounds that are read in it."""
 
     box: Box
-    limits: tuple[Limit, ...]
+    limits: Limits
 
 
 @dataclass(frozen=True)
@@ -84,30 +75,17 @@ def edge_colour(lane: Lane) -> str:
 
 def lane_readings(plot: LanePlot, lane: Lane) -> tuple[Reading, ...]:
     """Masked, the left half is read as if A were experimental, the right one, mirrored, as if B were."""
-    box, upper, lower = column(plot, lane), number(lane.upper), lower_bound(lane)
-    efficacy = _limits(upper, True, "efficacy")
-    lower_efficacy = _limits(lower, False, "efficacy")
-    harm, futility = number(lane.harm), number(lane.futility)
-    own = (*_limits(harm, False, "harm"), *_limits(futility, False, "futility"))
-    if not plot.is_masked:
-        return (Reading(box, (*efficacy, *lower_efficacy, *own)),)
+    box, below = column(plot, lane), (lower_bound(lane), number(lane.harm), number(lane.futility))
+    limits = limits_read(number(lane.upper), *below, masked=plot.is_masked)
     middle = plot.middle(lane)
-    left = Box(box.left, box.top, middle, box.bottom)
-    right = Box(middle, box.top, box.right, box.bottom)
-    mirrored = tuple(replace(limit, z=-limit.z, above=True) for limit in own)
-    return Reading(left, (*efficacy, *own)), Reading(right, (*lower_efficacy, *mirrored))
-
-
-def _limits(z: float | None, above: bool, kind: Literal["efficacy", "harm", "futility"]) -> tuple[Limit, ...]:
-    return () if z is None else (Limit(z, above, kind),)
+    halves = Box(box.left, box.top, middle, box.bottom), Box(middle, box.top, box.right, box.bottom)
+    boxes = halves if plot.is_masked else (box,)
+    return tuple(Reading(part, read) for part, read in zip(boxes, limits, strict=True))
 
 
 def is_crossed(lane: Lane, limit: Limit) -> bool:
-    """Whether the crossing recorded for this lane is of this bound; futility alone is not set in crossed."""
-    z = number(lane.z)
-    if not lane.crossed or z is None or limit.kind == "futility":
-        return False
-    return z >= limit.z if limit.above else z <= limit.z
+    """Whether the crossing recorded for this lane is of this bound."""
+    return lane.crossed and is_reached(number(lane.z), limit)
 
 
 def crosses_a_bar(plot: LanePlot, lane: Lane) -> bool:

@@ -1,37 +1,31 @@
-"""The small figures of At a glance: the spine lying down, intervals on one scale, a gauge lying down."""
+"""The small figures of At a glance: the spine lying down, intervals on one scale, counts and a gauge."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 from app.render.palette import (
-    CROSSED,
-    CROSSED_ZONE,
     GRID,
-    HATCH_NOW,
     INK,
     INK_2,
     INK_3,
     PAPER,
-    ZONE_NOW,
     arm_ink,
 )
-from app.render.svg import counts
+from app.render.svg import counts, z_strip
 from app.render.svg.drawing import (
     NARROW,
     STRIP,
     Drawing,
-    diamond,
     disc,
     rectangle,
     small_print,
     vertical,
 )
 from app.render.svg.element import Element, coordinate, element
-from app.render.svg.geometry import Box, Scale, apart_within, hatching, snapped
-from app.render.svg.lettering import LABEL, SMALL, fraction_text, shortened, text_width, words
-from app.sheets.blocks import CountsFigure, InformationStrip, IntervalMark, IntervalStrip, Span, Strip, ZStrip
+from app.render.svg.geometry import Box, Scale, apart_within, snapped
+from app.render.svg.lettering import SMALL, fraction_text, shortened, text_width, words
+from app.sheets.blocks import CountsFigure, InformationStrip, IntervalMark, IntervalStrip, Strip
 
 
 def wide(strip: Strip) -> Drawing:
@@ -49,7 +43,7 @@ def drawn(strip: Strip, width: float) -> Drawing:
         return information(strip, width)
     if isinstance(strip, IntervalStrip):
         return intervals(strip, width)
-    return gauge(strip, width)
+    return z_strip.drawn(strip, width)
 
 
 # --- information --------------------------------------------------------------------------------------------
@@ -170,128 +164,3 @@ def _interval_line(mark: IntervalMark, x: Scale, y: float) -> list[Element]:
     outer = element("path", d=path, stroke=ink.line, stroke_width=3.25 if ink.hollow else 1.75, fill="none")
     core = element("path", d=path, stroke=PAPER, stroke_width=1.25, fill="none")
     return [outer, core] if ink.hollow else [outer]
-
-
-# --- z ------------------------------------------------------------------------------------------------------
-
-GAUGE = (19.5, 37.5)
-HATCH_APART = 7.0
-
-
-@dataclass(frozen=True)
-class _Bounds:
-    """The bounds of a strip as drawn: the lower always below zero."""
-
-    upper: float | None
-    lower: float | None
-    futility: float | None
-
-    @property
-    def all(self) -> list[float]:
-        return [value for value in (self.upper, self.lower, self.futility) if value is not None]
-
-
-def gauge(strip: ZStrip, width: float) -> Drawing:
-    """The gauge of one look lying down: z above, bounds below."""
-    bounds = _Bounds(
-        _value(strip.upper),
-        None if strip.lower is None else -abs(_value(strip.lower) or 0),
-        _value(strip.futility),
-    )
-    z = _value(strip.z)
-    x = _z_scale(bounds, z, width)
-    return Drawing(
-        width,
-        56,
-        strip.title,
-        strip.description,
-        (
-            *_gauge_ground(strip, bounds, x, width),
-            *_z_mark(strip, z, x),
-            *_bound_words(strip, bounds, x, width),
-        ),
-    )
-
-
-def _value(span: Span | None) -> float | None:
-    return span.value if span else None
-
-
-def _z_scale(bounds: _Bounds, z: float | None, width: float) -> Scale:
-    values = [0.0, *bounds.all, *([z] if z is not None else [])]
-    low, high = min(-1.0, min(values) - 0.7), max(4.0, max(values) + 0.7)
-    if bounds.lower is not None:
-        high = max(high, -low)
-        low = -high
-    return Scale(low, high, 0.5, width - 0.5)
-
-
-def _gauge_ground(strip: ZStrip, bounds: _Bounds, x: Scale, width: float) -> list[Element]:
-    top, bottom = GAUGE
-    parts: list[Element] = []
-    if bounds.upper is not None:
-        parts.append(rectangle(Box(x(bounds.upper), top, x.end, bottom), _zone(strip, above=True)))
-    if bounds.lower is not None:
-        parts.append(rectangle(Box(x.start, top, x(bounds.lower), bottom), _zone(strip, above=False)))
-    if bounds.futility is not None:
-        parts.append(_hatch(Box(x.start, top, x(bounds.futility), bottom)))
-    parts.append(rectangle(Box(0.5, top, width - 0.5, bottom), "none", INK_3))
-    for bound, above in ((bounds.upper, True), (bounds.lower, False)):
-        if bound is not None:
-            parts.append(_upright(x(bound), CROSSED if _is_crossed(strip, above=above) else INK, 2.5))
-    if bounds.futility is not None:
-        parts.append(_upright(x(bounds.futility), INK, 1.75, "3 2"))
-    return parts
-
-
-def _upright(x: float, stroke: str, width: float, dashes: str | None = None) -> Element:
-    path = f"M{coordinate(x)} {GAUGE[0]:g}V{GAUGE[1]:g}"
-    return element("path", d=path, stroke=stroke, stroke_width=width, stroke_dasharray=dashes, fill="none")
-
-
-def _hatch(box: Box) -> Element:
-    drawn = "".join(
-        f"M{coordinate(a)} {coordinate(b)}L{coordinate(c)} {coordinate(d)}"
-        for a, b, c, d in hatching(box, HATCH_APART)
-    )
-    return element("path", d=drawn or "M0 0", fill="none", stroke=HATCH_NOW)
-
-
-def _is_crossed(strip: ZStrip, *, above: bool) -> bool:
-    return strip.crossed and (_value(strip.z) or 0) * (1 if above else -1) > 0
-
-
-def _zone(strip: ZStrip, *, above: bool) -> str:
-    return CROSSED_ZONE if _is_crossed(strip, above=above) else ZONE_NOW
-
-
-def _z_mark(strip: ZStrip, z: float | None, x: Scale) -> list[Element]:
-    if z is None or strip.z is None:
-        return []
-    middle = (GAUGE[0] + GAUGE[1]) / 2
-    fill = CROSSED if strip.crossed else INK
-    said = (Span("z", "symbol"), Span(f"\u00a0{strip.z.text}"))
-    half = text_width(f"z {strip.z.text}", semibold=True) / 2
-    at = min(max(x(z), half), x.end - half)
-    mark = diamond(x(z), middle, 7.5, fill) if strip.crossed else disc(x(z), middle, 5.5, fill)
-    ring = diamond(x(z), middle, 9.5, PAPER) if strip.crossed else disc(x(z), middle, 7, PAPER)
-    return [words(said, at, 13, fill=fill, anchor="middle", semibold=True), ring, mark]
-
-
-def _bound_words(strip: ZStrip, bounds: _Bounds, x: Scale, width: float) -> list[Element]:
-    """Each bound's name and number under its bar, those at the left ending there, the upper one beginning."""
-    two_sided = strip.lower is not None
-    named = [
-        ("bound" if two_sided else "efficacy", strip.upper, bounds.upper, False),
-        ("bound", strip.lower, bounds.lower, True),
-        ("futility", strip.futility, bounds.futility, True),
-    ]
-    parts: list[Element] = []
-    for word, span, bound, ends_there in named:
-        if span is None or bound is None:
-            continue
-        text = f"{word}\u00a0{span.text}"
-        length = text_width(text, LABEL)
-        left = x(bound) + 2 - length if ends_there else x(bound) - 2
-        parts.append(words(text, min(max(left, 0), width - length), GAUGE[1] + 15))
-    return parts

@@ -161,6 +161,12 @@ def test_masked_the_end_of_one_reading_stands_behind_a_fold_while_the_other_goes
     assert len(sheet.wide_tables) == 1
 
 
+def test_after_a_crossing_of_harm_the_trial_may_go_on_and_its_end_stands_behind_a_fold() -> None:
+    sheet = seen(-3.0, under(), outlook_sheet)
+    assert [text(table.caption) for table in sheet.folded] == ["As if stopped here"]
+    assert len(sheet.wide_tables) == 1
+
+
 @pytest.mark.parametrize(
     ("z", "said"),
     [
