@@ -146,6 +146,14 @@ def change_alpha(record: dict[str, Any]) -> None:
     look_of(record)["boundary"]["alpha_spent"] *= 1.01
 
 
+def change_a_residual(record: dict[str, Any]) -> None:
+    look_of(record)["residuals"]["log_hazard_ratio"][4] += 1e-6
+
+
+def change_a_limit_of_the_smooth(record: dict[str, Any]) -> None:
+    look_of(record)["residuals"]["smooth"]["ci_high"][39] *= 1 + 1e-6
+
+
 @pytest.mark.parametrize(
     ("change", "place"),
     [
@@ -154,6 +162,8 @@ def change_alpha(record: dict[str, Any]) -> None:
         (change_events, "looks[0].information.arms[0].events"),
         (change_verdict, "looks[0].boundary.crossed"),
         (change_alpha, "looks[0].boundary.alpha_spent"),
+        (change_a_residual, "looks[0].residuals.log_hazard_ratio[4]"),
+        (change_a_limit_of_the_smooth, "looks[0].residuals.smooth.ci_high[39]"),
     ],
     ids=lambda value: getattr(value, "__name__", ""),
 )
