@@ -8,6 +8,7 @@ from dataclasses import replace
 from itertools import combinations
 from xml.etree import ElementTree
 
+import numpy as np
 import pytest
 
 from app.render import figures, palette
@@ -178,6 +179,23 @@ def test_marks_of_events_stand_at_their_time_and_height(page: str) -> None:
             abs(left + half - x(time)) <= 0.26 and abs(top + half - y(height)) <= 0.26 for left, top in found
         )
     assert len(found) <= len(figure.points)
+
+
+@pytest.mark.parametrize("page", PAGES)
+def test_the_smooth_and_its_band_go_through_their_places(page: str) -> None:
+    """The band along the upper limits, and back along the lower ones."""
+    figure, svg = invented.residual_figure(), DRAWN[f"residuals, {page}"]
+    x, y = residuals.scales(figure, PAGES[page])
+    band = re.search(rf'd="M([^"]*)Z" fill="{palette.BAND}"', svg)
+    line = re.search(r'd="M([^"]*)"[^>]*stroke-width="2.5"', svg)
+    assert band is not None
+    assert line is not None
+    upper = [(x(place.time), y(place.high)) for place in figure.smooth]
+    lower = [(x(place.time), y(place.low)) for place in reversed(figure.smooth)]
+    middle = [(x(place.time), y(place.log_ratio)) for place in figure.smooth]
+    for path, wanted in ((band[1], upper + lower), (line[1], middle)):
+        found = [[float(part) for part in place.split()] for place in path.split("L")]
+        assert np.allclose(found, wanted, atol=0.006)
 
 
 def test_marks_of_many_events_are_paler_and_few_are_not() -> None:
