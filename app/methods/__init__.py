@@ -76,10 +76,9 @@ METHODS: dict[str, Method] = {
     ),
     "residuals": Method(
         "Residuals",
-        "Each event’s scaled Schoenfeld residual plus the log hazard ratio of the Cox model, "
-        "*b* + *d* *V* *r*: an estimate of the log hazard ratio at its time. The smooth line is a natural "
-        "cubic spline with 4 coefficients over 1\u00a0−\u00a0*S*(*t*−), drawn against time; its band takes "
-        "*d* *V* for the variance of a residual and holds at each time by itself. It describes and tests "
+        "Scaled Schoenfeld residuals *b* + *d* *V* *r*: at each event an estimate of the log hazard ratio. The "
+        "smooth is a natural cubic spline with 4 coefficients over 1\u00a0−\u00a0*S*(*t*−), drawn against "
+        "time; its pointwise band takes *d* *V* for the variance of a residual. It describes and tests "
         "nothing.",
         "Grambsch and Therneau (1994), Biometrika 81, 515–526; Schoenfeld (1982), Biometrika 69, 239–241.",
     ),
