@@ -77,9 +77,9 @@ METHODS: dict[str, Method] = {
     "residuals": Method(
         "Residuals",
         "Scaled Schoenfeld residuals *b* + *d* *V* *r*: at each event an estimate of the log hazard ratio. "
-        "The smooth is a natural cubic spline with 4 coefficients over 1\u00a0−\u00a0*S*(*t*−), drawn against "
-        "time; its pointwise band takes *d* *V* for the variance of a residual. It describes and tests "
-        "nothing.",
+        "The smooth is a natural cubic spline with 4 coefficients over 1\u00a0−\u00a0*S*(*t*−), drawn "
+        "against time; its pointwise band takes *d* *V* for the variance of a residual. It describes and "
+        "tests nothing.",
         "Grambsch and Therneau (1994), Biometrika 81, 515–526; Schoenfeld (1982), Biometrika 69, 239–241.",
     ),
     "proportionality": Method(
