@@ -55,12 +55,11 @@
   // Lengths in the figure are for a root of 16 px; the page grows with the room, and the chart with it.
   const lengths = new Set(["size", "width", "l", "r", "t", "b", "xshift", "yshift", "ticklen", "ticklabelstandoff", "standoff"]);
 
-  function scaled(part, factor) {
-    if (Array.isArray(part)) return part.map((each) => scaled(each, factor));
+  function scaled(part, factor, name = "") {
+    if (typeof part === "number") return lengths.has(name) ? part * factor : part;
+    if (Array.isArray(part)) return part.map((each) => scaled(each, factor, name));
     if (part === null || typeof part !== "object") return part;
-    return Object.fromEntries(Object.entries(part).map(([name, value]) => [
-      name, lengths.has(name) && typeof value === "number" ? value * factor : scaled(value, factor),
-    ]));
+    return Object.fromEntries(Object.entries(part).map(([key, value]) => [key, scaled(value, factor, key)]));
   }
 
   const config = {

@@ -231,6 +231,27 @@ def test_the_chart_takes_the_place_and_the_size_of_the_drawing(
         assert page.locator(".chart").count() == 0
 
 
+@pytest.mark.parametrize("width", [1366, 2560])
+def test_marks_and_words_of_the_chart_stand_where_the_drawing_has_them(chromium: Browser, width: int) -> None:
+    """z's of the looks and the bound's name: places and sizes, also where the page has grown."""
+    round_marks = "all => all.map(e => { const b = e.getBoundingClientRect(); return [b.x, b.y, b.width]; })"
+    place = "e => { const b = e.getBoundingClientRect(); return [b.x, b.y + b.height / 2]; }"
+    with opened(chromium) as (_, page):
+        page.set_viewport_size({"width": width, "height": 1440})
+        go(page, "boundary")
+        drawn = page.eval_on_selector_all(".drawing .wide circle[fill='#1A1A1E']", round_marks)
+        name = page.locator(".drawing .wide text", has_text="efficacy").first.evaluate(place)
+        zoom(page)
+        marks = page.eval_on_selector_all(".chart .points path[d*='A']", round_marks)
+        seen = [mark for mark in marks if any(abs(mark[0] - x) < 4 for x, _, _ in drawn)]
+        diameters = sorted(w for _, _, w in drawn)
+        assert len(drawn) == 3
+        for diameter in diameters:
+            assert any(w == pytest.approx(diameter, rel=0.3) for _, _, w in seen)
+        words = page.locator(".chart .annotation-text", has_text="efficacy").first.evaluate(place)
+        assert words == pytest.approx(name, abs=4)
+
+
 @pytest.mark.parametrize("width", [375, 1366, 1920])
 def test_each_of_two_figures_is_zoomed_into_in_its_own_place(chromium: Browser, width: int) -> None:
     box = (

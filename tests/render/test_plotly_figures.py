@@ -213,7 +213,10 @@ def test_the_words_beside_a_lane_stand_at_their_bound_and_follow_it() -> None:
     ):
         assert said[words]["y"] == pytest.approx(z, abs=0.4)  # labels are kept apart
         assert "yref" not in said[words]  # that is, the axis of z
-        assert said[words]["x"] in [lane.fraction for lane in invented.boundary_figure("not crossed").lanes]
+        plot = lane_plot(invented.boundary_figure("not crossed"), WIDE_PAGE)
+        edges = [plot.x.inverse(plot.right_of(lane)) for lane in plot.figure.lanes]
+        assert said[words]["x"] in edges
+        assert said[words]["xshift"] == 7
     assert said["z\u00a02.129"]["font"]["weight"] == 600
 
 
@@ -222,7 +225,8 @@ def test_what_up_means_stands_where_the_drawing_has_it() -> None:
     (place,) = [(x, y) for text, x, y in direction_at(plot) if text.startswith("↑")]
     note = notes("boundary")["↑ favours tablet"]
     assert note["xshift"] + plot.area.left == pytest.approx(place[0] - 2)
-    assert plot.area.top - note["yshift"] == pytest.approx(place[1], abs=6)
+    assert (note["yref"], note["y"]) == ("y", 0)
+    assert plot.y(0) - note["yshift"] == pytest.approx(place[1], abs=6)
 
 
 def test_masked_both_readings_of_harm_answer_the_pointer() -> None:

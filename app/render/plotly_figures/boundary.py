@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from app.render.palette import CROSSED, HAIRLINE, INK, INK_2, INK_3, PAPER
 from app.render.plotly_figures.setting import (
+    BASELINE,
     NOTE_EDGE,
     Json,
     Sheet,
@@ -279,13 +280,13 @@ def _letters(plot: LanePlot, sheet: Sheet) -> list[Json]:
 
 def _labels(plot: LanePlot, lane: Lane) -> list[Json]:
     """The words beside a lane, following the axes when they are zoomed."""
-    aside = labels_start(plot, lane) - plot.middle(lane)
+    edge = plot.right_of(lane)
     return [
         {
             "text": said(plain(line)),
-            "x": lane.fraction,
+            "x": plot.x.inverse(edge),
             "y": plot.y.inverse(middle),
-            "xshift": aside,
+            "xshift": labels_start(plot, lane) - edge,
             "xanchor": "left",
             "yanchor": "middle",
             "showarrow": False,
@@ -297,13 +298,23 @@ def _labels(plot: LanePlot, lane: Lane) -> list[Json]:
     ]
 
 
+def _direction(plot: LanePlot, sheet: Sheet) -> list[Json]:
+    """What up and down mean, astride the zero line wherever zooming puts it."""
+    zero = plot.y(0)
+    return [
+        words_at(sheet, text, x, y, size=SMALL)
+        | {"yref": "y", "y": 0, "yshift": zero - y + BASELINE + NOTE_EDGE / 2}
+        for text, x, y in drawing.direction_at(plot)
+    ]
+
+
 def _notes(plot: LanePlot, sheet: Sheet) -> list[Json]:
     """The words of the drawing that are not numbers: what the axis is, what up means, what each row is."""
     title = plain(drawing.axis_title(plot))
     head = [words_at(sheet, "Look", 0, plot.area.bottom + 20)] if looks_by_number(plot) else []
     return [
         words_at(sheet, title, drawing.title_at(plot), 14, size=SMALL),
-        *(words_at(sheet, text, x, y, size=SMALL) for text, x, y in drawing.direction_at(plot)),
+        *_direction(plot, sheet),
         *head,
         *(note for lane in plot.figure.lanes for note in _labels(plot, lane)),
         *_letters(plot, sheet),
