@@ -9,7 +9,7 @@ from app.sheets.words import Z, alpha, alpha_difference, count, line, listed, nu
 from app.views.closed import ClosedView
 
 HELD_BEFORE = "held before this file"
-WITHHELD = "; their z is given by arm, so none is shown while the arms are masked"
+WITHHELD = "; their z, known by arm, is not shown masked"
 NONE = Span("–", "quiet")
 
 

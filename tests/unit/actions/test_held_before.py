@@ -237,7 +237,7 @@ def test_masked_no_z_of_them_is_shown_or_recorded(file: Path) -> None:
     sheet = book.sheet("boundary")
     assert sheet is not None
     assert table_texts(sheet, "Looks held before this file")["Look 1"][:2] == ["10", "5.000"]
-    assert "their z is given by arm, so none is shown while the arms are masked." in text(sheet.notes[0])
+    assert "their z, known by arm, is not shown masked." in text(sheet.notes[0])
 
 
 def readable(content: bytes) -> str:
