@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
+
 import numpy as np
 
 from app.model.values import Floats
@@ -20,9 +22,28 @@ def natural_spline(x: Floats, y: Floats, at: Floats, degrees: int) -> tuple[Floa
     low, high = found[0], found[-1]
     knots = (found - low) / (high - low)
     design, wanted = (_basis((values - low) / (high - low), knots) for values in (x, at))
-    orthogonal, triangular = np.linalg.qr(design)
-    read = np.linalg.solve(triangular.T, wanted.T).T
-    return read @ (orthogonal.T @ y), np.sqrt(np.sum(read**2, axis=1))
+    fitted, squared = np.zeros(at.size), np.zeros(at.size)
+    for direction, read in _orthogonal(design, wanted):
+        fitted += read * np.sum(direction * y)
+        squared += read**2
+    return fitted, np.sqrt(squared)
+
+
+def _orthogonal(design: list[Floats], wanted: list[Floats]) -> Iterator[tuple[Floats, Floats]]:
+    """The columns of `design` made orthonormal, (n,), each with the same steps taken on `wanted`, (k,).
+
+    Gram-Schmidt, each column twice, so that it is orthogonal to the last bits. By sums and not by a matrix
+    library, whose last bits depend on where arrays lie in memory: reports must not.
+    """
+    done: list[tuple[Floats, Floats]] = []
+    for column, read in zip(design, wanted, strict=True):
+        for _ in range(2):
+            for direction, of_direction in done:
+                share = np.sum(direction * column)
+                column, read = column - share * direction, read - share * of_direction
+        size = np.sqrt(np.sum(column**2))
+        done.append((column / size, read / size))
+        yield done[-1]
 
 
 def knots_of(x: Floats, degrees: int) -> Floats:
@@ -30,15 +51,12 @@ def knots_of(x: Floats, degrees: int) -> Floats:
     return np.asarray(np.quantile(x, np.arange(degrees) / (degrees - 1)), dtype=np.float64)
 
 
-def _basis(x: Floats, knots: Floats) -> Floats:
-    """1, x and truncated cubes combined so that the curve is straight beyond the outer knots, (n,
-    degrees).
-    """
+def _basis(x: Floats, knots: Floats) -> list[Floats]:
+    """1, x and truncated cubes combined so that the curve is straight beyond the outer knots, each (n,)."""
     end, last_inner = knots[-1], knots[-2]
 
     def bent(knot: float) -> Floats:
         cubes = np.maximum(x - knot, 0.0) ** 3 - np.maximum(x - end, 0.0) ** 3
         return np.asarray(cubes / (end - knot), dtype=np.float64)
 
-    columns = [np.ones(x.size), x, *(bent(knot) - bent(last_inner) for knot in knots[:-2])]
-    return np.column_stack(columns)
+    return [np.ones(x.size), x, *(bent(knot) - bent(last_inner) for knot in knots[:-2])]
