@@ -266,6 +266,7 @@ def test_report_files_are_written_whole_named_plainly_and_entered(tmp_path: Path
         "python",
         "scipy",
         "system",
+        "vector_instructions",
     }
     assert last == ReportWritten(1, digest(html))
     assert [path.name for path in (tmp_path / "out" / "look-1").iterdir() if path.name.startswith(".")] == []
