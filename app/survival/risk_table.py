@@ -271,10 +271,10 @@ class _DayGrid:
 
     def _at_risk(self) -> Ints:
         """At risk in a cell = all who leave in it or later in its stratum."""
-        leaving = self.events + self.censored
-        backwards = leaving.reshape(leaving.shape[0], -1, self.days)[..., ::-1]
-        np.cumsum(backwards, axis=-1, out=backwards)
-        return leaving
+        groups = self.events.shape[0]
+        left: Ints = (self.events + self.censored).reshape(groups, -1, self.days)
+        np.cumsum(left[..., ::-1], axis=-1, out=left[..., ::-1])
+        return left.reshape(groups, -1)
 
 
 def _by_sorting(subjects: _Subjects) -> RiskTable:
