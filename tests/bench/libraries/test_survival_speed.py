@@ -35,7 +35,7 @@ pytestmark = pytest.mark.bench
 SIZES = (1_000, 10_000, 100_000, 1_000_000)
 KINDS = ("days", "continuous")
 ENOUGH_SECONDS = 0.5  # a slower library is run once
-TOO_SLOW = {("Cox", "statsmodels", "continuous", 1_000_000)}  # its time grows with the square of n here
+TOO_SLOW = {("Cox", "statsmodels", "continuous", 1_000_000)}  # minutes for one run
 # times of the plain version over its floor: bincount 0.9 ms for days, argsort 13 ms for continuous, n = 1e6
 WANTED = {
     ("days", "log-rank"): 7 / 0.9,
@@ -172,7 +172,7 @@ def test_speed_beside_the_libraries_and_the_floors(kind: str, size: int) -> None
             for name, their_work in theirs[what].items()
             if (what, name, kind, size) not in TOO_SLOW
         }
-        print(f"  {what:<16}{taken:9.2f} ms   " + "  ".join(f"{n} {t:.1f}" for n, t in others.items()))
+        print(f"  {what:<16}{taken:9.2f} ms   " + "  ".join(f"{n} {t:.2f}" for n, t in others.items()))
         wanted = WANTED.get((kind, what))
         base = floor["bincount"] if kind == "days" else floor["argsort"]
         if size == SIZES[-1] and wanted is not None and taken > wanted * base:
