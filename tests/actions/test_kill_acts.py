@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-import os
 import subprocess
 import sys
 from pathlib import Path
@@ -22,8 +21,7 @@ N_ENTRIES = {"freeze and receive": 2, "freeze and receive after a held look": 2}
 
 @pytest.fixture(scope="module")
 def deaths(tmp_path_factory: pytest.TempPathFactory) -> list[dict[str, object]]:
-    # one thread: the process forks; else as here: reports are set again, with the same kernels
-    environment = {**os.environ, "PYTHONPATH": str(ROOT), "OPENBLAS_NUM_THREADS": "1"}
+    environment = {"PYTHONPATH": str(ROOT), "OPENBLAS_NUM_THREADS": "1"}  # one thread: the process forks
     command = [sys.executable, killed_acts.__file__, str(tmp_path_factory.mktemp("killed"))]
     done = subprocess.run(command, capture_output=True, text=True, check=True, env=environment, timeout=300)
     return [json.loads(line) for line in done.stdout.splitlines()]
