@@ -37,7 +37,7 @@ ALONG = "Conditional power along the planned looks"
 def outlook_sheet(view: ClosedView) -> Sheet:
     """While a reading goes on, what is said of ending here stands behind a fold."""
     stopping = _stopping_tables(view)
-    folded = bool(_outlooks(view))
+    folded = bool(going_on(view))
     return Sheet(
         key="outlook",
         number=6,
@@ -54,7 +54,7 @@ def outlook_sheet(view: ClosedView) -> Sheet:
     )
 
 
-def _outlooks(view: ClosedView) -> list[tuple[Reading, Outlook]]:
+def going_on(view: ClosedView) -> list[tuple[Reading, Outlook]]:
     """The readings in which a look is still to come, with what it holds."""
     return [
         (reading, reading.onwards.outlook)
@@ -91,7 +91,7 @@ def _capital(reason: str, view: ClosedView) -> str:
 
 def _figure(view: ClosedView) -> ChancesFigure | None:
     """A strip for each effect and reading; the limits of the trend are the ends of a line through it."""
-    outlooks = _outlooks(view)
+    outlooks = going_on(view)
     if not outlooks:
         return None
     chances = (
@@ -137,7 +137,7 @@ def _chance_row(chance: Chance) -> Row:
 
 def _power_table(view: ClosedView) -> tuple[Table, ...]:
     """A row an effect; for each reading a column each of its ratio and of the three conditional powers."""
-    outlooks = _outlooks(view)
+    outlooks = going_on(view)
     if not outlooks:
         return ()
     obeyed = outlooks[0][1].design.path_futility_obeyed is not None
@@ -173,7 +173,7 @@ def power_cells(power: ConditionalPower) -> tuple[Cell, ...]:
 def _next_look_table(view: ClosedView) -> tuple[Table, ...]:
     """What the next planned look needs; masked, what is new depends on the reading."""
     ahead = [
-        (reading, outlook.next_look) for reading, outlook in _outlooks(view) if outlook.next_look is not None
+        (reading, outlook.next_look) for reading, outlook in going_on(view) if outlook.next_look is not None
     ]
     if not ahead:
         return ()
@@ -204,7 +204,7 @@ def _or_dash(value: Estimate) -> Span:
 
 
 def _predictive_table(view: ClosedView) -> tuple[Table, ...]:
-    outlooks = _outlooks(view)
+    outlooks = going_on(view)
     if not outlooks:
         return ()
     powers = [outlook.predictive_power for _, outlook in outlooks]
@@ -264,7 +264,7 @@ def _notes(view: ClosedView) -> tuple[Line, ...]:
         if view.masked
         else ""
     )
-    criterion = next((outlook.criterion for _, outlook in _outlooks(view)), None)
+    criterion = next((outlook.criterion for _, outlook in going_on(view)), None)
     if criterion is None:
         return ()
     trend = "Conditional power under an early trend is wild: its limits stand below it."
