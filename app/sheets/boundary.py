@@ -52,7 +52,8 @@ from app.sheets.words import (
     z_number,
     z_places,
 )
-from app.views.closed import ClosedView, Reading
+from app.views.closed import ClosedView
+from app.views.reading import Reading
 
 QUESTION = "Where does the test stand?"
 FINAL_WORDS = (

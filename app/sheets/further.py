@@ -25,7 +25,8 @@ from app.sheets.words import (
     p_values,
     z_places,
 )
-from app.views.closed import ClosedView, HypothesisView, Reading
+from app.views.closed import ClosedView, HypothesisView
+from app.views.reading import Reading
 
 LONGEST_NAME = 20
 

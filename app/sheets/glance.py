@@ -38,8 +38,9 @@ from app.sheets.information import (
 )
 from app.sheets.methods import methods, spending_key
 from app.sheets.words import CROSSED, NO_BREAK, count, interval, level_text, line, number, of_total
-from app.views.closed import ArmView, ClosedView, Reading
+from app.views.closed import ArmView, ClosedView
 from app.views.open import OpenView
+from app.views.reading import Reading
 
 BELOW = ("futility", "harm")
 NO_BOUND_HERE = "no efficacy boundary applies at this look."

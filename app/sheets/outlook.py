@@ -19,7 +19,8 @@ from app.sheets.words import (
     p_values,
     percent,
 )
-from app.views.closed import ClosedView, Reading
+from app.views.closed import ClosedView
+from app.views.reading import Reading
 
 QUESTION = "What if we go on?"
 DASH = Span("–", "quiet")

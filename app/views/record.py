@@ -26,7 +26,8 @@ from app.model.values import Absent, Estimate
 from app.record.numbers import column, estimate, not_estimable
 from app.record.schema import CONDITIONAL_POWER, EFFECTS, FORMAT, NEXT_LOOK
 from app.sequential.gatekeeping import family_alpha
-from app.views.closed import ArmView, ClosedView, Reading
+from app.views.closed import ArmView, ClosedView
+from app.views.reading import Reading
 from app.views.shape_record import shape_record
 
 Record = dict[str, Any]

@@ -5,7 +5,8 @@ from __future__ import annotations
 from app.model.outlook import ConditionalPower, WhatIf
 from app.model.values import Absent
 from app.review.onwards import power_under
-from app.views.closed import ClosedView, Reading
+from app.views.closed import ClosedView
+from app.views.reading import Reading
 
 
 def what_if(view: ClosedView, hazard_ratio: float) -> WhatIf:

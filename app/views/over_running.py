@@ -1,0 +1,58 @@
+"""Over-running: the looks after a crossing are shown beside it, and no bound of theirs is a test any more."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+from app.model.boundary import Bound, LookAsUsed
+from app.model.look import LookResult
+from app.model.values import Absent
+
+
+def over_running(last: int) -> Absent:
+    """Why nothing is tested after look `last`."""
+    return Absent(f"the boundary was crossed at look {last}: over-running, with no second test")
+
+
+def held_until(last: int, past: tuple[LookAsUsed, ...]) -> tuple[LookAsUsed, ...]:
+    """The looks as used, those after look `last` without a bound."""
+    return tuple(each if each.number <= last else _untested(each, last, past) for each in past)
+
+
+def tested_until(last: int, look: LookResult) -> LookResult:
+    """The look without bounds after look `last`, held, here or to come."""
+    look = replace(look, past=held_until(last, look.past), planned=())
+    if last == look.number:
+        return look
+    return replace(look, bound=_no_bound(look.bound, _spent_by(last, look.past), over_running(last)))
+
+
+def _untested(held: LookAsUsed, last: int, past: tuple[LookAsUsed, ...]) -> LookAsUsed:
+    none, spent = over_running(last), _spent_by(last, past)
+    return replace(
+        held,
+        efficacy_z=none,
+        efficacy_hazard_ratio=none,
+        alpha_spent=spent,
+        futility_z=None if held.futility_z is None else none,
+        harm_z=None if held.harm_z is None else none,
+    )
+
+
+def _spent_by(last: int, past: tuple[LookAsUsed, ...]) -> float:
+    return next(each.alpha_spent for each in past if each.number == last)
+
+
+def _no_bound(bound: Bound, alpha_spent: float, reason: Absent) -> Bound:
+    return replace(
+        bound,
+        alpha_spent=alpha_spent,
+        alpha_spent_here=0.0,
+        efficacy_z=reason,
+        efficacy_p_one_sided=reason,
+        efficacy_hazard_ratio=reason,
+        futility_z=None if bound.futility_z is None else reason,
+        futility_hazard_ratio=None if bound.futility_z is None else reason,
+        harm_z=None if bound.harm_z is None else reason,
+        harm_hazard_ratio=None if bound.harm_z is None else reason,
+    )
