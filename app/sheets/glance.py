@@ -18,7 +18,8 @@ from app.sheets.blocks import (
     Span,
     ZStrip,
 )
-from app.sheets.boundary import boundary_answer, boundary_figure
+from app.sheets.boundary_answer import boundary_answer
+from app.sheets.boundary_figure import boundary_figure
 from app.sheets.curves import (
     NOT_ADJUSTED,
     event_free_sentence,

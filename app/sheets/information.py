@@ -9,18 +9,7 @@ from app.model.look import CalendarCounts
 from app.model.values import Absent, Estimate
 from app.sheets.arms import label_of
 from app.sheets.axis import display_unit
-from app.sheets.blocks import (
-    CalendarFigure,
-    Cell,
-    Column,
-    CountedBy,
-    Line,
-    Row,
-    Series,
-    Sheet,
-    Span,
-    Table,
-)
+from app.sheets.blocks import CalendarFigure, Cell, Column, CountedBy, Line, Row, Series, Sheet, Span, Table
 from app.sheets.curves import in_unit, preposition
 from app.sheets.methods import methods
 from app.sheets.words import NO_BREAK, count, day_text, decimal, line, number, of_total

@@ -7,18 +7,7 @@ from app.model.values import Absent, Estimate
 from app.sheets.blocks import Cell, Chance, ChancesFigure, Column, Line, Row, Sheet, Span, Table
 from app.sheets.curves import cox_level
 from app.sheets.methods import methods
-from app.sheets.words import (
-    NO_BREAK,
-    P,
-    Z,
-    count,
-    interval,
-    level_text,
-    line,
-    number,
-    p_values,
-    percent,
-)
+from app.sheets.words import NO_BREAK, P, Z, count, interval, level_text, line, number, p_values, percent
 from app.views.closed import ClosedView
 from app.views.reading import Reading
 

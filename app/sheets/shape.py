@@ -6,12 +6,7 @@ import math
 
 import numpy as np
 
-from app.model.survival import (
-    ProportionalityResult,
-    RestrictedMean,
-    RestrictedMeanComparison,
-    WeightedResult,
-)
+from app.model.survival import ProportionalityResult, RestrictedMean, RestrictedMeanComparison, WeightedResult
 from app.model.values import Absent
 from app.sheets.arms import label_of, labels
 from app.sheets.axis import display_unit

@@ -95,6 +95,11 @@ def z_number(value: Estimate, *, tone: Tone = "plain", places: int = 3) -> Span:
     return number(value, places, tone=tone)
 
 
+def turned(bound: float, places: int) -> Span:
+    """The lower bound of a symmetric region: the recorded bound with its sign turned."""
+    return Span(MINUS + decimal(bound, places), value=bound)
+
+
 def z_places(z: Estimate, bound: Estimate) -> int:
     """Three places, or as many as it takes for a z and its bound to read differently when they differ.
 

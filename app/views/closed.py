@@ -95,6 +95,11 @@ class ClosedView:
     def against(self) -> ArmView:
         return self.arms[1]
 
+    @property
+    def is_over(self) -> bool:
+        """True when every reading has crossed: no bound ahead is a test any more."""
+        return all(reading.verdict.first_crossed is not None for reading in self.readings)
+
 
 @dataclass(frozen=True, eq=False)
 class HypothesisView:
@@ -242,7 +247,7 @@ def _without_second_tests(view: ClosedView) -> ClosedView:
     """Once every reading has crossed, no later bound is a test: over-running is shown beside the crossing."""
     hypotheses = tuple(replace(each, view=_without_second_tests(each.view)) for each in view.hypotheses)
     view = replace(view, hypotheses=hypotheses)
-    firsts = [reading.verdict.first_crossed for reading in view.readings]
+    firsts = [each.verdict.first_crossed for each in view.readings]
     known = [first for first in firsts if first is not None]
     if len(known) < len(firsts):
         return view

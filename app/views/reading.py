@@ -34,6 +34,11 @@ class Reading:
     z_for_harm: float | None = None
     waits_for: str | None = None
 
+    def crossed_before(self, look: int) -> bool:
+        """Whether it crossed at an earlier look: look `look` is over-running, with no second test."""
+        first = self.verdict.first_crossed
+        return first is not None and first < look
+
 
 @dataclass(frozen=True)
 class Gate:
