@@ -7,9 +7,9 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 from threading import Lock
-from types import TracebackType
 from typing import Any, Self, TypeVar
 
+from app.ledger.closing import Closing
 from app.ledger.trial import Trial
 from app.settings import Settings
 
@@ -48,7 +48,7 @@ class Cache:
         return value
 
 
-class Desk:
+class Desk(Closing):
     """What every action on a trial file needs; the open side's looks are cached apart from the closed's."""
 
     def __init__(self, settings: Settings, trial: Trial) -> None:
@@ -77,11 +77,3 @@ class Desk:
 
     def close(self) -> None:
         self.trial.close()
-
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self, kind: type[BaseException] | None, fault: BaseException | None, trace: TracebackType | None
-    ) -> None:
-        self.close()

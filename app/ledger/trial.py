@@ -7,8 +7,6 @@ from collections.abc import Callable, Iterable, Iterator, Sequence
 from contextlib import contextmanager
 from datetime import UTC, date
 from pathlib import Path
-from types import TracebackType
-from typing import Self
 
 from app.errors import LedgerChanged, LedgerError
 from app.ledger import schema
@@ -16,6 +14,7 @@ from app.ledger.backup import copied_whole
 from app.ledger.bodies import ArmsUnmasked, Backup, Body, Named, PlanLocked, SnapshotReceived
 from app.ledger.chain import Problem, chain_problems
 from app.ledger.check import full_check, quick_check
+from app.ledger.closing import Closing
 from app.ledger.creation import created_whole
 from app.ledger.database import WAIT_SECONDS, Database
 from app.ledger.entries import Entry
@@ -76,7 +75,7 @@ class Act:
             self._not_named.discard(key)
 
 
-class Trial:
+class Trial(Closing):
     """One open trial file. Threads take turns; several programs may have it open at once.
 
     `damage` is what was found wrong with it, and is empty for a sound file; a damaged one is only read.
@@ -149,14 +148,6 @@ class Trial:
 
     def close(self) -> None:
         self._database.close()
-
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self, kind: type[BaseException] | None, fault: BaseException | None, trace: TracebackType | None
-    ) -> None:
-        self.close()
 
     @contextmanager
     def act(self) -> Iterator[Act]:
