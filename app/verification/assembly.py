@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import lru_cache
 from typing import Any
 
 from app.errors import LedgerChanged
@@ -22,6 +23,7 @@ from app.settings import Limits
 from app.views.closed import ClosedView, Letters, masked_view, unmasked_view
 
 PLAN_NAME = "the locked plan"
+PLANS_KEPT = 16
 
 
 @dataclass(frozen=True, eq=False)
@@ -35,7 +37,14 @@ class Assembled:
 
 
 def plan_under(trial: Trial, digest: str, limits: Limits) -> Plan:
-    return read_plan(trial.content(digest), name=PLAN_NAME, limits=limits)
+    """The plan stored under this digest, whose bytes are hashed again each time."""
+    return _plan_of(trial.content(digest), limits)
+
+
+@lru_cache(maxsize=PLANS_KEPT)
+def _plan_of(content: bytes, limits: Limits) -> Plan:
+    """Every page asks for the plan, and the same bytes always say the same."""
+    return read_plan(content, name=PLAN_NAME, limits=limits)
 
 
 def delivery_of(snapshot: Snapshot) -> Delivery:
