@@ -84,7 +84,7 @@ def studies(checked: Checked) -> Findings:
         checked.column("study"),
         accepted=f"one study; most rows carry {quoted(study.texts[counts.argmax()])}",
         remedy="the rows are analysed; ask the data centre whether they belong to this trial",
-        value=lambda row: quoted(study.at(row)),
+        value=study.quoted_at,
     )
 
 
@@ -101,7 +101,7 @@ def arms(checked: Checked) -> Findings:
         name,
         accepted=f"{known[0]!r} or {known[1]!r}, letter by letter",
         remedy=_arm_remedy(unknown, known),
-        value=lambda row: quoted(arm.at(row)),
+        value=arm.quoted_at,
     )
     for each in known if not unknown else ():
         if each not in arm.texts:
@@ -137,7 +137,7 @@ def censoring(checked: Checked) -> Findings:
         checked.column("censor"),
         accepted="0 for an event, whole numbers above 0 for censored follow-up (ADaM)",
         remedy="correct the rows",
-        value=lambda row: quoted(text.at(row)),
+        value=text.quoted_at,
     )
     yield from polarity(endpoint, checked.plan.endpoint, checked.cutoff)
     if (endpoint.censor > 0).any() and not endpoint.event.any():
@@ -166,7 +166,7 @@ def times(checked: Checked) -> Findings:
             checked.column("time"),
             accepted="a number above 0, with a decimal point",
             remedy=remedy,
-            value=lambda row: quoted(text.at(row)),
+            value=text.quoted_at,
         )
 
     unread = np.isnan(endpoint.time) & ~blank
@@ -199,7 +199,7 @@ def dates(checked: Checked) -> Findings:
             checked.column(part),
             accepted="a date written yyyy-mm-dd",
             remedy="correct the rows" if named else "the column is not used while one row has no date",
-            value=lambda row, text=text: quoted(text.at(row)),  # type: ignore[misc]
+            value=text.quoted_at,
         )
 
 

@@ -18,7 +18,7 @@ import pandas as pd
 from numpy.typing import DTypeLike, NDArray
 
 from app.errors import ValueRejected
-from app.intake.findings import finding, row_list
+from app.intake.findings import finding, quoted, row_list
 from app.model.extract import Finding, ReceivedFile
 from app.model.values import Bools, Ints
 from app.settings import Limits
@@ -82,6 +82,10 @@ class TextColumn:
 
     def at(self, row: int) -> str:
         return self.texts[int(self.codes[row])]
+
+    def quoted_at(self, row: int) -> str:
+        """The text in this row as a finding quotes it."""
+        return quoted(self.at(row))
 
 
 def read_header(file: ReceivedFile) -> tuple[str, ...]:

@@ -9,7 +9,7 @@ import numpy as np
 
 from app.intake.checks import Checked, all_findings
 from app.intake.csv_table import TextColumn
-from app.intake.findings import finding, quoted
+from app.intake.findings import finding
 from app.model.extract import Finding
 from app.model.values import Bools, Ints
 
@@ -51,7 +51,7 @@ def _arms(further: Checked, primary: Checked) -> Iterator[Finding]:
         further.column("arm"),
         accepted="one arm for each subject",
         remedy="have the data centre correct the rows",
-        value=lambda row: quoted(arm.at(row)),
+        value=arm.quoted_at,
     )
 
 
@@ -66,7 +66,7 @@ def _strata(further: Checked, primary: Checked) -> Iterator[Finding]:
             name,
             accepted="one level for each subject, as randomised",
             remedy="each endpoint is stratified by its own rows; ask the data centre which level is right",
-            value=lambda row, here=here: quoted(here.at(row)),  # type: ignore[misc]
+            value=here.quoted_at,
         )
 
 

@@ -17,6 +17,7 @@ from app.model.values import Bools
 DAYS_IN: Mapping[TimeUnit, float] = {"days": 1.0, "weeks": 7.0, "months": 30.4375, "years": 365.25}
 
 _IN_WORDS = re.compile(r"(?:\(|\bin )(day|week|month|year)s?\b", re.IGNORECASE)
+TIME_UNITS: tuple[TimeUnit, ...] = get_args(TimeUnit)
 _SHORT = {
     "d": "days",
     "wk": "weeks",
@@ -45,9 +46,9 @@ def _by_column(endpoint: EndpointRows) -> TimeUnit | None:
 
 def _unit(text: str) -> TimeUnit | None:
     word = text.strip().lower()
-    for unit in get_args(TimeUnit):
+    for unit in TIME_UNITS:
         if word in (unit, unit.removesuffix("s")) or _SHORT.get(word) == unit:
-            return unit  # type: ignore[no-any-return]
+            return unit
     return None
 
 
