@@ -88,11 +88,10 @@ class HarmResult:
 
 @dataclass(frozen=True, eq=False)
 class HypothesisResult:
-    """A further hypothesis at one look; `opened_at` is the look that opened its gate, None while it waits."""
+    """A further hypothesis at one look: what its own plan says of it, and nothing crossed while it waits."""
 
     hypothesis: Hypothesis
     result: LookResult
-    opened_at: int | None = None
 
 
 @dataclass(frozen=True, eq=False)

@@ -71,7 +71,7 @@ def _hypotheses(
         gate = declared.number if hypothesis.after is None else opened[hypothesis.after]
         result = _hypothesis(plan, hypothesis, samples[hypothesis.parameter], declared, own_past, gate)
         opened[hypothesis.name] = opened_at(own_past, result.verdict, declared.number)
-        reviewed[hypothesis.name] = HypothesisResult(hypothesis, result, gate)
+        reviewed[hypothesis.name] = HypothesisResult(hypothesis, result)
     return tuple(reviewed[each.name] for each in plan.hypotheses)
 
 
