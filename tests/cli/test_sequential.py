@@ -8,14 +8,17 @@ from __future__ import annotations
 import json
 import math
 import random
+from collections.abc import Sequence
 from pathlib import Path
 from statistics import NormalDist
 from typing import Any
 
+import numpy as np
 import pytest
 
 from app.cli import main
 from app.record.schema import BOUNDARY_RECORD, EVALUATION_RECORD, LOOKS_RECORD, differences
+from app.survival import logrank
 
 PLAN = """\
 format = 1
@@ -520,3 +523,153 @@ def test_the_commands_say_what_waits(tmp_path: Path, capsys: pytest.CaptureFixtu
     assert ", z of DEATH " in told
     assert main(["boundary", str(path)]) == 0
     assert "Death, alpha 0.0250, tested once primary has crossed" in capsys.readouterr().out
+
+
+# --- worked trials, their z reached by an extract made for it -------------------------------------------
+
+
+def z_of(time: Any, event: Any, on_tablet: Any) -> float:
+    return float(logrank(time, event, on_tablet).z)
+
+
+def extract_with_z(folder: Path, events: int, z: float, subjects: int = 1000) -> Path:
+    """An extract with so many events whose log-rank z is `z` to 3e-5: arms are exchanged until it is."""
+    draw = np.random.default_rng(events)
+    time = np.arange(1.0, subjects + 1)
+    event = np.zeros(subjects, dtype=bool)
+    event[draw.choice(subjects, events, replace=False)] = True
+    arm = draw.permutation(np.arange(subjects) % 2 == 0)
+    off = z_of(time, event, arm) - z
+    while abs(off) > 3e-5:
+        pair = [draw.choice(np.flatnonzero(arm)), draw.choice(np.flatnonzero(~arm))]
+        arm[pair] = arm[pair[::-1]]
+        moved = z_of(time, event, arm) - z
+        if abs(moved) < max(abs(off), 0.01):  # wander near it rather than stay where no pair helps
+            off = moved
+        else:
+            arm[pair] = arm[pair[::-1]]
+    rows = [
+        f"S{at:04},{'TABLET' if arm[at] else 'PLACEBO'},DEATHHF,{time[at]:g},{int(not event[at])}"
+        for at in range(subjects)
+    ]
+    path = folder / f"z-{events}-{z}.csv"
+    path.write_text("\n".join(["USUBJID,TRTP,PARAMCD,AVAL,CNSR", *rows]) + "\n", encoding="utf-8")
+    return path
+
+
+def held_tables(looks: Sequence[tuple[int, float, float]]) -> str:
+    """Looks held before: events, z, and the bound used."""
+    return "".join(
+        f'[[held]]\nnumber = {number}\nevents = {events}\nz = {z}\nefficacy_z = {bound}\nsource = "print"\n'
+        for number, (events, z, bound) in enumerate(looks, 1)
+    )
+
+
+def test_the_trial_of_a_beta_blocker_as_if_stopped_at_its_sixth_look(
+    tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    """DeMets et al. (1984), Controlled Clinical Trials 5, 362: z and deaths at six looks, 628 deaths planned.
+
+    The bounds used are O'Brien-Fleming's of seven looks. With the deaths as information a stop at the sixth
+    has p 0.00957 and ratio 0.750 (0.597 to 0.953), computed independently.
+    """
+    deaths, z = (56, 77, 126, 177, 247), (1.68, 2.24, 2.37, 2.30, 2.34)
+    tables = held_tables(tuple(zip(deaths, z, (5.459, 3.860, 3.152, 2.730, 2.441), strict=True)))
+    path = plan(tmp_path, tables, alpha=0.05, sides=2, planned_events=628)
+    (look,) = evaluated(
+        capsys, path, "--look", extract_with_z(tmp_path, 318, 2.82, subjects=3800), "--kind", "final"
+    )
+    stop = look["stopping"]
+    assert [each["z"] for each in look["history"]] == list(z)
+    assert stop["p_one_sided"] == pytest.approx(0.00957, abs=5e-6)
+    scale = math.sqrt(look["logrank"]["variance"] / (318 / 4))  # print has a quarter of the deaths for V
+    ratios = [stop[name] ** scale for name in ("median_unbiased_hazard_ratio", "ci_low", "ci_high")]
+    assert ratios == pytest.approx([0.750, 0.597, 0.953], abs=6e-4)
+
+
+def test_its_bounds_by_deaths_through_boundary(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """O'Brien-Fleming-type spending of 0.025 a side by deaths of 628 and of 400 (computed independently)."""
+    deaths = (56, 77, 126, 177, 247, 318)
+    wanted = {
+        628: [7.415, 6.294, 4.869, 4.065, 3.395, 2.964],
+        400: [5.877, 4.977, 3.827, 3.182, 2.644, 2.305],
+    }
+    for total, bounds_ in wanted.items():
+        path = plan(tmp_path, alpha=0.05, sides=2, planned_events=total)
+        at = ",".join(str(each / total) for each in deaths)
+        assert bounds(record(capsys, "boundary", path, "--at", at)["looks"]) == pytest.approx(
+            bounds_, abs=6e-4
+        )
+
+
+@pytest.mark.parametrize(
+    ("family", "before", "stage", "z", "p", "drift", "limits"),
+    [
+        ("O'Brien-Fleming", (4.5617, 3.2256), 3, 2.80, 0.002851, 3.5959, (1.0510, 6.1324)),
+        ("Pocock", (2.4132,), 2, 2.70, 0.010175, 4.0736, (0.6833, 7.2575)),
+    ],
+)
+def test_what_follows_a_stop_through_evaluate(
+    tmp_path: Path,
+    capsys: pytest.CaptureFixture[str],
+    family: str,
+    before: tuple[float, ...],
+    stage: int,
+    z: float,
+    p: float,
+    drift: float,
+    limits: tuple[float, float],
+) -> None:
+    """Five equal looks of 100 events; computed independently, method of Tsiatis, Rosner & Mehta (1984)."""
+    tables = held_tables([(100 * number, 0.0, bound) for number, bound in enumerate(before, 1)])
+    looks = "[0.2, 0.4, 0.6, 0.8, 1.0]"
+    path = plan(
+        tmp_path, tables, efficacy=f'"{family}"', alpha=0.05, sides=2, looks=looks, planned_events=500
+    )
+    (look,) = evaluated(capsys, path, "--look", extract_with_z(tmp_path, 100 * stage, z))
+    assert look["boundary"]["crossed"] == "efficacy"
+    stop, variance = look["stopping"], look["logrank"]["variance"]
+
+    def as_drift(ratio: float) -> float:
+        """The mean of z at full information."""
+        return -math.log(ratio) * math.sqrt(variance / (stage / 5))
+
+    assert stop["p_one_sided"] == pytest.approx(p, abs=1e-6)
+    assert as_drift(stop["median_unbiased_hazard_ratio"]) == pytest.approx(drift, abs=5e-4)
+    assert sorted(map(as_drift, (stop["ci_low"], stop["ci_high"]))) == pytest.approx(limits, abs=5e-4)
+
+
+@pytest.mark.parametrize(
+    ("z", "t", "null", "trend", "design", "flat"),
+    [
+        (1.5, 0.5, 0.1017, 0.5903, 0.8462, 0.5641),
+        (1.0, 0.5, 0.0382, 0.2201, 0.6986, 0.2926),
+        (0.5, 0.5, 0.0115, 0.0382, 0.5081, 0.1051),
+        (0.0, 0.5, 0.0028, 0.0028, 0.3157, 0.0250),
+        (2.0, 0.3, 0.1507, 0.9784, 0.9534, 0.8659),
+        (1.2, 0.75, 0.0328, 0.1254, 0.4127, 0.1599),
+    ],
+)
+def test_conditional_power_through_evaluate(
+    tmp_path: Path,
+    capsys: pytest.CaptureFixture[str],
+    z: float,
+    t: float,
+    null: float,
+    trend: float,
+    design: float,
+    flat: float,
+) -> None:
+    """One test at the end, against 1.95996; the design's effect has 90% power (computed independently)."""
+    ratio = math.exp(-(1.959964 + 1.281552) / math.sqrt(400 / 4))
+    path = plan(tmp_path, looks="[1.0]", hazard_ratio=ratio)
+    (look,) = evaluated(
+        capsys, path, "--look", extract_with_z(tmp_path, round(400 * t), z), "--kind", "safety"
+    )
+    outlook = look["outlook"]
+    power = {
+        effect: outlook["conditional_power"][effect]["final_look"] for effect in ("null", "trend", "design")
+    }
+    assert outlook["criterion"] == pytest.approx(1.95996, abs=5e-6)
+    assert power == pytest.approx({"null": null, "trend": trend, "design": design}, abs=6e-5)
+    assert outlook["predictive_power"]["flat"] == pytest.approx(flat, abs=6e-5)
