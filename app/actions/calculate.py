@@ -22,7 +22,8 @@ from app.settings import Settings
 from app.validation import published_rows
 from app.validation.rows import RowOutcome
 from app.views.closed import ClosedView, Letters, unmasked_view
-from app.views.record import boundary_record, evaluation_record
+from app.views.planned_record import boundary_record
+from app.views.record import evaluation_record
 from app.views.what_if import what_if
 
 

@@ -8,6 +8,8 @@ from typing import Any
 
 from app.model.values import Absent, Estimate
 
+Record = dict[str, Any]
+
 NO_STANDARD_ERROR = "no standard error or interval exists where the estimate is 0 or 1"
 
 

@@ -3,34 +3,22 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import asdict, fields
+from dataclasses import asdict
 from datetime import date
-from typing import Any
 
-from app import __version__
-from app.model.boundary import Bound, HeldCompared, LookAsUsed, PlannedBoundary
+from app.model.boundary import HeldCompared, LookAsUsed
 from app.model.extract import Changes, Finding
 from app.model.look import ArmCounts, CalendarCounts
-from app.model.outlook import (
-    ConditionalPower,
-    NextLook,
-    Outlook,
-    PredictivePower,
-    RepeatedInterval,
-    Stopping,
-    WhatIf,
-)
-from app.model.plan import Hypothesis, Plan
+from app.model.outlook import WhatIf
 from app.model.survival import CoxResult, LogrankResult
 from app.model.values import Absent, Estimate
-from app.record.numbers import column, estimate, not_estimable
-from app.record.schema import CONDITIONAL_POWER, EFFECTS, FORMAT, NEXT_LOOK
+from app.record.numbers import Record, column, estimate, not_estimable
 from app.sequential.gatekeeping import family_alpha
 from app.views.closed import ArmView, ClosedView
+from app.views.outlook_record import chosen_record, outlook_record, part_record
 from app.views.reading import Reading
+from app.views.record_parts import bound_record, envelope, finding_record, hypothesis_record
 from app.views.shape_record import shape_record
-
-Record = dict[str, Any]
 
 
 def looks_record(
@@ -46,10 +34,10 @@ def looks_record(
     of_looks = (finding for view in views for finding in view.look.findings)
     findings = [finding_record(finding) for finding in (*plan_findings, *of_looks)]
     orientation = {"of": first.of.value, "against": first.against.value}
-    envelope = _envelope(kind, first.look.plan_digest, digests, orientation, run_at, findings)
+    common = envelope(kind, first.look.plan_digest, digests, orientation, run_at, findings)
     looks = [look_record(view) for view in views]
     held = [_compared(look) for look in first.look.held]
-    return {**envelope, "held": held or None, "looks": looks}
+    return {**common, "held": held or None, "looks": looks}
 
 
 def evaluation_record(
@@ -66,13 +54,8 @@ def evaluation_record(
     record = looks_record("evaluation", views, run_at=run_at, plan_findings=plan_findings)
     for look, asked in zip(record["looks"], what_ifs, strict=True):
         if "conditional_power" in look["outlook"]:
-            look["outlook"]["conditional_power"]["chosen"] = None if asked is None else _chosen(asked)
+            look["outlook"]["conditional_power"]["chosen"] = None if asked is None else chosen_record(asked)
     return record
-
-
-def _chosen(asked: WhatIf) -> Record:
-    (power,) = asked.readings
-    return not_estimable(power.reason) if isinstance(power, Absent) else _power(power)
 
 
 def _compared(held: HeldCompared) -> Record:
@@ -95,92 +78,17 @@ def _compared(held: HeldCompared) -> Record:
     }
 
 
-def boundary_record(
-    planned: PlannedBoundary,
-    plan: Plan,
-    *,
-    run_at: str,
-    hypotheses: Sequence[tuple[Hypothesis, Sequence[Bound]]] = (),
-    findings: Sequence[Finding] = (),
-) -> Record:
-    """The bounds of a plan and what its design needs; each further hypothesis with its own bounds."""
-    doubts = [finding_record(finding) for finding in findings]
-    chances = (planned.chances_null, planned.chances_half, planned.chances_design)
-    return {
-        **_envelope("boundary", plan.digest, [], None, run_at, doubts),
-        "hypotheses": [_planned_hypothesis(*each, planned.sides) for each in hypotheses] or None,
-        "alpha_of_all": family_alpha(plan.design.alpha, plan.hypotheses),
-        "sides": planned.sides,
-        "looks": [bound_record(bound, planned.sides) for bound in planned.bounds],
-        "noncentrality": estimate(planned.noncentrality),
-        "power": planned.power,
-        "inflation": estimate(planned.inflation),
-        "expected_information_fraction": {
-            "null": estimate(planned.expected_fraction_null),
-            "half": estimate(planned.expected_fraction_half),
-            "design": estimate(planned.expected_fraction_design),
-        },
-        "crossing_probability": {
-            effect: [asdict(chance) for chance in looks]
-            for effect, looks in zip(("null", "half", "design"), chances, strict=True)
-        },
-        "power_reached": planned.feasibility.power_reached,
-        "events_needed": planned.feasibility.events_needed,
-        "fixed_design_events": {
-            "schoenfeld": planned.feasibility.schoenfeld_events,
-            "freedman": planned.feasibility.freedman_events,
-        },
-    }
-
-
-def _envelope(
-    kind: str,
-    plan_digest: str,
-    digests: list[str],
-    orientation: dict[str, str] | None,
-    run_at: str,
-    findings: list[Record],
-) -> Record:
-    return {
-        "format": FORMAT,
-        "kind": kind,
-        "program": {"name": "Lookledger", "version": __version__},
-        "plan_digest": plan_digest,
-        "snapshot_digests": digests,
-        "orientation": orientation,
-        "run_at": run_at,
-        "findings": findings,
-    }
-
-
-def finding_record(finding: Finding) -> Record:
-    return {**asdict(finding), "rows": list(finding.rows)}
-
-
 def look_record(view: ClosedView) -> Record:
-    hypotheses = [{**_hypothesis(each.hypothesis), **_endpoint_record(each.view)} for each in view.hypotheses]
+    """One look: the plan's own endpoint, harm's where that is another, and each further hypothesis."""
+    hypotheses = [
+        {**hypothesis_record(each.hypothesis), **_endpoint_record(each.view)} for each in view.hypotheses
+    ]
     return {
         **_endpoint_record(view),
         "harm_endpoint": _harm_endpoint(view),
         "hypotheses": hypotheses or None,
         "alpha_of_all": family_alpha(view.plan.design.alpha, view.plan.hypotheses),
     }
-
-
-def _hypothesis(hypothesis: Hypothesis) -> Record:
-    return {
-        "name": hypothesis.name,
-        "parameter": hypothesis.parameter,
-        "label": hypothesis.label,
-        "event_is": hypothesis.event_is,
-        "after": hypothesis.after,
-        "alpha": hypothesis.alpha,
-    }
-
-
-def _planned_hypothesis(hypothesis: Hypothesis, bounds: Sequence[Bound], sides: int) -> Record:
-    looks = [bound_record(bound, sides) for bound in bounds]
-    return {**_hypothesis(hypothesis), "planned_events": hypothesis.planned_events, "looks": looks}
 
 
 def _harm_endpoint(view: ClosedView) -> Record | None:
@@ -237,7 +145,7 @@ def _endpoint_record(view: ClosedView) -> Record:
         "history": [_held(held, view) for held in view.readings[0].history],
         "ahead": [bound_record(bound, sides) for bound in look.planned],
         **(_onwards(only, look.final) if only else {"outlook": None, "stopping": None}),
-        "repeated_interval": _part(view.readings[0].onwards.repeated_interval),
+        "repeated_interval": part_record(view.readings[0].onwards.repeated_interval),
         **shape_record(view),
     }
 
@@ -348,65 +256,13 @@ def _curve(arm: ArmView) -> Record:
     }
 
 
-def bound_record(bound: Bound, sides: int) -> Record:
-    return {
-        "number": bound.number,
-        "information_fraction": bound.information_fraction,
-        "events": bound.events,
-        "final": bound.final,
-        "sides": sides,
-        "alpha_spent": bound.alpha_spent,
-        "alpha_spent_here": bound.alpha_spent_here,
-        "efficacy_z": estimate(bound.efficacy_z),
-        "efficacy_p_one_sided": estimate(bound.efficacy_p_one_sided),
-        "efficacy_hazard_ratio": estimate(bound.efficacy_hazard_ratio),
-        "efficacy_b_value": estimate(bound.efficacy_b_value),
-        "futility_z": estimate(bound.futility_z),
-        "type_two_spent": bound.type_two_spent,
-        "futility_hazard_ratio": estimate(bound.futility_hazard_ratio),
-        "harm_z": estimate(bound.harm_z),
-        "harm_alpha_spent": bound.harm_alpha_spent,
-        "harm_hazard_ratio": estimate(bound.harm_hazard_ratio),
-    }
-
-
 def _onwards(reading: Reading, final: bool) -> Record:
     """Going on; and, where a bound was crossed here or the look is final, ending here."""
     onwards, ends_here = reading.onwards, final or reading.verdict.crossed != "none"
     return {
-        "outlook": _outlook(onwards.outlook),
-        "stopping": _part(onwards.stopping) if ends_here else None,
+        "outlook": outlook_record(onwards.outlook),
+        "stopping": part_record(onwards.stopping) if ends_here else None,
     }
-
-
-def _outlook(outlook: Outlook | Absent) -> Record:
-    if isinstance(outlook, Absent):
-        return not_estimable(outlook.reason)
-    return {
-        "conditional_power": {effect: _power(getattr(outlook, effect)) for effect in EFFECTS},
-        "criterion": estimate(outlook.criterion),
-        "predictive_power": _part(outlook.predictive_power),
-        "next_look": None if outlook.next_look is None else _next_look(outlook.next_look),
-    }
-
-
-def _power(power: ConditionalPower) -> Record:
-    return {name: estimate(getattr(power, name)) for name in CONDITIONAL_POWER}
-
-
-def _next_look(ahead: NextLook) -> Record:
-    counted = {"number": ahead.number, "events": ahead.events}
-    named = (name for name in NEXT_LOOK if name not in counted and name != "chance")
-    numbers = {name: estimate(getattr(ahead, name)) for name in named}
-    chance = {effect: estimate(getattr(ahead, f"chance_{effect}")) for effect in ("design", "trend", "null")}
-    return {**counted, **numbers, "chance": chance}
-
-
-def _part(part: PredictivePower | RepeatedInterval | Stopping | Absent) -> Record:
-    """A record whose fields carry the names of the record, or the reason why there is none."""
-    if isinstance(part, Absent):
-        return not_estimable(part.reason)
-    return {item.name: estimate(getattr(part, item.name)) for item in fields(part)}
 
 
 def _crossing(reading: Reading | None) -> Record:

@@ -2,14 +2,10 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 from app.model.survival import LandmarkComparison, RatioOverTime
 from app.model.values import Absent
-from app.record.numbers import estimate, not_estimable
+from app.record.numbers import Record, estimate, not_estimable
 from app.views.closed import ClosedView
-
-Record = dict[str, Any]
 
 
 def shape_record(view: ClosedView) -> Record:
