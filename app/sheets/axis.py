@@ -86,5 +86,12 @@ def _last_time_with(curve: SurvivalCurve, fewest: int) -> float:
 
 
 def _step(reach: float, unit: str) -> float:
+    """The smallest round step with few enough ticks, however far the times reach."""
     steps = STEPS if unit == "months" else PLAIN_STEPS
-    return float(next((step for step in steps if reach / step <= MOST_TICKS), steps[-1]))
+    return next(float(step) for step in (*steps, *_beyond(steps[-1], reach)) if reach / step <= MOST_TICKS)
+
+
+def _beyond(largest: float, reach: float) -> tuple[float, ...]:
+    """1, 2, 5 and 10 times the largest step at the power of ten that `reach` asks for."""
+    tens = math.floor(math.log10(max(1.0, reach / (largest * MOST_TICKS))))
+    return tuple(largest * 10.0**tens * factor for factor in (1, 2, 5, 10, 20))

@@ -12,7 +12,7 @@ from hypothesis import strategies as st
 from app.model.extract import Sample, TimeUnit
 from app.model.values import read_only
 from app.review import LookDeclared, review_look
-from app.sheets.axis import FEWEST_AT_RISK, display_unit, time_axis
+from app.sheets.axis import FEWEST_AT_RISK, display_unit, ticks_up_to, time_axis
 from app.sheets.blocks import CurvesFigure, Sheet
 from app.sheets.curves import MOST_STROKES, curves_sheet, rows_at_ticks
 from app.survival import kaplan_meier
@@ -85,6 +85,17 @@ def test_a_row_counts_who_is_left_just_before_its_tick(everyone: list[tuple[int,
 
 
 # --- where the axis ends --------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("unit", ["days", "as given"])
+@pytest.mark.parametrize("longest", [1e6, 9e7, 4e9, 1e16, 1e300])
+def test_the_axis_has_few_ticks_however_far_the_times_reach(longest: float, unit: TimeUnit) -> None:
+    """Times in seconds, or one mistyped: a tick for every 120 months of 1e300 days would never be done."""
+    curve = kaplan_meier(np.linspace(longest / 40, longest, 40), np.ones(40, dtype=bool))
+    for axis in (time_axis((curve,), unit), time_axis((curve, curve), unit)):
+        assert 2 <= len(axis.ticks) <= 9
+        assert axis.end <= 2 * longest
+    assert len(ticks_up_to(longest, "as given")) <= 8
 
 
 @settings(max_examples=50)
