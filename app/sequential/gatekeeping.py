@@ -7,7 +7,7 @@ closed test, and no error is made by choosing when to open the gate.
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import replace
 
 from app.model.boundary import Bound, Crossed, LookAsUsed, Verdict
@@ -78,13 +78,12 @@ def family_alpha(primary: float, hypotheses: Sequence[Hypothesis]) -> float:
     ----------
     Bonferroni's inequality; closed tests: Marcus, Peritz & Gabriel (1976), Biometrika 63, 655-660.
     """
-    waiting: Mapping[str, list[Hypothesis]] = {
-        name: [each for each in hypotheses if each.after == name]
-        for name in (PRIMARY, *(each.name for each in hypotheses))
-    }
-
-    def of_chain(name: str, alpha: float) -> float:
-        return max(alpha, sum(of_chain(each.name, each.alpha) for each in waiting[name]))
-
-    beside = sum(of_chain(each.name, each.alpha) for each in hypotheses if each.after is None)
-    return of_chain(PRIMARY, primary) + beside
+    waiting = dict.fromkeys((PRIMARY, *(each.name for each in hypotheses)), 0.0)
+    beside = 0.0  # from the ends of the chains on, so that what waits is complete when its turn comes
+    for each in reversed(in_testing_order(hypotheses)):
+        level = max(each.alpha, waiting[each.name])
+        if each.after is None:
+            beside += level
+        else:
+            waiting[each.after] += level
+    return max(primary, waiting[PRIMARY]) + beside

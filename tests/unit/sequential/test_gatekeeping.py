@@ -104,6 +104,12 @@ def test_the_level_of_all_together(hypotheses: list[Hypothesis], level: float) -
     assert family_alpha(0.02, hypotheses) == pytest.approx(level, abs=1e-15)
 
 
+def test_a_chain_as_long_as_a_plan_file_may_hold_has_a_level() -> None:
+    chain = [hypothesis(f"h{at}", f"h{at - 1}" if at else "primary", 0.01) for at in range(1500)]
+    assert family_alpha(0.02, chain) == 0.02
+    assert family_alpha(0.005, chain) == 0.01
+
+
 # --- the error of waiting -------------------------------------------------------------------------------
 
 
