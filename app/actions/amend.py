@@ -63,8 +63,9 @@ def amend(
 def _amendment(desk: Desk, state: State, plan_name: str, plan: bytes) -> Amendment:
     limits = desk.settings.limits
     amended = read_plan(plan, name=plan_name, limits=limits)
-    changes = plan_changes(plan_under(desk.trial, state.plan_digest, limits), amended)
-    refuse_fixed(changes, plan_name)
+    earlier = [plan_under(desk.trial, version.plan_digest, limits) for version in state.plans]
+    changes = plan_changes(earlier[-1], amended)
+    refuse_fixed(earlier, amended, plan_name)
     if not changes:
         raise LedgerError(
             "An amendment that changes nothing",

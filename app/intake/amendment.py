@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Mapping, Sequence
-from dataclasses import dataclass, fields, is_dataclass
+from dataclasses import dataclass, fields, is_dataclass, replace
 from datetime import date
 from typing import Any
 
@@ -51,23 +51,45 @@ def plan_changes(before: Plan, after: Plan) -> tuple[PlanChange, ...]:
     )
 
 
-def refuse_fixed(changes: Sequence[PlanChange], name: str) -> None:
-    """PlanRefused with a sentence for each change that looks already held do not allow."""
-    whole = {_table(change) for change in changes if _comes_or_goes(change)}
+def refuse_fixed(earlier: Sequence[Plan], amended: Plan, name: str) -> None:
+    """PlanRefused with a sentence for each change that looks already held do not allow.
+
+    `earlier` are all versions so far, the one in force last. A table that may come and go is held against the
+    last version that had it, so that nothing turns round by being dropped and taken up again.
+    """
+    locked, new = _as_last_written(earlier), dict(_fixed_keys(amended))
+    tables = {_table(key) for key in locked} & {_table(key) for key in new}
     problems = [
         DesignInvalid(
-            f"{change.key} cannot be amended",
+            f"{key} cannot be amended",
             where=name,
-            found=change.after,
-            accepted=f"{change.before}, as it was locked",
-            remedy=remedy,
+            found=new.get(key, NOT_SET),
+            accepted=f"{locked.get(key, NOT_SET)}, as it was locked",
+            remedy=FIXED[_unnumbered(key)],
         )
-        for change in changes
-        if (remedy := FIXED.get(_unnumbered(change.key), "")) and _table(change) not in whole
+        for key in dict.fromkeys((*locked, *new))
+        if _table(key) in tables and locked.get(key, NOT_SET) != new.get(key, NOT_SET)
     ]
-    problems += _held_problems(changes, name)
+    problems += _held_problems(plan_changes(earlier[-1], amended), name)
     if problems:
         raise PlanRefused(problems)
+
+
+def _as_last_written(earlier: Sequence[Plan]) -> dict[str, str]:
+    """The fixed keys of every table, as the last version that had the table has them."""
+    locked: dict[str, str] = {}
+    for plan in earlier:
+        written_here = dict(_fixed_keys(plan))
+        here = {_table(key) for key in written_here}
+        locked = {key: value for key, value in locked.items() if _table(key) not in here} | written_here
+    return locked
+
+
+def _fixed_keys(plan: Plan) -> Iterator[tuple[str, str]]:
+    """Harm that names no endpoint is judged on the plan's own, as if it had named that."""
+    if plan.harm is not None and plan.harm.endpoint_parameter is None:
+        plan = replace(plan, harm=replace(plan.harm, endpoint_parameter=plan.endpoint.parameter))
+    return ((key, value) for key, value in _keys_of_plan(plan) if _unnumbered(key) in FIXED)
 
 
 def _held_problems(changes: Sequence[PlanChange], name: str) -> Iterator[DesignInvalid]:
@@ -83,17 +105,8 @@ def _held_problems(changes: Sequence[PlanChange], name: str) -> Iterator[DesignI
         )
 
 
-MAY_COME_AND_GO = ("harm.spending", "hypothesis.spending")
-"""A required key of each table that may be added or dropped whole; with it every key of the table changes."""
-
-
-def _table(change: PlanChange) -> str:
-    return change.key.rpartition(".")[0].removesuffix(".efficacy")
-
-
-def _comes_or_goes(change: PlanChange) -> bool:
-    key = _unnumbered(change.key).replace(".efficacy", "")
-    return key in MAY_COME_AND_GO and NOT_SET in (change.before, change.after)
+def _table(key: str) -> str:
+    return key.rpartition(".")[0]
 
 
 def _unnumbered(key: str) -> str:

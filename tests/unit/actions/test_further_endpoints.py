@@ -13,8 +13,15 @@ from app.actions.looks import assembled_look, closed_book, record_of
 from app.actions.receive import receive
 from app.errors import InputError
 from app.verification.assembly import frozen_record
-from tests.unit.actions.invented_file import BY, desk, held, incoming
-from tests.unit.review.invented_trial import CUTOFFS, patients, plan_text, two_endpoints
+from tests.unit.actions.invented_file import BY, desk, held, incoming, started
+from tests.unit.review.invented_trial import (
+    CUTOFFS,
+    DEATH_AFTER_RELAPSE,
+    HARM_ON_DEATH,
+    patients,
+    plan_text,
+    two_endpoints,
+)
 from tests.unit.sheets.invented_looks import FURTHER, text
 
 
@@ -77,6 +84,33 @@ def test_a_hypothesis_dropped_and_taken_up_again_does_not_spend_twice(tmp_path: 
         assert [each["number"] for each in third["history"]] == [1]
         here = third["boundary"]["alpha_spent"] - third["boundary"]["alpha_spent_here"]
         assert here == pytest.approx(spent, rel=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("before", "after"),
+    [
+        ('[harm]\nspending = "Pocock-type"\nalpha = 0.025\n', HARM_ON_DEATH),
+        (HARM_ON_DEATH, HARM_ON_DEATH.replace('parameter = "DEATH"', "")),
+        (DEATH_AFTER_RELAPSE, DEATH_AFTER_RELAPSE.replace('"bad"', '"good"')),
+    ],
+)
+def test_what_was_dropped_does_not_come_back_on_another_endpoint_or_turned_round(
+    tmp_path: Path, before: str, after: str
+) -> None:
+    """Its bounds would rest on looks held by other counts, or with a z that points the other way."""
+
+    def tables(written: str) -> tuple[str, str]:
+        return "[enrolment]", f"{written}[enrolment]"
+
+    content = two_endpoints(patients(), CUTOFFS[0])
+    with desk(started(tmp_path, (tables(before),)), 2) as open_desk:
+        receive(open_desk, incoming(CUTOFFS[0], content=content), acknowledgements={}, by=BY)
+        freeze(open_desk, by=BY)
+        amend(open_desk, plan_name="p2.toml", plan=plan_text(), reason="Dropped", by=BY)
+        entries = open_desk.trial.entries()
+        with pytest.raises(InputError, match=r"cannot be amended in p3\.toml"):
+            amend(open_desk, plan_name="p3.toml", plan=plan_text(tables(after)), reason="Again", by=BY)
+        assert open_desk.trial.entries() == entries
 
 
 def test_an_extract_without_the_further_endpoint_is_refused_whole(tmp_path: Path) -> None:

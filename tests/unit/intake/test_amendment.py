@@ -65,22 +65,33 @@ def test_hypotheses_are_told_apart_by_their_endpoint() -> None:
 
 
 def test_a_hypothesis_comes_or_goes_whole_but_does_not_turn_round() -> None:
-    one = replace(plan(), hypotheses=(DEATH,))
-    refuse_fixed(plan_changes(plan(), one), "plan-2.toml")
-    refuse_fixed(plan_changes(one, plan()), "plan-2.toml")
-    turned = replace(plan(), hypotheses=(replace(DEATH, event_is="good"),))
-    with pytest.raises(PlanRefused, match=r"Hypothesis\[DEATH\].event_is cannot be amended"):
-        refuse_fixed(plan_changes(one, turned), "plan-2.toml")
+    one, turned = (replace(plan(), hypotheses=(replace(DEATH, event_is=way),)) for way in ("bad", "good"))
+    refuse_fixed([plan()], one, "plan-2.toml")
+    refuse_fixed([one], plan(), "plan-2.toml")
+    refuse_fixed([one, plan()], one, "plan-3.toml")
+    for earlier in ([one], [one, plan()], [one, plan(), replace(plan(), hypotheses=(STROKE,))]):
+        with pytest.raises(PlanRefused, match=r"Hypothesis\[DEATH\].event_is cannot be amended"):
+            refuse_fixed(earlier, turned, "plan-2.toml")
 
 
 def test_harm_comes_or_goes_whole_but_stays_on_its_endpoint() -> None:
-    on_death = replace(plan(), harm=Harm("Pocock-type", 0.05, "DEATH"))
-    refuse_fixed(plan_changes(plan(), on_death), "plan-2.toml")
-    refuse_fixed(plan_changes(on_death, plan()), "plan-2.toml")
-    elsewhere = replace(plan(), harm=Harm("Pocock-type", 0.05))
-    for before, after in ((on_death, elsewhere), (elsewhere, on_death)):
-        with pytest.raises(PlanRefused, match=r"Harm\.parameter cannot be amended"):
-            refuse_fixed(plan_changes(before, after), "plan-2.toml")
+    on_death, on_stroke, on_own = (
+        replace(plan(), harm=Harm("Pocock-type", 0.05, endpoint)) for endpoint in ("DEATH", "STROKE", None)
+    )
+    refuse_fixed([plan()], on_death, "plan-2.toml")
+    refuse_fixed([on_death], plan(), "plan-2.toml")
+    refuse_fixed([on_death, plan()], on_death, "plan-3.toml")
+    for before, after in ((on_death, on_own), (on_own, on_death), (on_death, on_stroke)):
+        for earlier in ([before], [before, plan()]):
+            with pytest.raises(PlanRefused, match=r"Harm\.parameter cannot be amended"):
+                refuse_fixed(earlier, after, "plan-2.toml")
+
+
+def test_harm_may_name_the_endpoint_that_it_stands_on() -> None:
+    own = Harm("Pocock-type", 0.05)
+    named = replace(own, endpoint_parameter=plan().endpoint.parameter)
+    for before, after in ((own, named), (named, own)):
+        refuse_fixed([replace(plan(), harm=before)], replace(plan(), harm=after), "plan-2.toml")
 
 
 def test_every_key_of_a_plan_has_the_name_that_the_plan_file_gives_it() -> None:
@@ -104,9 +115,8 @@ def test_every_key_of_a_plan_has_the_name_that_the_plan_file_gives_it() -> None:
     ],
 )
 def test_what_held_looks_rest_on_is_not_amended(change: tuple[bytes, bytes], key: str) -> None:
-    changes = plan_changes(plan(), plan(plan_with(change)))
     with pytest.raises(PlanRefused) as refused:
-        refuse_fixed(changes, "plan-2.toml")
+        refuse_fixed([plan()], plan(plan_with(change)), "plan-2.toml")
     (told,) = str(refused.value).splitlines()
     assert told.startswith(f"{key[0].upper()}{key[1:]} cannot be amended in plan-2.toml. Found ")
     assert ", as it was locked. " in told
@@ -123,7 +133,7 @@ def test_looks_held_before_the_file_existed_are_not_amended() -> None:
         (with_one, turned, "held[1].z than"),
     ):
         with pytest.raises(PlanRefused) as refused:
-            refuse_fixed(plan_changes(before, after), "plan-2.toml")
+            refuse_fixed([before], after, "plan-2.toml")
         (told,) = str(refused.value).splitlines()
         start = "Held looks cannot be amended, added or left out in plan-2.toml, [[held]]. Found another "
         assert told.startswith(f"{start}{keys}")
@@ -133,7 +143,7 @@ def test_looks_held_before_the_file_existed_are_not_amended() -> None:
 def test_everything_that_is_wrong_is_told_at_once() -> None:
     both = plan_with((b'name = "Q17"', b'name = "Q18"'), (b"sides = 1", b"sides = 2"))
     with pytest.raises(PlanRefused) as refused:
-        refuse_fixed(plan_changes(plan(), plan(both)), "plan-2.toml")
+        refuse_fixed([plan()], plan(both), "plan-2.toml")
     assert len(str(refused.value).splitlines()) == 2
 
 
