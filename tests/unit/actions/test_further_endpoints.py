@@ -9,10 +9,9 @@ import pytest
 from app.actions.amend import amend
 from app.actions.check import verify_desk
 from app.actions.freeze import freeze
-from app.actions.looks import assembled_look, closed_book, record_of
+from app.actions.looks import closed_book, record_of
 from app.actions.receive import receive
 from app.errors import InputError
-from app.verification.assembly import frozen_record
 from tests.unit.actions.invented_file import BY, desk, held, incoming, started
 from tests.unit.review.invented_trial import (
     CUTOFFS,
@@ -34,15 +33,6 @@ def test_each_look_verifies_number_by_number(tmp_path: Path) -> None:
         report = verify_desk(open_desk)
         assert report.ok, [line.text for line in report.lines if not line.ok]
         assert sum("every number agrees" in line.text for line in report.lines) == 8
-
-
-def test_a_changed_bound_of_a_hypothesis_is_found(tmp_path: Path) -> None:
-    """Computed again it differs from what a frozen record says; here the record is what was changed."""
-    with desk(held(tmp_path, 2, frozen=2, changes=(FURTHER,))) as open_desk:
-        record = frozen_record(open_desk.trial, 2)["looks"][0]["hypotheses"][0]
-        result = assembled_look(open_desk, 2).result.hypotheses[0].result
-        assert record["boundary"]["efficacy_z"] == result.bound.efficacy_z
-        assert record["logrank"]["z"] == result.logrank.z  # type: ignore[union-attr]
 
 
 def test_what_an_amendment_changes_leaves_the_bounds_of_a_hypothesis_as_used(tmp_path: Path) -> None:

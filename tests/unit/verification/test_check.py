@@ -19,7 +19,7 @@ from app.ledger.entries import read_body
 from app.verification.check import CheckReport
 from tests.unit.actions.invented_file import BY, desk, held, settings
 from tests.unit.review.invented_trial import CUTOFFS
-from tests.unit.sheets.invented_looks import table_texts
+from tests.unit.sheets.invented_looks import FURTHER, table_texts
 from tests.unit.verification.forging import flip_a_byte, forge_record, forge_report
 
 WHOLE = "is whole, and every stored byte is as received."
@@ -175,6 +175,30 @@ def test_a_number_changed_inside_a_frozen_look_is_named(
     found = faults(file)
     assert found[0].startswith(f"look 2, frozen record, {place}: stored ")
     assert not any("chain" in text and "whole" not in text for text in found)
+
+
+def change_a_bound_of_a_hypothesis(record: dict[str, Any]) -> None:
+    look_of(record)["hypotheses"][0]["boundary"]["efficacy_z"] *= 1 + 1e-6
+
+
+def change_z_of_harm(record: dict[str, Any]) -> None:
+    look_of(record)["harm_endpoint"]["logrank"]["z"] *= 1 + 1e-6
+
+
+@pytest.mark.parametrize(
+    ("change", "place"),
+    [
+        (change_a_bound_of_a_hypothesis, "looks[0].hypotheses[0].boundary.efficacy_z"),
+        (change_z_of_harm, "looks[0].harm_endpoint.logrank.z"),
+    ],
+    ids=lambda value: getattr(value, "__name__", ""),
+)
+def test_a_number_changed_in_a_further_endpoint_of_a_frozen_look_is_named(
+    tmp_path: Path, change: Callable[[dict[str, Any]], None], place: str
+) -> None:
+    file = held(tmp_path, 2, frozen=2, changes=(FURTHER,))
+    forge_record(file, 2, change)
+    assert faults(file)[0].startswith(f"look 2, frozen record, {place}: stored ")
 
 
 def test_a_changed_number_that_later_bounds_rest_on_is_told_there_too(file: Path) -> None:
