@@ -7,12 +7,13 @@ from dataclasses import dataclass
 
 from app.render.palette import GRID, HAIRLINE, INK_2, INK_3, PAPER
 from app.render.svg.element import NAMESPACE, Element, coordinate, element
-from app.render.svg.geometry import Box, snapped
+from app.render.svg.geometry import Box, hatching, snapped
 from app.render.svg.lettering import LABEL, SANS, SMALL, Anchor, words
 
 WIDE = 740.0
 NARROW = 343.0
 STRIP = 380.0
+HATCH_APART = 7.0
 
 
 @dataclass(frozen=True)
@@ -56,6 +57,15 @@ def rectangle(box: Box, fill: str, stroke: str | None = None) -> Element:
     return element(
         "rect", x=box.left, y=box.top, width=box.width, height=box.height, fill=fill, stroke=stroke
     )
+
+
+def hatch(box: Box, stroke: str) -> Element:
+    """Hatching as computed segments: printers of SVG know no pattern."""
+    lines = "".join(
+        f"M{coordinate(x1)} {coordinate(y1)}L{coordinate(x2)} {coordinate(y2)}"
+        for x1, y1, x2, y2 in hatching(box, HATCH_APART)
+    )
+    return element("path", d=lines or "M0 0", fill="none", stroke=stroke)
 
 
 def disc(x: float, y: float, radius: float, fill: str) -> Element:

@@ -6,7 +6,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from app.render.palette import CROSSED, CROSSED_ZONE, EFFICACY_ZONE, HAIRLINE, HATCH, INK, INK_3, PAPER
-from app.render.svg.drawing import diamond, disc, rectangle
+from app.render.svg.drawing import HATCH_APART, diamond, disc, hatch, rectangle
 from app.render.svg.element import Element, coordinate, element
 from app.render.svg.geometry import Box, Segment, hatching, snapped
 from app.render.svg.lane_plot import LanePlot, lower_bound, number
@@ -14,7 +14,6 @@ from app.render.svg.lettering import words
 from app.render.svg.limits import Limit, Limits, is_reached, limits_read
 from app.sheets.blocks import Lane
 
-HATCH_APART = 7.0
 ROOM_FOR_LETTERS = 24.0
 
 
@@ -122,14 +121,7 @@ def bars(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Bar]:
 
 
 def _drawn_zone(zone: Zone) -> Element:
-    """Hatching as computed segments: printers of SVG know no pattern."""
-    if not zone.hatched:
-        return rectangle(zone.box, zone.colour)
-    drawn = (
-        f"M{coordinate(x1)} {coordinate(y1)}L{coordinate(x2)} {coordinate(y2)}"
-        for x1, y1, x2, y2 in zone.segments
-    )
-    return element("path", d="".join(drawn) or "M0 0", fill="none", stroke=zone.colour)
+    return (hatch if zone.hatched else rectangle)(zone.box, zone.colour)
 
 
 def _drawn_bar(bar: Bar) -> Element:

@@ -8,16 +8,15 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from app.render.palette import CROSSED, CROSSED_ZONE, HATCH_NOW, INK, INK_2, INK_3, PAPER, ZONE_NOW
-from app.render.svg.drawing import Drawing, diamond, disc, rectangle
+from app.render.svg.drawing import Drawing, diamond, disc, hatch, rectangle
 from app.render.svg.element import Element, coordinate, element
-from app.render.svg.geometry import Box, Scale, hatching, kept_apart
+from app.render.svg.geometry import Box, Scale, kept_apart
 from app.render.svg.lettering import LABEL, SMALL, text_width, words
 from app.render.svg.limits import Limit, Limits, is_reached, limits_read
 from app.sheets.blocks import Span, ZStrip
 
 TOP, TALL, TALL_MASKED = 19.5, 18.0, 24.0
 LETTERS = 14.0  # what the letters of two readings take
-HATCH_APART = 7.0
 NAMES_APART = 6.0
 
 
@@ -98,16 +97,8 @@ def _zone(gauge: Gauge, row: Box, limit: Limit) -> Element:
     at = gauge.x(limit.z)
     box = Box(at, row.top, row.right, row.bottom) if limit.above else Box(row.left, row.top, at, row.bottom)
     if limit.kind == "futility":
-        return _hatch(box)
+        return hatch(box, HATCH_NOW)
     return rectangle(box, CROSSED_ZONE if gauge.is_crossed(limit) else ZONE_NOW)
-
-
-def _hatch(box: Box) -> Element:
-    lines = "".join(
-        f"M{coordinate(a)} {coordinate(b)}L{coordinate(c)} {coordinate(d)}"
-        for a, b, c, d in hatching(box, HATCH_APART)
-    )
-    return element("path", d=lines or "M0 0", fill="none", stroke=HATCH_NOW)
 
 
 def _bar(gauge: Gauge, row: Box, limit: Limit) -> Element:
