@@ -204,8 +204,6 @@ def open_view(desk: Desk, number: int) -> OpenView:
     return OpenView(
         trial_name=plan.trial.name,
         trial_title=plan.trial.title,
-        endpoint_label=plan.endpoint.label,
-        event_is_bad=plan.endpoint.event_is == "bad",
         planned=plan.design.looks,
         planned_subjects=plan.enrolment.planned_subjects,
         look=pooled_look(desk, number),

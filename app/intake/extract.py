@@ -205,7 +205,6 @@ def _readings(survey: _Survey, rows: Rows | None) -> tuple[ReadingOfFile, ...]:
         ReadingOfFile(
             name=file.name,
             digest=file.digest,
-            n_bytes=len(file.content),
             n_rows=n_rows.get(at, 0),
             columns_read=tuple(name for name in header if name in read and at in survey.endpoint),
             columns_left_out=tuple(name for name in header if name not in read or at not in survey.endpoint),

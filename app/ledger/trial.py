@@ -191,10 +191,6 @@ class Trial(Closing):
         """Stored bytes by their digest, hashed again; LedgerChanged when they are gone or others."""
         return kept_bytes(self._database, "content", key)
 
-    def plan_bytes(self) -> bytes:
-        """The text of the plan in force."""
-        return self.content(self.state().plan_digest)
-
     def snapshot(self, number: int) -> Snapshot:
         """A snapshot as received, with the bytes of its files."""
         look = self.state().look(number)

@@ -85,7 +85,6 @@ class ReadingOfFile:
 
     name: str
     digest: str
-    n_bytes: int
     n_rows: int
     columns_read: tuple[str, ...]
     columns_left_out: tuple[str, ...]

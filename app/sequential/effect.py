@@ -63,7 +63,6 @@ class PlanRules:
     futility: FutilityRule | None
     harm: HarmRule | None
     scale: EffectScale
-    full_information: float
 
     @property
     def binding(self) -> bool:
@@ -112,7 +111,7 @@ def rules_of(
         effect = noncentrality_for_power(rule, design, experimental_share, futility)
         by_futility = futility_rule(futility, design, scale, effect)
     by_harm = None if harm is None else harm_rule(harm, parameter)
-    return PlanRules(rule, by_futility, by_harm, scale, full_information(design))
+    return PlanRules(rule, by_futility, by_harm, scale)
 
 
 def full_information(design: Design) -> float:

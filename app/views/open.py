@@ -17,8 +17,6 @@ class OpenView:
 
     trial_name: str
     trial_title: str
-    endpoint_label: str
-    event_is_bad: bool
     planned: tuple[float, ...]
     planned_subjects: int | None
     look: PooledResult

@@ -70,7 +70,7 @@ def test_the_state_tells_what_was_done(lived: Trial) -> None:
     assert state.open_look is None
     assert state.opened(1, "first evening")
     assert not state.opened(2, "first evening")
-    assert lived.plan_bytes() == acts.PLAN
+    assert lived.content(lived.state().plan_digest) == acts.PLAN
     assert lived.content(state.frozen_look(2).body.record_digest) == b'{"look":2}'
 
 

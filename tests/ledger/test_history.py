@@ -202,7 +202,7 @@ def test_a_look_is_held_under_the_plan_in_force_when_its_snapshot_came(trial: Tr
     ]
     assert state.plan == state.plans[1]
     assert [version.version for version in state.plans] == [1, 2]
-    assert trial.plan_bytes() == acts.PLAN + b"# changed"
+    assert trial.content(trial.state().plan_digest) == acts.PLAN + b"# changed"
 
 
 def test_an_amendment_says_which_results_had_been_opened_before(trial: Trial) -> None:

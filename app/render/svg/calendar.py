@@ -72,7 +72,7 @@ def _drawn(figure: CalendarFigure, page: Page) -> Drawing:
             *(vertical(x(day), page.plot.top, page.plot.bottom, HAIRLINE) for day, _ in figure.marks),
             *(_line(series, x, y) for series in figure.series),
             *_discs(figure, x, y),
-            *_date_axis(figure, page, x),
+            *_date_axis(page, x),
             *(part for label in end_labels(figure, page, y) for part in _drawn_label(label, page)),
             *rows,
         ),
@@ -143,7 +143,7 @@ def _planned(figure: CalendarFigure, page: Page, y: Scale) -> tuple[Element, ...
     return (element("path", d=path, fill="none", stroke=INK_3, stroke_dasharray="1 3"),)
 
 
-def _date_axis(figure: CalendarFigure, page: Page, x: Scale) -> tuple[Element, ...]:
+def _date_axis(page: Page, x: Scale) -> tuple[Element, ...]:
     below = page.plot.bottom + 20
     ticks = month_ticks(round(x.low), round(x.high), page.most_ticks)
     places = [x(day_number(tick)) for tick in ticks]
