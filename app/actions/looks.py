@@ -122,7 +122,7 @@ def by_events(plan: Plan) -> Literal["", "events"]:
 def closed_surroundings(desk: Desk, around: Surroundings, plan: Plan) -> Surroundings:
     """The same looks by the information that the plan counts: V / planned V, which needs the arms."""
     planned = plan.design.planned_score_variance
-    if plan.design.information == "events" or planned is None:
+    if planned is None:
         return around
     looks = (replace(look, fraction=_information_used(desk, look.number) / planned) for look in around.looks)
     return replace(around, looks=tuple(looks), by="score variance")

@@ -93,7 +93,7 @@ class Design:
     planned_events: int
     looks: tuple[float, ...]
     information: Literal["events", "score variance"] = "events"
-    planned_score_variance: float | None = None
+    planned_score_variance: float | None = None  # given exactly where `information` is score variance
     spending_clock: Literal["information", "calendar"] = "information"
     carry_on: Literal["nominal", "crossing"] = "nominal"
     safety_spend: float = 0.0

@@ -132,7 +132,7 @@ def _information(plan: Plan, sample: Sample, test: LogrankResult | Absent) -> In
 def _fraction(plan: Plan, events: int, variance: Estimate) -> float:
     """Information so far over the planned: events, or V where the plan says so (0 where there is no V)."""
     planned_variance = plan.design.planned_score_variance
-    if plan.design.information == "events" or planned_variance is None:
+    if planned_variance is None:
         return events / plan.design.planned_events
     return 0.0 if isinstance(variance, Absent) else variance / planned_variance
 

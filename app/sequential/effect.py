@@ -116,13 +116,13 @@ def rules_of(
 
 def full_information(design: Design) -> float:
     """Information at fraction 1 in the unit of correlations: planned events, or planned score variance."""
-    if design.information == "score variance" and design.planned_score_variance is not None:
+    if design.planned_score_variance is not None:
         return design.planned_score_variance
     return float(design.planned_events)
 
 
 def effect_scale(design: Design, experimental_share: float, direction: Direction) -> EffectScale:
-    if design.information == "score variance" and design.planned_score_variance is not None:
+    if design.planned_score_variance is not None:
         return EffectScale(direction, design.planned_score_variance)
     return EffectScale(direction, design.planned_events * experimental_share * (1.0 - experimental_share))
 
@@ -160,17 +160,16 @@ def _planned_look(
     design: Design, number: int, fraction: float, experimental_share: float, final: bool
 ) -> LookAhead:
     """Before a look is held its calendar fraction is taken to be its information fraction."""
-    events = events_by(fraction, design.planned_events)
-    by_variance = design.information == "score variance" and design.planned_score_variance is not None
+    events, planned = events_by(fraction, design.planned_events), design.planned_score_variance
+    by_events = events * experimental_share * (1.0 - experimental_share)
+    variance = by_events if planned is None else fraction * planned
     return LookAhead(
         number=number,
         kind="final" if final else "planned",
         information=fraction * full_information(design),
         fraction=fraction,
         events=events,
-        score_variance=fraction * full_information(design)
-        if by_variance
-        else events * experimental_share * (1.0 - experimental_share),
+        score_variance=variance,
     )
 
 
