@@ -10,7 +10,8 @@ from app.model.extract import LookKind
 from app.model.values import Absent, Estimate
 
 Crossed = Literal["none", "efficacy", "futility", "harm", "control"]
-
+BELOW: tuple[Crossed, ...] = ("futility", "harm")
+"""What is crossed below, on the side against experimental, and ends no test unless futility is binding."""
 
 NOT_RECORDED = Absent("not recorded for this look")
 

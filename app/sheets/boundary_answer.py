@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from app.model.boundary import BELOW, Crossed
 from app.model.values import Absent, Estimate
 from app.sheets.arms import label_of
 from app.sheets.blocks import Line, Span
@@ -37,7 +38,7 @@ def _unmasked_sentence(view: ClosedView, reading: Reading) -> Line:
     if reading.verdict.crossed == "control":
         start = line("The boundary in favour of ", label_of(view, view.against).in_sentence, " was ", CROSSED)
         return line(start, ": ", z, " against ", turned(bound, places), ".")
-    if reading.verdict.crossed in ("futility", "harm"):
+    if reading.verdict.crossed in BELOW:
         return line(f"The {reading.verdict.crossed} boundary was ", CROSSED, _below_against(view, reading))
     if view.plan.design.sides == 2:
         both = Span(f"±{decimal(bound, places)}", value=bound)
@@ -50,7 +51,7 @@ def _unmasked_sentence(view: ClosedView, reading: Reading) -> Line:
 def _below_against(view: ClosedView, reading: Reading) -> Line:
     """ ": z 0.420 against 0.958." and, for futility that does not bind, that it does not."""
     crossed = reading.verdict.crossed
-    bound = view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
+    bound = _bound_below(view, crossed)
     binds = crossed == "futility" and view.plan.futility is not None and view.plan.futility.binding
     advice = "." if binds or crossed == "harm" else "; it does not bind."
     if crossed == "harm" and is_harm_elsewhere(view):
@@ -62,13 +63,17 @@ def _below_against(view: ClosedView, reading: Reading) -> Line:
     )
 
 
+def _bound_below(view: ClosedView, crossed: Crossed) -> Estimate | None:
+    return view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
+
+
 def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
     bound = view.look.bound.efficacy_z
     start = line(f"If {reading.experimental} is experimental: ", _z_of(reading, bound))
     if reading.crossed_before(view.look.number):
         at = f" at look{NO_BREAK}{reading.verdict.first_crossed}; no second test."
         return line(start, ", the boundary was ", CROSSED, at)
-    if reading.verdict.crossed in ("futility", "harm"):
+    if reading.verdict.crossed in BELOW:
         return line(start, *_masked_below(view, reading))
     if isinstance(bound, Absent):
         return line(start, ", no efficacy boundary applies.")
@@ -84,7 +89,7 @@ def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
 def _masked_below(view: ClosedView, reading: Reading) -> Line:
     """ ", futility bound 0.958 crossed." """
     crossed = reading.verdict.crossed
-    bound = view.look.bound.harm_z if crossed == "harm" else view.look.bound.futility_z
+    bound = _bound_below(view, crossed)
     if crossed == "harm" and is_harm_elsewhere(view):
         beside = _harm_against(reading, bound)
         return line(f", harm on {harm_endpoint_name(view)} ", CROSSED, ": ", beside, ".")

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from app.model.boundary import Bound, Crossed, LookAsUsed
+from app.model.boundary import BELOW, Bound, Crossed, LookAsUsed
 from app.model.values import Absent, Estimate
 from app.sheets.blocks import Lane, Span
 from app.sheets.further import is_harm_elsewhere
@@ -37,7 +37,7 @@ def _crossed_below_at(view: ClosedView, look: int) -> bool:
     """Whether a look held crossed futility or harm, in any reading."""
     held = (each for reading in view.readings for each in reading.history)
     below = (each.crossed for each in held if each.number == look)
-    return any(crossed in ("futility", "harm") and _is_in_lane(view, crossed) for crossed in below)
+    return any(crossed in BELOW and _is_in_lane(view, crossed) for crossed in below)
 
 
 def _is_in_lane(view: ClosedView, crossed: Crossed) -> bool:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 
+from app.model.boundary import BELOW
 from app.model.values import Absent
 from app.sheets.arms import label_of
 from app.sheets.axis import time_axis
@@ -38,12 +39,11 @@ from app.sheets.information import (
     open_information_sheet,
 )
 from app.sheets.methods import methods, spending_key
-from app.sheets.words import CROSSED, NO_BREAK, count, interval, level_text, line, number, of_total
+from app.sheets.words import CROSSED, NO_BREAK, Z, count, interval, level_text, line, number, of_total
 from app.views.closed import ArmView, ClosedView
 from app.views.open import OpenView
 from app.views.reading import Reading
 
-BELOW = ("futility", "harm")
 NO_BOUND_HERE = "no efficacy boundary applies at this look."
 
 
@@ -215,7 +215,7 @@ def _needed_next(view: ClosedView) -> Line:
     bound = view.look.planned[0]
     if isinstance(bound.efficacy_z, Absent) or isinstance(bound.efficacy_hazard_ratio, Absent):
         return ()
-    z = line(Span("z", "symbol"), NO_BREAK, number(bound.efficacy_z, 3))
+    z = line(Z, NO_BREAK, number(bound.efficacy_z, 3))
     side = "less" if view.plan.endpoint.direction == 1 else "more"
     ratio = number(bound.efficacy_hazard_ratio, 3)
     return line(

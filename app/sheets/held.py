@@ -5,12 +5,11 @@ from __future__ import annotations
 from app.model.boundary import HeldCompared
 from app.model.values import Absent
 from app.sheets.blocks import Cell, Column, Line, Row, Span, Table
-from app.sheets.words import Z, alpha, alpha_difference, count, line, listed, number, z_number, z_places
+from app.sheets.words import DASH, Z, alpha, alpha_difference, count, line, listed, number, z_number, z_places
 from app.views.closed import ClosedView
 
 HELD_BEFORE = "held before this file"
 WITHHELD = "; their z, known by arm, is not shown masked"
-NONE = Span("–", "quiet")
 
 
 def held_tables(view: ClosedView, side: str) -> tuple[Table, ...]:
@@ -36,7 +35,7 @@ def _held_row(held: HeldCompared, *, masked: bool) -> Row:
 
 
 def _z(held: HeldCompared) -> Span:
-    return NONE if held.z is None else z_number(held.z, places=z_places(held.z, _used(held)))
+    return DASH if held.z is None else z_number(held.z, places=z_places(held.z, _used(held)))
 
 
 def _used(held: HeldCompared) -> float | Absent:
@@ -47,9 +46,9 @@ def _bounds(held: HeldCompared) -> tuple[Span, Span, Span]:
     """The bound used, the bound computed, and the first less the second; a dash for what there is not."""
     used, computed = _used(held), held.computed_efficacy_z
     places = z_places(used, computed)
-    shown = [NONE if isinstance(bound, Absent) else number(bound, places) for bound in (used, computed)]
+    shown = [DASH if isinstance(bound, Absent) else number(bound, places) for bound in (used, computed)]
     if isinstance(used, Absent) or isinstance(computed, Absent):
-        return shown[0], shown[1], NONE
+        return shown[0], shown[1], DASH
     return shown[0], shown[1], number(used - computed, places)
 
 

@@ -7,12 +7,23 @@ from app.model.values import Absent, Estimate
 from app.sheets.blocks import Cell, Chance, ChancesFigure, Column, Line, Row, Sheet, Span, Table
 from app.sheets.curves import cox_level
 from app.sheets.methods import methods
-from app.sheets.words import NO_BREAK, P, Z, count, interval, level_text, line, number, p_values, percent
+from app.sheets.words import (
+    NO_BREAK,
+    P,
+    Z,
+    count,
+    interval,
+    level_text,
+    line,
+    number,
+    or_dash,
+    p_values,
+    percent,
+)
 from app.views.closed import ClosedView
 from app.views.reading import Reading
 
 QUESTION = "What if we go on?"
-DASH = Span("–", "quiet")
 EFFECTS = (
     ("design", "The plan’s ratio", False),
     ("trend", "The trend so far", False),
@@ -178,19 +189,17 @@ def _needed_rows(looks: list[NextLook]) -> tuple[Row, ...]:
         return Row(head, tuple(Cell((span,)) for span in spans), indent)
 
     return (
-        row(line(Z), [_or_dash(look.efficacy_z) for look in looks]),
-        row(line("as a hazard ratio"), [_or_dash(look.efficacy_hazard_ratio) for look in looks], indent=True),
+        row(line(Z), [or_dash(look.efficacy_z, 3) for look in looks]),
+        row(
+            line("as a hazard ratio"), [or_dash(look.efficacy_hazard_ratio, 3) for look in looks], indent=True
+        ),
         row(
             line("Ratio, new events alone"),
-            [_or_dash(look.new_events_hazard_ratio) for look in looks],
+            [or_dash(look.new_events_hazard_ratio, 3) for look in looks],
         ),
         row(line("Chance in percent, plan"), [percent(look.chance_design) for look in looks]),
         row(line("trend"), [percent(look.chance_trend) for look in looks], indent=True),
     )
-
-
-def _or_dash(value: Estimate) -> Span:
-    return DASH if isinstance(value, Absent) else number(value, 3)
 
 
 def _predictive_table(view: ClosedView) -> tuple[Table, ...]:

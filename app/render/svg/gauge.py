@@ -18,7 +18,7 @@ ROOM_FOR_LETTERS = 24.0
 
 
 @dataclass(frozen=True)
-class Reading:
+class LaneReading:
     """A lane, or half of one while masked, with the bounds that are read in it."""
 
     box: Box
@@ -72,14 +72,14 @@ def edge_colour(lane: Lane) -> str:
     return INK_3 if lane.state == "now" else HAIRLINE
 
 
-def lane_readings(plot: LanePlot, lane: Lane) -> tuple[Reading, ...]:
+def lane_readings(plot: LanePlot, lane: Lane) -> tuple[LaneReading, ...]:
     """Masked, the left half is read as if A were experimental, the right one, mirrored, as if B were."""
     box, below = column(plot, lane), (lower_bound(lane), number(lane.harm), number(lane.futility))
     limits = limits_read(number(lane.upper), *below, masked=plot.is_masked)
     middle = plot.middle(lane)
     halves = Box(box.left, box.top, middle, box.bottom), Box(middle, box.top, box.right, box.bottom)
     boxes = halves if plot.is_masked else (box,)
-    return tuple(Reading(part, read) for part, read in zip(boxes, limits, strict=True))
+    return tuple(LaneReading(part, read) for part, read in zip(boxes, limits, strict=True))
 
 
 def is_crossed(lane: Lane, limit: Limit) -> bool:
@@ -95,7 +95,7 @@ def crosses_a_bar(plot: LanePlot, lane: Lane) -> bool:
 # --- zones and bars -----------------------------------------------------------------------------------------
 
 
-def zones(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Zone]:
+def zones(plot: LanePlot, lane: Lane, reading: LaneReading) -> Iterator[Zone]:
     """Grey beyond efficacy and harm, and over it the hatch beyond futility."""
     for limit in sorted(reading.limits, key=lambda limit: limit.kind == "futility"):
         box = _beyond(plot, reading.box, limit)
@@ -110,7 +110,7 @@ def _beyond(plot: LanePlot, lane: Box, limit: Limit) -> Box:
     return Box(lane.left, *((lane.top, lane.right, y) if limit.above else (y, lane.right, lane.bottom)))
 
 
-def bars(plot: LanePlot, lane: Lane, reading: Reading) -> Iterator[Bar]:
+def bars(plot: LanePlot, lane: Lane, reading: LaneReading) -> Iterator[Bar]:
     """The bounds themselves, in ink over the zone's edge: solid, dashed for futility."""
     left, right, is_now = reading.box.left, reading.box.right, lane.state == "now"
     for limit in reading.limits:
@@ -138,7 +138,7 @@ def _drawn_bar(bar: Bar) -> Element:
 # --- letters and mark ---------------------------------------------------------------------------------------
 
 
-def _letters(plot: LanePlot, readings: tuple[Reading, ...]) -> tuple[Element, ...]:
+def _letters(plot: LanePlot, readings: tuple[LaneReading, ...]) -> tuple[Element, ...]:
     if not plot.is_masked or plot.lane_width < ROOM_FOR_LETTERS:
         return ()
     return tuple(
