@@ -198,24 +198,8 @@ def analysis_rules(analysis: Values, place: Place) -> Problems:
 def hypothesis_rules(hypotheses: Sequence[Values], place: Place) -> Problems:
     """Names tell hypotheses apart, and `after` points at one that exists."""
     names = ["primary", *(item["name"] for item in hypotheses if "name" in item)]
-    for name in sorted({name for name in names if names.count(name) > 1}):
-        yield DesignInvalid(
-            "Two hypotheses have one name",
-            where=str(place),
-            found=shown(name),
-            accepted="a different name for each; 'primary' is the plan's own endpoint",
-            remedy="rename one of them",
-        )
-    waits = {item["name"]: item["after"] for item in hypotheses if "name" in item and "after" in item}
-    circle = sorted(name for name in waits if _waits_for_itself(name, waits))
-    if len(circle) > 1:
-        yield DesignInvalid(
-            "Hypotheses wait for each other in a circle",
-            where=str(place.key("after")),
-            found=", ".join(map(shown, circle)),
-            accepted="a chain that begins at 'primary' or at a hypothesis without after",
-            remedy="let one of them wait for none of the others",
-        )
+    yield from _shared_names(names, place)
+    yield from _circle(hypotheses, place)
     for item in hypotheses:
         if "after" in item and (item["after"] not in names or item["after"] == item.get("name")):
             yield DesignInvalid(
@@ -225,6 +209,30 @@ def hypothesis_rules(hypotheses: Sequence[Values], place: Place) -> Problems:
                 accepted="'primary' or the name of another hypothesis",
                 remedy="correct the name",
             )
+
+
+def _shared_names(names: Sequence[str], place: Place) -> Problems:
+    for name in sorted({name for name in names if names.count(name) > 1}):
+        yield DesignInvalid(
+            "Two hypotheses have one name",
+            where=str(place),
+            found=shown(name),
+            accepted="a different name for each; 'primary' is the plan's own endpoint",
+            remedy="rename one of them",
+        )
+
+
+def _circle(hypotheses: Sequence[Values], place: Place) -> Problems:
+    waits = {item["name"]: item["after"] for item in hypotheses if "name" in item and "after" in item}
+    circle = sorted(name for name in waits if _waits_for_itself(name, waits))
+    if len(circle) > 1:  # one that waits for itself alone is told as a name that does not exist
+        yield DesignInvalid(
+            "Hypotheses wait for each other in a circle",
+            where=str(place.key("after")),
+            found=", ".join(map(shown, circle)),
+            accepted="a chain that begins at 'primary' or at a hypothesis without after",
+            remedy="let one of them wait for none of the others",
+        )
 
 
 def _waits_for_itself(name: str, waits: Mapping[str, str]) -> bool:

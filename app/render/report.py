@@ -66,8 +66,9 @@ Numbered = tuple[tuple[str, Table], ...]
 
 @dataclass(frozen=True)
 class NumberedTables:
-    """Tables with their numbers: in two columns under the figure, those of two figures likewise, as wide as
-    the page, and at the end.
+    """Tables with their numbers, in the order of the page.
+
+    In two columns under the figure, those of two figures likewise, as wide as the page, and at the end.
     """
 
     narrow: Numbered

@@ -8,10 +8,10 @@ from dataclasses import dataclass
 from app.render.svg.geometry import apart_within
 from app.render.svg.lettering import fraction_text
 from app.sheets.blocks import CountedBy, Spine, SpineLook
+from app.sheets.held import HELD_BEFORE
 
 ROOMY = 36 / 560  # two lines of words, on the shortest rail that is common
 CLOSE = 20 / 560  # one line
-HELD_BEFORE = "held before this file"
 
 
 @dataclass(frozen=True)

@@ -235,8 +235,7 @@ class SmoothPoint:
 
 @dataclass(frozen=True)
 class ResidualFigure:
-    """Each event's estimate of the log hazard ratio at its time, the smooth through them, and one ratio for
-    all times.
+    """Each event's estimate of the log hazard ratio, the smooth through them, and one ratio for all times.
 
     `points` are (time, log ratio), events of either arm alike. Ticks are (place, words); up is a larger
     ratio.
