@@ -10,12 +10,28 @@ from app.model.values import Floats
 
 
 def natural_spline(x: Floats, y: Floats, at: Floats, degrees: int) -> tuple[Floats, Floats]:
-    """Fit y over x, both (n,), by a natural cubic spline with `degrees` coefficients; read it at `at`, (k,).
+    """Fit y over x by least squares on a natural cubic spline, and read it.
 
-    Returns the values and their standard errors in units of the errors of y. Inner knots lie at the
-    quantiles of x that cut it into degrees - 1 equal parts, outer ones at its ends, beyond which the curve
-    is straight.
+    Parameters
+    ----------
+    x, y : float arrays, shape (n,), finite; the knots of x must differ from one another
+    at : float array, shape (k,), where the curve is read
+    degrees : coefficients of the curve, 3 or more
 
+    Returns
+    -------
+    two float arrays, shape (k,) : the values, and their standard errors in units of the errors of y.
+
+    Notes
+    -----
+    *Convention*: inner knots lie at the quantiles of x that cut it into degrees - 1 equal parts, outer ones
+    at its ends, beyond which the curve is straight.
+    *Accuracy*: within 1e-8 of least squares by a matrix library, relative, for 3 to 5 coefficients; the last
+    bits do not depend on where the arrays lie in memory.
+    *Checked*: against least squares on a literal basis (tests/unit/survival/test_natural_spline.py).
+
+    References
+    ----------
     Hastie & Tibshirani (1990), Generalized Additive Models, chapter 2.
     """
     found = knots_of(x, degrees)

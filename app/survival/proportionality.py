@@ -141,8 +141,8 @@ def scaled_residuals(
 
     Parameters
     ----------
-    time, event, covariates, stratum, ties : as in `cox_regression`; for two arms the covariate is
-    `experimental` transform : as in `proportionality`
+    time, event, covariates, stratum, ties : as in `cox_regression`; of two arms, `experimental` as covariate
+    transform : as in `proportionality`
 
     Returns
     -------
@@ -160,6 +160,7 @@ def scaled_residuals(
     ties, the mean over the tied events' denominators), V the covariance of the coefficients. The smooth is a
     natural cubic spline with 4 coefficients over the scale of time; its standard error takes d V for the
     variance of a residual.
+    *Accuracy*: residuals to 1e-7, the smooth and its standard error to 1e-6, relative.
     *Checked*: R (tests/reference).
 
     References
@@ -211,8 +212,9 @@ def hazard_ratio_over_time(residuals: ScaledResiduals, *, level: float = 0.95) -
 
     Notes
     -----
-    *Convention*: the limits are exp(smooth -+ z standard errors), pointwise. The curve describes; it tests
-    nothing, and its ends rest on few events.
+    *Convention*: ratios are experimental / control. The limits are exp(smooth -+ z standard errors),
+    pointwise. The curve describes; it tests nothing, and its ends rest on few events.
+    *Accuracy*: ratios and limits to 1e-5, relative, as their logarithms are those of the smooth.
     *Checked*: R (tests/reference: the smooth and its standard error), by hand (tests/unit/survival).
 
     References
