@@ -650,7 +650,7 @@ def test_what_follows_a_stop_through_evaluate(
         (1.2, 0.75, 0.0328, 0.1254, 0.4127, 0.1599),
     ],
 )
-def test_conditional_power_through_evaluate(
+def test_evaluate_prints_the_conditional_power_of_worked_trials(
     tmp_path: Path,
     capsys: pytest.CaptureFixture[str],
     z: float,
