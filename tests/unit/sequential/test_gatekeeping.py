@@ -100,7 +100,9 @@ def test_each_comes_after_the_one_it_waits_for() -> None:
         ([hypothesis("a", alpha=0.005), hypothesis("b", "a", 0.01)], 0.03),
     ],
 )
-def test_alphas_side_by_side_add_up_and_along_a_chain_the_largest_counts(hypotheses: list[Hypothesis], level: float) -> None:
+def test_alphas_add_up_side_by_side_and_the_largest_counts_along_a_chain(
+    hypotheses: list[Hypothesis], level: float
+) -> None:
     assert family_alpha(0.02, hypotheses) == pytest.approx(level, abs=1e-15)
 
 
