@@ -18,7 +18,9 @@ from typing import Any
 
 import pytest
 
+from app.actions.looks import looks
 from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL, held_before
+from tests.unit.sheets.invented_looks import FURTHER
 from tests.web.dealt import dealt, pooled_patients, serving
 from tests.web.served import Served
 
@@ -27,6 +29,7 @@ FEWEST, MOST = 11, 39
 """Beyond these a fair coin falls in one of 40,000 times on either side (binomial, 50 throws)."""
 
 HELD_Z = 2.123
+Further = tuple[dict[str, Any], dict[str, Any], list[dict[str, Any]]]
 SHEETS = ("glance", "data", "information", "curves", "boundary", "shape", "record")
 
 
@@ -67,6 +70,12 @@ def plan_s_z(seen: Seen) -> float:
     """The z that the record has of a look held before, by arm; 1 where it has none."""
     known = [held["z"] for held in seen.record["held"] or ()] + [past["z"] for past in seen.look["history"]]
     return next((z for z in known if z is not None), 1.0)
+
+
+def further(seen: Seen) -> Further:
+    """What the record has of the first further hypothesis, of harm's endpoint and of both readings."""
+    look = seen.look
+    return look["hypotheses"][0], look["harm_endpoint"], look["readings"]
 
 
 def odd(text: str) -> bool:
@@ -127,6 +136,32 @@ RULES: dict[str, Callable[[Seen], str]] = {
 }
 
 
+RULES_OF_FURTHER_ENDPOINTS: dict[str, Callable[[Further], bool]] = {
+    "the arm with fewer deaths": lambda of: (
+        of[0]["information"]["arms"][0]["events"] < of[0]["information"]["arms"][1]["events"]
+    ),
+    "the arm with less person-time until death": lambda of: (
+        of[1]["arms"][0]["person_time"] < of[1]["arms"][1]["person_time"]
+    ),
+    "the sign of z of the hypothesis": lambda of: of[0]["logrank"]["z"] > 0,
+    "the sign of z of harm": lambda of: of[1]["logrank"]["z"] > 0,
+    "the reading in which harm is crossed": lambda of: of[2][0]["crossed"] == "harm",
+    "the reading in which the hypothesis waits": lambda of: of[0]["readings"][0]["waits_for"] is not None,
+    "the reading in which the hypothesis is crossed": lambda of: (
+        of[0]["readings"][0]["crossed"] == "efficacy"
+    ),
+    "the last digits of both z of harm": lambda of: (
+        last_digit(of[2][0]["z_for_harm"]) > last_digit(of[1]["logrank"]["z"])
+    ),
+    "the last digit of the expected deaths": lambda of: last_digit(of[1]["logrank"]["expected"]) % 2 == 1,
+    "which stratum stands first": lambda of: (
+        of[0]["logrank"]["strata"][0]["observed"] < of[0]["logrank"]["strata"][1]["observed"]
+    ),
+    "a digest of the hypothesis": lambda of: odd(json.dumps(of[0])),
+    "a digest of harm": lambda of: odd(json.dumps(of[1])),
+}
+
+
 def seen_by(served: Served, look: int) -> Seen:
     served.enter()
     addresses = {sheet: f"/closed/looks/{look}/{sheet}" for sheet in SHEETS}
@@ -135,6 +170,7 @@ def seen_by(served: Served, look: int) -> Seen:
         for sheet in ("curves", "boundary", "shape")
     }
     addresses["ratio over time"] = f"/closed/looks/{look}/shape/second-figure.json"
+    addresses["what if"] = f"/closed/looks/{look}/outlook?hazard_ratio=0.7"
     pages = {name: served.get(address).text for name, address in addresses.items()}
     record = json.loads(served.get(f"/closed/looks/{look}/record.json").text)
     return Seen(pages, record)
@@ -148,15 +184,25 @@ def trials(
 
     A look held before had a z that points the same way as the patients do.
     """
-    folder, chance = tmp_path_factory.mktemp("masked"), random.Random(5)
-    first = 2 if request.param else 1
-    found = []
+    held = {0.2: (held_before(HELD_Z),), 5.0: (held_before(-HELD_Z),)} if request.param else {}
+    return fifty_trials(tmp_path_factory.mktemp("masked"), held)
+
+
+@pytest.fixture(scope="module")
+def further_trials(tmp_path_factory: pytest.TempPathFactory) -> list[tuple[Seen, str]]:
+    """The same with harm judged on death, and death as a further hypothesis."""
+    return fifty_trials(tmp_path_factory.mktemp("further"), {0.2: (FURTHER,), 5.0: (FURTHER,)})
+
+
+def fifty_trials(folder: Path, changes: dict[float, tuple[tuple[str, str], ...]]) -> list[tuple[Seen, str]]:
+    """One look of each trial; `changes` are those of the plan by the hazard ratio of the patients."""
+    chance, found = random.Random(5), []
     for number in range(N_TRIALS):
         ratio, deal, seed = chance.choice((0.2, 5.0)), chance.randrange(10**6), chance.randrange(10**6)
-        changes = (held_before(HELD_Z if ratio < 1 else -HELD_Z),) if request.param else ()
-        people = dealt(pooled_patients(100), ratio, seed=deal)
-        with serving(folder / str(number), people, looks=1, seed=seed, changes=changes) as served:
-            found.append((seen_by(served, first), served.desk.trial.letter_key().letters.experimental))
+        people, changed = dealt(pooled_patients(100), ratio, seed=deal), changes.get(ratio, ())
+        with serving(folder / str(number), people, looks=1, seed=seed, changes=changed) as served:
+            key = served.desk.trial.letter_key().letters.experimental
+            found.append((seen_by(served, served.desk.trial.state().first_number), key))
     return found
 
 
@@ -178,6 +224,29 @@ def test_no_rule_guesses_the_key_better_than_a_coin(trials: list[tuple[Seen, str
     hits = sum(RULES[rule](seen) == letter for seen, letter in trials)
     print(f"{rule}: {hits} of {len(trials)}")
     assert FEWEST <= hits <= MOST
+
+
+@pytest.mark.slow
+@pytest.mark.parametrize("rule", [*RULES, *RULES_OF_FURTHER_ENDPOINTS])
+def test_no_rule_guesses_the_key_from_harm_or_a_further_hypothesis(
+    further_trials: list[tuple[Seen, str]], rule: str
+) -> None:
+    guess = RULES.get(rule) or is_a(lambda seen: RULES_OF_FURTHER_ENDPOINTS[rule](further(seen)))
+    hits = sum(guess(seen) == letter for seen, letter in further_trials)
+    print(f"{rule}: {hits} of {len(further_trials)}")
+    assert FEWEST <= hits <= MOST
+
+
+@pytest.mark.slow
+def test_further_endpoints_are_told_and_point_one_way(further_trials: list[tuple[Seen, str]]) -> None:
+    for seen, _ in further_trials:
+        _, harm, readings = further(seen)
+        assert abs(harm["logrank"]["z"]) == abs(readings[0]["z_for_harm"])
+        assert "Death" in seen.pages["boundary"]
+        assert CONTROL not in seen.all_pages
+        assert EXPERIMENTAL not in seen.all_pages
+    crossed = [{reading["crossed"] for reading in further(seen)[2]} for seen, _ in further_trials]
+    assert sum("harm" in each for each in crossed) > N_TRIALS // 2
 
 
 @pytest.mark.slow
@@ -203,13 +272,16 @@ def test_a_record_that_kept_the_z_of_a_held_look_would_be_noticed(tmp_path: Path
         assert rule(replace(seen, record=leaking)) == key
 
 
-@pytest.mark.parametrize("before", [(), (1.5, -0.25)], ids=["looks of its own", "looks held before"])
+@pytest.mark.parametrize(
+    "changes",
+    [(), (held_before(1.5, -0.25),), (FURTHER,)],
+    ids=["looks of its own", "looks held before", "further endpoints"],
+)
 def test_exchanged_arms_under_exchanged_letters_give_the_same_bytes(
-    tmp_path: Path, before: tuple[float, ...]
+    tmp_path: Path, changes: tuple[tuple[str, str], ...]
 ) -> None:
     """The pages depend on nothing but which patients are A: no rule whatever can do better than a coin."""
     people = dealt(pooled_patients(), 0.3, seed=3)
-    numbers = (1 + len(before), 2 + len(before))
     found = {}
     for seed in range(17, 40):
         exchanged = seed > 17
@@ -218,15 +290,15 @@ def test_exchanged_arms_under_exchanged_letters_give_the_same_bytes(
             people.with_arms_exchanged() if exchanged else people,
             looks=2,
             seed=seed,
-            changes=(held_before(*before),) if before else (),
+            changes=changes,
         ) as served:
-            letters = served.desk.trial.letter_key().letters
-            if letters.experimental not in found:
-                found[letters.experimental] = {look: seen_by(served, look) for look in numbers}
+            letter = served.desk.trial.letter_key().letters.experimental
+            if letter not in found:
+                found[letter] = {look: seen_by(served, look) for look in looks(served.desk)}
         if len(found) == 2:
             break
     assert set(found) == {"A", "B"}
-    for look in numbers:
+    for look in found["A"]:
         one, other = found["A"][look], found["B"][look]
         assert one.look == other.look
         for name in one.pages:

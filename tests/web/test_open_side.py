@@ -19,6 +19,7 @@ from app.actions.looks import assembled_look
 from app.sheets.blocks import LookBook, Sheet
 from app.sheets.words import line
 from tests.unit.review.invented_trial import CONTROL, EXPERIMENTAL, held_before
+from tests.unit.sheets.invented_looks import FURTHER
 from tests.web.dealt import dealt, pooled_patients, serving
 from tests.web.served import OWN, Served
 
@@ -202,6 +203,28 @@ def test_what_was_compared_at_looks_held_before_changes_nothing_on_the_open_side
     assert b"held before" in found[0]["/open/looks/3/glance"][2]
     for other in found[1:]:
         assert differing(found[0], other) == []
+
+
+def test_harm_crossed_or_not_and_a_hypothesis_tested_or_waiting_change_nothing_on_the_open_side(
+    tmp_path: Path,
+) -> None:
+    """Nor does it tell that the closed side asked what if."""
+    found, stand = [], []
+    for ratio in (0.2, 1.0, 4.0):
+        people = dealt(pooled_patients(), ratio, seed=3)
+        with serving(tmp_path / str(ratio), people, changes=(FURTHER,)) as served:
+            result = assembled_look(served.desk, 3).result
+            crossed = {past.crossed for past in result.past}
+            stand.append((*sorted(crossed - {"none"}), result.hypotheses[0].result.verdict.first_crossed))
+            if ratio > 1.0:
+                served.enter("closed")
+                assert served.get("/closed/looks/3/outlook?hazard_ratio=0.8").status_code == 200
+            found.append(everything_open(served))
+    assert stand == [("efficacy", 2), (None,), ("harm", None)]
+    for other in found[1:]:
+        assert differing(found[0], other) == []
+    for path, (_, _, body) in found[0].items():
+        assert not re.search(r"[Dd]eath|DEATH|\b[Hh]arm\b|[Hh]ypothesis", without_faces(body)), path
 
 
 def test_where_information_is_score_variance_the_open_side_does_not_depend_on_it(tmp_path: Path) -> None:
