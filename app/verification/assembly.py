@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import Any
@@ -23,6 +24,7 @@ from app.settings import Limits
 from app.views.closed import ClosedView, Letters, masked_view, unmasked_view
 
 PLAN_NAME = "the locked plan"
+LARGEST_Z = 1e9  # no counts of subjects come near it, and what is drawn to scale needs an end
 PLANS_KEPT = 16
 
 
@@ -60,7 +62,19 @@ def frozen_record(trial: Trial, number: int) -> dict[str, Any]:
         raise LedgerChanged("A frozen record that is not a record", where=where, found=difference)
     if [look["number"] for look in record["looks"]] != [number]:
         raise LedgerChanged("A frozen record of other looks", where=where, accepted=f"look {number} alone")
+    for z in _all_z(record["looks"][0]):
+        if abs(z) > LARGEST_Z:
+            raise LedgerChanged("A frozen record with a z that no test gives", where=where, found=repr(z))
     return record
+
+
+def _all_z(look: dict[str, Any]) -> Iterator[float]:
+    """z and the bounds for it, of the plan's endpoint and of each further hypothesis."""
+    bound = look["boundary"]
+    found = (look["logrank"].get("z"), *(bound[name] for name in ("efficacy_z", "futility_z", "harm_z")))
+    yield from (value for value in found if isinstance(value, float | int))
+    for each in look.get("hypotheses") or ():
+        yield from _all_z(each)
 
 
 def looks_as_used(trial: Trial, before: int) -> tuple[LookAsUsed, ...]:
@@ -112,7 +126,20 @@ def assemble(trial: Trial, number: int, limits: Limits) -> Assembled:
     if trial.state().look(number).frozen is None:
         return assembled
     stored = frozen_record(trial, number)["looks"][0]
+    _refuse_other_hypotheses(assembled.plan, stored)
     return replace(assembled, result=with_bounds_as_used(assembled.result, stored))
+
+
+def _refuse_other_hypotheses(plan: Plan, stored: dict[str, Any]) -> None:
+    foreseen = [each.parameter for each in plan.hypotheses]
+    found = [each["parameter"] for each in stored.get("hypotheses") or ()]
+    if found != foreseen:
+        raise LedgerChanged(
+            "A frozen record of other hypotheses than its plan's",
+            where=f"look {stored['number']}, frozen record",
+            found=", ".join(map(repr, found)) or "none",
+            accepted=", ".join(map(repr, foreseen)) or "none",
+        )
 
 
 def letters_for(plan: Plan, trial: Trial) -> Letters:

@@ -201,6 +201,38 @@ def test_a_number_changed_in_a_further_endpoint_of_a_frozen_look_is_named(
     assert faults(file)[0].startswith(f"look 2, frozen record, {place}: stored ")
 
 
+def without_hypotheses(record: dict[str, Any]) -> None:
+    record["looks"][0]["hypotheses"] = None
+
+
+def another_endpoint(record: dict[str, Any]) -> None:
+    record["looks"][0]["hypotheses"][0]["parameter"] = "STROKE"
+
+
+def hypothesis_twice(record: dict[str, Any]) -> None:
+    record["looks"][0]["hypotheses"] *= 2
+
+
+@pytest.mark.parametrize("change", [without_hypotheses, another_endpoint, hypothesis_twice])
+def test_a_record_of_other_hypotheses_than_its_plan_s_is_told_in_words(
+    tmp_path: Path, change: Callable[[dict[str, Any]], None]
+) -> None:
+    file = held(tmp_path, 2, frozen=2, changes=(FURTHER,))
+    forge_record(file, 1, change)
+    told = "A frozen record of other hypotheses than its plan's in look 1, frozen record."
+    assert any(told in fault for fault in faults(file))
+    with desk(file) as open_desk, pytest.raises(AppError, match="other hypotheses"):
+        closed_book(open_desk, 1, session=None)
+
+
+def test_a_z_that_no_test_gives_is_told_in_words(file: Path) -> None:
+    def z_without_end(record: dict[str, Any]) -> None:
+        record["looks"][0]["logrank"]["z"] = -1e308
+
+    forge_record(file, 1, z_without_end)
+    assert any("A frozen record with a z that no test gives" in fault for fault in faults(file))
+
+
 def test_a_changed_number_that_later_bounds_rest_on_is_told_there_too(file: Path) -> None:
     forge_record(file, 1, change_alpha)
     found = faults(file)
