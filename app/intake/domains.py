@@ -12,6 +12,7 @@ from typing import Any
 LONGEST_TEXT = 200
 MOST_WEIGHTS = 12  # as many as the joint probability of their largest is computed for
 LARGEST_WHOLE = 10**9
+LARGEST_Z = 100  # no probability is left that a double could hold long before it
 
 
 def _same(value: Any) -> Any:
@@ -136,5 +137,12 @@ SHARE = number("a number above 0 and below 1", lambda value: 0 < value < 1)
 LEVEL = number("a number above 0 and below 0.5", lambda value: 0 < value < 0.5)
 POSITIVE = number("a number above 0", lambda value: value > 0)
 NOT_NEGATIVE = number("a number of at least 0", lambda value: value >= 0)
+Z = number(f"a number from -{LARGEST_Z} to {LARGEST_Z}", lambda value: abs(value) <= LARGEST_Z)
+EFFICACY_Z = number(f"a number above 0, at most {LARGEST_Z}", lambda value: 0 < value <= LARGEST_Z)
+SPENT = number("a number of at least 0 and below 0.5", lambda value: 0 <= value < 0.5)
+SHAPE = number(f"a number from -{LARGEST_Z} to {LARGEST_Z}", lambda value: abs(value) <= LARGEST_Z)
+CONFIDENCE = number("a number above 0, at most 0.99999", lambda value: 0 < value <= 0.99999)
+PRIOR = number("a number from 0.000001 to 1000000", lambda value: 1e-6 <= value <= 1e6)
+VARIANCE = number(f"a number above 0, at most {LARGEST_WHOLE:,}", lambda value: 0 < value <= LARGEST_WHOLE)
 FINITE = number("a finite number", lambda value: True)
 RATIO = number("a hazard ratio above 0 and other than 1", lambda value: value > 0 and value != 1)

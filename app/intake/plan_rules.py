@@ -288,6 +288,14 @@ def held_rules(held: Sequence[Values], place: Place, design: Values) -> Problems
 
 def _held_information(held: Sequence[Values], place: Place, design: Values) -> Problems:
     events = [item["events"] for item in held if "events" in item and "efficacy_z" in item]
+    if 0 in events:
+        yield DesignInvalid(
+            "A held look without events has a bound",
+            where=str(place.key("efficacy_z")),
+            found="efficacy_z with events = 0",
+            accepted="a bound only where there were events to test",
+            remedy="leave out efficacy_z, or correct the count",
+        )
     if any(later <= earlier for earlier, later in pairwise(events)):
         yield DesignInvalid(
             "Events do not grow from one held look with a bound to the next",

@@ -401,6 +401,46 @@ def test_held_looks_whose_events_do_not_grow_are_refused_in_a_sentence():
     assert told.startswith("Events do not grow from one held look with a bound to the next")
 
 
+def test_a_held_look_without_events_has_no_bound():
+    held = '\n[[held]]\nnumber = 1\nsource = "Charter"\nevents = 0\n'
+    assert read(SOUND + held).held[0].efficacy_z is None
+    (told,) = problems(f"{SOUND}{held}efficacy_z = 3.6\n")
+    assert told.startswith("A held look without events has a bound")
+
+
+@pytest.mark.parametrize(
+    "written",
+    [
+        "z = 1e308",
+        "z = -1e308",
+        "efficacy_z = 1e308",
+        "efficacy_z = -40.0",
+        "efficacy_z = 0.0",
+        "alpha_spent = 0.5",
+    ],
+)
+def test_what_no_held_look_can_have_had_is_outside_its_domain(written):
+    """Such a bound or z left no later bound to be found, or nothing to be drawn to scale."""
+    (told,) = problems(f'{SOUND}\n[[held]]\nnumber = 1\nsource = "C"\nevents = 150\n{written}\n')
+    assert told.startswith(f"{written.split()[0].capitalize()} outside its domain")
+
+
+@pytest.mark.parametrize(
+    "written",
+    [
+        "[analysis]\nconfidence = 0.9999999999999999",
+        "[analysis]\nprior_hazard_ratio = 1e-300\nprior_std_error = 0.2",
+        "[analysis]\nprior_hazard_ratio = 0.8\nprior_std_error = 1e-300",
+        '[[hypothesis]]\nname = "D"\nparameter = "D"\nlabel = "D"\nevent_is = "bad"\nalpha = 0.01\n'
+        'planned_events = 9\nefficacy = {spending = "Wang-Tsiatis", shape = 1e308}',
+    ],
+)
+def test_a_number_that_no_double_can_be_computed_with_is_outside_its_domain(written):
+    """Read, it would lock a plan under which no look can ever be opened."""
+    told, *_ = problems(SOUND.replace("[analysis]\nconfidence = 0.9\n", f"{written}\n"))
+    assert "outside its domain" in told
+
+
 def test_held_looks_have_no_score_variance():
     text = with_line("design", 'information = "score variance"\nplanned_score_variance = 130.0')
     (told,) = problems(f'{text}\n[[held]]\nnumber = 1\nsource = "Charter"\nevents = 150\n')
