@@ -13,7 +13,7 @@ from app.model.values import Absent
 from app.review.comparison import compare_arms
 from app.review.counts import arm_counts, times_of
 from app.review.look import LookDeclared, review_endpoint
-from app.sequential.gatekeeping import PRIMARY, gated_verdict, in_testing_order, opened_at
+from app.sequential.gatekeeping import PRIMARY, gated_history, gated_verdict, in_testing_order, opened_at
 
 NO_RATIO_PLANNED = Absent("the plan gives this hypothesis no hazard ratio")
 
@@ -67,10 +67,12 @@ def _hypotheses(
     opened = {PRIMARY: opened_at(past, primary.verdict, declared.number)}
     reviewed: dict[str, HypothesisResult] = {}
     for hypothesis in in_testing_order(plan.hypotheses):
-        own_past = _own_past(past, hypothesis)
-        gate = declared.number if hypothesis.after is None else opened[hypothesis.after]
+        own_past = held = _own_past(past, hypothesis)
+        gate = None if hypothesis.after is None else opened[hypothesis.after]
         result = _hypothesis(plan, hypothesis, samples[hypothesis.parameter], declared, own_past, gate)
-        opened[hypothesis.name] = opened_at(own_past, result.verdict, declared.number)
+        if hypothesis.after is not None:
+            held = gated_history(own_past, gate, plan.design.sides)
+        opened[hypothesis.name] = opened_at(held, result.verdict, declared.number, gate=gate or 0)
         reviewed[hypothesis.name] = HypothesisResult(hypothesis, result)
     return tuple(reviewed[each.name] for each in plan.hypotheses)
 

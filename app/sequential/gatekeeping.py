@@ -17,21 +17,28 @@ from app.sequential.verdict import crossed, first_crossed, verdict
 PRIMARY = "primary"
 
 
-def opened_at(past: Sequence[LookAsUsed], here: Verdict, number: int) -> int | None:
+def opened_at(past: Sequence[LookAsUsed], here: Verdict, number: int, *, gate: int = 0) -> int | None:
     """The look that opens the gate for what waits: the first at which efficacy was crossed, None if none.
 
     `past` are the looks held, each with what it crossed; `here` is the verdict of look `number` after them. A
-    crossing on the other side, of futility or of harm opens nothing.
+    crossing on the other side, of futility or of harm opens nothing, and none counts before this hypothesis's
+    own gate was opened at look `gate`.
     """
     held = next((look.number for look in past if look.crossed == "efficacy"), None)
-    return number if held is None and here.crossed == "efficacy" else held
+    first = number if held is None and here.crossed == "efficacy" else held
+    return None if first is None else max(first, gate)
 
 
 def gated_history(past: Sequence[LookAsUsed], opened: int | None, sides: Sides) -> tuple[LookAsUsed, ...]:
-    """The looks held of a hypothesis that waits, each crossing decided anew: none before the gate opened."""
+    """The looks held of a hypothesis that waits, each crossing decided anew.
+
+    Before the gate opened none was tested, but a final one: after it there is no other test, so that once the
+    gate is open it is the one that counts.
+    """
     decided: list[LookAsUsed] = []
     for look in past:
-        tested = opened is not None and look.number >= opened and first_crossed(decided) is None
+        counts = opened is not None and (look.number >= opened or look.final)
+        tested = counts and first_crossed(decided) is None
         here: Crossed = crossed(look.z, look, sides) if tested else "none"
         decided.append(replace(look, crossed=here))
     return tuple(decided)
@@ -57,7 +64,9 @@ def gated_verdict(
     Notes
     -----
     *Convention*: a hypothesis whose z lay beyond its bound while it waited has not crossed; it is tested with
-    what it holds at the look that opens the gate, and at those after.
+    what it holds at the look that opens the gate, and at those after. Where its final look came while it
+    waited, that look decides once the gate is open: its own test has its level at every look, whenever the
+    other is rejected.
     *Accuracy*: exact, stored numbers are compared.
     *Checked*: against the literal rule, and its error by simulation, in
     tests/unit/sequential/test_gatekeeping.py.

@@ -23,6 +23,9 @@ Letter = Literal["A", "B"]
 Role = Literal["control", "experimental"]
 
 
+NO_GATES: tuple[Gate | None, ...] = (None, None)
+
+
 @dataclass(frozen=True)
 class Letters:
     """Which letter the control arm carries, drawn when the plan was locked."""
@@ -139,23 +142,27 @@ def _whole(look: LookResult, plan: Plan, letters: Letters, *, masked: bool, of: 
     """The plan's endpoint and each further hypothesis, none before the one that it waits for."""
     whole = _view(look, plan, letters, masked=masked, of=of)
     results = {each.hypothesis.name: each.result for each in look.hypotheses}
-    opened = {PRIMARY: _opened(whole)}
+    opened = {PRIMARY: _opened(whole, NO_GATES)}
     views: dict[str, HypothesisView] = {}
     for each in in_testing_order(plan.hypotheses):
-        gates = (None, None) if each.after is None else _gates(each.after, opened[each.after])
+        gates = NO_GATES if each.after is None else _gates(each.after, opened[each.after])
         own = plan.for_hypothesis(each)
         view = _view(results[each.name], own, letters, masked=masked, of=of, gates=gates)
-        views[each.name], opened[each.name] = HypothesisView(each, view), _opened(view)
+        views[each.name], opened[each.name] = HypothesisView(each, view), _opened(view, gates)
     return replace(whole, hypotheses=tuple(views[each.name] for each in plan.hypotheses))
 
 
-def _gates(waits_for: str, opened: Sequence[int | None]) -> tuple[Gate, ...]:
+def _gates(waits_for: str, opened: Sequence[int | None]) -> tuple[Gate | None, ...]:
     return tuple(Gate(waits_for, at) for at in opened)
 
 
-def _opened(view: ClosedView) -> tuple[int | None, ...]:
-    """The look at which efficacy was crossed, in each reading."""
-    return tuple(opened_at(each.history, each.verdict, view.look.number) for each in view.readings)
+def _opened(view: ClosedView, gates: Sequence[Gate | None]) -> tuple[int | None, ...]:
+    """The look that opens the gate for what waits for this, in each reading; not before its own did."""
+    own = (0 if gate is None else gate.opened_at or 0 for gate in gates)
+    return tuple(
+        opened_at(each.history, each.verdict, view.look.number, gate=gate)
+        for each, gate in zip(view.readings, own, strict=False)
+    )
 
 
 def _view(
@@ -165,7 +172,7 @@ def _view(
     *,
     masked: bool,
     of: Role,
-    gates: Sequence[Gate | None] = (None, None),
+    gates: Sequence[Gate | None] = NO_GATES,
 ) -> ClosedView:
     against: Role = "control" if of == "experimental" else "experimental"
     turned = of == "control"

@@ -6,6 +6,7 @@ from dataclasses import replace
 from functools import cache
 
 from app.model.look import HypothesisResult, LookResult
+from app.model.survival import LogrankResult
 from app.model.values import Absent
 from app.record.canonical import parse_strict
 from app.record.text import record_bytes
@@ -131,3 +132,23 @@ def test_the_bound_of_a_hypothesis_as_used_is_never_computed_again() -> None:
     record["hypotheses"][0]["boundary"]["efficacy_z"] = 2.75
     assert with_bounds_as_used(look.result, record).hypotheses[0].result.bound.efficacy_z == 2.75
     assert as_used_of_record(record).of("DEATH").efficacy_z == 2.75  # type: ignore[union-attr]
+
+
+def test_a_hypothesis_that_was_final_while_it_waited_is_decided_by_that_look() -> None:
+    """All its events are there at look 2; the plan's own endpoint crosses at look 3."""
+    early = (FURTHER[0], FURTHER[1].replace("planned_events = 60", "planned_events = 20"))
+    strong = patients(hazard_ratio=0.35)
+    looks = held(plan(early, ("planned_events = 80", "planned_events = 150")), strong)
+    final = [death(look).result.final for look in looks]
+    crossed = next(look.result.number for look in looks if look.result.verdict.crossed == "efficacy")
+    first_final = final.index(True) + 1
+    assert first_final < crossed
+    at_final = death(looks[first_final - 1]).result
+    assert isinstance(at_final.logrank, LogrankResult)
+    assert at_final.logrank.z >= at_final.bound.efficacy_z  # type: ignore[operator]
+    stands = [death(look).result.verdict.first_crossed for look in looks]
+    assert stands[: crossed - 1] == [None] * (crossed - 1)
+    assert set(stands[crossed - 1 :]) == {first_final}
+    for look in looks:
+        (view,) = look.view().hypotheses
+        assert view.view.readings[0].verdict.first_crossed == death(look).result.verdict.first_crossed

@@ -69,6 +69,24 @@ def test_a_z_beyond_its_bound_while_it_waited_has_not_crossed() -> None:
     assert gated_history(past, 1, 1)[0].crossed == "efficacy"
 
 
+def test_a_final_look_that_came_while_it_waited_decides_once_the_gate_is_open() -> None:
+    """No later look has a bound of its own, so else it could never be rejected."""
+    over_running = replace(LAST, number=3, efficacy_z=Absent("all alpha is already spent"))
+    past = [held(FIRST, 9.0), held(LAST, 2.5)]
+    assert gated_verdict(past, 9.0, over_running, 1, None) == Verdict("none", None)
+    assert gated_verdict(past, 9.0, over_running, 1, 3) == Verdict("none", 2)
+    assert gated_verdict([held(FIRST, 9.0), held(LAST, 1.5)], 9.0, over_running, 1, 3) == Verdict(
+        "none", None
+    )
+
+
+def test_what_waits_for_one_that_waited_opens_no_sooner_than_that() -> None:
+    past = gated_history([held(FIRST, 1.0), held(LAST, 2.5)], 3, 1)
+    assert opened_at(past, Verdict("none", 2), 3, gate=3) == 3
+    assert opened_at(past, Verdict("none", 2), 4, gate=3) == 3
+    assert opened_at([], Verdict("none", None), 3, gate=3) is None
+
+
 def test_once_crossed_there_is_no_second_test() -> None:
     assert gated_verdict([held(FIRST, 9.0)], 9.0, LAST, 1, 1) == Verdict("none", 1)
 
