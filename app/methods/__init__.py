@@ -190,8 +190,9 @@ METHODS: dict[str, Method] = {
     "hypotheses": Method(
         "Further hypotheses",
         "Each has its own log-rank test and its own bounds, by its own alpha and events. One that waits is "
-        "tested only from the look at which the one before it has crossed; what its bounds spend is not "
-        "given back. Alphas side by side add up, along a chain the largest counts.",
+        "tested only from the look at which the one before it has crossed, or by its final look where that "
+        "came before; what its bounds spend is not given back. Alphas side by side add up, along a chain the "
+        "largest counts.",
         "Hung, Wang and O’Neill (2007), Journal of Biopharmaceutical Statistics 17, 1201–1210; Glimm, Maurer "
         "and Bretz (2010), Statistics in Medicine 29, 219–228.",
     ),
