@@ -33,7 +33,8 @@ def extract_arguments(parser: ArgumentParser) -> None:
         type=kind,
         default="planned",
         metavar="KIND",
-        help="planned (the default), unplanned, safety or final; it cannot be changed later",
+        help="planned (the default), unplanned, safety or final; it cannot be changed later. A final look "
+        "spends all alpha that is left; ending early because of comparative results does not release it",
     )
 
 

@@ -35,7 +35,9 @@ def arguments(parser: ArgumentParser) -> None:
         action="store_true",
         help="enter the verification into the trial file when nothing is found",
     )
-    parser.add_argument("--by", metavar="NAME", help="who verifies, for --record; no electronic signature")
+    parser.add_argument(
+        "--by", metavar="NAME", help="who verifies, for --record; not an electronic signature"
+    )
 
 
 def run(options: Namespace, settings: Settings) -> int:

@@ -196,6 +196,14 @@ def test_who_acts_is_asked_once_and_remembered(served: Served) -> None:
     assert 'value="Jane Roe"' in served.get("/closed/looks/3/freeze").text
 
 
+def test_where_a_final_look_is_chosen_an_early_end_is_said_to_release_no_alpha(served: Served) -> None:
+    served.enter()
+    said = (
+        "it spends all alpha that is left, which ending early because of comparative results does not release"
+    )
+    assert said in words(served.get("/closed/receive"))
+
+
 @pytest.mark.parametrize(
     ("answers", "sentence"),
     [

@@ -29,7 +29,11 @@ KINDS: tuple[tuple[LookKind, str], ...] = (
     ("planned", "one of the plan’s looks"),
     ("unplanned", "asked for in between; it spends the alpha that belongs to its information"),
     ("safety", "no efficacy bound; it spends nothing, or what the plan says"),
-    ("final", "the last one; it spends all alpha that is left"),
+    (
+        "final",
+        "the last one; it spends all alpha that is left, which ending early because of comparative results "
+        "does not release",
+    ),
 )
 BLANK = {"cutoff": "", "extracted": "", "kind": "planned"}
 ASKED = tuple(BLANK)
