@@ -128,6 +128,17 @@ FIGURES = {
     "boundary at close looks": boundary_at([0.48, 0.5, 0.505, 1.0], now=3),
     "boundary run over": boundary_at([0.4, 0.8, 1.13], now=3),
     "boundary masked at ten looks": boundary_at([look / 10 for look in range(1, 11)], now=4, two_lanes=True),
+    "boundary with long names": replace(
+        invented.boundary_figure("not crossed"),
+        favours_up="favours extended-release tablet with titration and counselling",
+        favours_down=f"favours {HOSTILE}",
+        y_title=(
+            Span("z", "symbol"),
+            Span(
+                ", extended-release tablet with titration and counselling against matching placebo tablet daily"
+            ),
+        ),
+    ),
     "boundary with harm": with_harm("not crossed"),
     "boundary with harm crossed": with_harm("not crossed", z=-2.5),
     "boundary masked with harm": with_harm("masked"),

@@ -264,7 +264,7 @@ def test_each_of_two_figures_is_zoomed_into_in_its_own_place(chromium: Browser, 
         for _ in drawn:
             page.get_by_role("button", name="Zoom and read values").first.click()
             page.get_by_role("button", name="Back to the drawing").first.wait_for()
-        page.wait_for_function("document.querySelectorAll('.chart .nsewdrag').length === 2")
+        page.locator(".chart .nsewdrag").nth(1).wait_for(state="attached")
         charts = page.eval_on_selector_all(".chart", box)
         assert [place for chart in charts for place in chart] == pytest.approx(
             [place for drawing in drawn for place in drawing], abs=1

@@ -15,7 +15,7 @@ from app.render import figures, palette
 from app.render.svg import boundary, curves, gauge, residuals
 from app.render.svg.element import coordinate
 from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, LanePage, lane_plot
-from app.render.svg.lettering import broken, point_offset, text_width
+from app.render.svg.lettering import SMALL, broken, point_offset, text_width
 from app.sheets.blocks import BoundaryFigure, CurvesFigure
 from tests.render import invented_book as invented
 from tests.render.drawn_figures import FIGURES, HARM, HOSTILE, SVG, Text, drawings, texts, with_harm
@@ -411,6 +411,14 @@ def test_a_title_of_the_narrow_drawing_says_which_way_is_up() -> None:
         t.words.endswith("; up favours tablet")
         for t in texts(str(boundary.narrow(invented.boundary_figure("not crossed"))))
     )
+
+
+def test_long_names_leave_the_end_of_the_title_line_to_what_a_page_sets_there() -> None:
+    (title,) = [t for t in texts(DRAWN["boundary with long names, wide"]) if t.words.startswith("z, ")]
+    assert title.words.endswith("…")
+    assert title.x + text_width(title.words, SMALL) <= WIDE_PAGE.width - boundary.TOOLS
+    (narrow,) = [t for t in texts(DRAWN["boundary with long names, narrow"]) if t.words.startswith("z; ")]
+    assert narrow.words.startswith("z; up favours extended-release")
 
 
 # --- lettering ----------------------------------------------------------------------------------------------

@@ -21,10 +21,12 @@ from app.render.svg.lane_plot import (
     number,
 )
 from app.render.svg.lane_words import lane_labels, look_names, rows_under
-from app.render.svg.lettering import SMALL, text_width, words
+from app.render.svg.lettering import SMALL, line_width, shortened, shortened_line, text_width, words
 from app.sheets.blocks import BoundaryFigure, Lane, Line, Span
 
 MOST_TICKS = 7
+TOOLS = 124.0  # what a page may set at the right end of the line that the title stands on
+BESIDE_NUMBERS = 130.0  # where words left of the numbers end
 
 
 def wide(figure: BoundaryFigure) -> Drawing:
@@ -73,9 +75,16 @@ def _axis(plot: LanePlot) -> tuple[Element, ...]:
 
 
 def axis_title(plot: LanePlot) -> Line:
-    """On a narrow drawing the direction stands in the title."""
+    """On a narrow drawing the direction stands in the title, and alone there where both are too long."""
     title = plot.figure.y_title
-    return (*title, Span(f"; up {plot.figure.favours_up}")) if plot.page.short else title
+    room = plot.page.width - title_at(plot) - (0 if plot.page.short else TOOLS)
+    if not plot.page.short:
+        return shortened_line(title, room, size=SMALL)
+    up = f"; up {plot.figure.favours_up}"
+    whole = (*title, Span(up))
+    return (
+        whole if line_width(whole, SMALL) <= room else shortened_line((title[0], Span(up)), room, size=SMALL)
+    )
 
 
 def title_at(plot: LanePlot) -> float:
@@ -98,7 +107,11 @@ def direction_at(plot: LanePlot) -> list[tuple[str, float, float]]:
     left = plot.page.zero + 2
     if left + max(text_width(up, SMALL), text_width(down, SMALL)) + 8 <= first - plot.lane_width / 2:
         return [(up, left, zero - 6), (down, left, zero + 15)]
-    return [(up, 130 - text_width(up, SMALL), zero - 6), (down, 130 - text_width(down, SMALL), zero + 15)]
+    up, down = (shortened(text, BESIDE_NUMBERS, size=SMALL) for text in (up, down))
+    return [
+        (up, BESIDE_NUMBERS - text_width(up, SMALL), zero - 6),
+        (down, BESIDE_NUMBERS - text_width(down, SMALL), zero + 15),
+    ]
 
 
 def _guides(plot: LanePlot) -> tuple[Element, ...]:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Literal
 
 from app.render.palette import CROSSED, INK, INK_2
@@ -151,6 +152,13 @@ def shortened(text: str, width: float, *, size: float = LABEL, semibold: bool = 
     while text and text_width(f"{text}…", size, semibold=semibold) > width:
         text = text[:-1]
     return f"{text.rstrip()}…"
+
+
+def shortened_line(line: Line, width: float, *, size: float = LABEL) -> Line:
+    """`line` with its last span shortened to what `width` leaves for it."""
+    *first, last = line
+    room = width - line_width(tuple(first), size)
+    return (*first, replace(last, text=shortened(last.text, room, size=size)))
 
 
 def fraction_text(fraction: float) -> str:
