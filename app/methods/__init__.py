@@ -114,6 +114,12 @@ METHODS: dict[str, Method] = {
         "Fraction *t* = events / planned events. Subjects are counted in the arm they were randomised to.",
         "Lan and Zucker (1993), Statistics in Medicine 12, 753–765.",
     ),
+    "information by variance": Method(
+        "Information",
+        "Fraction *t* = *V* / planned *V*, with *V* the log-rank variance. Subjects are counted in the arm "
+        "they were randomised to. Further hypotheses: events / planned events.",
+        "Lan and Zucker (1993), Statistics in Medicine 12, 753–765.",
+    ),
     "variance-ratio": Method(
         "Variance ratio",
         "*V*/(*d* *p* *q*): the log-rank variance over events times the planned shares of the arms. "

@@ -72,7 +72,10 @@ class Row:
 
 @dataclass(frozen=True)
 class Table:
-    """`columns` excludes the row-head column, whose head is `corner`; without head texts no head is set."""
+    """`columns` excludes the row-head column, whose head is `corner`; without head texts no head is set.
+
+    Behind a fold a table without a corner goes by the first span of its caption.
+    """
 
     caption: Line
     columns: tuple[Column, ...]

@@ -11,7 +11,6 @@ from app.sheets.blocks import BoundaryFigure, Cell, Column, Lane, LaneRow, Row, 
 from app.sheets.boundary_lanes import bound_places, boundary_lanes, z_now, z_shown
 from app.sheets.curves import against
 from app.sheets.further import harm_endpoint_name, is_harm_elsewhere, rows_under_lanes
-from app.sheets.held import HELD_BEFORE
 from app.sheets.words import DASH, Z, alpha, count, line, number, or_dash, z_number
 from app.views.closed import ClosedView
 
@@ -168,5 +167,5 @@ def _state_word(lane: Lane, view: ClosedView) -> str:
     if lane.state == "planned":
         return "planned, final" if lane.final else "planned"
     if lane.state == "past":
-        return HELD_BEFORE if lane.look in view.look.held_before else "held"
+        return "held before" if lane.look in view.look.held_before else "held"
     return f"{view.look.kind}, shown" if not lane.final or view.look.kind == "final" else "final, shown"

@@ -73,14 +73,16 @@ def _interval_table(view: ClosedView) -> Table:
         caption=line(f"Hazard ratio, {level_text(cox_level(view))} interval"),
         columns=(Column(()),),
         rows=(
-            Row(line(NOT_ADJUSTED), (Cell(shown),)),
-            Row(line(f"Repeated, {level_text(_repeated_level(view))}"), (Cell(_repeated(view)),)),
+            Row(line(f"{NOT_ADJUSTED[:1].upper()}{NOT_ADJUSTED[1:]}"), (Cell(shown),)),
+            Row(line(_repeated_words(view)), (Cell(_repeated(view)),)),
         ),
     )
 
 
-def _repeated_level(view: ClosedView) -> float:
-    return 1.0 - 2.0 * view.plan.design.alpha_one_side
+def _repeated_words(view: ClosedView) -> str:
+    """Its level follows from alpha: said where it is not that of the caption."""
+    level = level_text(1.0 - 2.0 * view.plan.design.alpha_one_side)
+    return "Repeated over looks" + ("" if level == level_text(cox_level(view)) else f", {level}")
 
 
 def _repeated(view: ClosedView) -> Line:

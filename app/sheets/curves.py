@@ -27,6 +27,7 @@ from app.sheets.blocks import (
 )
 from app.sheets.methods import methods
 from app.sheets.words import (
+    DESCRIPTIVE,
     NO_BREAK,
     NO_BREAK_HYPHEN,
     decimal,
@@ -263,7 +264,8 @@ def _hypotheses_estimates(view: ClosedView) -> tuple[Table, ...]:
         shown = tuple(_shown(each.view, arm) for arm in each.view.arms)
         axis = time_axis(tuple(item.curve for item in shown), each.view.look.time_unit)
         table = _estimates(shown, axis)
-        tables.append(replace(table, caption=line(f"{each.hypothesis.name}: ", *table.caption)))
+        caption = line(each.hypothesis.name, f", estimates with {level_text(shown[0].curve.level)} intervals")
+        tables.append(replace(table, caption=caption))
     return tuple(tables)
 
 
@@ -311,7 +313,8 @@ def _landmark_table(view: ClosedView, axis: TimeAxis) -> tuple[Table, ...]:
         )
         for compared in view.shape.landmarks
     )
-    caption = line(f"Difference in event{NO_BREAK_HYPHEN}free %, {against(view)}, {NOT_ADJUSTED}")
+    intervals = f"{level_text(cox_level(view))} intervals"
+    caption = line(f"Difference in event{NO_BREAK_HYPHEN}free %, {against(view)}, {intervals}, {DESCRIPTIVE}")
     columns = (Column(line("difference")),)
     return (Table(caption, columns, tuple(rows), line("Landmark")),)
 

@@ -29,7 +29,7 @@ def data_sheet(view: ClosedView, snapshot: Snapshot, extract: Extract) -> Sheet:
             *_findings_table(look.findings, snapshot.acknowledgements),
             *_identifiers_table(look.changes),
         ),
-        notes=_notes(extract),
+        notes=(*_compared(look.changes), *_notes(extract)),
         methods=methods("changes"),
         figure_table=_changes_table(look.changes),
     )
@@ -182,6 +182,14 @@ def _finding_row(finding: Finding, reason: str | None) -> Row:
     head = Span("Doubt", "doubt") if doubt else Span("Note")
     rows = Cell((count(finding.count),) if finding.count else ())
     return Row((head,), (Cell(line(str(finding))), rows, Cell(line(reason or ""))))
+
+
+def _compared(changes: Changes | None) -> tuple[Line, ...]:
+    """The denominator of what changed."""
+    if changes is None:
+        return ()
+    both = counted(changes.n_common, "subject")
+    return (line("Changes since the last snapshot are of the ", both, " in both."),)
 
 
 def _notes(extract: Extract) -> tuple[Line, ...]:

@@ -180,7 +180,7 @@ def _details(each: HypothesisView, shared: Line) -> Table:
     view = each.view
     after = "at once" if each.hypothesis.after is None else f"after {named(each.hypothesis.after)}"
     return Table(
-        caption=line(f"{each.hypothesis.name}, {_against(view)}"),
+        caption=line(each.hypothesis.name, f", {_against(view)}"),
         note=line(f"{each.hypothesis.label}, tested {after}.", shared),
         columns=tuple(Column(line(head)) for head in ("observed", "at the efficacy bound")),
         rows=(
@@ -254,12 +254,15 @@ def harm_table(view: ClosedView) -> tuple[Table, ...]:
     )
     return (
         Table(
-            caption=line(f"Harm, judged on {harm_endpoint_name(view)}"),
+            caption=line(f"Harm, judged on {harm_endpoint_name(view)}", f", {_against(view)}"),
             columns=(Column(()),),
             rows=(
                 *counted,
                 Row(line(Z), (Cell(line(number(test if isinstance(test, Absent) else test.z, 3))),)),
-                Row(line("Harm bound"), (Cell(line(or_dash(_harm_bound(view), 3))),)),
+                Row(
+                    line("Harm bound, each reading" if view.masked else "Harm bound"),
+                    (Cell(line(or_dash(_harm_bound(view), 3))),),
+                ),
                 Row(line("Hazard ratio"), (Cell(*_ratio(harm.cox)),)),
             ),
         ),

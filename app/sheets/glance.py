@@ -35,6 +35,7 @@ from app.sheets.further import hypotheses_sentence
 from app.sheets.information import (
     counted_by,
     follow_up_sentence,
+    information_method,
     information_sentence,
     open_information_sheet,
 )
@@ -80,7 +81,7 @@ def glance_sheet(view: ClosedView, around: Surroundings, record: Line) -> Sheet:
             GlanceRow(9, "Record", "record", record, None),
         ),
         methods=methods(
-            "information",
+            information_method(view),
             "kaplan-meier",
             "cox",
             "logrank",
@@ -123,7 +124,11 @@ def _crossing_words_masked(view: ClosedView) -> Line:
 def _below_words(readings: Sequence[Reading]) -> Line:
     """ "the futility boundary was crossed if B is experimental." """
     said = [
-        line(f"the {each.verdict.crossed} boundary was ", CROSSED, f" if {each.experimental} is experimental")
+        line(
+            f"the {each.verdict.crossed} boundary was ",
+            CROSSED,
+            f" if{NO_BREAK}{each.experimental}{NO_BREAK}is experimental",
+        )
         for each in readings
     ]
     return line(said[0], *(line(" and ", more) for more in said[1:]), ".")

@@ -9,7 +9,6 @@ from app.sheets.words import DASH, Z, alpha, alpha_difference, count, line, list
 from app.views.closed import ClosedView
 
 HELD_BEFORE = "held before this file"
-WITHHELD = "; their z, known by arm, is not shown masked"
 
 
 def held_tables(view: ClosedView, side: str) -> tuple[Table, ...]:
@@ -63,4 +62,5 @@ def held_words(view: ClosedView) -> str:
     if not before:
         return ""
     looks = f" Look{'s' if len(before) > 1 else ''} {listed(before)}: {HELD_BEFORE}"
-    return f"{looks}{WITHHELD if view.masked else ''}."
+    whose = "their" if len(before) > 1 else "its"
+    return f"{looks}{f'; {whose} z, known by arm, is not shown masked' if view.masked else ''}."

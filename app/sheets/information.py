@@ -43,7 +43,7 @@ def information_sheet(view: ClosedView, planned: float | None) -> Sheet:
         tables=(_arms_table(view), _variance_table(view), *_hypotheses_table(view)),
         folded=_strata_table(view),
         notes=_notes(view),
-        methods=methods("information", "variance-ratio", "person-time", "follow-up"),
+        methods=methods(information_method(view), "variance-ratio", "person-time", "follow-up"),
         figure_table=calendar_table(look.calendar),
     )
 
@@ -77,6 +77,11 @@ def information_sentence(
 def counted_by(view: ClosedView) -> CountedBy:
     """Said where the plan counts information in score variance; the open side always counts events."""
     return "score variance" if view.plan.design.information == "score variance" else ""
+
+
+def information_method(view: ClosedView) -> str:
+    """The name of how the fraction is counted, for what was computed on a sheet."""
+    return "information by variance" if counted_by(view) else "information"
 
 
 def plan_fraction(value: float) -> Span:
@@ -183,13 +188,22 @@ def _arms_table(view: ClosedView) -> Table:
 def _variance_table(view: ClosedView) -> Table:
     information = view.look.information
     rows = [
-        Row(line("Log-rank variance"), (Cell((number(information.score_variance, 2),)),)),
+        Row(*_variance(view)),
         Row(line("over events × shares"), (Cell((_ratio(information.variance_ratio),)),), indent=True),
     ]
     planned = view.plan.enrolment.planned_subjects
     if planned is not None:
         rows.insert(0, Row(line("Subjects of planned"), (Cell(of_total(information.subjects, planned)),)))
     return Table(line("Both arms"), (Column(()),), tuple(rows))
+
+
+def _variance(view: ClosedView) -> tuple[Line, tuple[Cell, ...]]:
+    """The log-rank variance, beside the plan's where that is what information is counted in."""
+    observed = number(view.look.information.score_variance, 2)
+    planned = view.plan.design.planned_score_variance
+    if planned is None:
+        return line("Log-rank variance"), (Cell((observed,)),)
+    return line("Log-rank variance of planned"), (Cell(line(observed, f" of {decimal(planned, 2)}")),)
 
 
 def _hypotheses_table(view: ClosedView) -> tuple[Table, ...]:
@@ -204,7 +218,7 @@ def _hypotheses_table(view: ClosedView) -> tuple[Table, ...]:
         )
         for name, known in counted
     )
-    columns = (Column(line("planned events")), Column(line("fraction")))
+    columns = (Column(line("events of planned")), Column(line("fraction")))
     return (Table(line("Further hypotheses"), columns, tuple(rows)),)
 
 

@@ -123,7 +123,7 @@ def _mean_table(view: ClosedView) -> Table | None:
         (
             Row(line(f"Mean, {unit}"), tuple(_mean(mean, scale) for mean in means)),
             Row(line(f"Difference, {unit}"), (_difference(compared, scale), Cell(()))),
-            Row(line("Two-sided ", P), (_p(compared), Cell(()))),
+            Row(line(P, ", two-sided"), (_p(compared), Cell(()))),
         ),
     )
 
@@ -153,7 +153,7 @@ def _weighted_table(view: ClosedView) -> Table | None:
             rows.append(Row(words, _z_and_p(largest.z, largest.p_two_sided)))
     return Table(
         caption=line(f"Weighted tests, {DESCRIPTIVE}"),
-        columns=(Column(line(Z)), Column(line("two-sided ", P))),
+        columns=(Column(line(Z)), Column(line(P, ", two-sided"))),
         rows=tuple(rows),
         corner=line("Weight, rho and gamma"),
     )

@@ -21,7 +21,7 @@ from tests.unit.review.invented_trial import (
     plan_text,
     two_endpoints,
 )
-from tests.unit.sheets.invented_looks import FURTHER, text
+from tests.unit.sheets.invented_looks import FURTHER, table_texts, text
 
 
 def amended(*changes: tuple[str, str]) -> bytes:
@@ -127,7 +127,10 @@ def test_the_boundary_sheet_says_what_waits_and_the_glance_too(tmp_path: Path) -
         ]
         assert [text(table.caption) for table in boundary.folded][:2] == [
             "Death, arm A against arm B",
-            "Harm, judged on Death",
+            "Harm, judged on Death, arm A against arm B",
         ]
+        assert [table.caption[0].text for table in boundary.folded][:2] == ["Death", "Harm, judged on Death"]
+        harm = table_texts(boundary, "Harm, judged on Death")
+        assert "Harm bound, each reading" in harm
         lanes = boundary.figure.lanes  # type: ignore[union-attr]
         assert all(lane.harm is None for lane in lanes)  # another z than that of the lanes

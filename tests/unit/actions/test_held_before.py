@@ -219,7 +219,7 @@ def test_unmasked_the_boundary_sheet_shows_what_was_used_beside_what_is_computed
     assert rows["Look 1"][:3] == ["10", "1.234", "5.000"]
     assert rows["Look 2"][:3] == ["20", "−0.567", "4.330"]
     assert rows["Look 2"][-1] == "Charter table 2"
-    assert table_texts(sheet, "The looks and their bounds")["1, held before this file"][2] == "1.234"
+    assert table_texts(sheet, "The looks and their bounds")["1, held before"][2] == "1.234"
     assert "Looks 1 and 2: held before this file." in text(sheet.notes[0])
 
 

@@ -16,7 +16,7 @@ from app.render.spine import spine_marks
 from app.sheets.blocks import InformationStrip, LookBook
 from tests.unit.actions.invented_file import BY, desk, held, incoming, settings
 from tests.unit.review.invented_trial import CUTOFFS, Patients, patients, plan_text
-from tests.unit.sheets.invented_looks import answers, parts
+from tests.unit.sheets.invented_looks import answers, parts, table_texts, text
 
 PLANNED = 18.0
 BY_VARIANCE = (
@@ -52,6 +52,15 @@ def test_the_closed_spine_is_drawn_to_the_scale_of_the_information_used(file: Pa
     (strip,) = parts(book.sheet("glance"), InformationStrip)
     assert [fraction for fraction, _ in strip.held] == fractions(book)[:shown]
     assert strip.total.text == "planned"
+
+
+def test_the_variance_stands_beside_the_plans_and_the_fraction_is_said_to_be_of_it(file: Path) -> None:
+    with desk(file, 2) as open_desk:
+        sheet = closed_book(open_desk, 2, session=None).sheet("information")
+        variance = record_of(open_desk, 2)["looks"][0]["information"]["score_variance"]
+    assert sheet is not None
+    assert table_texts(sheet, "Both arms")["Log-rank variance of planned"] == [f"{variance:.2f} of 18.00"]
+    assert text(sheet.methods[0].text).startswith("Fraction t = V / planned V")
 
 
 def test_the_open_side_counts_events_and_says_so(file: Path) -> None:

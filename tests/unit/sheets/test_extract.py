@@ -123,3 +123,11 @@ def test_the_snapshot_is_shown_as_received() -> None:
         "Received": ["1 Dec 2024, 09:00 UTC"],
         "Recorded by": ["M. Berg"],
     }
+
+
+def test_the_denominator_of_the_changes_stands_beside_them() -> None:
+    assert not any("Changes" in text(note) for note in shown(first()).notes)
+    second = held(cutoffs=CUTOFFS[:2])[1]
+    changes = second.view().look.changes
+    note = text(shown(second, changes=changes).notes[0]).replace("\u00a0", " ")
+    assert note == "Changes since the last snapshot are of the 128 subjects in both."
