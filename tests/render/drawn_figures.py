@@ -135,7 +135,8 @@ FIGURES = {
         y_title=(
             Span("z", "symbol"),
             Span(
-                ", extended-release tablet with titration and counselling against matching placebo tablet daily"
+                ", extended-release tablet with titration and counselling "
+                "against a matching placebo tablet once a day"
             ),
         ),
     ),
