@@ -56,17 +56,18 @@ def hypotheses_text(record: dict[str, Any]) -> str:
     """The bounds of each further hypothesis by its own events, and the level of all together."""
     if record["hypotheses"] is None:
         return ""
+    sides = "one-sided" if record["sides"] == 1 else "two-sided"
     blocks = [
-        f"\n{each['name']}, alpha {said.alpha(each['alpha'])}, {waiting_text(each)}\n"
+        f"\n{each['name']}, {sides} alpha {said.alpha(each['alpha'])}, {waiting_text(each)}\n"
         f"{aligned(HEADS, [bound_row(look) for look in each['looks']])}"
         for each in record["hypotheses"]
     ]
-    return f"{''.join(blocks)}\nAll hypotheses together: alpha {said.alpha(record['alpha_of_all'])}\n"
+    return f"{''.join(blocks)}\nAll hypotheses together: {sides} alpha {said.alpha(record['alpha_of_all'])}\n"
 
 
 def waiting_text(hypothesis: dict[str, Any]) -> str:
     after = hypothesis["after"]
-    return "tested at once" if after is None else f"tested once {after} has crossed"
+    return "tested at once" if after is None else f"tested once {said.hypothesis(after)} has crossed"
 
 
 def bound_row(look: dict[str, Any]) -> tuple[str, ...]:

@@ -29,9 +29,15 @@ def look_text(look: dict[str, Any], orientation: dict[str, str]) -> str:
     return (
         f"Look {look['number']}, {look['kind']}{', final' if look['final'] else ''}: "
         f"{information['events']} of {information['planned_events']} planned events, "
-        f"information fraction {said.number(information['fraction'])}\n\n"
+        f"information fraction {said.number(information['fraction'])}{counted_by(information)}\n\n"
         f"{aligned(heads, arms)}\n{test_text(look, orientation)}"
     )
+
+
+def counted_by(information: dict[str, Any]) -> str:
+    """Said where the fraction is not that of the events beside it."""
+    by_events = information["events"] / information["planned_events"]
+    return "" if information["fraction"] == by_events else " by score variance"
 
 
 def median_of(look: dict[str, Any], arm: dict[str, Any]) -> str:
@@ -84,7 +90,7 @@ def hypothesis_text(hypothesis: dict[str, Any]) -> str:
 
 def standing_text(bound: dict[str, Any]) -> str:
     if bound["waits_for"] is not None:
-        return f"waits for {bound['waits_for']}"
+        return f"waits for {said.hypothesis(bound['waits_for'])}"
     if bound["crossed"] != "none":
         return f"crossed: {bound['crossed']}"
     first = bound["first_crossed"]

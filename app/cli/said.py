@@ -11,6 +11,7 @@ from app.model.extract import Finding
 from app.model.values import Absent, Estimate
 from app.sheets import words
 from app.sheets.blocks import Line, Span
+from app.sheets.further import named
 
 PLAIN = str.maketrans({"\u2212": "-", "\u00a0": " ", "\u2007": " ", "\u2011": "-"})
 
@@ -49,6 +50,11 @@ def alpha(value: Any) -> str:
 def bound(value: Any, places: int = 3) -> str:
     """A bound, or a dash where the look has none; the reason is in the record."""
     return "-" if isinstance(value, dict) else number(value, places)
+
+
+def hypothesis(name: str) -> str:
+    """What a hypothesis waits for, as the sheets name it."""
+    return plain(named(name)).replace("’", "'")
 
 
 def tell(findings: Iterable[Finding]) -> None:

@@ -141,7 +141,7 @@ def _received_table(snapshot: Snapshot) -> Table:
         ("Data cutoff", day_text(snapshot.cutoff)),
         ("Extract", extracted),
         ("Received", moment(snapshot.received_at)),
-        ("Recorded by", snapshot.by),
+        ("Received by", snapshot.by),
     ]
     return Table(
         line("As received"), (Column((), "words"),), tuple(Row(line(a), (Cell(line(b)),)) for a, b in rows)
@@ -189,7 +189,7 @@ def _compared(changes: Changes | None) -> tuple[Line, ...]:
     if changes is None:
         return ()
     both = counted(changes.n_common, "subject")
-    return (line("Changes since the last snapshot are of the ", both, " in both."),)
+    return (line("Changes: of the ", both, " in both snapshots."),)
 
 
 def _notes(extract: Extract) -> tuple[Line, ...]:

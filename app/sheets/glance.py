@@ -117,7 +117,9 @@ def _crossing_words_masked(view: ClosedView) -> Line:
     first = crossed[0].verdict.first_crossed
     at = "" if first == view.look.number else f" at look{NO_BREAK}{first}"
     return line(
-        "the boundary was ", CROSSED, f"{at} if {crossed[0].experimental} is experimental, and not otherwise."
+        "the boundary was ",
+        CROSSED,
+        f"{at} if{NO_BREAK}{crossed[0].experimental}{NO_BREAK}is experimental, and not otherwise.",
     )
 
 

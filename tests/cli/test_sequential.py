@@ -519,10 +519,13 @@ def test_the_commands_say_what_waits(tmp_path: Path, capsys: pytest.CaptureFixtu
     assert main(["evaluate", str(path), "--look", str(two_endpoints(tmp_path, 140, 70))]) == 0
     told = capsys.readouterr().out
     assert "Death: 70 of 200 planned events, z " in told
-    assert "; waits for primary." in told
+    assert "; waits for the plan's endpoint." in told
     assert ", z of DEATH " in told
     assert main(["boundary", str(path)]) == 0
-    assert "Death, alpha 0.0250, tested once primary has crossed" in capsys.readouterr().out
+    assert (
+        "Death, one-sided alpha 0.0250, tested once the plan's endpoint has crossed"
+        in capsys.readouterr().out
+    )
 
 
 # --- worked trials, their z reached by an extract made for it -------------------------------------------

@@ -12,11 +12,11 @@ import numpy as np
 import pytest
 
 from app.render import figures, palette
-from app.render.svg import boundary, curves, gauge, residuals
+from app.render.svg import boundary, curves, gauge, residuals, strips
 from app.render.svg.element import coordinate
 from app.render.svg.lane_plot import NARROW_PAGE, WIDE_PAGE, LanePage, lane_plot
 from app.render.svg.lettering import SMALL, broken, point_offset, text_width
-from app.sheets.blocks import BoundaryFigure, CurvesFigure
+from app.sheets.blocks import BoundaryFigure, CurvesFigure, Span
 from tests.render import invented_book as invented
 from tests.render.drawn_figures import FIGURES, HARM, HOSTILE, SVG, Text, drawings, texts, with_harm
 
@@ -419,6 +419,16 @@ def test_long_names_leave_the_end_of_the_title_line_to_what_a_page_sets_there() 
     assert title.x + text_width(title.words, SMALL) <= WIDE_PAGE.width - boundary.TOOLS
     (narrow,) = [t for t in texts(DRAWN["boundary with long names, narrow"]) if t.words.startswith("z; ")]
     assert narrow.words.startswith("z; up favours extended-release")
+
+
+def test_a_look_at_the_end_of_the_information_is_a_whole_disc_and_leaves_the_total_to_the_sentence() -> None:
+    strip = replace(invented.information_strip(), held=((0.5, Span("269")), (1.002, Span("539"))))
+    svg = str(strips.wide(strip))
+    discs = [each for each in ElementTree.fromstring(svg).iter() if each.tag == f"{SVG}circle"]
+    assert all(float(each.attrib["cx"]) + float(each.attrib["r"]) <= strips.STRIP for each in discs)
+    said = [t.words for t in texts(svg)]
+    assert strip.total.text not in said
+    assert "1" in said
 
 
 # --- lettering ----------------------------------------------------------------------------------------------

@@ -51,21 +51,27 @@ def drawn(strip: Strip, width: float) -> Drawing:
 RAIL_TOP, RAIL = 16.5, 5.0
 NUMBERS_AT, FRACTIONS_AT = 10.0, 43.5
 ROOM_FOR_ONE = 12.0
+ROOM_FOR_DISC = 7.5
 
 
 def information(strip: InformationStrip, width: float) -> Drawing:
-    last = max([1.0, *(fraction for fraction, _ in strip.held)])
-    x = Scale(0, last, 0.5, width - 0.5)
     held = max((fraction for fraction, _ in strip.held), default=0.0)
-    rail = Box(0.5, RAIL_TOP + 0.5, width - 0.5, RAIL_TOP + RAIL - 0.5)
+    x = _along(max(1.0, held), held, width)
+    rail = Box(0.5, RAIL_TOP + 0.5, x.end, RAIL_TOP + RAIL - 0.5)
     parts = [
         rectangle(rail, PAPER, INK_3),
         rectangle(Box(0, RAIL_TOP, x(held), RAIL_TOP + RAIL), INK),
         *_held(strip, x),
-        _total(strip, x),
+        *_total(strip, x),
         *_fractions(strip, x),
     ]
     return Drawing(width, 47, strip.title, strip.description, tuple(parts))
+
+
+def _along(last: float, held: float, width: float) -> Scale:
+    """The rail from edge to edge; it ends sooner where a disc at its end would be cut."""
+    whole = Scale(0, last, 0.5, width - 0.5)
+    return whole if whole(held) <= width - ROOM_FOR_DISC else Scale(0, last, 0.5, width - ROOM_FOR_DISC)
 
 
 def _held(strip: InformationStrip, x: Scale) -> list[Element]:
@@ -91,23 +97,22 @@ def _total_fits_above(strip: InformationStrip, x: Scale) -> bool:
     return all(at + 20 <= start for at in _event_places(strip, x))
 
 
-def _total(strip: InformationStrip, x: Scale) -> Element:
-    """The planned total above the rail's end; under it when the look shown stands in the way."""
-    y = NUMBERS_AT if _total_fits_above(strip, x) else FRACTIONS_AT
-    return small_print(strip.total.text, x.end + 0.5, y, "end")
+def _total(strip: InformationStrip, x: Scale) -> tuple[Element, ...]:
+    """The planned total above the rail's end; left to the sentence when the look shown stands in the way."""
+    fits = _total_fits_above(strip, x)
+    return (small_print(strip.total.text, x.end + 0.5, NUMBERS_AT, "end"),) if fits else ()
 
 
 def _fractions(strip: InformationStrip, x: Scale) -> list[Element]:
     """0, the planned fractions and 1 under the rail; one without room for its number keeps its tick."""
     fractions = sorted({0.0, *strip.planned, 1.0})
-    right_end = x(1.0) if _total_fits_above(strip, x) else x.end - text_width(strip.total.text, SMALL) - 6
     parts = [_ticks([x(fraction) for fraction in fractions])]
     free_from = 0.0
     for fraction in fractions:
         text, at = fraction_text(fraction), x(fraction)
         width = text_width(text, SMALL)
         left = min(max(at - width / 2, 0.0), x.end - width)
-        keeps_clear = left + width <= (right_end if at >= x(1.0) else right_end - ROOM_FOR_ONE)
+        keeps_clear = at >= x(1.0) or left + width <= x(1.0) - ROOM_FOR_ONE
         if left >= free_from and keeps_clear:
             parts.append(small_print(text, left, FRACTIONS_AT))
             free_from = left + width + 4

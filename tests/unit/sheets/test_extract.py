@@ -121,7 +121,7 @@ def test_the_snapshot_is_shown_as_received() -> None:
         "Data cutoff": ["1 Dec 2024"],
         "Extract": ["not stated"],
         "Received": ["1 Dec 2024, 09:00 UTC"],
-        "Recorded by": ["M. Berg"],
+        "Received by": ["M. Berg"],
     }
 
 
@@ -130,4 +130,4 @@ def test_the_denominator_of_the_changes_stands_beside_them() -> None:
     second = held(cutoffs=CUTOFFS[:2])[1]
     changes = second.view().look.changes
     note = text(shown(second, changes=changes).notes[0]).replace("\u00a0", " ")
-    assert note == "Changes since the last snapshot are of the 128 subjects in both."
+    assert note == "Changes: of the 128 subjects in both snapshots."
