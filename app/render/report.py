@@ -43,6 +43,7 @@ def render_report(environment: Environment, book: LookBook, *, frozen: ReportFac
     page = environment.get_template("report/look.html").render(
         book=book,
         frozen=frozen,
+        stated=stated(book.frame, frozen),
         style=Markup(style),  # made of our own template and of strings escaped for CSS
         style_digest=base64.b64encode(hashlib.sha256(style.encode()).digest()).decode(),
         links={sheet.key: f"#sheet-{sheet.key}" for sheet in book.sheets},
@@ -144,8 +145,15 @@ def _label_cell(word: str) -> LabelCell:
 
 
 def _head_lines(frame: PageFrame, frozen: ReportFacts | None) -> tuple[str, str]:
-    when = f"Look {frame.look}, frozen {frozen.frozen_at}. " if frozen else ""
-    return f"{frame.trial_name}\u2003{frame.trial_title}", f"{when}{'. '.join(frame.colophon)}"
+    return f"{frame.trial_name}\u2003{frame.trial_title}", stated(frame, frozen)
+
+
+def stated(frame: PageFrame, frozen: ReportFacts | None) -> str:
+    """ "Look 3, planned, frozen 26 Jan 2027, 14:05 UTC. Plan version 2": of a frozen report also when."""
+    look, *others = frame.colophon
+    if frozen is not None:
+        look = f"{look.rpartition(', ')[0]}, frozen {frozen.frozen_at}"
+    return ". ".join((look, *others))
 
 
 def _foot_lines(frame: PageFrame, frozen: ReportFacts | None) -> tuple[str, ...]:

@@ -10,7 +10,7 @@ from app.sheets.arms import labels
 from app.sheets.blocks import BoundaryFigure, Cell, Column, Lane, LaneRow, Row, Span, Table
 from app.sheets.boundary_lanes import bound_places, boundary_lanes, z_now, z_shown
 from app.sheets.curves import against
-from app.sheets.further import harm_endpoint_name, is_harm_elsewhere, rows_under_lanes
+from app.sheets.further import harm_row_name, is_harm_elsewhere, rows_under_lanes
 from app.sheets.words import DASH, Z, alpha, count, line, number, or_dash, z_number
 from app.views.closed import ClosedView
 
@@ -129,7 +129,7 @@ def _rows_below(view: ClosedView, columns: tuple[_Column, ...]) -> tuple[LaneRow
     if not is_harm_elsewhere(view):
         return rows
     *others, bound = rows
-    of_it = replace(bound, head=line(f"Harm bound on {harm_endpoint_name(view)}{each}"))
+    of_it = replace(bound, head=line(f"Harm bound on {harm_row_name(view)}{each}"))
     is_shown = view.plan.harm_endpoint_is_a_hypothesis
     return (*others, of_it) if is_shown else (*others, _harm_z_row(view, columns), of_it)
 
@@ -137,7 +137,7 @@ def _rows_below(view: ClosedView, columns: tuple[_Column, ...]) -> tuple[LaneRow
 def _harm_z_row(view: ClosedView, columns: tuple[_Column, ...]) -> LaneRow:
     """z of harm's own endpoint, over the bound that it is for."""
     of_harm = tuple(None if each.z_for_harm is None else z_number(each.z_for_harm) for each in columns)
-    return LaneRow(line(Z, f" of {harm_endpoint_name(view)}"), line("Harm ", Z), of_harm)
+    return LaneRow(line(Z, f" of {harm_row_name(view)}"), line("Harm ", Z), of_harm)
 
 
 def side_words(view: ClosedView) -> str:

@@ -43,6 +43,11 @@ def harm_endpoint_name(view: ClosedView) -> str:
     return names.get(endpoint.parameter, endpoint.parameter)
 
 
+def harm_row_name(view: ClosedView) -> str:
+    """The same where it must fit beside the lanes."""
+    return fitting_name(harm_endpoint_name(view), (view.plan.harm_endpoint or view.plan.endpoint).parameter)
+
+
 # --- further hypotheses ---------------------------------------------------------------------------------
 
 
@@ -92,9 +97,12 @@ def _lane_rows(each: HypothesisView, looks: Sequence[int | None]) -> tuple[LaneR
 
 
 def _fitting(each: HypothesisView) -> str:
+    return fitting_name(each.hypothesis.name, each.hypothesis.parameter)
+
+
+def fitting_name(name: str, parameter: str) -> str:
     """The name, or where that is too long for the column beside the lanes the endpoint's code."""
-    name = each.hypothesis.name
-    return name if len(name) <= LONGEST_NAME else each.hypothesis.parameter
+    return name if len(name) <= LONGEST_NAME else parameter
 
 
 _Used = tuple[float | None, Estimate]

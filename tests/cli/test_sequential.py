@@ -316,6 +316,8 @@ def test_information_may_be_the_score_variance(tmp_path: Path, capsys: pytest.Ca
     variance = look["logrank"]["variance"]
     assert look["boundary"]["information"] == variance
     assert look["boundary"]["information_fraction"] == pytest.approx(variance / 98.0, rel=1e-14)
+    assert main(["evaluate", str(path), "--look", str(extract(tmp_path, 140))]) == 0
+    assert f"information fraction {variance / 98.0:.3f} by score variance\n" in capsys.readouterr().out
 
 
 def test_going_on_is_told_while_looks_are_to_come_and_ending_when_it_ends(

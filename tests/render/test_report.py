@@ -46,6 +46,11 @@ def report(environment: Environment) -> str:
     return render_report(environment, invented.book(), frozen=FACTS).decode()
 
 
+def test_the_head_says_once_which_look_it_is_and_when_it_was_frozen(report: str) -> None:
+    said = "Look 3, planned, frozen 26\u00a0Jan\u00a02027, 14:05\u00a0UTC. Plan version 2."
+    assert f'<p class="frozen">{said} Chain head' in report
+
+
 def test_the_same_book_and_facts_give_the_same_bytes(report: str) -> None:
     afresh = page_environment(Path(asset("templates")))
     assert render_report(afresh, invented.book(), frozen=FACTS).decode() == report
