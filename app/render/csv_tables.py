@@ -16,8 +16,8 @@ NUMBER = re.compile(r"-?\d[\d ]*(\.\d+)?")
 
 
 def sheet_tables(sheet: Sheet) -> tuple[tuple[str, bytes], ...]:
-    """Every table of a sheet as (file name, bytes): the figure's own numbers first."""
-    tables = (*sheet.figure_tables, *sheet.wide_tables, *sheet.tables)
+    """Every table of a sheet as (file name, bytes): the figure's own numbers first, the folded ones last."""
+    tables = (*sheet.figure_tables, *sheet.wide_tables, *sheet.tables, *sheet.folded)
     return tuple((f"{sheet.key}-{n}.csv", table_csv(table)) for n, table in enumerate(tables, start=1))
 
 

@@ -88,7 +88,7 @@ def _lane_rows(each: HypothesisView, looks: Sequence[int | None]) -> tuple[LaneR
             tuple(map(_z_cell, shown)),
         ),
         LaneRow(
-            line(f"its efficacy bound{plus_minus}"),
+            line(f"bound of {_fitting(each)}{plus_minus}"),
             line("its bound"),
             tuple(map(_bound_cell, shown)),
             indent=True,

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+from dataclasses import replace
 
 from app.render.csv_tables import field, sheet_tables, table_csv
 from app.sheets.blocks import Span
@@ -18,6 +19,8 @@ def test_every_table_of_a_sheet_has_a_file() -> None:
     boundary = invented.book().sheet("boundary")
     assert boundary is not None
     assert [name for name, _ in sheet_tables(boundary)] == [f"boundary-{n}.csv" for n in (1, 2, 3, 4)]
+    *_, folded = sheet_tables(replace(boundary, folded=(invented.estimates_table("not crossed"),)))
+    assert folded == ("boundary-5.csv", table_csv(invented.estimates_table("not crossed")))
 
 
 def test_a_file_says_what_the_page_says() -> None:

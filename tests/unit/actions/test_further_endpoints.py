@@ -122,7 +122,7 @@ def test_the_boundary_sheet_says_what_waits_and_the_glance_too(tmp_path: Path) -
             "Efficacy bound, ±",
             "Harm bound on Death, each reading",
             "z of Death",
-            "its efficacy bound, ±",
+            "bound of Death, ±",
             "Alpha spent, one-sided",
         ]
         assert [text(table.caption) for table in boundary.folded][:2] == [
