@@ -26,8 +26,9 @@ def look_text(look: dict[str, Any], orientation: dict[str, str]) -> str:
         for arm in information["arms"]
     ]
     heads = ("Arm", "Subjects", "Events", f"Time at risk, {look['time_unit']}", "Median time to event")
+    by_information = ", final" if look["final"] and look["kind"] != "final" else ""
     return (
-        f"Look {look['number']}, {look['kind']}{', final' if look['final'] else ''}: "
+        f"Look {look['number']}, {look['kind']}{by_information}: "
         f"{information['events']} of {information['planned_events']} planned events, "
         f"information fraction {said.number(information['fraction'])}{counted_by(information)}\n\n"
         f"{aligned(heads, arms)}\n{test_text(look, orientation)}"
@@ -133,12 +134,17 @@ def one_sided(look: dict[str, Any]) -> tuple[str, str]:
     return observed, at_bound
 
 
+def not_crossed_text(look: dict[str, Any]) -> str:
+    """At a final look no bound below is a test any more, so nothing is said of it."""
+    bound = look["boundary"]
+    has_bounds_below = bound["futility_z"] is not None or bound["harm_z"] is not None
+    return "Efficacy was not crossed" if look["final"] and has_bounds_below else "No boundary was crossed"
+
+
 def verdict_text(look: dict[str, Any]) -> str:
     bound = look["boundary"]
     first = bound["first_crossed"]
-    crossed = (
-        "No boundary was crossed" if bound["crossed"] in (None, "none") else f"Crossed: {bound['crossed']}"
-    )
+    crossed = not_crossed_text(look) if bound["crossed"] == "none" else f"Crossed: {bound['crossed']}"
     since = f"; first crossed at look {first}" if first is not None and first != look["number"] else ""
     return (
         f"{crossed}{since}. Alpha spent {said.alpha(bound['alpha_spent'])}, "

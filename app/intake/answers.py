@@ -52,7 +52,7 @@ def read_kind(text: str, *, where: str) -> LookKind:
 def read_hazard_ratio(text: str, *, where: str) -> float:
     """A hazard ratio, experimental / control, written with a decimal point or a decimal comma."""
     written = text.strip()
-    ratio = float(written.replace(",", ".")) if re.fullmatch(r"[0-9]{0,3}[.,]?[0-9]{1,9}", written) else None
+    ratio = float(written.replace(",", ".")) if re.fullmatch(r"[0-9]{0,3}[.,]?[0-9]{1,17}", written) else None
     if ratio is not None and LOWEST_RATIO <= ratio <= HIGHEST_RATIO:
         return ratio
     raise ValueRejected(

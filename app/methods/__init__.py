@@ -200,11 +200,13 @@ METHODS: dict[str, Method] = {
         "came before; what its bounds spend is not given back. Alphas side by side add up, along a chain the "
         "largest counts.",
         "Hung, Wang and O’Neill (2007), Journal of Biopharmaceutical Statistics 17, 1201–1210; Glimm, Maurer "
-        "and Bretz (2010), Statistics in Medicine 29, 219–228.",
+        "and Bretz (2010), Statistics in Medicine 29, 219–228; Tamhane, Mehta and Liu (2010), Biometrics 66, "
+        "1174–1184.",
     ),
     "repeated-interval": Method(
         "Repeated interval",
-        "exp(−*s*(*z* ± bound)/√*V*): it holds at every look, whatever is decided.",
+        "exp(−*s*(*z* ± bound)/√*V*): it holds at every look, whatever is decided. Binding futility lowers "
+        "the bounds, and then there is none.",
         "Jennison and Turnbull (1989), JRSS B 51, 305–361.",
     ),
     "conditional-power": Method(

@@ -45,6 +45,7 @@ class LookAsUsed:
     harm_information: float | None = None
     z_for_harm: float | None = None
     further: tuple[tuple[str, LookAsUsed], ...] = ()
+    alpha_spent_here: float = 0.0
 
     def of(self, parameter: str) -> LookAsUsed | None:
         """What the hypothesis on this endpoint used at this look, where the plan then had it."""

@@ -14,6 +14,7 @@ from app.sequential.outlook import Held, Prior, conditional_power, outlook, repe
 from app.sequential.stopping import stopping
 
 NO_INFORMATION = Absent("there is no information yet")
+LOWERED = Absent("the efficacy bounds count on binding futility: no interval from them holds at every look")
 
 
 def onwards_of(
@@ -36,7 +37,7 @@ def onwards_of(
     variance = information.score_variance
     return Onwards(
         _outlook(plan, rules, Held(information.fraction, z, variance), bounds[1:]),
-        repeated_interval(z, bounds[0], rules.efficacy, variance),
+        LOWERED if rules.binding else repeated_interval(z, bounds[0], rules.efficacy, variance),
         _stopping(rules, z, information_used, variance, past),
     )
 

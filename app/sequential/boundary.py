@@ -39,6 +39,7 @@ from app.sequential.verdict import first_crossed
 
 __all__ = ["EfficacyRule", "LookAhead", "bounds_ahead", "efficacy_rule", "hazard_ratio_at", "next_bound"]
 
+ROUNDING = 1e-10  # of what may be spent: integrals and sums of spends are not more exact than that
 SAFETY = Absent("a safety look has no efficacy bound and spends no alpha")
 SAFETY_AT_A_PRICE = Absent(
     "a safety look has no efficacy bound; it spends the alpha that the plan states for it"
@@ -52,6 +53,10 @@ NOTHING_TO_SPEND = Absent("the alpha that may be spent by this information fract
 ALL_SPENT = Absent("all alpha is already spent: no boundary exists and the result is descriptive")
 SPEND_TOO_SMALL = Absent(
     f"the alpha to spend here is below {SMALLEST_SPEND:.0e}, less than a double can hold: no bound exists"
+)
+TOO_FEW_PATHS = Absent(
+    "so few trials without effect come past binding futility to here that the alpha left would call a result "
+    "of no benefit efficacy: no bound exists"
 )
 NO_TYPE_TWO_TO_SPEND = Absent(
     "the type II error that may be spent by this information fraction is already spent, or less than a "
@@ -222,15 +227,9 @@ def _harm_information(rule: HarmRule | None, look: LookAsUsed | LookAhead) -> fl
 
 def _alpha_spent(rule: EfficacyRule, past: Sequence[LookAsUsed], crossing: float) -> float:
     """What is recorded as spent, or the crossing probability and what safety looks cost (key carry_on)."""
-    recorded = [0.0, *(look.alpha_spent for look in past)]
     if rule.carry_on == "nominal":
-        return max(recorded)
-    costs = [
-        max(0.0, look.alpha_spent - before)
-        for before, look in zip(recorded, past, strict=False)
-        if look.kind == "safety"
-    ]
-    return crossing + math.fsum(costs)
+        return max((look.alpha_spent for look in past), default=0.0)
+    return crossing + math.fsum(look.alpha_spent_here for look in past if look.kind == "safety")
 
 
 @dataclass(frozen=True)
@@ -279,11 +278,18 @@ def _efficacy_side(
         return _fixed_side(rule.spending, standing, look, paths)
     allowed = _allowed(rule, look)
     spend = allowed - standing.alpha_spent
-    if spend >= SMALLEST_SPEND:
-        return _Side(upper_bound_for(paths, look.information, spend), allowed, spend)
+    if _is_left(spend, allowed):
+        z = upper_bound_for(paths, look.information, spend) if spend < paths.unstopped else -math.inf
+        # a result that does not favour experimental is no efficacy, however few came so far
+        return _Side(z, allowed, spend) if z > 0.0 else _Side(TOO_FEW_PATHS, standing.alpha_spent)
     if allowed < SMALLEST_SPEND:
         return _Side(SPEND_TOO_SMALL, standing.alpha_spent)
     return _Side(ALL_SPENT if look.final else NOTHING_TO_SPEND, standing.alpha_spent)
+
+
+def _is_left(spend: float, allowed: float) -> bool:
+    """Whether there is something to spend: more than a double can hold, and than what rounding leaves."""
+    return spend >= SMALLEST_SPEND and spend > ROUNDING * allowed
 
 
 def _allowed(rule: EfficacyRule, look: LookAhead) -> float:
@@ -302,7 +308,7 @@ def _safety_side(rule: EfficacyRule, standing: _Standing) -> _Side:
 def _fixed_side(family: FixedFamily, standing: _Standing, look: LookAhead, paths: Paths) -> _Side:
     """The family's own bound, which spends its crossing probability, or the one that spends what is left."""
     left = family.alpha - standing.alpha_spent
-    if left < SMALLEST_SPEND:
+    if not _is_left(left, family.alpha):
         return _Side(ALL_SPENT, standing.alpha_spent)
     z = family.interim_bound(look.fraction)
     crossing = paths.above(look.information, z)
@@ -337,8 +343,9 @@ def _interim_futility(
     upper = math.inf if isinstance(efficacy.z, Absent) else efficacy.z
     match rules.futility:
         case FutilitySpending() as rule:
-            spend = rule.spending(look.spending_time) - standing.type_two_spent
-            if spend < SMALLEST_SPEND:
+            allowed = rule.spending(look.spending_time)
+            spend = allowed - standing.type_two_spent
+            if not _is_left(spend, allowed):
                 return NO_TYPE_TWO_TO_SPEND
             enough = spend < paths.below(look.information, math.inf)
             z: Estimate = lower_bound_for(paths, look.information, spend) if enough else math.inf
@@ -377,7 +384,7 @@ def _harm_side(rule: HarmRule | None, standing: _Standing, look: LookAhead) -> _
     if information <= standing.harm_information:
         return _Side(NO_NEW_INFORMATION, spent)
     allowed = rule.spending.alpha if look.final else rule.spending(look.spending_time)
-    if allowed - spent < SMALLEST_SPEND:
+    if not _is_left(allowed - spent, allowed):
         return _Side(NO_HARM_ALPHA_TO_SPEND, spent)
     paths = standing.harm_course.before(information)
     return _Side(-upper_bound_for(paths, information, allowed - spent), allowed, allowed - spent)

@@ -63,6 +63,11 @@ class Paths:
     drift: float = 0.0
     origin: tuple[float, float] = (0.0, 0.0)
 
+    @property
+    def unstopped(self) -> float:
+        """Probability of having come so far."""
+        return float(self.mass.sum())
+
     def above(self, information: float, z: float) -> float:
         """P(not stopped so far, Z >= z at `information`)."""
         return float((self.mass * ndtr(-self._standard(information, z))).sum())
@@ -205,18 +210,18 @@ def upper_bound_for(paths: Paths, information: float, spend: float) -> float:
     """
     target = math.log(spend)
     z = paths.drift * math.sqrt(information) - float(ndtri(spend))
-    if spend < float(paths.mass.sum()):
+    if spend < paths.unstopped:
         log_mass = np.log(paths.mass)
         for _ in range(_MOST_ITERATIONS):
             log_tail, log_slope = _log_tail(paths, log_mass, information, z)
             step = (log_tail - target) * math.exp(log_tail - log_slope)
             z += step
-            if abs(step) <= 1e-14 * max(1.0, abs(z)):
+            if step >= -1e-14 * max(1.0, abs(z)):
                 return z
     raise AccuracyNotReached(
         "the bound was not found",
         where=f"the look at information {information:.6g}",
-        found=f"alpha to spend {spend:.3g} with probability {paths.mass.sum():.3g} of being unstopped",
+        found=f"alpha to spend {spend:.3g} with probability {paths.unstopped:.3g} of being unstopped",
         accepted="alpha below that probability",
         remedy="check the bounds of the looks already held",
     )

@@ -172,10 +172,14 @@ class _Cost:
         planned = scale.noncentrality(design.hazard_ratio)
         return Feasibility(
             power_reached=crossing_power(self.bounds, self.rules.efficacy, planned),
-            events_needed=math.ceil(round(needed / (experimental_share * (1.0 - experimental_share)), 9)),
+            events_needed=math.ceil(round(needed / self._variance_per_event(design), 9)),
             schoenfeld_events=schoenfeld_events(design.hazard_ratio, **fixed),
             freedman_events=freedman_events(design.hazard_ratio, **fixed),
         )
+
+    def _variance_per_event(self, design: Design) -> float:
+        """p q, or what the plan's own score variance says of it."""
+        return self.rules.scale.full_score_variance / design.planned_events
 
     def _region(self, bound: Bound) -> Region:
         """Where no bound stops the trial."""

@@ -18,7 +18,7 @@ from app.errors import AccuracyNotReached, DesignInvalid
 from app.model.boundary import Bound, LookAsUsed
 from app.model.plan import Design, Efficacy, Futility, Harm, Plan
 from app.model.values import Absent
-from app.sequential.boundary import bounds_ahead
+from app.sequential.boundary import TOO_FEW_PATHS, bounds_ahead
 from app.sequential.density import Region, crossing_probabilities
 from app.sequential.rules import (
     Direction,
@@ -225,10 +225,9 @@ def noncentrality_for_power(
         if futility is None:
             return crossing_power(by_efficacy, rule, effect) - design.power
         by_futility = futility_rule(futility, design, scale, effect)
-        try:
-            bounds = bounds_ahead(rule, (), looks, futility=by_futility)
-        except AccuracyNotReached:
-            return 1.0 - design.power  # binding futility that high leaves too few paths for alpha
+        bounds = bounds_ahead(rule, (), looks, futility=by_futility)
+        if any(bound.efficacy_z is TOO_FEW_PATHS for bound in bounds):
+            return 1.0 - design.power  # binding futility that high
         return _power_obeying_futility(bounds, rule, effect) - design.power
 
     low = fixed_noncentrality(design) - 1e-6

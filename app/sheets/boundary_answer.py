@@ -83,7 +83,14 @@ def _masked_sentence(view: ClosedView, reading: Reading) -> Line:
     if reading.verdict.crossed == "control":
         other = "B" if reading.experimental == "A" else "A"
         return line(start, ", bound ", turned(bound, places), f" in favour of {other} ", CROSSED, ".")
+    if only_efficacy_counts(view):
+        return line(start, ", efficacy bound ", z_number(bound, places=places), " not crossed.")
     return line(start, ", no boundary crossed.")
+
+
+def only_efficacy_counts(view: ClosedView) -> bool:
+    """Whether the plan has bounds below that a final look shows, but no longer judges by."""
+    return view.look.final and (view.plan.futility is not None or view.plan.harm is not None)
 
 
 def _masked_below(view: ClosedView, reading: Reading) -> Line:

@@ -19,7 +19,7 @@ from app.sheets.blocks import (
     Span,
     ZStrip,
 )
-from app.sheets.boundary_answer import boundary_answer
+from app.sheets.boundary_answer import boundary_answer, only_efficacy_counts
 from app.sheets.boundary_figure import boundary_figure
 from app.sheets.curves import (
     NOT_ADJUSTED,
@@ -111,7 +111,7 @@ def _crossing_words_masked(view: ClosedView) -> Line:
     if not crossed and isinstance(view.look.bound.efficacy_z, Absent):
         return line(NO_BOUND_HERE)
     if not crossed:
-        return line("no boundary was crossed in either reading.")
+        return line(f"{_nothing_crossed(view)} in either reading.")
     if len(crossed) == 2:
         return line("the boundary was ", CROSSED, " in both readings.")
     first = crossed[0].verdict.first_crossed
@@ -136,6 +136,10 @@ def _below_words(readings: Sequence[Reading]) -> Line:
     return line(said[0], *(line(" and ", more) for more in said[1:]), ".")
 
 
+def _nothing_crossed(view: ClosedView) -> str:
+    return "efficacy was not crossed" if only_efficacy_counts(view) else "no boundary was crossed"
+
+
 def _crossing_words(view: ClosedView) -> Line:
     verdict = view.readings[0].verdict
     if verdict.crossed in BELOW and verdict.first_crossed is None:
@@ -143,7 +147,7 @@ def _crossing_words(view: ClosedView) -> Line:
     if verdict.first_crossed is None and isinstance(view.look.bound.efficacy_z, Absent):
         return line(NO_BOUND_HERE)
     if verdict.first_crossed is None:
-        return line("no boundary was crossed.")
+        return line(f"{_nothing_crossed(view)}.")
     if verdict.first_crossed < view.look.number:
         return line("the boundary had been ", CROSSED, f" at look{NO_BREAK}{verdict.first_crossed}.")
     if verdict.crossed == "control":

@@ -380,8 +380,8 @@ def test_a_futility_table_that_ends_at_one_minus_the_power_passes():
 
 
 def test_futility_that_leaves_efficacy_no_room_is_refused_in_a_sentence():
-    text = with_line("design", "looks = [0.1, 0.9, 1.0]")
-    lines = '\n[futility]\nspending = "Hwang-Shih-DeCani"\nparameter = 20\nbinding = true\n'
+    text = with_line("design", "looks = [0.5, 0.97, 1.0]")
+    lines = '\n[futility]\nspending = "Hwang-Shih-DeCani"\nparameter = 60\nbinding = true\n'
     (told,) = problems(text + lines)
     assert told.startswith("The futility boundary leaves efficacy too little room for the power")
 

@@ -36,6 +36,7 @@ def used(bound: Bound, kind: str = "planned", **changes: object) -> LookAsUsed:
         z=1.0,
         efficacy_z=bound.efficacy_z,
         alpha_spent=bound.alpha_spent,
+        alpha_spent_here=bound.alpha_spent_here,
         final=bound.final,
     )
     return replace(recorded, **changes)  # type: ignore[arg-type]

@@ -128,11 +128,11 @@ def test_futility_that_would_reach_efficacy_before_the_end_is_none_and_both_boun
 
 def test_futility_at_a_plan_that_never_reaches_its_power_is_refused_in_a_sentence() -> None:
     """Bound to stop, and with nearly all type II error spent at the start, few null paths reach the end."""
-    design = replace(DESIGN, looks=(0.1, 0.9, 1.0))
+    design = replace(DESIGN, looks=(0.5, 0.97, 1.0))
     with pytest.raises(
         DesignInvalid, match="The futility boundary leaves efficacy too little room for the power"
     ):
-        rules(Futility("Hwang-Shih-DeCani", parameter=20.0, binding=True), design=design)
+        rules(Futility("Hwang-Shih-DeCani", parameter=60.0, binding=True), design=design)
 
 
 def test_a_futility_look_spends_the_share_of_a_look_that_was_skipped() -> None:
@@ -250,3 +250,17 @@ def test_only_binding_futility_ends_the_test() -> None:
     (ended,) = rules(replace(SPENDING, binding=True)).bounds([stopped], (look(2, 374),))
     assert isinstance(going_on.efficacy_z, float)
     assert "crossed at look 1" in reason(ended.efficacy_z)
+
+
+def test_binding_futility_that_leaves_fewer_paths_than_alpha_leaves_no_bound_there() -> None:
+    """A plan whose last looks nobody reaches under no effect: one bound is missing, not the whole answer."""
+    binding = Futility(spending="Pocock-type", binding=True)
+    of = rules_of(
+        replace(DESIGN, looks=(0.5, 0.75, 1.0)), Efficacy("O'Brien-Fleming-type"),
+        experimental_share=0.5, direction=1, futility=binding,
+    )  # fmt: skip
+    early, late, last = of.bounds((), (look(1, 267), look(2, 517), look(3, 533)))
+    assert isinstance(early.efficacy_z, float)
+    assert number(late.efficacy_z) > 0.0
+    assert "come past binding futility to here" in reason(last.efficacy_z)
+    assert last.alpha_spent == late.alpha_spent

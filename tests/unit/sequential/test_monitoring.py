@@ -24,7 +24,7 @@ def look(number: int, events: int, kind: str = "planned", **more: object) -> Loo
 def used(bound: Bound, kind: str = "planned", **changes: object) -> LookAsUsed:
     recorded = LookAsUsed(
         bound.number, kind, float(bound.events), bound.events, bound.information_fraction, 1.0,  # type: ignore[arg-type]
-        bound.efficacy_z, bound.alpha_spent, bound.final,
+        bound.efficacy_z, bound.alpha_spent, bound.final, alpha_spent_here=bound.alpha_spent_here,
     )  # fmt: skip
     return replace(recorded, **changes)  # type: ignore[arg-type]
 
@@ -110,3 +110,26 @@ def test_the_price_of_nothing_new_is_still_the_price() -> None:
     """A safety look at an event count that fell spends its stated alpha all the same."""
     safety = next_bound(replace(RULE, safety_spend=0.0001), [used(FIRST)], look(2, 130, kind="safety"))
     assert safety.alpha_spent_here == 0.0001
+
+
+def test_a_safety_look_costs_what_it_says_whatever_a_charter_recorded_before_it() -> None:
+    """Spent by crossing: neither what was recorded of a rounded bound nor its difference is the price."""
+    charter = used(FIRST, efficacy_z=2.9, alpha_spent=0.0001)
+    safety = used(next_bound(BY_CROSSING, [charter], look(2, 200, kind="safety")), kind="safety")
+    with_it = next_bound(BY_CROSSING, [charter, safety], look(3, 280))
+    without = next_bound(BY_CROSSING, [charter], look(3, 280))
+    assert with_it.efficacy_z == pytest.approx(without.efficacy_z, abs=1e-12)
+    priced = replace(BY_CROSSING, safety_spend=0.001)
+    paid = used(next_bound(priced, [charter], look(2, 200, kind="safety")), kind="safety")
+    assert paid.alpha_spent_here == 0.001
+    dearer = next_bound(priced, [charter, paid], look(3, 280))
+    assert dearer.alpha_spent_here == pytest.approx(without.alpha_spent_here - 0.001, abs=1e-12)
+
+
+@pytest.mark.parametrize("rule", [RULE, BY_CROSSING])
+def test_what_rounding_leaves_of_alpha_is_not_spent(rule: EfficacyRule) -> None:
+    """A second final look, after one that spent all: no bound from a spend of 1e-17."""
+    last = used(next_bound(rule, [used(FIRST)], look(2, 300, kind="final")), kind="final")
+    again = next_bound(rule, [used(FIRST), last], look(3, 400, kind="final"))
+    assert isinstance(again.efficacy_z, Absent)
+    assert "already spent" in again.efficacy_z.reason
