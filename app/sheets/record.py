@@ -216,7 +216,7 @@ def said(body: Body) -> str:
             before = f", with {held} look{'s' if held > 1 else ''} held before this file" if held else ""
             return f"Plan locked for trial {body.name}{before}"
         case SnapshotReceived():
-            number = len(body.acknowledgements)
+            number = doubts_answered(body)
             doubts = f", {number} doubt{'s' if number > 1 else ''} answered" if number else ""
             cutoff = iso_day_text(body.cutoff)
             return f"Snapshot {body.number} received for a {body.kind} look, cutoff {cutoff}{doubts}"
@@ -242,6 +242,12 @@ def said(body: Body) -> str:
         case Verification():
             return f"Verified up to entry {body.entries}"
     return body.entry_kind
+
+
+def doubts_answered(body: SnapshotReceived) -> int:
+    """As the Data sheet counts them: one answer may be to the same doubt about several endpoints."""
+    answered = {each.finding for each in body.acknowledgements}
+    return sum(each.severity == "doubt" and each.id in answered for each in body.findings)
 
 
 def _refusal_said(body: RefusalRecorded) -> str:

@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from app.ledger.bodies import (
     ArmsUnmasked,
     Body,
     DoubtAnswered,
+    FindingKept,
     LookFrozen,
     PlanLocked,
     ReportWritten,
@@ -24,7 +27,8 @@ DIGEST = "8c4177d0" + "0" * 52 + "19e2"
 
 def received(number: int, doubts: int = 0) -> SnapshotReceived:
     reasons = tuple(DoubtAnswered(f"doubt-{each}", "Known") for each in range(doubts))
-    return SnapshotReceived(number, "planned", f"2025-0{number}-01", None, (), (), reasons, "M. Berg")
+    found = tuple(FindingKept(each.finding, "doubt", 1, "A doubt.") for each in reasons)
+    return SnapshotReceived(number, "planned", f"2025-0{number}-01", None, (), found, reasons, "M. Berg")
 
 
 def frozen(number: int) -> Frozen:
@@ -120,3 +124,9 @@ def test_each_kind_of_entry_is_said_in_words() -> None:
 
 def test_a_digest_is_shown_by_its_ends() -> None:
     assert grouped(DIGEST) == "8c41 77d0 … 19e2"
+
+
+def test_one_answer_to_a_doubt_about_two_endpoints_answers_two() -> None:
+    body = received(2, doubts=1)
+    of_both = replace(body, findings=body.findings * 2)
+    assert said(of_both).endswith(", 2 doubts answered")
