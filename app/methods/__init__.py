@@ -213,7 +213,7 @@ METHODS: dict[str, Method] = {
         "Conditional power",
         "The chance of crossing efficacy later given *z* now: at the final look only, Φ((*z*√*t* + θ(1 − "
         "*t*) − *c*)/√(1 − *t*)); along all planned looks by recursive integration. θ is the mean of *z* "
-        "at full information.",
+        "at full information: −*s* log(ratio) √(*d* *p* *q*) of the planned events, *z*/√*t* of the trend.",
         "Lan, Simon and Halperin (1982), Communications in Statistics C 1, 207–219.",
     ),
     "predictive-power": Method(
