@@ -29,7 +29,7 @@ def data_sheet(view: ClosedView, snapshot: Snapshot, extract: Extract) -> Sheet:
             *_findings_table(look.findings, snapshot.acknowledgements),
             *_identifiers_table(look.changes),
         ),
-        notes=(*_compared(look.changes), *_notes(extract)),
+        notes=(line(_compared(look.changes), _not_read(extract)),),
         methods=methods("changes"),
         figure_table=_changes_table(look.changes),
     )
@@ -184,19 +184,19 @@ def _finding_row(finding: Finding, reason: str | None) -> Row:
     return Row((head,), (Cell(line(str(finding))), rows, Cell(line(reason or ""))))
 
 
-def _compared(changes: Changes | None) -> tuple[Line, ...]:
+def _compared(changes: Changes | None) -> Line:
     """The denominator of what changed."""
     if changes is None:
         return ()
     both = counted(changes.n_common, "subject")
-    return (line("Changes: of the ", both, " in both snapshots."),)
+    return line("Changes: of the ", both, " in both snapshots. ")
 
 
-def _notes(extract: Extract) -> tuple[Line, ...]:
+def _not_read(extract: Extract) -> Line:
     left_out = sorted({column for file in extract.files for column in file.columns_left_out})
     if not left_out:
-        return (line("Every column of the extract was read."),)
-    return (line(f"Not read, because not needed: {', '.join(left_out)}."),)
+        return line("Every column of the extract was read.")
+    return line(f"Not read, because not needed: {', '.join(left_out)}.")
 
 
 # --- the open side --------------------------------------------------------------------------------------

@@ -130,4 +130,4 @@ def test_the_denominator_of_the_changes_stands_beside_them() -> None:
     second = held(cutoffs=CUTOFFS[:2])[1]
     changes = second.view().look.changes
     note = text(shown(second, changes=changes).notes[0]).replace("\u00a0", " ")
-    assert note == "Changes: of the 128 subjects in both snapshots."
+    assert note.startswith("Changes: of the 128 subjects in both snapshots. Not read")
