@@ -37,7 +37,15 @@ from app.sequential.rules import (
 from app.sequential.spending import SMALLEST_SPEND
 from app.sequential.verdict import first_crossed
 
-__all__ = ["EfficacyRule", "LookAhead", "bounds_ahead", "efficacy_rule", "hazard_ratio_at", "next_bound"]
+__all__ = [
+    "EfficacyRule",
+    "LookAhead",
+    "bounds_ahead",
+    "efficacy_rule",
+    "hazard_ratio_at",
+    "next_bound",
+    "over_running",
+]
 
 ROUNDING = 1e-10  # of what may be spent: integrals and sums of spends are not more exact than that
 SAFETY = Absent("a safety look has no efficacy bound and spends no alpha")
@@ -256,13 +264,14 @@ def _why_untested(standing: _Standing, look: LookAhead) -> Absent | None:
     if look.kind == "safety":
         return SAFETY
     if standing.crossed_at is not None:
-        return _over_running(standing.crossed_at)
+        return over_running(standing.crossed_at)
     if look.information <= standing.information:
         return NO_FINAL_BOUNDARY if look.final else NO_NEW_INFORMATION
     return None
 
 
-def _over_running(crossed_at: int) -> Absent:
+def over_running(crossed_at: int) -> Absent:
+    """Why nothing is tested after the look that crossed."""
     return Absent(f"the boundary was crossed at look {crossed_at}: over-running, with no second test")
 
 
@@ -380,7 +389,7 @@ def _harm_side(rule: HarmRule | None, standing: _Standing, look: LookAhead) -> _
         return None
     spent, information = standing.harm_alpha_spent, _harm_information(rule, look)
     if standing.crossed_at is not None:
-        return _Side(_over_running(standing.crossed_at), spent)
+        return _Side(over_running(standing.crossed_at), spent)
     if information <= standing.harm_information:
         return _Side(NO_NEW_INFORMATION, spent)
     allowed = rule.spending.alpha if look.final else rule.spending(look.spending_time)

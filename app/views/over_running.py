@@ -7,11 +7,7 @@ from dataclasses import replace
 from app.model.boundary import Bound, LookAsUsed
 from app.model.look import LookResult
 from app.model.values import Absent
-
-
-def over_running(last: int) -> Absent:
-    """Why nothing is tested after look `last`."""
-    return Absent(f"the boundary was crossed at look {last}: over-running, with no second test")
+from app.sequential.boundary import over_running
 
 
 def held_until(last: int, past: tuple[LookAsUsed, ...]) -> tuple[LookAsUsed, ...]:

@@ -12,9 +12,9 @@ from app.model.look import LookResult, Onwards
 from app.model.plan import Plan
 from app.model.survival import ArmComparison, LogrankResult
 from app.model.values import Absent, Estimate
+from app.sequential.boundary import over_running
 from app.sequential.gatekeeping import gated_history, gated_verdict
 from app.sequential.verdict import crossed, first_crossed, verdict
-from app.views.over_running import over_running
 
 
 @dataclass(frozen=True)
